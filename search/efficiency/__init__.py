@@ -1,0 +1,1 @@
+"""How good is a plan, and how good could any be?"""

@@ -1,0 +1,1 @@
+"""Errors, exact arithmetic, the guarded solver call, stopping rules: what every floor stands on."""

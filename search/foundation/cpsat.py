@@ -1,0 +1,73 @@
+"""The one guarded call to CP-SAT.
+
+One worker and default presolve, because wrong "infeasible" answers were reported against the solver
+for many workers without presolve. "Infeasible" is believed only when a second seed agrees; a solution
+is never believed here at all: whoever asks checks it against the rules.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from enum import Enum
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from ortools.sat.python.cp_model import CpModel, IntVar
+
+
+class Answer(Enum):
+    """What the solver says about a model."""
+
+    SOLUTION = "solution"
+    INFEASIBLE = "infeasible"
+    UNKNOWN = "unknown"
+
+
+@dataclass(frozen=True, slots=True)
+class Solved:
+    """An answer, and for a solution the value of each variable asked for."""
+
+    answer: Answer
+    values: tuple[int, ...] = ()
+
+
+def solve(
+    model: CpModel,
+    wanted: Sequence[IntVar],
+    *,
+    seconds: float,
+    effort: float | None = None,
+    seed: int = 0,
+) -> Solved:
+    """Ask CP-SAT for a solution.
+
+    Parameters
+    ----------
+    model : the whole model, hard constraints only
+    wanted : variables whose values are handed back
+    seconds : wall time for each of the two calls
+    effort : deterministic work limit of the solver, so that an answer does not depend on the clock
+    seed : seed of the first call; "infeasible" is confirmed with another
+
+    Returns
+    -------
+    Solved : SOLUTION with values, INFEASIBLE if two seeds agree, else UNKNOWN
+    """
+    from ortools.sat.python import cp_model
+
+    def ask(with_seed: int) -> tuple[int, cp_model.CpSolver]:
+        solver = cp_model.CpSolver()
+        solver.parameters.num_workers = 1
+        solver.parameters.max_time_in_seconds = max(0.01, seconds)
+        if effort is not None:
+            solver.parameters.max_deterministic_time = effort
+        solver.parameters.random_seed = with_seed % 2**31
+        return solver.solve(model), solver
+
+    status, solver = ask(seed)
+    if status in (cp_model.OPTIMAL, cp_model.FEASIBLE):
+        return Solved(Answer.SOLUTION, tuple(int(solver.value(v)) for v in wanted))
+    if status == cp_model.INFEASIBLE and ask(seed + 1)[0] == cp_model.INFEASIBLE:
+        return Solved(Answer.INFEASIBLE)
+    return Solved(Answer.UNKNOWN)

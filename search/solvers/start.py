@@ -1,0 +1,105 @@
+"""A first plan that obeys the rules: built greedily, else found, or ruled out, by CP-SAT."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from search.foundation.errors import Undecided
+from search.solvers.feasibility import decide
+from search.trial.checker import broken_rules
+from search.trial.limits import Limits
+from search.trial.records import Contents, Trial
+from search.trial.tables import Ints, Tables, contents_of
+
+ATTEMPTS = 12
+
+
+def feasible_start(
+    trial: Trial, tables: Tables, limits: Limits, *, seed: int, seconds: float, effort: float | None = None
+) -> tuple[Contents, str]:
+    """A plan that obeys every rule, and where it came from.
+
+    Parameters
+    ----------
+    trial : the trial
+    tables : its tables, with the implied replication of `limits`
+    limits : what the rules imply
+    seed : of the greedy builder and of the solver
+    seconds, effort : wall time and deterministic work that the solver may take
+
+    Raises
+    ------
+    Impossible : the solver proved, twice, that no plan obeys the rules
+    Undecided : it ran out of time
+    """
+    rng = np.random.default_rng(seed)
+    for _ in range(ATTEMPTS):
+        counts = build(tables, limits, rng)
+        if counts is not None:
+            contents = contents_of(counts)
+            if not broken_rules(trial, contents):
+                return contents, "greedy start"
+    contents = decide(tables, limits, seed=seed, seconds=seconds, effort=effort)
+    broken = broken_rules(trial, contents)
+    if broken:  # the model or the solver is at fault, not the trial
+        raise Undecided(f"the solver's plan breaks a rule ({broken[0]}), so nothing is known")
+    return contents, "start from the rule solver"
+
+
+def build(tables: Tables, limits: Limits, rng: np.random.Generator) -> Ints | None:
+    """Fill block after block with the treatments that run out of blocks first.
+
+    Returns
+    -------
+    (t, b) counts, or None where the builder got stuck; meetings are not looked at
+    """
+    plots = _draw_replication(tables, limits, rng)
+    if plots is None:
+        return None
+    counts = tables.low.copy()
+    groups = [np.flatnonzero(tables.group == g) for g in range(-1, tables.share.shape[1])]
+    for g, blocks in enumerate(groups, start=-1):
+        wanted = tables.share[:, g] if g >= 0 else plots - tables.share.sum(axis=1)
+        if not _fill(counts, blocks, wanted, tables, rng):
+            return None
+    return counts
+
+
+def _draw_replication(tables: Tables, limits: Limits, rng: np.random.Generator) -> Ints | None:
+    """Plots for each treatment within all limits, the rest dealt out as evenly as they allow."""
+    plots = tables.least.copy()
+    room = [(np.array(s.treatments), s.most) for s in limits.sums]
+    while (left := tables.n - int(plots.sum())) > 0:
+        open_ = plots < tables.most
+        for members, most in room:
+            if plots[members].sum() >= most:
+                open_[members] = False
+        candidates = np.flatnonzero(open_)
+        if not len(candidates):
+            return None
+        fewest = candidates[plots[candidates] == plots[candidates].min()]
+        if room or left < len(fewest):
+            plots[rng.choice(fewest)] += 1
+        else:
+            plots[fewest] += 1
+    return plots
+
+
+def _fill(counts: Ints, blocks: Ints, wanted: Ints, tables: Tables, rng: np.random.Generator) -> bool:
+    need = wanted - counts[:, blocks].sum(axis=1)
+    if (need < 0).any():
+        return False
+    remaining = (tables.high[:, blocks] - counts[:, blocks]).sum(axis=1).astype(float)
+    for j in blocks[np.lexsort((rng.random(len(blocks)), -tables.sizes[blocks]))]:
+        remaining -= tables.high[:, j] - counts[:, j]
+        barred = (tables.apart & (counts[:, j] > 0)).any(axis=1)
+        for _ in range(int(tables.sizes[j] - counts[:, j].sum())):
+            can = (need > 0) & (counts[:, j] < tables.high[:, j]) & ~barred
+            if not can.any():
+                return False
+            urgency = np.where(can, need / (remaining + 1.0) + 1e-3 * rng.random(len(need)), -1.0)
+            chosen = int(np.argmax(urgency))
+            counts[chosen, j] += 1
+            need[chosen] -= 1
+            barred |= tables.apart[chosen]
+    return not need.any()

@@ -1,0 +1,239 @@
+"""From a trial file to a `Trial`: names become numbers, defaults are filled in, every fault is told."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Any
+
+from search.foundation.errors import Fault, FaultyTrial
+from search.trial.catalogue import MOST_PLOTS, TRIAL
+from search.trial.drawing import read_ground
+from search.trial.even import even_ranges
+from search.trial.kinds import Report, Section
+from search.trial.names import Names
+from search.trial.nodes import Node, nodes_of, read_nodes
+from search.trial.records import (
+    Aim,
+    AimKind,
+    Amount,
+    Block,
+    Contrast,
+    PacketSettings,
+    Precision,
+    Randomise,
+    Rules,
+    SearchSettings,
+    Treatment,
+    Trial,
+)
+from search.trial.reading_rules import read_rules
+
+
+def read_trial(path: str | Path) -> Trial:
+    """The trial of a YAML file.
+
+    Raises
+    ------
+    FaultyTrial : with every fault of the file
+    """
+    path = Path(path)
+    return trial_from_nodes(read_nodes(path), str(path))
+
+
+def trial_from_document(document: Any) -> Trial:
+    """The trial of plain JSON data in the form of a trial file.
+
+    Raises
+    ------
+    FaultyTrial : with every fault of the data
+    """
+    return trial_from_nodes(nodes_of(document), "")
+
+
+def trial_from_nodes(root: Node, file: str) -> Trial:
+    """The trial of a parsed document.
+
+    Raises
+    ------
+    FaultyTrial : with every fault of the document
+    """
+    report = Report(file)
+    section = TRIAL.read(root, "", report)
+    trial = _Reader(section, report).trial() if section is not None else None
+    if trial is None or report.faults:
+        raise FaultyTrial(sorted(report.faults, key=_place))
+    return trial
+
+
+def _place(fault: Fault) -> tuple[int, int]:
+    return fault.line, fault.column
+
+
+class _Reader:
+    """Builds the trial part by part; a part that cannot be built has left a fault behind."""
+
+    def __init__(self, section: Section, report: Report) -> None:
+        self.section = section
+        self.report = report
+
+    def trial(self) -> Trial | None:
+        names = self._treatment_names()
+        ground, blocks = read_ground(self.section.get("ground"), self.report)
+        blocks = self._blocks(blocks)
+        if names is None or blocks is None:
+            return None
+        treatments = Names("treatment", names)
+        bays = Names("block", [block.name for block in blocks])
+        rules = read_rules(self.section.get("rules"), treatments, bays, self.report) or Rules()
+        settings = self.section.get("treatments")
+        settings = settings if isinstance(settings, Section) else Section()
+        plants = self._treatments(names, settings, blocks, rules)
+        aim = self._aim(treatments, plants)
+        return Trial(
+            name=self.section.get("trial", ""),
+            treatments=plants,
+            blocks=blocks,
+            rules=rules,
+            even="plots_each" not in self.section and any(not x.own_range for x in plants),
+            plots_each=self._range(self.section, "plots_each"),
+            aim=aim,
+            ground=ground,
+            about=tuple(self.section.get("about", {}).items()),
+            search=SearchSettings(**self.section.get("search", {})),
+            randomise=Randomise(**self.section.get("randomise", {})),
+            precision=Precision(**self.section.get("precision", {})),
+            packet=PacketSettings(**self.section.get("packet", {})),
+            file=self.report.file,
+        )
+
+    def _treatment_names(self) -> list[str] | None:
+        value = self.section.get("treatments")
+        if isinstance(value, int):
+            width = max(2, len(str(value)))
+            return [f"T{number:0{width}d}" for number in range(1, value + 1)]
+        if value is None:
+            return None
+        places = value.key_at.values() if isinstance(value, Section) else value.where
+        names = list(value.key_at) if isinstance(value, Section) else list(value)
+        self._unlike(names, list(places), "treatments")
+        return names
+
+    def _unlike(self, names: list[str], places: list[Node], key: str) -> None:
+        """Refuse names that differ only in case or blanks."""
+        seen: dict[str, str] = {}
+        for name, place in zip(names, places, strict=True):
+            plain = "".join(name.split()).casefold()
+            if plain in seen:
+                self.report.add(place, key, f'"{name}" beside "{seen[plain]}"',
+                                "names that differ in more than case and blanks",
+                                "on a label in the field they would be taken for one another",
+                                "rename one of them")  # fmt: skip
+            seen.setdefault(plain, name)
+
+    def _blocks(self, drawn: tuple[Block, ...] | None) -> tuple[Block, ...] | None:
+        section: Section | None = self.section.get("blocks")
+        where = self.section.where
+        if section is None:
+            if drawn is None and "ground" not in where and "blocks" not in where:
+                self.report.add(None, "blocks", "neither blocks nor ground", "blocks with their plots, or a map",
+                                remedy="blocks: {count: 6, plots: 8}")  # fmt: skip
+            return drawn
+        if "count" in section.where or "plots" in section.where:
+            if "count" not in section or "plots" not in section:
+                return None
+            blocks = tuple(Block(f"block {j}", section["plots"]) for j in range(1, section["count"] + 1))
+        else:
+            self._unlike(list(section.key_at), list(section.key_at.values()), "blocks")
+            blocks = tuple(Block(name, plots) for name, plots in section.items())
+        if drawn is not None and sorted(map(repr, drawn)) != sorted(map(repr, blocks)):
+            self.report.add(where["blocks"], "blocks", "blocks unlike those on the map",
+                            "blocks as ground draws them, or no blocks at all",
+                            "two accounts of one field: one of them is wrong", "leave blocks out")  # fmt: skip
+        plots = sum(block.plots for block in blocks)
+        if plots > MOST_PLOTS:
+            self.report.add(where["blocks"], "blocks", f"{plots:,} plots", f"at most {MOST_PLOTS:,}")
+        return drawn if drawn is not None else blocks
+
+    def _range(self, section: Section, key: str) -> tuple[int, int] | None:
+        value = section.get(key)
+        if value is None:
+            return None
+        if isinstance(value, int):
+            return value, value
+        if len(value) != 2:
+            return None
+        least, most = value
+        if least > most:
+            self.report.add(section.where[key], key, f"[{least}, {most}]", "[least, most]",
+                            remedy=f"[{most}, {least}]")  # fmt: skip
+        return least, most
+
+    def _treatments(
+        self, names: list[str], settings: Section, blocks: tuple[Block, ...], rules: Rules
+    ) -> tuple[Treatment, ...]:
+        own = [self._range(settings.get(name, Section()) or Section(), "plots") for name in names]
+        each = self._range(self.section, "plots_each")
+        if each is None:
+            ranges = even_ranges(_own_limits(own, blocks, rules), sum(block.plots for block in blocks))
+        else:
+            ranges = tuple(each for _ in names)
+        return tuple(
+            _treatment(name, wanted or share, wanted is not None, settings.get(name) or Section())
+            for name, wanted, share in zip(names, own, ranges, strict=True)
+        )
+
+    def _aim(self, names: Names, treatments: tuple[Treatment, ...]) -> Aim:
+        value = self.section.get("aim", AimKind.ALL_PAIRS.value)
+        node = self.section.where.get("aim")
+        if isinstance(value, str):
+            kind = AimKind(value)
+            if kind is AimKind.AGAINST_CONTROL and not any(x.control for x in treatments):
+                self.report.add(node, "aim", "against control, but no control", "a treatment with control: true",
+                                remedy="mark the control, or choose the aim: all pairs")  # fmt: skip
+            return Aim(kind)
+        contrasts = []
+        for label, fields in value.get("contrasts", {}).items():
+            of = fields.get("of", Section())
+            key = f"aim.contrasts.{label}.of"
+            numbers = [names.find(name, of.key_at[name], key, self.report) for name in of]
+            place = value["contrasts"].where[label]
+            if sum(of.values()) != 0 or not any(of.values()):
+                self.report.add(place, key, f"coefficients that sum to {sum(of.values())}",
+                                "coefficients that sum to 0, not all 0",
+                                "otherwise it is no comparison, and the site mean would enter it")  # fmt: skip
+            known = [(i, c) for i, c in zip(numbers, of.values(), strict=True) if i is not None]
+            contrasts.append(Contrast(label, fields.get("weight", 1), tuple(known)))
+        return Aim(AimKind.CONTRASTS, tuple(contrasts))
+
+
+def _own_limits(
+    own: list[tuple[int, int] | None], blocks: tuple[Block, ...], rules: Rules
+) -> list[tuple[int, int | None]]:
+    """Own ranges, and for the others what the replicates settle: once in each, the rest outside."""
+    inside = {j for replicate in rules.replicates for j in replicate.blocks}
+    outside = sum(block.plots for j, block in enumerate(blocks) if j not in inside)
+    times = dict(rules.per_replicate)
+    limits: list[tuple[int, int | None]] = []
+    for i, range_ in enumerate(own):
+        if range_ is not None:
+            limits.append(range_)
+        elif rules.replicates:
+            settled = times.get(i, 1) * len(rules.replicates)
+            limits.append((settled, settled + outside))
+        else:
+            limits.append((1, None))
+    return limits
+
+
+def _treatment(name: str, plots: tuple[int, int], own: bool, settings: Section) -> Treatment:
+    amount = settings.get("amount")
+    known = amount is not None and len(amount) == 2
+    return Treatment(
+        name=name,
+        least=plots[0],
+        most=plots[1],
+        own_range=own,
+        control=settings.get("control", False),
+        caution=settings.get("caution", ""),
+        amount=Amount(amount["per_plot"], amount["unit"]) if known else None,
+    )

@@ -1,0 +1,215 @@
+"""What is to be planned: the frozen record that the reader hands to every other floor.
+
+Treatments and blocks are numbered from 0 in the order of the file; everything below refers to them
+by number, and only these records know their names.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from enum import StrEnum
+from fractions import Fraction
+
+Contents = tuple[tuple[int, ...], ...]
+"""For each block the treatments that stand in it, one entry a plot, in rising order."""
+
+
+@dataclass(frozen=True, slots=True)
+class Amount:
+    """Seed or product to weigh out for one plot."""
+
+    per_plot: float
+    unit: str
+
+
+@dataclass(frozen=True, slots=True)
+class Treatment:
+    """A treatment and the range of plots that the file states for it.
+
+    `least` and `most` are the stated range: the treatment's own, else `plots_each`, else the even
+    share (`Trial.even`). What the rules imply beyond that is in `search.trial.limits`.
+    """
+
+    name: str
+    least: int
+    most: int
+    own_range: bool = False
+    control: bool = False
+    caution: str = ""
+    amount: Amount | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Block:
+    """A block of exactly `plots` plots."""
+
+    name: str
+    plots: int
+
+
+@dataclass(frozen=True, slots=True)
+class Replicate:
+    """Blocks that together hold every treatment once (or as `Rules.per_replicate` says)."""
+
+    name: str
+    blocks: tuple[int, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Meeting:
+    """A limit on the number of blocks that two treatments share; `pair` is None for every pair."""
+
+    blocks: int
+    pair: tuple[int, int] | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Rules:
+    """The rules of the file, by treatment and block numbers."""
+
+    never_share_block: tuple[tuple[int, ...], ...] = ()
+    meet_at_least: tuple[Meeting, ...] = ()
+    meet_at_most: tuple[Meeting, ...] = ()
+    keep_out: tuple[tuple[int, int], ...] = ()
+    """(treatment, block): the treatment may not enter the block."""
+    must_hold: tuple[tuple[int, int], ...] = ()
+    """(treatment, block): the block must contain the treatment."""
+    replicates: tuple[Replicate, ...] = ()
+    per_replicate: tuple[tuple[int, int], ...] = ()
+    """(treatment, times): stands that often in each replicate, instead of once."""
+    twice_in_block: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class Numbering:
+    """Where plot numbers start and how they run."""
+
+    start: str = "bottom left"
+    way: str = "serpentine"
+
+
+@dataclass(frozen=True, slots=True)
+class Ground:
+    """The field as a map.
+
+    `rows` has one text per line of plots, the farthest from the reader first, all of one length; a
+    letter is a block, a dot a place without a plot. `letters` gives the block number of each letter.
+    """
+
+    rows: tuple[str, ...]
+    letters: tuple[tuple[str, int], ...]
+    plot_m: tuple[float, float] | None = None
+    """Width and length of a sown plot in metres."""
+    gap_m: tuple[float, float] = (0.0, 0.0)
+    """Metres between neighbours in a line, and between lines."""
+    numbering: Numbering = Numbering()
+    north_deg: float | None = None
+    """Compass bearing, in degrees from north, of the way from the reader to the far edge."""
+    corner: tuple[float, float] | None = None
+    """Latitude and longitude of the corner where numbering starts."""
+
+
+class AimKind(StrEnum):
+    """What a good plan is good for."""
+
+    ALL_PAIRS = "all pairs"
+    OVERALL = "overall"
+    AGAINST_CONTROL = "against control"
+    CONTRASTS = "contrasts"
+
+
+@dataclass(frozen=True, slots=True)
+class Contrast:
+    """A comparison of interest: coefficients that sum to 0, and its weight among the others."""
+
+    label: str
+    weight: Fraction
+    of: tuple[tuple[int, Fraction], ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Aim:
+    """The criterion of the trial; `contrasts` is filled for that kind alone."""
+
+    kind: AimKind = AimKind.ALL_PAIRS
+    contrasts: tuple[Contrast, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class SearchSettings:
+    """How far to search; None where the file does not say."""
+
+    seconds: float | None = None
+    moves: int | None = None
+    seed: int = 1
+    workers: int | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Randomise:
+    """The layout's own seed (None: a fresh one, recorded) and the number of sites."""
+
+    seed: int | None = None
+    sites: int = 1
+
+
+@dataclass(frozen=True, slots=True)
+class Precision:
+    """What is expected of the field, for standard errors and detectable differences."""
+
+    cv_percent: float | None = None
+    mean: float | None = None
+    unit: str = ""
+    difference: float | None = None
+    level_percent: float = 5.0
+    power_percent: float = 80.0
+
+
+@dataclass(frozen=True, slots=True)
+class PacketSettings:
+    """How the crew packet is drawn."""
+
+    paper: str = "A4"
+    spare_bags: int = 0
+    labels: str = "sheet"
+
+
+@dataclass(frozen=True, slots=True)
+class Trial:
+    """A trial as read: checked, complete, read-only."""
+
+    name: str
+    treatments: tuple[Treatment, ...]
+    blocks: tuple[Block, ...]
+    rules: Rules = Rules()
+    even: bool = False
+    """True where `plots_each` was left out and some treatment takes the even share."""
+    plots_each: tuple[int, int] | None = None
+    aim: Aim = Aim()
+    ground: Ground | None = None
+    about: tuple[tuple[str, str], ...] = ()
+    search: SearchSettings = SearchSettings()
+    randomise: Randomise = Randomise()
+    precision: Precision = Precision()
+    packet: PacketSettings = PacketSettings()
+    file: str = field(default="", compare=False)
+
+    @property
+    def t(self) -> int:
+        """Number of treatments."""
+        return len(self.treatments)
+
+    @property
+    def b(self) -> int:
+        """Number of blocks."""
+        return len(self.blocks)
+
+    @property
+    def n(self) -> int:
+        """Number of plots."""
+        return sum(block.plots for block in self.blocks)
+
+    @property
+    def controls(self) -> tuple[int, ...]:
+        """Numbers of the control treatments."""
+        return tuple(i for i, treatment in enumerate(self.treatments) if treatment.control)
