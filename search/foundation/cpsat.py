@@ -56,7 +56,7 @@ def solve(
     """
     from ortools.sat.python import cp_model
 
-    def ask(with_seed: int) -> tuple[int, cp_model.CpSolver]:
+    def ask(with_seed: int) -> tuple[cp_model.CpSolverStatus, cp_model.CpSolver]:
         solver = cp_model.CpSolver()
         solver.parameters.num_workers = 1
         solver.parameters.max_time_in_seconds = max(0.01, seconds)

@@ -15,7 +15,13 @@ ATTEMPTS = 12
 
 
 def feasible_start(
-    trial: Trial, tables: Tables, limits: Limits, *, seed: int, seconds: float, effort: float | None = None
+    trial: Trial,
+    tables: Tables,
+    limits: Limits,
+    *,
+    seed: int,
+    seconds: float,
+    effort: float | None = None,
 ) -> tuple[Contents, str]:
     """A plan that obeys every rule, and where it came from.
 

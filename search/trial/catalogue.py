@@ -102,7 +102,10 @@ RULES = Fields(
         "not_beside": NotYet("a rule about neighbouring plots"),
         "planted": NotYet("plots that are in the soil already"),
     },
-    slips={"reps": "plots_each, at the top of the file", "replication": "plots_each, at the top of the file"},
+    slips={
+        "reps": "plots_each, at the top of the file",
+        "replication": "plots_each, at the top of the file",
+    },
 )
 
 GROUND = Fields(

@@ -34,8 +34,12 @@ def read_ground(section: Section | None, report: Report) -> tuple[Ground | None,
     blocks = tuple(Block(names[letter], text.count(letter)) for letter in letters)
     plot, gap, corner = section.get("plot_m"), section.get("gap_m"), section.get("corner")
     if corner is not None and len(corner) == 2 and abs(corner[0]) > 90:
-        report.add(section.where["corner"], "ground.corner", f"the latitude {corner[0]:g}",
-                   "[latitude, longitude], the latitude from -90 to 90")  # fmt: skip
+        report.add(
+            section.where["corner"],
+            "ground.corner",
+            f"the latitude {corner[0]:g}",
+            "[latitude, longitude], the latitude from -90 to 90",
+        )
     ground = Ground(
         rows=rows,
         letters=tuple((letter, j) for j, letter in enumerate(letters)),
@@ -55,12 +59,21 @@ def _sound(rows: tuple[str, ...], section: Section, report: Report) -> bool:
     for number, row in enumerate(rows, start=1):
         strange = next((c for c in row if c != EMPTY and not (c.isascii() and c.isalpha())), None)
         if strange is not None:
-            report.add(node, key, f"{shown(strange)} in line {number} of the map",
-                       "letters a-z and A-Z for blocks, a dot for a place without a plot")  # fmt: skip
+            report.add(
+                node,
+                key,
+                f"{shown(strange)} in line {number} of the map",
+                "letters a-z and A-Z for blocks, a dot for a place without a plot",
+            )
         elif len(row) != width:
-            report.add(node, key, f"{len(row)} places in line {number} of the map, {width} in the longest",
-                       "lines of one length",
-                       "nobody can tell on which side the missing places lie", "fill the line up with dots")  # fmt: skip
+            report.add(
+                node,
+                key,
+                f"{len(row)} places in line {number} of the map, {width} in the longest",
+                "lines of one length",
+                "nobody can tell on which side the missing places lie",
+                "fill the line up with dots",
+            )
     plots = sum(c != EMPTY for row in rows for c in row)
     if not 0 < plots <= MOST_PLOTS:
         report.add(node, key, f"{plots:,} plots", f"1 to {MOST_PLOTS:,} plots")
@@ -77,8 +90,12 @@ def _names(letters: list[str], section: Section, report: Report) -> dict[str, st
     for letter, name in names.items():
         plain = "".join(name.split()).casefold()
         if plain in seen:
-            report.add(given.where.get(letter), "ground.names", f"{shown(name)} for {seen[plain]} and {letter}",
-                       "a name of its own for every block, unlike in more than case and blanks",
-                       remedy="use only small letters, or name the blocks")  # fmt: skip
+            report.add(
+                given.where.get(letter),
+                "ground.names",
+                f"{shown(name)} for {seen[plain]} and {letter}",
+                "a name of its own for every block, unlike in more than case and blanks",
+                remedy="use only small letters, or name the blocks",
+            )
         seen.setdefault(plain, letter)
     return names

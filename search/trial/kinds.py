@@ -251,7 +251,12 @@ class Listing:
         return items
 
     def schema(self) -> Schema:
-        return {"type": "array", "items": self.item.schema(), "minItems": self.least, "maxItems": self.most}
+        return {
+            "type": "array",
+            "items": self.item.schema(),
+            "minItems": self.least,
+            "maxItems": self.most,
+        }
 
 
 @dataclass(frozen=True, slots=True)
@@ -276,8 +281,13 @@ class Table:
             if name is None:
                 continue
             if name in section.where:
-                report.add(name_node, key, f"{shown(name)} a second time", "each name once",
-                           remedy=f"the first stands in line {section.key_at[name].line}")  # fmt: skip
+                report.add(
+                    name_node,
+                    key,
+                    f"{shown(name)} a second time",
+                    "each name once",
+                    remedy=f"the first stands in line {section.key_at[name].line}",
+                )
                 continue
             section.where[name], section.key_at[name] = value_node, name_node
             if self.empty is not None and isinstance(value_node, Scalar) and not value_node.text:
@@ -315,12 +325,23 @@ class Fields:
             name = name_node.text.strip() if isinstance(name_node, Scalar) else describe(name_node)
             path = f"{key}.{name}" if key else name
             if name in section.where:
-                report.add(name_node, path, "the key a second time", "each key once",
-                           remedy=f"the first stands in line {section.key_at[name].line}")  # fmt: skip
+                report.add(
+                    name_node,
+                    path,
+                    "the key a second time",
+                    "each key once",
+                    remedy=f"the first stands in line {section.key_at[name].line}",
+                )
             elif name not in self.kinds:
                 remedy = self.slips.get(name.casefold()) or did_you_mean(name, self.kinds)
-                report.add(name_node, path, f"the key {shown(name)}", "one of: " + ", ".join(self.kinds),
-                           "a key that nobody reads would be a rule that nobody keeps", remedy)  # fmt: skip
+                report.add(
+                    name_node,
+                    path,
+                    f"the key {shown(name)}",
+                    "one of: " + ", ".join(self.kinds),
+                    "a key that nobody reads would be a rule that nobody keeps",
+                    remedy,
+                )
             else:
                 section.where[name], section.key_at[name] = value_node, name_node
                 value = self.kinds[name].read(value_node, path, report)
@@ -370,8 +391,14 @@ class NotYet:
     what: str
 
     def read(self, node: Node, key: str, report: Report) -> None:
-        report.add(node, key, self.what, "what this version can plan",
-                   "a plan that ignored it would look as if it kept it", "not yet in this version: leave it out")  # fmt: skip
+        report.add(
+            node,
+            key,
+            self.what,
+            "what this version can plan",
+            "a plan that ignored it would look as if it kept it",
+            "not yet in this version: leave it out",
+        )
 
     def schema(self) -> Schema:
         return {"not": {}}

@@ -200,7 +200,8 @@ class _Implications:
                 )
             for i in np.flatnonzero(rules.high[:, blocks].sum(axis=1) < rules.share[:, g]):
                 raise Impossible(
-                    [f"{self.names[i]} is kept out of too much of replicate {replicate.name}"], "count"
+                    [f"{self.names[i]} is kept out of too much of replicate {replicate.name}"],
+                    "count",
                 )
             for i in np.flatnonzero(rules.low[:, blocks].sum(axis=1) > rules.share[:, g]):
                 raise Impossible(
@@ -269,7 +270,8 @@ class _Implications:
         n = self.tables.n
         if self.least.sum() > n:
             raise Impossible(
-                [f"the treatments need at least {self.least.sum()} plots, but the blocks have {n}"], "count"
+                [f"the treatments need at least {self.least.sum()} plots, but the blocks have {n}"],
+                "count",
             )
         # Disjoint sums bound the total from above, treatment by treatment.
         part = {}
@@ -285,7 +287,8 @@ class _Implications:
         ceiling += int(self.most.sum()) - int(self.most[list(used)].sum())
         if ceiling < n:
             raise Impossible(
-                [f"the treatments can have at most {ceiling} plots, but the blocks have {n}"], "count"
+                [f"the treatments can have at most {ceiling} plots, but the blocks have {n}"],
+                "count",
             )
         spare = int(self.least.sum())
         for i in range(self.tables.t):
@@ -312,7 +315,8 @@ class _Implications:
             most = np.cumsum(partners[::-1])
             if needed > (int(most[-1]) if len(most) else 0):
                 raise Impossible(
-                    [f"{self.names[i]} must share {needed} blocks with others, more than it can"], "count"
+                    [f"{self.names[i]} must share {needed} blocks with others, more than it can"],
+                    "count",
                 )
             if needed:
                 self._at_least(i, int(np.searchsorted(most, needed)) + 1, "the meetings that are required")

@@ -34,6 +34,12 @@ class Names:
             remedy = did_you_mean(name, self.numbers)
             if other is not None and name in other:
                 remedy = f"{shown(name)} is a {other.sort}: the two sides may be turned round"
-            report.add(node, key, shown(name), f"the name of a {self.sort} of this trial",
-                       "a rule about nobody would keep nothing", remedy)  # fmt: skip
+            report.add(
+                node,
+                key,
+                shown(name),
+                f"the name of a {self.sort} of this trial",
+                "a rule about nobody would keep nothing",
+                remedy,
+            )
         return number

@@ -181,9 +181,18 @@ def _yaml_fault(error: yaml.MarkedYAMLError, text: str, file: str) -> FaultyTria
         return _refusal(file, "a tab", "blanks before and between words", line, here.index("\t") + 1)
     remedy = "look at the blanks before this line and at colons, brackets and quotes in it"
     return FaultyTrial(
-        [Fault("", (error.problem or "something that is not YAML"), "YAML: `key: value`, one a line",
-               remedy=remedy, file=file, line=line, column=column)]
-    )  # fmt: skip
+        [
+            Fault(
+                "",
+                (error.problem or "something that is not YAML"),
+                "YAML: `key: value`, one a line",
+                remedy=remedy,
+                file=file,
+                line=line,
+                column=column,
+            )
+        ]
+    )
 
 
 def _refusal(file: str, found: str, must: str, line: int = 0, column: int = 0) -> FaultyTrial:

@@ -12,6 +12,7 @@ from search.trial.even import even_ranges
 from search.trial.kinds import Report, Section
 from search.trial.names import Names
 from search.trial.nodes import Node, nodes_of, read_nodes
+from search.trial.reading_rules import read_rules
 from search.trial.records import (
     Aim,
     AimKind,
@@ -26,7 +27,6 @@ from search.trial.records import (
     Treatment,
     Trial,
 )
-from search.trial.reading_rules import read_rules
 
 
 def read_trial(path: str | Path) -> Trial:
@@ -124,10 +124,14 @@ class _Reader:
         for name, place in zip(names, places, strict=True):
             plain = "".join(name.split()).casefold()
             if plain in seen:
-                self.report.add(place, key, f'"{name}" beside "{seen[plain]}"',
-                                "names that differ in more than case and blanks",
-                                "on a label in the field they would be taken for one another",
-                                "rename one of them")  # fmt: skip
+                self.report.add(
+                    place,
+                    key,
+                    f'"{name}" beside "{seen[plain]}"',
+                    "names that differ in more than case and blanks",
+                    "on a label in the field they would be taken for one another",
+                    "rename one of them",
+                )
             seen.setdefault(plain, name)
 
     def _blocks(self, drawn: tuple[Block, ...] | None) -> tuple[Block, ...] | None:
@@ -135,8 +139,13 @@ class _Reader:
         where = self.section.where
         if section is None:
             if drawn is None and "ground" not in where and "blocks" not in where:
-                self.report.add(None, "blocks", "neither blocks nor ground", "blocks with their plots, or a map",
-                                remedy="blocks: {count: 6, plots: 8}")  # fmt: skip
+                self.report.add(
+                    None,
+                    "blocks",
+                    "neither blocks nor ground",
+                    "blocks with their plots, or a map",
+                    remedy="blocks: {count: 6, plots: 8}",
+                )
             return drawn
         if "count" in section.where or "plots" in section.where:
             if "count" not in section or "plots" not in section:
@@ -146,9 +155,14 @@ class _Reader:
             self._unlike(list(section.key_at), list(section.key_at.values()), "blocks")
             blocks = tuple(Block(name, plots) for name, plots in section.items())
         if drawn is not None and sorted(map(repr, drawn)) != sorted(map(repr, blocks)):
-            self.report.add(where["blocks"], "blocks", "blocks unlike those on the map",
-                            "blocks as ground draws them, or no blocks at all",
-                            "two accounts of one field: one of them is wrong", "leave blocks out")  # fmt: skip
+            self.report.add(
+                where["blocks"],
+                "blocks",
+                "blocks unlike those on the map",
+                "blocks as ground draws them, or no blocks at all",
+                "two accounts of one field: one of them is wrong",
+                "leave blocks out",
+            )
         plots = sum(block.plots for block in blocks)
         if plots > MOST_PLOTS:
             self.report.add(where["blocks"], "blocks", f"{plots:,} plots", f"at most {MOST_PLOTS:,}")
@@ -164,8 +178,13 @@ class _Reader:
             return None
         least, most = value
         if least > most:
-            self.report.add(section.where[key], key, f"[{least}, {most}]", "[least, most]",
-                            remedy=f"[{most}, {least}]")  # fmt: skip
+            self.report.add(
+                section.where[key],
+                key,
+                f"[{least}, {most}]",
+                "[least, most]",
+                remedy=f"[{most}, {least}]",
+            )
         return least, most
 
     def _treatments(
@@ -188,8 +207,13 @@ class _Reader:
         if isinstance(value, str):
             kind = AimKind(value)
             if kind is AimKind.AGAINST_CONTROL and not any(x.control for x in treatments):
-                self.report.add(node, "aim", "against control, but no control", "a treatment with control: true",
-                                remedy="mark the control, or choose the aim: all pairs")  # fmt: skip
+                self.report.add(
+                    node,
+                    "aim",
+                    "against control, but no control",
+                    "a treatment with control: true",
+                    remedy="mark the control, or choose the aim: all pairs",
+                )
             return Aim(kind)
         contrasts = []
         for label, fields in value.get("contrasts", {}).items():
@@ -198,9 +222,13 @@ class _Reader:
             numbers = [names.find(name, of.key_at[name], key, self.report) for name in of]
             place = value["contrasts"].where[label]
             if sum(of.values()) != 0 or not any(of.values()):
-                self.report.add(place, key, f"coefficients that sum to {sum(of.values())}",
-                                "coefficients that sum to 0, not all 0",
-                                "otherwise it is no comparison, and the site mean would enter it")  # fmt: skip
+                self.report.add(
+                    place,
+                    key,
+                    f"coefficients that sum to {sum(of.values())}",
+                    "coefficients that sum to 0, not all 0",
+                    "otherwise it is no comparison, and the site mean would enter it",
+                )
             known = [(i, c) for i, c in zip(numbers, of.values(), strict=True) if i is not None]
             contrasts.append(Contrast(label, fields.get("weight", 1), tuple(known)))
         return Aim(AimKind.CONTRASTS, tuple(contrasts))
@@ -226,8 +254,8 @@ def _own_limits(
 
 
 def _treatment(name: str, plots: tuple[int, int], own: bool, settings: Section) -> Treatment:
-    amount = settings.get("amount")
-    known = amount is not None and len(amount) == 2
+    weighed = settings.get("amount", {})
+    amount = Amount(weighed["per_plot"], weighed["unit"]) if len(weighed) == 2 else None
     return Treatment(
         name=name,
         least=plots[0],
@@ -235,5 +263,5 @@ def _treatment(name: str, plots: tuple[int, int], own: bool, settings: Section) 
         own_range=own,
         control=settings.get("control", False),
         caution=settings.get("caution", ""),
-        amount=Amount(amount["per_plot"], amount["unit"]) if known else None,
+        amount=amount,
     )

@@ -37,8 +37,12 @@ class _RulesReader:
         replicates, inside = self._replicates()
         outside = self._times(self.section.get("per_replicate", Section()), "rules.per_replicate")
         if (inside or outside) and not replicates:
-            self.report.add(self.section.where.get("per_replicate"), "rules.per_replicate",
-                            "times in each replicate, but no replicates", "rules.replicates beside it")  # fmt: skip
+            self.report.add(
+                self.section.where.get("per_replicate"),
+                "rules.per_replicate",
+                "times in each replicate, but no replicates",
+                "rules.replicates beside it",
+            )
         return Rules(
             never_share_block=tuple(self._apart()),
             meet_at_least=tuple(self._meetings("meet_at_least")),
@@ -115,8 +119,13 @@ class _RulesReader:
             blocks = []
             for j, node in self._found(value, key, self.blocks, self.treatments):
                 if j in home:
-                    self.report.add(node, key, f"a block that is in {home[j]} already", "each block in one replicate",
-                                    "a block cannot count towards two complete sets of treatments")  # fmt: skip
+                    self.report.add(
+                        node,
+                        key,
+                        f"a block that is in {home[j]} already",
+                        "each block in one replicate",
+                        "a block cannot count towards two complete sets of treatments",
+                    )
                 home.setdefault(j, name)
                 blocks.append(j)
             replicates.append(Replicate(name, tuple(blocks)))

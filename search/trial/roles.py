@@ -9,7 +9,7 @@ for c), so the parts are classes, and every permutation within them leaves the t
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Hashable, Sequence
+from collections.abc import Hashable, Iterable, Sequence
 
 import numpy as np
 
@@ -74,9 +74,9 @@ def _block_kinds(rel: Relations) -> list[tuple[int, bytes]]:
     return [(int(size), column.tobytes()) for size, column in zip(rel.sizes, columns, strict=True)]
 
 
-def _classes(marks: Sequence[Hashable] | object) -> Classes:
+def _classes(marks: Iterable[Hashable]) -> Classes:
     members: dict[Hashable, list[int]] = defaultdict(list)
-    for number, mark in enumerate(marks):  # type: ignore[call-overload]
+    for number, mark in enumerate(marks):
         members[mark].append(number)
     return tuple(tuple(group) for group in members.values())
 

@@ -1,0 +1,1 @@
+"""Evenfield: near-balanced and A/D-optimal incomplete block plans for field trials."""
