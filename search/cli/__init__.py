@@ -1,0 +1,1 @@
+"""The roof: parse, call, print; no decisions."""

@@ -1,0 +1,1 @@
+"""Which conditions must a balanced design meet?"""

@@ -1,0 +1,1 @@
+"""How is a plan made, kept, made again, and compared with others?"""

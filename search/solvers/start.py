@@ -7,7 +7,7 @@ import numpy as np
 from search.foundation.errors import Undecided
 from search.solvers.feasibility import decide
 from search.trial.checker import broken_rules
-from search.trial.limits import Limits
+from search.trial.limits import Limits, cliques
 from search.trial.records import Contents, Trial
 from search.trial.tables import Ints, Tables, contents_of
 
@@ -96,14 +96,19 @@ def _fill(counts: Ints, blocks: Ints, wanted: Ints, tables: Tables, rng: np.rand
     if (need < 0).any():
         return False
     remaining = (tables.high[:, blocks] - counts[:, blocks]).sum(axis=1).astype(float)
+    rivals = [np.array(members) for members in cliques(tables.apart)]
     for j in blocks[np.lexsort((rng.random(len(blocks)), -tables.sizes[blocks]))]:
         remaining -= tables.high[:, j] - counts[:, j]
         barred = (tables.apart & (counts[:, j] > 0)).any(axis=1)
+        pressure = need / (remaining + 1.0)
+        for members in rivals:  # they take turns: their needs add up, their blocks do not
+            together = need[members].sum() / (remaining[members].max() + 1.0)
+            pressure[members] = np.maximum(pressure[members], together)
         for _ in range(int(tables.sizes[j] - counts[:, j].sum())):
             can = (need > 0) & (counts[:, j] < tables.high[:, j]) & ~barred
             if not can.any():
                 return False
-            urgency = np.where(can, need / (remaining + 1.0) + 1e-3 * rng.random(len(need)), -1.0)
+            urgency = np.where(can, pressure + 1e-3 * rng.random(len(need)), -1.0)
             chosen = int(np.argmax(urgency))
             counts[chosen, j] += 1
             need[chosen] -= 1

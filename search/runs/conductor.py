@@ -1,0 +1,199 @@
+"""One run from a trial to a plan: limits, a first plan, bounds, the search, the standing."""
+
+from __future__ import annotations
+
+import math
+import threading
+from collections.abc import Iterator
+from dataclasses import dataclass, field, replace
+
+from search.efficiency.aims import weights
+from search.efficiency.bounds import all_bounds
+from search.efficiency.evaluator import score
+from search.efficiency.records import Bound
+from search.efficiency.reference import reference_product, reference_variance
+from search.foundation.stopping import Limits, Observer, Stop
+from search.runs.plan import Plan
+from search.solvers.start import feasible_start
+from search.trial.checker import broken_rules
+from search.trial.limits import Limits as Replication
+from search.trial.limits import limits as implied_limits
+from search.trial.records import AimKind, Contents, Trial
+from search.trial.tables import tables
+
+DECIDE_SECONDS = 20.0
+"""Wall time in which the rule solver must find a first plan where the search has no time limit."""
+DECIDE_EFFORT = 20.0
+"""Its deterministic work, so that with a limit in moves the clock has no say."""
+
+
+def find(
+    trial: Trial,
+    *,
+    limits: Limits,
+    seed: int,
+    workers: int,
+    digest: str = "",
+    kept: Contents | None = None,
+    kept_bound: Bound | None = None,
+    observer: Observer | None = None,
+    stop: Stop | None = None,
+) -> Plan:
+    """Search a plan for a trial.
+
+    Parameters
+    ----------
+    trial : the trial
+    limits : how far to search; its clock starts when the kernels are ready
+    seed : of the search; the same seed gives the same plan with any number of workers
+    workers : threads
+    digest : of the problem, recorded in the plan
+    kept, kept_bound : the best plan and bound of earlier searches: the result is never worse
+    observer : is told of the first plan, of bounds and of progress
+    stop : ends the search from outside
+
+    Raises
+    ------
+    Impossible : no plan obeys the rules
+    Undecided : not known in the time
+    """
+    observer = observer or Observer()
+    stop = stop or Stop(limits)
+    implied = implied_limits(trial)
+    rules = replace(tables(trial), least=implied.least, most=implied.most)
+    first, where_from = feasible_start(
+        trial,
+        rules,
+        implied,
+        seed=seed,
+        seconds=limits.seconds or DECIDE_SECONDS,
+        effort=None if limits.seconds else DECIDE_EFFORT,
+    )
+    observer.first_plan(score(trial, first).aim, where_from)
+    if kept is not None and broken_rules(trial, kept):
+        kept = None
+
+    _wait_for_kernels(observer)
+
+    from search.solvers.rounds import Problem, search
+
+    stop.restart()
+    bounds = _Bounds(trial, implied, kept_bound, observer)
+    outcome = search(
+        Problem(rules, weights(trial)),
+        first,
+        kept=kept,
+        target=bounds.target,
+        stop=stop,
+        seed=seed,
+        workers=workers,
+        watch=lambda value, moves, seconds: observer.progress(
+            bounds.efficiency(value), moves, seconds
+        ),
+    )
+    bounds.finish()
+    broken = broken_rules(trial, outcome.contents)
+    if broken:
+        raise RuntimeError(f"the search broke a rule: {broken[0]}")
+    return checked(
+        Plan(
+            trial=trial,
+            contents=outcome.contents,
+            score=score(trial, outcome.contents),
+            bound=bounds.best,
+            ended_by=outcome.ended,
+            seed=seed,
+            moves=outcome.moves,
+            seconds=outcome.seconds,
+            start=outcome.start,
+            digest=digest,
+        )
+    )
+
+
+def checked(plan: Plan) -> Plan:
+    """The plan, unless it beats its own bound: then one of the two is wrong, and nothing is handed out.
+
+    Raises
+    ------
+    RuntimeError : a bound below an achieved plan
+    """
+    if plan.bound is not None and plan.score.aim > plan.bound.value * (1 + 1e-9):
+        raise RuntimeError(
+            f"bound {plan.bound.value!r} ({plan.bound.argument}) below an achieved plan {plan.score.aim!r}"
+        )
+    return plan
+
+
+def _wait_for_kernels(observer: Observer) -> None:
+    """Load the kernels in a thread of their own, so that an interrupt is heard while they compile."""
+    from search.solvers.compiled import are_cached, warm_up
+
+    if not are_cached():
+        observer.note("the search kernels are compiled once on this machine, about 20 s")
+    failure: list[BaseException] = []
+
+    def load() -> None:
+        try:
+            warm_up()
+        except BaseException as error:
+            failure.append(error)
+
+    thread = threading.Thread(target=load, daemon=True)
+    thread.start()
+    while thread.is_alive():
+        thread.join(0.05)
+    if failure:
+        raise failure[0]
+
+
+@dataclass(slots=True)
+class _Bounds:
+    """Bounds of one trial, found one by one between rounds of the search."""
+
+    trial: Trial
+    implied: Replication
+    best: Bound | None
+    observer: Observer
+    waiting: Iterator[Bound] = field(init=False)
+    reference: float = field(init=False)
+
+    def __post_init__(self) -> None:
+        self.waiting = iter(all_bounds(self.trial, self.implied))
+        if self.trial.aim.kind is AimKind.OVERALL:
+            product = reference_product(self.trial)
+            logarithm = math.log(product.numerator) - math.log(product.denominator)
+            self.reference = -logarithm / (self.trial.t - 1)
+        else:
+            self.reference = float(reference_variance(self.trial))
+
+    def target(self, round_: int) -> float:
+        """One more bound, then the objective at which a plan meets the best of them."""
+        self._step()
+        if self.best is None:
+            return -math.inf
+        if self.trial.aim.kind is AimKind.OVERALL:
+            return self.reference - math.log(self.best.value)
+        return self.reference / self.best.value
+
+    def efficiency(self, objective: float) -> float:
+        """The efficiency for the trial's aim of a plan with this objective."""
+        if not math.isfinite(objective):
+            return 0.0
+        if self.trial.aim.kind is AimKind.OVERALL:
+            return math.exp(self.reference - objective)
+        return self.reference / objective
+
+    def finish(self) -> None:
+        """Find the bounds that are left."""
+        while self._step():
+            pass
+
+    def _step(self) -> bool:
+        bound = next(self.waiting, None)
+        if bound is None:
+            return False
+        if self.best is None or bound.exact < self.best.exact:
+            self.best = bound
+            self.observer.bound(bound.value, bound.argument)
+        return True

@@ -1,0 +1,150 @@
+"""What can be said of a trial before any search."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Iterator
+from dataclasses import dataclass, replace
+
+from search.designs.conditions import Balanced, conditions, nearby, smallest
+from search.foundation.errors import Impossible, Undecided
+from search.solvers.start import feasible_start
+from search.trial.limits import Limits, limits
+from search.trial.records import AimKind, Trial
+from search.trial.tables import tables
+
+ENOUGH_DF = 12
+MANY_PLOTS = 20
+
+
+@dataclass(frozen=True, slots=True)
+class Inspection:
+    """The answer to `evenfield inspect`.
+
+    Parameters
+    ----------
+    status : possible, impossible or undecided
+    shown_by : how that was decided
+    causes : why it is impossible or undecided
+    implied : what the rules leave of the replication; None where counts clash
+    balanced : what counting says of a balanced design, in a sentence
+    design : its parameters where the counts allow one
+    fewest : the smallest balanced sizes for the trial's treatments and usual block size
+    near : other balanced sizes near to the trial's
+    residual_df : expected for a connected plan
+    warnings : what a biometrician would want to know first
+    """
+
+    status: str
+    shown_by: str
+    causes: tuple[str, ...]
+    implied: Limits | None
+    balanced: str
+    design: Balanced | None
+    fewest: Balanced | None
+    near: tuple[Balanced, ...]
+    residual_df: int
+    warnings: tuple[str, ...]
+
+
+def inspect(trial: Trial, *, seconds: float, seed: int = 1) -> Inspection:
+    """Whether the rules can be met, what they imply, and whether a balanced design fits.
+
+    Parameters
+    ----------
+    trial : the trial
+    seconds : wall time that the rule solver may take
+    seed : of the greedy builder and the solver
+    """
+    implied, status, shown_by, causes = None, "possible", "", tuple[str, ...]()
+    try:
+        implied = limits(trial)
+        rules = replace(tables(trial), least=implied.least, most=implied.most)
+        _, shown_by = feasible_start(trial, rules, implied, seed=seed, seconds=seconds)
+    except Impossible as error:
+        status, shown_by, causes = "impossible", error.shown_by, error.causes
+    except Undecided as error:
+        status, causes = "undecided", (str(error),)
+    sentence, design = balance(trial)
+    sizes = Counter(block.plots for block in trial.blocks)
+    usual = max(sizes, key=lambda k: (sizes[k], k))
+    fewest = smallest(trial.t, usual) if 2 <= usual < trial.t else None
+    return Inspection(
+        status=status,
+        shown_by=shown_by,
+        causes=causes,
+        implied=implied,
+        balanced=sentence,
+        design=design,
+        fewest=fewest,
+        near=tuple(x for x in nearby(trial.t, usual, trial.n) if x not in (fewest, design)),
+        residual_df=max(0, trial.n - trial.b - trial.t + 1),
+        warnings=tuple(_warnings(trial, implied)),
+    )
+
+
+def balance(trial: Trial) -> tuple[str, Balanced | None]:
+    """What counting says of a balanced design for the trial, and its parameters if it may exist."""
+    sizes = {block.plots for block in trial.blocks}
+    if sizes == {trial.t}:
+        return "Every block holds every treatment: complete blocks, balanced as they stand.", None
+    if len(sizes) > 1:
+        listed = ", ".join(map(str, sorted(sizes)))
+        return f"No balanced incomplete block design fits: its blocks are of one size, these have {listed}.", None
+    verdict = conditions(trial.t, trial.b, sizes.pop())
+    if verdict.allowed is None:
+        return f"No balanced incomplete block design fits: {verdict.reason}.", None
+    design = verdict.allowed
+    if reason := _barred_by_rules(trial, design):
+        return f"The sizes would allow a balanced design, the rules do not: {reason}.", None
+    return (
+        f"The counts allow a balanced design: each treatment on {design.r} plots, each pair in "
+        f"{design.meetings} {'block' if design.meetings == 1 else 'blocks'}, efficiency "
+        f"{float(design.efficiency):.4f}. The search tells whether it can be built.",
+        design,
+    )
+
+
+def _barred_by_rules(trial: Trial, design: Balanced) -> str:
+    rules = tables(trial)
+    if rules.apart.any():
+        return "in a balanced design every pair meets, and here some never may"
+    if (rules.meet_most[~rules.apart] < design.meetings).any():
+        return f"every pair would meet in {design.meetings} blocks, more than a rule allows"
+    if (rules.meet_least > design.meetings).any():
+        return f"every pair would meet in {design.meetings} blocks, fewer than a rule asks for"
+    if (rules.least > design.r).any() or (rules.most < design.r).any():
+        return f"every treatment would have {design.r} plots, which some may not"
+    inside = (rules.group >= 0).all()
+    if inside and trial.rules.replicates and trial.b < trial.t + design.r - 1:
+        return "in complete replicates it would need t + r − 1 blocks at least (Bose 1942)"
+    return ""
+
+
+def _warnings(trial: Trial, implied: Limits | None) -> Iterator[str]:
+    if trial.n < trial.t + trial.b - 1:
+        yield (
+            f"{trial.n} plots cannot connect {trial.t} treatments in {trial.b} blocks: at least "
+            f"{trial.t + trial.b - 1} are needed, so not every difference can be estimated"
+        )
+    df = trial.n - trial.b - trial.t + 1
+    if df < ENOUGH_DF:
+        yield (
+            f"{max(0, df)} residual degrees of freedom: fewer than the {ENOUGH_DF} that EPPO standard PP 1/152 "
+            "asks of efficacy trials, a good habit elsewhere"
+        )
+    large = [block.name for block in trial.blocks if block.plots > MANY_PLOTS]
+    if large:
+        yield f"blocks of over {MANY_PLOTS} plots are seldom even: {', '.join(large[:6])}"
+    if implied is None:
+        return
+    alone = [x.name for x, most in zip(trial.treatments, implied.most, strict=True) if most == 1]
+    if alone:
+        yield f"one plot only: {', '.join(alone[:6])}; one lost plot loses the treatment"
+    if trial.aim.kind is AimKind.AGAINST_CONTROL:
+        rest = max(int(implied.least[i]) for i in range(trial.t) if i not in trial.controls) if len(
+            trial.controls
+        ) < trial.t else 0
+        weak = [trial.treatments[c].name for c in trial.controls if implied.most[c] < rest]
+        if weak:
+            yield f"control with fewer plots than others, though all are compared with it: {', '.join(weak)}"
