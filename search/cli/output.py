@@ -34,7 +34,7 @@ def indented(console: Console, text: str, mark: str = "", style: str = "") -> No
 
     grid = Table.grid(padding=(0, 1, 0, 0))
     grid.add_column(width=1)
-    grid.add_column(no_wrap=True)
+    grid.add_column(width=1)
     grid.add_column()
     grid.add_row("", mark, Text(text, style=style))
     console.print(grid)

@@ -1,0 +1,1 @@
+"""What is to be planned, under which rules, on which ground?"""

@@ -117,6 +117,11 @@ class AimKind(StrEnum):
     AGAINST_CONTROL = "against control"
     CONTRASTS = "contrasts"
 
+    @property
+    def treats_pairs_alike(self) -> bool:
+        """Whether every pair of treatments counts the same, so that a balanced plan is best."""
+        return self in (AimKind.ALL_PAIRS, AimKind.OVERALL)
+
 
 @dataclass(frozen=True, slots=True)
 class Contrast:

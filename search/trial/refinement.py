@@ -21,10 +21,13 @@ from numpy.typing import NDArray
 
 from search.trial.tables import Bools, Ints
 
-MOST_WORK = 150_000_000
-"""Table entries read before the order stops being canonical: about 0.3 s."""
-CALL_WORK = 30_000
-"""What one refinement costs beside the entries it reads, in entries."""
+MOST_WORK = 300_000_000
+"""Table entries read before the order stops being canonical: 0.2 to 0.3 s."""
+CALL_WORK = 80_000
+"""What a small step costs beside the entries it reads, in entries."""
+
+BIG_ENDIAN = ">u4"
+"""Bytes of such numbers compare like the numbers, on every machine."""
 
 Hashes = NDArray[np.uint64]
 
@@ -69,7 +72,7 @@ class _Piece(NamedTuple):
     def form(self, order: Ints) -> tuple[bytes, bytes]:
         """What is seen when the things are taken in an order."""
         taken = self.of(order)
-        return taken.colours.tobytes(), taken.codes.tobytes()
+        return taken.colours.astype(BIG_ENDIAN).tobytes(), taken.codes.astype(BIG_ENDIAN).tobytes()
 
 
 class _Search:
@@ -79,6 +82,7 @@ class _Search:
 
     def order(self, piece: _Piece) -> Ints:
         """A canonical order of the things of a piece."""
+        self.work += 4 * (piece.codes.size + CALL_WORK)
         colours, _ = self.refined(piece.colours, _hashes(piece.codes))
         refined = _Piece(colours, piece.codes)
         counts = np.bincount(colours)
@@ -105,30 +109,27 @@ class _Search:
         hashes = _hashes(piece.codes)
         counts = np.bincount(piece.colours)
         cell = np.flatnonzero(piece.colours == int(np.argmin(counts)))
-        trials = []
+        symmetries = _Symmetries(len(piece.colours))
+        least: tuple[bytes, tuple[bytes, bytes]] | None = None
+        best = cell
         for thing in cell.tolist():
+            if symmetries.reaches(thing):
+                continue
+            symmetries.explored.append(thing)
             colours = 2 * piece.colours + 1
             colours[thing] -= 1
-            trials.append((self.refined(_ranks(colours), hashes), thing))
-            if self.work > self.most_work:
-                break
-        least = min(trace for (_, trace), _ in trials)
-        symmetries = _Symmetries(len(piece.colours))
-        best: tuple[tuple[bytes, bytes], Ints] | None = None
-        for (colours, trace), thing in trials:
-            if trace != least or symmetries.reaches(thing):
+            colours, trace = self.refined(_ranks(colours), hashes)
+            if least is not None and trace > least[0]:
                 continue
             order = self.order(_Piece(colours, piece.codes))
-            form = piece.form(order)
-            if best is not None and form == best[0]:
-                symmetries.add(best[1], order)
-            elif best is None or form < best[0]:
-                best = form, order
-            symmetries.explored.append(thing)
+            form = trace, piece.form(order)
+            if form == least:
+                symmetries.add(best, order)
+            elif least is None or form < least:
+                least, best = form, order
             if self.work > self.most_work:
                 break
-        assert best is not None  # the least trace belongs to some trial
-        return best[1]
+        return best
 
     def refined(self, colours: Ints, hashes: Hashes) -> tuple[Ints, bytes]:
         """Colours split until things of one colour see the same colours, and a trace of the splitting."""
@@ -140,7 +141,7 @@ class _Search:
             split = np.empty_like(colours)
             split[order] = np.concatenate([[0], np.cumsum(steps)])
             if split[order[-1]] == colours.max():
-                return split, split[order].tobytes() + seen[order].tobytes()
+                return split, split[order].astype(BIG_ENDIAN).tobytes() + seen[order].astype(">u8").tobytes()
             colours = split
 
 

@@ -1,0 +1,123 @@
+"""Small trials drawn at random with every rule mixed in, and all plans that one of them admits."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from itertools import combinations, combinations_with_replacement, product
+from typing import Any
+
+from hypothesis import strategies as st
+
+from search.trial.checker import broken_rules
+from search.trial.reading import trial_from_document
+from search.trial.records import Contents, Trial
+from search.trial.tables import tables
+
+TINY = "a trial that can be checked by hand: three treatments, three blocks of two"
+
+
+def tiny_trial(**more: Any) -> Trial:
+    """Three treatments in three blocks of two: the triangle, balanced with λ = 1 and E = 3/4."""
+    return trial_from_document(
+        {"trial": "tiny", "treatments": ["A", "B", "C"], "blocks": {"count": 3, "plots": 2}, **more}
+    )
+
+
+@st.composite
+def small_documents(draw: st.DrawFn, most_treatments: int = 5, most_plots: int = 12) -> dict[str, Any]:
+    """A trial file as data: unequal blocks, ranges, and any mixture of rules and aims.
+
+    Many of them are impossible; that is wanted.
+    """
+    t = draw(st.integers(2, most_treatments))
+    names = [chr(65 + i) for i in range(t)]
+    twice = draw(st.sampled_from([False, False, False, True]))
+    sizes: list[int] = []
+    for _ in range(draw(st.integers(1, 5))):
+        size = draw(st.integers(1 if draw(st.booleans()) else 2, t + (1 if twice else 0)))
+        if sum(sizes) + size <= most_plots:
+            sizes.append(size)
+    sizes = sizes or [min(t, 2)]
+    blocks = {f"b{j}": size for j, size in enumerate(sizes)}
+    block_names, pairs = list(blocks), [list(pair) for pair in combinations(names, 2)]
+
+    rules: dict[str, Any] = {"twice_in_block": True} if twice else {}
+
+    def sometimes(weight: int) -> bool:
+        return draw(st.integers(0, weight)) == 0
+
+    if sometimes(2) and t > 2:
+        rules["never_share_block"] = draw(st.lists(st.sampled_from(pairs), min_size=1, max_size=2))
+    if sometimes(4):
+        rules["meet_at_least"] = [{"pair": draw(st.sampled_from(pairs)), "blocks": 1}]
+    if sometimes(4):
+        rules["meet_at_most"] = draw(st.integers(1, 2))
+    if sometimes(3):
+        rules["keep_out"] = {draw(st.sampled_from(names)): [draw(st.sampled_from(block_names))]}
+    if sometimes(3):
+        rules["must_hold"] = {draw(st.sampled_from(block_names)): [draw(st.sampled_from(names))]}
+    replicate = _complete_set(sizes, t)
+    if replicate and sometimes(1):
+        rules["replicates"] = {"set": [block_names[j] for j in replicate]}
+
+    treatments: dict[str, Any] = {name: {} for name in names}
+    for name in draw(st.lists(st.sampled_from(names), max_size=2, unique=True)):
+        least = draw(st.integers(1, 3))
+        treatments[name] = {"plots": [least, least + draw(st.integers(0, 2))]}
+    controls = draw(st.lists(st.sampled_from(names), min_size=1, max_size=2, unique=True))
+    for name in controls:
+        treatments[name]["control"] = True
+    document: dict[str, Any] = {
+        "trial": "drawn",
+        "treatments": treatments,
+        "blocks": blocks,
+        "rules": rules,
+        "aim": draw(_aims(names)),
+    }
+    if draw(st.booleans()):
+        least = draw(st.integers(1, 2))
+        document["plots_each"] = [least, least + draw(st.integers(0, 3))]
+    return document
+
+
+def small_trials(most_treatments: int = 5, most_plots: int = 12) -> st.SearchStrategy[Trial]:
+    """Trials of `small_documents`."""
+    return small_documents(most_treatments, most_plots).map(trial_from_document)
+
+
+def _aims(names: list[str]) -> st.SearchStrategy[Any]:
+    contrast = {"of": {names[0]: 1, names[1]: -1}}
+    weighted = {"of": {names[0]: 2, names[1]: -1, names[-1]: -1}, "weight": 2}
+    contrasts: dict[str, Any] = {"first": contrast}
+    if len(names) > 2:
+        contrasts["second"] = weighted
+    return st.sampled_from(["all pairs", "all pairs", "overall", "against control", {"contrasts": contrasts}])
+
+
+def _complete_set(sizes: list[int], t: int) -> list[int]:
+    for many in range(1, len(sizes) + 1):
+        for blocks in combinations(range(len(sizes)), many):
+            if sum(sizes[j] for j in blocks) == t:
+                return list(blocks)
+    return []
+
+
+def all_plans(trial: Trial, most: int = 20_000) -> Iterator[Contents]:
+    """Every plan that the trial admits; raises OverflowError where there are too many to look at."""
+    rules = tables(trial)
+    choose = combinations_with_replacement if trial.rules.twice_in_block else combinations
+    columns = []
+    total = 1
+    for j, block in enumerate(trial.blocks):
+        fitting = [
+            column
+            for column in choose(range(trial.t), block.plots)
+            if all(rules.low[i, j] <= column.count(i) <= rules.high[i, j] for i in range(trial.t))
+        ]
+        columns.append(fitting)
+        total *= len(fitting)
+        if total > most:
+            raise OverflowError
+    for contents in product(*columns):
+        if not broken_rules(trial, contents):
+            yield contents
