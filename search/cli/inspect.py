@@ -18,8 +18,13 @@ EXIT = {"possible": 0, "impossible": 3, "undecided": 4}
 
 @click.command("inspect")
 @click.argument("trial", type=click.Path(path_type=Path))
-@click.option("--seconds", type=click.FloatRange(0.01, 1e6), default=20.0, show_default=True,
-              help="Time to decide whether the rules can be met.")
+@click.option(
+    "--seconds",
+    type=click.FloatRange(0.01, 1e6),
+    default=20.0,
+    show_default=True,
+    help="Time to decide whether the rules can be met.",
+)
 @click.option("--json", "as_json", is_flag=True, help="One JSON document on standard output.")
 def command(trial: Path, seconds: float, as_json: bool) -> int:
     """Check a trial file, and tell what its rules imply and whether they can be met."""
@@ -117,9 +122,10 @@ def show(trial: Trial, found: Inspection) -> None:
 
 
 def _in_words(design: Balanced) -> str:
+    meets = "one block" if design.meetings == 1 else f"{design.meetings} blocks"
     return (
-        f"{design.t} treatments in {design.b} blocks of {design.k}, {design.r} plots each, every pair together in "
-        f"{design.meetings} {'block' if design.meetings == 1 else 'blocks'}, efficiency {float(design.efficiency):.4f}"
+        f"{design.t} treatments in {design.b} blocks of {design.k}, {design.r} plots each, every pair together "
+        f"in {meets}, efficiency {float(design.efficiency):.4f}"
     )
 
 

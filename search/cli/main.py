@@ -1,6 +1,6 @@
 """The command `evenfield`: finds the command, runs it, and turns every ending into an exit status.
 
-    0 done   1 refuted   2 bad input   3 impossible   4 undecided   70 our fault   130 interrupted
+0 done   1 refuted   2 bad input   3 impossible   4 undecided   70 our fault   130 interrupted
 """
 
 from __future__ import annotations

@@ -72,7 +72,8 @@ def conditions(t: int, b: int, k: int) -> Verdict:
 def multiples(t: int, k: int) -> Iterator[Balanced]:
     """Every number of blocks that the conditions allow for t and k, from the fewest on.
 
-    Pairs are counted twice: λt(t − 1) = bk(k − 1), so b steps by t(t − 1) over its common divisor with k(k − 1).
+    Pairs are counted twice: λt(t − 1) = bk(k − 1), so b is a multiple of t(t − 1) over its common
+    divisor with k(k − 1).
     """
     step = t * (t - 1) // gcd(t * (t - 1), k * (k - 1))
     b = step

@@ -87,9 +87,7 @@ def find(
         stop=stop,
         seed=seed,
         workers=workers,
-        watch=lambda value, moves, seconds: observer.progress(
-            bounds.efficiency(value), moves, seconds
-        ),
+        watch=lambda value, moves, seconds: observer.progress(bounds.efficiency(value), moves, seconds),
     )
     bounds.finish()
     broken = broken_rules(trial, outcome.contents)

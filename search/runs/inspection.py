@@ -90,7 +90,10 @@ def balance(trial: Trial) -> tuple[str, Balanced | None]:
         return "Every block holds every treatment: complete blocks, balanced as they stand.", None
     if len(sizes) > 1:
         listed = ", ".join(map(str, sorted(sizes)))
-        return f"No balanced incomplete block design fits: its blocks are of one size, these have {listed}.", None
+        return (
+            f"No balanced incomplete block design fits: its blocks are of one size, these have {listed}.",
+            None,
+        )
     verdict = conditions(trial.t, trial.b, sizes.pop())
     if verdict.allowed is None:
         return f"No balanced incomplete block design fits: {verdict.reason}.", None
@@ -130,8 +133,8 @@ def _warnings(trial: Trial, implied: Limits | None) -> Iterator[str]:
     df = trial.n - trial.b - trial.t + 1
     if df < ENOUGH_DF:
         yield (
-            f"{max(0, df)} residual degrees of freedom: fewer than the {ENOUGH_DF} that EPPO standard PP 1/152 "
-            "asks of efficacy trials, a good habit elsewhere"
+            f"{max(0, df)} residual degrees of freedom: fewer than the {ENOUGH_DF} that EPPO standard "
+            "PP 1/152 asks of efficacy trials, a good habit elsewhere"
         )
     large = [block.name for block in trial.blocks if block.plots > MANY_PLOTS]
     if large:
@@ -142,9 +145,8 @@ def _warnings(trial: Trial, implied: Limits | None) -> Iterator[str]:
     if alone:
         yield f"one plot only: {', '.join(alone[:6])}; one lost plot loses the treatment"
     if trial.aim.kind is AimKind.AGAINST_CONTROL:
-        rest = max(int(implied.least[i]) for i in range(trial.t) if i not in trial.controls) if len(
-            trial.controls
-        ) < trial.t else 0
+        others = [int(implied.least[i]) for i in range(trial.t) if i not in trial.controls]
+        rest = max(others, default=0)
         weak = [trial.treatments[c].name for c in trial.controls if implied.most[c] < rest]
         if weak:
             yield f"control with fewer plots than others, though all are compared with it: {', '.join(weak)}"

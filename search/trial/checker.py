@@ -51,9 +51,11 @@ def _breaches(trial: Trial, contents: Contents) -> Iterator[str]:
         if rules.apart[i, j]:
             yield f"{names[i]} and {names[j]} share a block, which they never may"
         else:
-            yield f"{names[i]} and {names[j]} share {shared[i, j]} blocks, at most {rules.meet_most[i, j]} allowed"
+            most = rules.meet_most[i, j]
+            yield f"{names[i]} and {names[j]} share {shared[i, j]} blocks, at most {most} allowed"
     for i, j in zip(*np.nonzero(np.triu(shared < rules.meet_least, 1)), strict=True):
-        yield f"{names[i]} and {names[j]} share {shared[i, j]} blocks, at least {rules.meet_least[i, j]} required"
+        least = rules.meet_least[i, j]
+        yield f"{names[i]} and {names[j]} share {shared[i, j]} blocks, at least {least} required"
 
     for g, replicate in enumerate(trial.rules.replicates):
         held = counts[:, list(replicate.blocks)].sum(axis=1)

@@ -95,6 +95,10 @@ def cliques(apart: Ints | np.ndarray) -> tuple[tuple[int, ...], ...]:
     return tuple(dict.fromkeys(found))
 
 
+def _clash(text: str, shown_by: str = "count") -> Impossible:
+    return Impossible([text], shown_by)
+
+
 class _Implications:
     """Tightens ranges step by step and remembers why."""
 
@@ -166,14 +170,13 @@ class _Implications:
         for j in np.flatnonzero(room < rules.sizes):
             by_cliques = rules.high[:, j].sum() >= rules.sizes[j]
             why = " with treatments that may share a block" if by_cliques else ""
-            raise Impossible(
-                [f"{self.blocks[j]} has {rules.sizes[j]} plots, but at most {room[j]} can be planted{why}"],
-                "clique" if by_cliques else "count",
+            raise _clash(
+                f"{self.blocks[j]} has {rules.sizes[j]} plots, but at most {room[j]} can be planted{why}",
+                shown_by="clique" if by_cliques else "count",
             )
         for j in np.flatnonzero(rules.low.sum(axis=0) > rules.sizes):
-            raise Impossible(
-                [f"{self.blocks[j]} has {rules.sizes[j]} plots, but must hold {rules.low[:, j].sum()}"],
-                "count",
+            raise _clash(
+                f"{self.blocks[j]} has {rules.sizes[j]} plots, but must hold {rules.low[:, j].sum()}"
             )
 
     def _lost_to_cliques(self, blocks: Ints) -> Ints:
@@ -194,32 +197,24 @@ class _Implications:
             blocks = list(replicate.blocks)
             plots, wanted = int(rules.sizes[blocks].sum()), int(rules.share[:, g].sum())
             if plots != wanted:
-                raise Impossible(
-                    [f"replicate {replicate.name} has {plots} plots, but its treatments need {wanted}"],
-                    "count",
+                raise _clash(
+                    f"replicate {replicate.name} has {plots} plots, but its treatments need {wanted}"
                 )
             for i in np.flatnonzero(rules.high[:, blocks].sum(axis=1) < rules.share[:, g]):
-                raise Impossible(
-                    [f"{self.names[i]} is kept out of too much of replicate {replicate.name}"],
-                    "count",
-                )
+                raise _clash(f"{self.names[i]} is kept out of too much of replicate {replicate.name}")
             for i in np.flatnonzero(rules.low[:, blocks].sum(axis=1) > rules.share[:, g]):
-                raise Impossible(
-                    [
-                        f"blocks of replicate {replicate.name} must hold {self.names[i]} more often than it stands there"
-                    ],
-                    "count",
+                raise _clash(
+                    f"blocks of replicate {replicate.name} must hold {self.names[i]} more often "
+                    "than it stands there"
                 )
             for members in self.cliques:
                 room = int(rules.high[np.ix_(members, blocks)].max(axis=0).sum())
                 needed = int(rules.share[list(members), g].sum())
                 if needed > room:
-                    raise Impossible(
-                        [
-                            f"{self._named(members)} never share a block and need {needed} plots in replicate "
-                            f"{replicate.name}, which has room for {room}"
-                        ],
-                        "clique",
+                    raise _clash(
+                        f"{self._named(members)} never share a block and need {needed} plots in replicate "
+                        f"{replicate.name}, which has room for {room}",
+                        shown_by="clique",
                     )
 
     def _each_treatment(self) -> None:
@@ -243,12 +238,10 @@ class _Implications:
             room = self._clique_room(index)
             total_least = int(self.least[index].sum())
             if total_least > room:
-                raise Impossible(
-                    [
-                        f"{self._named(members)} never share a block and need at least {total_least} plots, "
-                        f"but the blocks they may enter take at most {room} of them"
-                    ],
-                    "clique",
+                raise _clash(
+                    f"{self._named(members)} never share a block and need at least {total_least} plots, "
+                    f"but the blocks they may enter take at most {room} of them",
+                    shown_by="clique",
                 )
             why = f"{self._named(members)} never share a block, so together they have at most {room} plots"
             found.append(SumLimit(members, room, why))
@@ -269,10 +262,7 @@ class _Implications:
     def _totals(self) -> None:
         n = self.tables.n
         if self.least.sum() > n:
-            raise Impossible(
-                [f"the treatments need at least {self.least.sum()} plots, but the blocks have {n}"],
-                "count",
-            )
+            raise _clash(f"the treatments need at least {self.least.sum()} plots, but the blocks have {n}")
         # Disjoint sums bound the total from above, treatment by treatment.
         part = {}
         ceiling = 0
@@ -286,10 +276,7 @@ class _Implications:
                 part.update(dict.fromkeys(s.treatments, s))
         ceiling += int(self.most.sum()) - int(self.most[list(used)].sum())
         if ceiling < n:
-            raise Impossible(
-                [f"the treatments can have at most {ceiling} plots, but the blocks have {n}"],
-                "count",
-            )
+            raise _clash(f"the treatments can have at most {ceiling} plots, but the blocks have {n}")
         spare = int(self.least.sum())
         for i in range(self.tables.t):
             self._at_most(i, n - spare + int(self.least[i]), "the plots that the others need")
@@ -314,10 +301,7 @@ class _Implications:
             self._at_most(i, fits, "the meetings that are allowed")
             most = np.cumsum(partners[::-1])
             if needed > (int(most[-1]) if len(most) else 0):
-                raise Impossible(
-                    [f"{self.names[i]} must share {needed} blocks with others, more than it can"],
-                    "count",
-                )
+                raise _clash(f"{self.names[i]} must share {needed} blocks with others, more than it can")
             if needed:
                 self._at_least(i, int(np.searchsorted(most, needed)) + 1, "the meetings that are required")
 
@@ -329,16 +313,13 @@ class _Implications:
         caps = np.triu(np.minimum(rules.meet_most, np.minimum.outer(self.most, self.most)), 1).sum()
         floors = np.triu(rules.meet_least, 1).sum()
         if pairs > caps:
-            raise Impossible(
-                [f"the blocks bring about {pairs} meetings of two treatments, but only {caps} are allowed"],
-                "count",
+            raise _clash(
+                f"the blocks bring about {pairs} meetings of two treatments, but only {caps} are allowed"
             )
         if pairs < floors:
-            raise Impossible(
-                [
-                    f"the rules ask for {floors} meetings of two treatments, but the blocks bring about only {pairs}"
-                ],
-                "count",
+            raise _clash(
+                f"the rules ask for {floors} meetings of two treatments, "
+                f"but the blocks bring about only {pairs}"
             )
 
     # -- bookkeeping ---------------------------------------------------------------------------
@@ -359,12 +340,9 @@ class _Implications:
         if self.least[i] > self.most[i]:
             stated = self.trial.treatments[i]
             wanted = str(stated.least) if stated.least == stated.most else f"{stated.least} to {stated.most}"
-            raise Impossible(
-                [
-                    f"{self.names[i]} would need at least {self.least[i]} and at most {self.most[i]} plots "
-                    f"(stated: {wanted}); cause: {why}"
-                ],
-                "count",
+            raise _clash(
+                f"{self.names[i]} would need at least {self.least[i]} and at most {self.most[i]} plots "
+                f"(stated: {wanted}); cause: {why}"
             )
 
     def _told(self, sums: tuple[SumLimit, ...]) -> list[str]:

@@ -12,7 +12,6 @@ McKay 1981, "Practical graph isomorphism", for refinement, individualisation and
 
 from __future__ import annotations
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import NamedTuple
 

@@ -154,10 +154,10 @@ def test_wording_does_not_count() -> None:
 
 
 PINNED = {
-    "tiny": "",
-    "odd": "",
-    "resolvable": "",
-    "contrasts": "",
+    "tiny": "405493ca0974d94b3c9e823d6c132a3135524e7fb08c134567a892d2d2f1d5f8",
+    "odd": "ee9db71ce92a14b235c7d9116ce5f807e18324c426ef71cd2e3c277dede0a881",
+    "resolvable": "88a5d0390f874e0ff20d3cc61cc96d862e4547880efcc40e0ba5844552f0cfa3",
+    "contrasts": "88af8acc2f492fc3ca2621291704fefbce5bd6fee905c259da727b61af6e067e",
 }
 
 

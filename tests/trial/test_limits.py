@@ -100,7 +100,8 @@ def test_a_clash_of_counts_is_told_in_words(case: str) -> None:
 @given(st.integers(2, 8), st.data())
 def test_cliques_cover_every_pair_apart(t: int, data: st.DataObject) -> None:
     """Every pair that never meets lies in a set all of whose pairs never meet."""
-    groups = data.draw(st.lists(st.lists(st.integers(0, t - 1), min_size=2, max_size=4, unique=True), max_size=4))
+    group = st.lists(st.integers(0, t - 1), min_size=2, max_size=4, unique=True)
+    groups = data.draw(st.lists(group, max_size=4))
     names = [f"T{i}" for i in range(t)]
     document = {
         "trial": "x",

@@ -24,8 +24,10 @@ from search.trial.records import (
 from search.trial.relations import Relations, relations, unpacked_cell, unpacked_pair
 from search.trial.roles import block_roles, replicate_roles, treatment_roles
 
+NO_RULES = Rules()
 
-def plain(t: int, sizes: list[int], rules: Rules = Rules(), least: int = 1, most: int = 9) -> Trial:
+
+def plain(t: int, sizes: list[int], rules: Rules = NO_RULES, least: int = 1, most: int = 9) -> Trial:
     return Trial(
         name="plain",
         treatments=tuple(Treatment(f"T{i}", least, most) for i in range(t)),
