@@ -7,13 +7,16 @@ is never believed here at all: whoever asks checks it against the rules.
 
 from __future__ import annotations
 
+import threading
 from collections.abc import Sequence
 from dataclasses import dataclass
 from enum import Enum
 from typing import TYPE_CHECKING
 
+from search.foundation.stopping import Stop
+
 if TYPE_CHECKING:
-    from ortools.sat.python.cp_model import CpModel, IntVar
+    from ortools.sat.python.cp_model import CpModel, CpSolver, CpSolverStatus, IntVar
 
 
 class Answer(Enum):
@@ -39,6 +42,7 @@ def solve(
     seconds: float,
     effort: float | None = None,
     seed: int = 0,
+    stop: Stop | None = None,
 ) -> Solved:
     """Ask CP-SAT for a solution.
 
@@ -49,21 +53,26 @@ def solve(
     seconds : wall time for each of the two calls
     effort : deterministic work limit of the solver, so that an answer does not depend on the clock
     seed : seed of the first call; "infeasible" is confirmed with another
+    stop : ends the solver from outside
 
     Returns
     -------
     Solved : SOLUTION with values, INFEASIBLE if two seeds agree, else UNKNOWN
+
+    Raises
+    ------
+    KeyboardInterrupt : somebody asked for an end
     """
     from ortools.sat.python import cp_model
 
-    def ask(with_seed: int) -> tuple[cp_model.CpSolverStatus, cp_model.CpSolver]:
+    def ask(with_seed: int) -> tuple[CpSolverStatus, CpSolver]:
         solver = cp_model.CpSolver()
         solver.parameters.num_workers = 1
         solver.parameters.max_time_in_seconds = max(0.01, seconds)
         if effort is not None:
             solver.parameters.max_deterministic_time = effort
         solver.parameters.random_seed = with_seed % 2**31
-        return solver.solve(model), solver
+        return _interruptible(solver, model, stop), solver
 
     status, solver = ask(seed)
     if status in (cp_model.OPTIMAL, cp_model.FEASIBLE):
@@ -71,3 +80,20 @@ def solve(
     if status == cp_model.INFEASIBLE and ask(seed + 1)[0] == cp_model.INFEASIBLE:
         return Solved(Answer.INFEASIBLE)
     return Solved(Answer.UNKNOWN)
+
+
+def _interruptible(solver: CpSolver, model: CpModel, stop: Stop | None) -> CpSolverStatus:
+    """Solve in a thread of its own: the main thread must stay in Python to hear an interrupt."""
+    statuses: list[CpSolverStatus] = []
+    thread = threading.Thread(target=lambda: statuses.append(solver.solve(model)), daemon=True)
+    thread.start()
+    try:
+        while thread.is_alive():
+            thread.join(0.02)
+            if stop is not None and stop.interrupted:
+                raise KeyboardInterrupt
+    except KeyboardInterrupt:
+        solver.stop_search()
+        thread.join(5.0)
+        raise
+    return statuses[0]

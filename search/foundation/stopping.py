@@ -44,6 +44,10 @@ class Stop:
     started: float = field(default_factory=time.monotonic)
     flag: threading.Event = field(default_factory=threading.Event)
 
+    def restart(self) -> None:
+        """Start the clock again: what went before was preparation."""
+        self.started = time.monotonic()
+
     def interrupt(self) -> None:
         """Ask everything that holds this to end soon, keeping the best so far."""
         self.flag.set()

@@ -68,17 +68,18 @@ def find(
         seed=seed,
         seconds=limits.seconds or DECIDE_SECONDS,
         effort=None if limits.seconds else DECIDE_EFFORT,
+        stop=stop,
     )
     observer.first_plan(score(trial, first).aim, where_from)
     if kept is not None and broken_rules(trial, kept):
-        kept = None
+        kept = None  # a store that somebody wrote into: never trust it with the rules
 
-    _wait_for_kernels(observer)
+    bounds = _Bounds(trial, implied, kept_bound, observer)
+    _wait_for_kernels(observer, stop)
 
     from search.solvers.rounds import Problem, search
 
     stop.restart()
-    bounds = _Bounds(trial, implied, kept_bound, observer)
     outcome = search(
         Problem(rules, weights(trial)),
         first,
@@ -123,7 +124,7 @@ def checked(plan: Plan) -> Plan:
     return plan
 
 
-def _wait_for_kernels(observer: Observer) -> None:
+def _wait_for_kernels(observer: Observer, stop: Stop) -> None:
     """Load the kernels in a thread of their own, so that an interrupt is heard while they compile."""
     from search.solvers.compiled import are_cached, warm_up
 
@@ -140,7 +141,9 @@ def _wait_for_kernels(observer: Observer) -> None:
     thread = threading.Thread(target=load, daemon=True)
     thread.start()
     while thread.is_alive():
-        thread.join(0.05)
+        thread.join(0.02)
+        if stop.interrupted:
+            raise KeyboardInterrupt
     if failure:
         raise failure[0]
 

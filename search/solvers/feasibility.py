@@ -8,6 +8,7 @@ import numpy as np
 
 from search.foundation.cpsat import Answer, solve
 from search.foundation.errors import Impossible, Undecided
+from search.foundation.stopping import Stop
 from search.trial.limits import Limits, cliques
 from search.trial.records import Contents
 from search.trial.tables import Ints, Tables, contents_of
@@ -19,7 +20,13 @@ MOST_MEETING_VARIABLES = 2_000_000
 
 
 def decide(
-    tables: Tables, limits: Limits, *, seed: int, seconds: float, effort: float | None = None
+    tables: Tables,
+    limits: Limits,
+    *,
+    seed: int,
+    seconds: float,
+    effort: float | None = None,
+    stop: Stop | None = None,
 ) -> Contents:
     """A plan within the rules.
 
@@ -27,7 +34,7 @@ def decide(
     ----------
     tables : rules with the implied replication
     limits : the implied limits, given to the solver as redundant counts
-    seed, seconds, effort : see `search.foundation.cpsat.solve`
+    seed, seconds, effort, stop : see `search.foundation.cpsat.solve`
 
     Raises
     ------
@@ -39,7 +46,7 @@ def decide(
         raise Undecided(f"{pairs:,} limited pairs in {tables.b} blocks are too many for the rule solver")
     model, variables = _model(tables, limits)
     flat = [v for row in variables for v in row]
-    solved = solve(model, flat, seconds=seconds, effort=effort, seed=seed)
+    solved = solve(model, flat, seconds=seconds, effort=effort, seed=seed, stop=stop)
     if solved.answer is Answer.INFEASIBLE:
         raise Impossible(
             ["the rules together leave no plan, though each count by itself can be met"],

@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 
 from search.foundation.errors import Undecided
+from search.foundation.stopping import Stop
 from search.solvers.feasibility import decide
 from search.trial.checker import broken_rules
 from search.trial.limits import Limits, cliques
@@ -22,6 +23,7 @@ def feasible_start(
     seed: int,
     seconds: float,
     effort: float | None = None,
+    stop: Stop | None = None,
 ) -> tuple[Contents, str]:
     """A plan that obeys every rule, and where it came from.
 
@@ -32,6 +34,7 @@ def feasible_start(
     limits : what the rules imply
     seed : of the greedy builder and of the solver
     seconds, effort : wall time and deterministic work that the solver may take
+    stop : ends the solver from outside
 
     Raises
     ------
@@ -45,7 +48,7 @@ def feasible_start(
             contents = contents_of(counts)
             if not broken_rules(trial, contents):
                 return contents, "greedy start"
-    contents = decide(tables, limits, seed=seed, seconds=seconds, effort=effort)
+    contents = decide(tables, limits, seed=seed, seconds=seconds, effort=effort, stop=stop)
     broken = broken_rules(trial, contents)
     if broken:  # the model or the solver is at fault, not the trial
         raise Undecided(f"the solver's plan breaks a rule ({broken[0]}), so nothing is known")

@@ -255,7 +255,7 @@ class _Implications:
         room = int(rules.high[members].max(axis=0).sum())
         if rules.share.shape[1]:
             outside = rules.group < 0
-            room = int(rules.high[np.ix_(members, np.flatnonzero(outside))].max(axis=0, initial=0).sum())
+            room = int(rules.high[members][:, outside].max(axis=0, initial=0).sum())
             room += int(rules.share[members].sum())
         return room
 
