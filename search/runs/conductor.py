@@ -35,7 +35,6 @@ def find(
     workers: int,
     digest: str = "",
     kept: Contents | None = None,
-    kept_bound: Bound | None = None,
     observer: Observer | None = None,
     stop: Stop | None = None,
 ) -> Plan:
@@ -48,7 +47,7 @@ def find(
     seed : of the search; the same seed gives the same plan with any number of workers
     workers : threads
     digest : of the problem, recorded in the plan
-    kept, kept_bound : the best plan and bound of earlier searches: the result is never worse
+    kept : the best plan of earlier searches: the result is never worse
     observer : is told of the first plan, of bounds and of progress
     stop : ends the search from outside
 
@@ -74,7 +73,7 @@ def find(
     if kept is not None and broken_rules(trial, kept):
         kept = None  # a store that somebody wrote into: never trust it with the rules
 
-    bounds = _Bounds(trial, implied, kept_bound, observer)
+    bounds = _Bounds(trial, implied, observer)
     _wait_for_kernels(observer, stop)
 
     from search.solvers.rounds import Problem, search
@@ -154,8 +153,8 @@ class _Bounds:
 
     trial: Trial
     implied: Replication
-    best: Bound | None
     observer: Observer
+    best: Bound | None = None
     waiting: Iterator[Bound] = field(init=False)
     reference: float = field(init=False)
 

@@ -44,8 +44,8 @@ class Plan:
 
     @property
     def gap_percent(self) -> float | None:
-        """How much better the best possible plan could be at most; exactly 0 for a balanced one."""
-        if self.bound is None or not self.score.connected:
+        """How far the plan lies below the bound; 0 for a balanced one, 100 for a disconnected one."""
+        if self.bound is None:
             return None
         if self.standing is Standing.BALANCED:
             return 0.0

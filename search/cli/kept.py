@@ -1,0 +1,177 @@
+"""`evenfield kept`: what the store holds."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from search.cli.output import emit, page
+
+if TYPE_CHECKING:
+    from search.runs.kept import Entry, Run, Shown
+
+STORE = click.option("--store", type=click.Path(path_type=Path), help="File of kept results.")
+JSON = click.option("--json", "as_json", is_flag=True, help="One JSON document on standard output.")
+
+
+@click.group("kept")
+def command() -> None:
+    """Show what the store of kept results holds."""
+
+
+@command.command("list")
+@STORE
+@click.option(
+    "--most", type=click.IntRange(1, 100_000), default=100, show_default=True, help="So many lines."
+)
+@JSON
+def list_(store: Path | None, most: int, as_json: bool) -> int:
+    """List kept plans, the latest first."""
+    from search.runs.store import DEFAULT_PATH, Store
+
+    with Store(store or DEFAULT_PATH, create=False) as kept:
+        entries, count = kept.list(most), kept.count()
+    if as_json:
+        emit("kept", "listed", {"count": count, "plans": [_entry(entry) for entry in entries]})
+        return 0
+    from rich.table import Table
+
+    table = Table(box=None, padding=(0, 2, 0, 0))
+    for title, side in (
+        ("problem", "left"),
+        ("trial", "left"),
+        ("treatments", "right"),
+        ("plots", "right"),
+        ("aim", "left"),
+        ("efficiency", "right"),
+        ("gap %", "right"),
+        ("issued", "left"),
+        ("runs", "right"),
+    ):
+        table.add_column(title, justify=side)  # type: ignore[arg-type]
+    for entry in entries:
+        gap = entry.gap_percent
+        table.add_row(
+            entry.problem.digest[:8],
+            entry.problem.name[:32],
+            str(entry.problem.t),
+            str(entry.problem.n),
+            entry.aim,
+            f"{entry.score:.6f}",
+            "" if gap is None else f"{gap:.3f}",
+            entry.mark,
+            str(entry.runs),
+        )
+    console = page()
+    console.print(table)
+    console.print(f"{len(entries)} of {count} kept plans" if count != 1 else "1 kept plan")
+    return 0
+
+
+@command.command("show")
+@click.argument("problem")
+@STORE
+@JSON
+def show(problem: str, store: Path | None, as_json: bool) -> int:
+    """Show all that is kept of PROBLEM (the first letters of its digest, or the mark of a plan)."""
+    from search.runs.store import DEFAULT_PATH, Store
+
+    with Store(store or DEFAULT_PATH, create=False) as kept:
+        found = kept.show(problem)
+    if as_json:
+        emit("kept", "shown", {"problems": [_shown(one) for one in found]})
+        return 0
+    console = page()
+    for one in found:
+        _print(console, one)
+    return 0
+
+
+def _print(console: Any, one: Shown) -> None:
+    problem, plan, bound = one.problem, one.kept.plan, one.kept.bound
+    console.print(f"{problem.name}, {one.aim}", style="bold")
+    console.print(f"  problem {problem.digest}")
+    console.print(f"  {problem.t} treatments on {problem.n} plots in {problem.b} blocks")
+    if plan is not None:
+        issued = f", issued as {plan.mark}" if plan.mark else ""
+        console.print(
+            f"  best plan  {plan.score:.6f}  seed {plan.seed}, {plan.moves:,} moves, {plan.start}{issued}"
+        )
+    if bound is not None:
+        console.print(f"  bound      {float(bound.exact):.6f}  {bound.argument}")
+    if one.kept.gap_percent is not None:
+        console.print(f"  gap        {one.kept.gap_percent:.4f} %")
+    for run in one.runs:
+        console.print(
+            f"  {run.made}  seed {run.seed}, {run.moves:,} moves in {run.seconds:.1f} s: "
+            f"{run.score:.6f}, ended by {run.ended_by}"
+        )
+
+
+def _entry(entry: Entry) -> dict[str, Any]:
+    problem = entry.problem
+    return {
+        "digest": problem.digest,
+        "trial": problem.name,
+        "treatments": problem.t,
+        "blocks": problem.b,
+        "plots": problem.n,
+        "aim": entry.aim,
+        "efficiency": entry.score,
+        "bound": entry.bound,
+        "gap_percent": entry.gap_percent,
+        "mark": entry.mark,
+        "made": entry.made,
+        "runs": entry.runs,
+    }
+
+
+def _shown(one: Shown) -> dict[str, Any]:
+    problem, plan, bound = one.problem, one.kept.plan, one.kept.bound
+    return {
+        "digest": problem.digest,
+        "trial": problem.name,
+        "treatments": problem.t,
+        "blocks": problem.b,
+        "plots": problem.n,
+        "sizes": list(problem.sizes),
+        "aim": one.aim,
+        "plan": None
+        if plan is None
+        else {
+            "efficiency": plan.score,
+            "contents": [list(block) for block in plan.contents],
+            "seed": plan.seed,
+            "moves": plan.moves,
+            "seconds": plan.seconds,
+            "start": plan.start,
+            "mark": plan.mark,
+            "made": plan.made,
+            "versions": dict(plan.versions),
+        },
+        "bound": None
+        if bound is None
+        else {
+            "value": float(bound.exact),
+            "exact": f"{bound.exact.numerator}/{bound.exact.denominator}",
+            "argument": bound.argument,
+            "certificate": bound.certificate,
+        },
+        "gap_percent": one.kept.gap_percent,
+        "runs": [_run(run) for run in one.runs],
+    }
+
+
+def _run(run: Run) -> dict[str, Any]:
+    return {
+        "made": run.made,
+        "seed": run.seed,
+        "workers": run.workers,
+        "moves": run.moves,
+        "seconds": run.seconds,
+        "ended_by": run.ended_by,
+        "efficiency": run.score,
+        "start": run.start,
+    }

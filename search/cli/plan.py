@@ -1,0 +1,139 @@
+"""`evenfield plan`: from a trial file to a kept plan and the crew's packet."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+import click
+
+from search.cli.output import aside, emit, page
+from search.foundation.errors import BadInput
+from search.foundation.stopping import Ended, Limits, Stop
+
+if TYPE_CHECKING:
+    from search.field.issue import Issued
+    from search.trial.records import SearchSettings, Trial
+
+INTERRUPTED = 130
+USUAL_SECONDS = 20.0
+
+
+@click.command("plan")
+@click.argument("trial", type=click.Path(path_type=Path))
+@click.option("--seconds", type=click.FloatRange(0.01, 1e7), help="Search so long.  [default: 20]")
+@click.option("--moves", type=click.IntRange(1, 10**15), help="Score so many moves: the same plan anywhere.")
+@click.option("--seed", type=click.IntRange(0, 2**63 - 1), help="Seed of the search.")
+@click.option("--workers", type=click.IntRange(1, 1024), help="Threads; the plan does not depend on them.")
+@click.option("--layout-seed", type=click.IntRange(0, 2**63 - 1), help="Seed of the layout.")
+@click.option("--out", type=click.Path(path_type=Path), help="Folder for the plan and its packet.")
+@click.option("--store", type=click.Path(path_type=Path), help="File of kept results.")
+@click.option("--anew", is_flag=True, help="Write a new plan beside one that is issued already.")
+@click.option("--json", "as_json", is_flag=True, help="One JSON document on standard output.")
+def command(
+    trial: Path,
+    seconds: float | None,
+    moves: int | None,
+    seed: int | None,
+    workers: int | None,
+    layout_seed: int | None,
+    out: Path | None,
+    store: Path | None,
+    anew: bool,
+    as_json: bool,
+) -> int:
+    """Search a plan for TRIAL, keep it, and write plan.json and the crew's packet.
+
+    A limit given here replaces those of the file. With --moves alone the result does not depend on the
+    clock or on the number of workers.
+    """
+    from search.trial.reading import read_trial
+
+    record = read_trial(trial)
+    folder = out or default_folder(record)
+    limits = _limits(record.search, seconds, moves)
+
+    from search.field.issue import free_folder, issue, issued_in, make_ready
+    from search.runs.keeping import Keeping
+
+    with Keeping(record, store) as keeping:
+        found = issued_in(folder)
+        if found is not None and not anew:
+            if not found.is_of(record):
+                raise BadInput(
+                    f"{folder} holds plan {found.document['mark']}, issued for another trial; "
+                    "choose another folder with --out, or ask for a new plan beside it with --anew"
+                )
+            return _tell_issued(found, keeping.better_than(found.document["score"]["aim"]), as_json)
+        folder = free_folder(folder)
+        make_ready(folder)
+
+        from search.cli.watching import Watching, interruptible
+
+        stop = Stop(limits)
+        with interruptible(stop), Watching(aside(), quiet=as_json) as watching:
+            watching.begin(record)
+            plan = keeping.plan(
+                limits=limits,
+                seed=record.search.seed if seed is None else seed,
+                workers=workers or record.search.workers or _processors(),
+                observer=watching,
+                stop=stop,
+            )
+        chosen = record.randomise.seed if layout_seed is None else layout_seed
+        issued = issue(plan, folder, chosen)
+        keeping.issued(issued.document["mark"])
+    if as_json:
+        emit("plan", "planned", _document(issued))
+    else:
+        from search.cli.summary import show_plan
+
+        show_plan(page(), issued)
+    return INTERRUPTED if plan.ended_by is Ended.INTERRUPTED else 0
+
+
+def default_folder(trial: Trial) -> Path:
+    """The folder for a trial's plans where --out does not name one."""
+    from search.foundation.documents import safe_name
+
+    return Path("results") / safe_name(trial.name)
+
+
+def _limits(settings: SearchSettings, seconds: float | None, moves: int | None) -> Limits:
+    if seconds is None and moves is None:
+        seconds, moves = settings.seconds, settings.moves
+    if seconds is None and moves is None:
+        seconds = USUAL_SECONDS
+    return Limits(seconds, moves)
+
+
+def _processors() -> int:
+    from joblib import cpu_count
+
+    return int(cpu_count())
+
+
+def _document(issued: Issued) -> dict[str, Any]:
+    document = issued.document
+    keys = ("mark", "score", "bound", "gap_percent", "standing", "ended_by")
+    return {
+        **{key: document[key] for key in keys},
+        "files": [str(path) for path in issued.files],
+        "plan": document,
+    }
+
+
+def _tell_issued(found: Issued, better: float | None, as_json: bool) -> int:
+    if as_json:
+        emit("plan", "issued already", {**_document(found), "better_kept": better})
+        return 0
+    from search.cli.summary import show_plan
+
+    console = page()
+    console.print(f"Plan {found.document['mark']} is issued already and stays as it is.")
+    if better is None:
+        console.print("The store holds no better one. To search for another: --anew")
+    else:
+        console.print(f"The store holds a better one, efficiency {better:.6f}. To issue it: --anew")
+    show_plan(console, found)
+    return 0

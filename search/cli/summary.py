@@ -1,0 +1,97 @@
+"""A finished plan as a planner reads it on the screen."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from search.cli.output import indented
+from search.field.cautions import office_notes
+from search.field.standing import standing_in_words
+from search.trial.records import Trial
+
+if TYPE_CHECKING:
+    from rich.console import Console
+
+    from search.field.issue import Issued
+
+ENDED = {
+    "bound met": "plan and bound met",
+    "moves": "the limit in moves was reached",
+    "seconds": "the time was up",
+    "interrupted": "interrupted, best so far kept",
+}
+
+
+def show_plan(console: Console, issued: Issued) -> None:
+    """Standing, figures, warnings, and where the files lie."""
+    from rich.table import Table
+
+    trial, document = issued.trial, issued.document
+    console.print(f"\nPlan {document['mark']}", style="bold")
+    for sentence in standing_in_words(document, trial.n):
+        indented(console, sentence)
+    grid = Table.grid(padding=(0, 2, 0, 0))
+    grid.add_column(width=2)
+    grid.add_column()
+    grid.add_column()
+    for name, value in _figures(trial, document):
+        grid.add_row("", name, value)
+    console.print()
+    console.print(grid)
+    for note in office_notes(trial, document):
+        indented(console, note, "!", "yellow")
+    console.print()
+    for path in issued.files:
+        console.print(f"  {_near(path)}", soft_wrap=True)
+
+
+def _figures(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
+    score, bound, run = document["score"], document["bound"], document["provenance"]
+    rows = [(f"efficiency, {trial.aim.kind.value}", f"{score['aim']:.6f}")]
+    if bound is not None:
+        rows.append(("best possible, at most", f"{bound['value']:.6f} ({bound['argument']})"))
+    if document["gap_percent"] is not None:
+        rows.append(("gap", f"{document['gap_percent']:.4f} %, {document['standing']}"))
+    if score["connected"]:
+        least, most = score["meetings"]["least"], score["meetings"]["most"]
+        rows += [
+            ("A, D, worst pair", f"{score['A']:.4f}, {score['D']:.4f}, {score['worst_pair_efficiency']:.4f}"),
+            ("lost to blocks", f"{score['loss_to_blocks_percent']:.2f} %"),
+            ("lost to replication", f"{score['loss_to_replication_percent']:.2f} %"),
+            ("each pair shares", f"{least} blocks" if least == most else f"{least} to {most} blocks"),
+        ]
+    rows.append(("residual degrees of freedom", str(score["residual_df"])))
+    rows += _expected(trial, document)
+    rows.append(
+        (
+            "search",
+            f"{run['seconds']:.1f} s, {run['moves']:,} moves, seed {run['seed']}: {ENDED[document['ended_by']]}",
+        )
+    )
+    rows.append(("start", run["start"]))
+    return rows
+
+
+def _expected(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
+    """Standard error and detectable difference, where the file says what the field is like."""
+    from search.efficiency.precision import expected_from
+
+    found = expected_from(trial.precision, document["score"])
+    if found is None:
+        return []
+    unit = found.unit
+    return [
+        ("standard error of a difference", f"{found.standard_error:.3g} {unit} on average"),
+        (
+            "detectable difference",
+            f"{found.detectable:.3g} {unit} on average, {found.detectable_worst:.3g} for the worst pair",
+        ),
+    ]
+
+
+def _near(path: Path) -> str:
+    try:
+        return str(path.relative_to(Path.cwd()))
+    except ValueError:
+        return str(path)

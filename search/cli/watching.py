@@ -1,0 +1,102 @@
+"""What a planner sees while a search runs, and how it is interrupted."""
+
+from __future__ import annotations
+
+import signal
+import threading
+import time
+from collections.abc import Iterator
+from contextlib import contextmanager
+from types import FrameType
+from typing import TYPE_CHECKING
+
+from search.foundation.stopping import Observer, Stop
+
+if TYPE_CHECKING:
+    from rich.console import Console
+    from rich.status import Status
+
+    from search.trial.records import Trial
+
+EVERY_SECONDS = 5.0
+"""Where nobody sees a live line (a log file), a line is written so often."""
+
+
+@contextmanager
+def interruptible(stop: Stop) -> Iterator[None]:
+    """The first Ctrl-C asks the search to end and keep its best, a second one ends everything."""
+
+    def ask(_signal: int, _frame: FrameType | None) -> None:
+        if stop.interrupted:
+            raise KeyboardInterrupt
+        stop.interrupt()
+
+    if threading.current_thread() is not threading.main_thread():
+        yield
+        return
+    before = signal.signal(signal.SIGINT, ask)
+    try:
+        yield
+    finally:
+        signal.signal(signal.SIGINT, before)
+
+
+class Watching(Observer):
+    """Draws the state of one search as a live line, or as lines of a log.
+
+    Parameters
+    ----------
+    console : where to draw
+    quiet : say nothing
+    """
+
+    def __init__(self, console: Console, quiet: bool = False) -> None:
+        self.console = console
+        self.quiet = quiet
+        self.status: Status | None = None
+        self.best = 0.0
+        self.limit: float | None = None
+        self.last = time.monotonic()
+
+    def __enter__(self) -> Watching:
+        if self.console.is_terminal and not self.quiet:
+            self.status = self.console.status("")
+            self.status.start()
+        return self
+
+    def __exit__(self, *_: object) -> None:
+        if self.status is not None:
+            self.status.stop()
+
+    def begin(self, trial: Trial) -> None:
+        """Say what is planned."""
+        self._say(f"{trial.name}: {trial.t} treatments on {trial.n} plots in {trial.b} blocks")
+
+    def note(self, text: str) -> None:
+        self._say(text)
+
+    def first_plan(self, efficiency: float, where_from: str) -> None:
+        self.best = efficiency
+        self._say(f"first plan: efficiency {efficiency:.4f} ({where_from})")
+
+    def bound(self, efficiency: float, argument: str) -> None:
+        self.limit = efficiency
+        self._say(f"no plan can exceed {efficiency:.4f} ({argument})")
+
+    def progress(self, efficiency: float, moves: int, seconds: float) -> None:
+        self.best = efficiency
+        line = f"{seconds:5.1f} s   best {efficiency:.6f}"
+        if self.limit is not None and self.limit > 0:
+            gap = max(0.0, 100.0 * (1.0 - efficiency / self.limit))
+            line += f"   bound {self.limit:.6f}   gap {gap:.3f} %"
+        if seconds > 0:
+            line += f"   {moves / seconds / 1e6:.1f} M moves/s"
+        if self.status is not None:
+            self.status.update(line)
+        elif time.monotonic() - self.last >= EVERY_SECONDS:
+            self.last = time.monotonic()
+            self._say(line)
+
+    def _say(self, text: str) -> None:
+        if not self.quiet:
+            self.console.print(text)

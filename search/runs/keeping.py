@@ -1,0 +1,204 @@
+"""Between trials and the store: what is kept is brought into a trial's own numbers, and back."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from pathlib import Path
+from types import TracebackType
+
+from search.efficiency.evaluator import score
+from search.efficiency.records import Bound
+from search.foundation.stopping import Ended, Limits, Observer, Stop
+from search.runs.conductor import find
+from search.runs.kept import SAME_SCORE, KeptBound, KeptPlan, Problem, Run, problem_of
+from search.runs.plan import Plan
+from search.runs.store import DEFAULT_PATH, Store
+from search.trial.canonical import Canonical, canonical
+from search.trial.carrying import from_canonical, to_canonical
+from search.trial.checker import broken_rules
+from search.trial.records import Contents, Trial
+
+FALSE_SCORE = 1e-6
+"""A kept score this far from the true one is an error, not rounding."""
+
+
+@dataclass(frozen=True, slots=True)
+class Recalled:
+    """What is kept for a trial, in its own numbers; `plan` tells how the contents were found."""
+
+    contents: Contents | None = None
+    plan: KeptPlan | None = None
+    bound: Bound | None = None
+
+
+def recall(store: Store, trial: Trial, numbering: Canonical) -> Recalled:
+    """The best plan and bound kept for a trial; what proves to be false is dropped from the store.
+
+    The bound is for showing: its certificate was not derived again here.
+
+    Parameters
+    ----------
+    store : where to look
+    trial, numbering : the trial and its canonical numbering
+    """
+    aim = trial.aim.kind.value
+    kept = store.best(numbering.digest, aim)
+    if kept is None:
+        return Recalled()
+    contents = plan = bound = None
+    if kept.plan is not None:
+        plan, contents = kept.plan, from_canonical(numbering).contents(kept.plan.contents)
+        if not _is_true(trial, contents, plan):
+            store.forget_plan(numbering.digest, aim)
+            contents = plan = None
+    if kept.bound is not None:
+        bound = _bound(trial, numbering, kept.bound)
+        if bound is None or (plan is not None and plan.score > bound.value * (1 + 1e-9)):
+            store.forget_bound(numbering.digest, aim)
+            bound = None
+    return Recalled(contents, plan, bound)
+
+
+def _is_true(trial: Trial, contents: Contents, plan: KeptPlan) -> bool:
+    if broken_rules(trial, contents):
+        return False
+    return abs(score(trial, contents).aim - plan.score) <= FALSE_SCORE
+
+
+def _bound(trial: Trial, numbering: Canonical, kept: KeptBound) -> Bound | None:
+    try:
+        certificate = from_canonical(numbering).certificate(kept.certificate)
+    except (IndexError, KeyError, TypeError):
+        return None
+    return Bound(trial.aim.kind, kept.exact, kept.argument, certificate)
+
+
+def remember(store: Store, numbering: Canonical, plan: Plan, run: Run) -> None:
+    """Write a finished run down, and its plan and bound where they are the best so far.
+
+    Raises
+    ------
+    BadInput : the store cannot be written to
+    """
+    carrier = to_canonical(numbering)
+    bound = None
+    if plan.bound is not None:
+        certificate = carrier.certificate(plan.bound.certificate)
+        bound = KeptBound(plan.bound.exact, plan.bound.argument, certificate)
+    variance = plan.score.aim_variance
+    store.keep(
+        problem_of(plan.trial, numbering),
+        plan.trial.aim.kind.value,
+        plan=KeptPlan(
+            contents=carrier.contents(plan.contents),
+            score=float(plan.score.aim),
+            objective=None if variance is None else float(variance),
+            seed=plan.seed,
+            moves=plan.moves,
+            seconds=float(plan.seconds),
+            start=plan.start,
+        ),
+        bound=bound,
+        run=run,
+    )
+
+
+def run_of(plan: Plan, limits: Limits, workers: int) -> Run:
+    """The run that made a plan, as the store writes it down."""
+    return Run(
+        seed=plan.seed,
+        workers=workers,
+        limit_seconds=None if limits.seconds is None else float(limits.seconds),
+        limit_moves=limits.moves,
+        moves=plan.moves,
+        seconds=float(plan.seconds),
+        ended_by=str(plan.ended_by),
+        score=float(plan.score.aim),
+        start=plan.start,
+    )
+
+
+def covers(run: Run, limits: Limits) -> bool:
+    """Whether a run has searched at least as far as the limits allow a new one to."""
+    if run.ended_by == Ended.INTERRUPTED:
+        return False
+    if run.ended_by == Ended.BOUND_MET:
+        return True
+    seconds = run.limit_seconds if run.ended_by == Ended.SECONDS else run.seconds
+    moves = run.limit_moves if run.ended_by == Ended.MOVES else run.moves
+    far = limits.seconds is not None and (seconds or 0.0) >= limits.seconds
+    return far or (limits.moves is not None and (moves or 0) >= limits.moves)
+
+
+class Keeping:
+    """One trial and the store: plans start from what is kept, and are kept.
+
+    Parameters
+    ----------
+    trial : the trial
+    path : the store's file; the usual one where None
+
+    Raises
+    ------
+    BadInput : the store cannot be opened
+    """
+
+    def __init__(self, trial: Trial, path: Path | None = None) -> None:
+        self.trial = trial
+        self.numbering = canonical(trial)
+        self.store = Store(path or DEFAULT_PATH)
+
+    def __enter__(self) -> Keeping:
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
+        self.store.close()
+
+    @property
+    def problem(self) -> Problem:
+        """The trial's problem as the store knows it."""
+        return problem_of(self.trial, self.numbering)
+
+    def plan(
+        self,
+        *,
+        limits: Limits,
+        seed: int,
+        workers: int,
+        observer: Observer | None = None,
+        stop: Stop | None = None,
+    ) -> Plan:
+        """Search a plan from the best that is kept, and keep the result; see `conductor.find`."""
+        kept = recall(self.store, self.trial, self.numbering)
+        plan = find(
+            self.trial,
+            limits=limits,
+            seed=seed,
+            workers=workers,
+            digest=self.numbering.digest,
+            kept=kept.contents,
+            observer=observer,
+            stop=stop,
+        )
+        remember(self.store, self.numbering, plan, run_of(plan, limits, workers))
+        return plan
+
+    def better_than(self, efficiency: float) -> float | None:
+        """The efficiency of the kept plan where it is above the one given by more than rounding."""
+        kept = recall(self.store, self.trial, self.numbering).plan
+        return kept.score if kept is not None and kept.score > efficiency + SAME_SCORE else None
+
+    def is_of_same_problem(self, digest: str, other: Trial) -> bool:
+        """Whether another trial asks for the same, of treatments and blocks of the same names."""
+        return (
+            digest == self.numbering.digest
+            and other.aim == self.trial.aim
+            and _names(other) == _names(self.trial)
+            and other.ground == self.trial.ground
+        )
+
+
+def _names(trial: Trial) -> tuple[list[str], list[str]]:
+    return [x.name for x in trial.treatments], [x.name for x in trial.blocks]
