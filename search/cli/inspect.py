@@ -124,8 +124,8 @@ def show(trial: Trial, found: Inspection) -> None:
 def _in_words(design: Balanced) -> str:
     meets = "one block" if design.meetings == 1 else f"{design.meetings} blocks"
     return (
-        f"{design.t} treatments in {design.b} blocks of {design.k}, {design.r} plots each, every pair together "
-        f"in {meets}, efficiency {float(design.efficiency):.4f}"
+        f"{design.t} treatments in {design.b} blocks of {design.k}, {design.r} plots each, "
+        f"every pair together in {meets}, efficiency {float(design.efficiency):.4f}"
     )
 
 

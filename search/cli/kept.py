@@ -54,10 +54,10 @@ def list_(store: Path | None, most: int, as_json: bool) -> int:
     for entry in entries:
         gap = entry.gap_percent
         table.add_row(
-            entry.problem.digest[:8],
-            entry.problem.name[:32],
-            str(entry.problem.t),
-            str(entry.problem.n),
+            entry.digest[:8],
+            entry.name[:32],
+            str(entry.t),
+            str(entry.n),
             entry.aim,
             f"{entry.score:.6f}",
             "" if gap is None else f"{gap:.3f}",
@@ -111,13 +111,12 @@ def _print(console: Any, one: Shown) -> None:
 
 
 def _entry(entry: Entry) -> dict[str, Any]:
-    problem = entry.problem
     return {
-        "digest": problem.digest,
-        "trial": problem.name,
-        "treatments": problem.t,
-        "blocks": problem.b,
-        "plots": problem.n,
+        "digest": entry.digest,
+        "trial": entry.name,
+        "treatments": entry.t,
+        "blocks": entry.b,
+        "plots": entry.n,
         "aim": entry.aim,
         "efficiency": entry.score,
         "bound": entry.bound,

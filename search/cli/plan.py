@@ -82,7 +82,7 @@ def command(
             )
         chosen = record.randomise.seed if layout_seed is None else layout_seed
         issued = issue(plan, folder, chosen)
-        keeping.issued(issued.document["mark"])
+        keeping.issued(plan, issued.document["mark"])
     if as_json:
         emit("plan", "planned", _document(issued))
     else:

@@ -57,37 +57,50 @@ def _figures(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
         least, most = score["meetings"]["least"], score["meetings"]["most"]
         rows += [
             ("A, D, worst pair", f"{score['A']:.4f}, {score['D']:.4f}, {score['worst_pair_efficiency']:.4f}"),
-            ("lost to blocks", f"{score['loss_to_blocks_percent']:.2f} %"),
+            (
+                "lost to blocks",
+                f"{score['loss_to_blocks_percent']:.2f} %, which blocks must win back by cutting the plot variance",
+            ),
             ("lost to replication", f"{score['loss_to_replication_percent']:.2f} %"),
             ("each pair shares", f"{least} blocks" if least == most else f"{least} to {most} blocks"),
         ]
     rows.append(("residual degrees of freedom", str(score["residual_df"])))
     rows += _expected(trial, document)
-    rows.append(
-        (
-            "search",
-            f"{run['seconds']:.1f} s, {run['moves']:,} moves, seed {run['seed']}: {ENDED[document['ended_by']]}",
-        )
-    )
-    rows.append(("start", run["start"]))
+    far = f"{run['seconds']:.1f} s, {run['moves']:,} moves, seed {run['seed']}"
+    rows += [("search", f"{far}: {ENDED[document['ended_by']]}"), ("start", run["start"])]
     return rows
 
 
 def _expected(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
     """Standard error and detectable difference, where the file says what the field is like."""
-    from search.efficiency.precision import expected_from
+    from search.efficiency.precision import expected_of
 
-    found = expected_from(trial.precision, document["score"])
+    score = document["score"]
+    average, largest = score["average_pair_variance"], score["largest_pair_variance"]
+    found = expected_of(trial.precision, average, largest, score["residual_df"])
     if found is None:
         return []
-    unit = found.unit
-    return [
-        ("standard error of a difference", f"{found.standard_error:.3g} {unit} on average"),
+    average_pair, worst_pair, unit = found.average_pair, found.worst_pair, found.unit
+    precision = trial.precision
+    rows = [
+        (
+            "standard error of a difference",
+            f"{average_pair.standard_error:.3g} {unit} on average, {worst_pair.standard_error:.3g} at worst",
+        ),
         (
             "detectable difference",
-            f"{found.detectable:.3g} {unit} on average, {found.detectable_worst:.3g} for the worst pair",
+            f"{average_pair.detectable:.3g} {unit} on average, {worst_pair.detectable:.3g} at worst "
+            f"({precision.level_percent:g} % level, {precision.power_percent:g} % power)",
         ),
     ]
+    if average_pair.power_percent is not None and worst_pair.power_percent is not None:
+        rows.append(
+            (
+                f"power for {precision.difference:g} {unit}",
+                f"{average_pair.power_percent:.0f} % on average, {worst_pair.power_percent:.0f} % at worst",
+            )
+        )
+    return rows
 
 
 def _near(path: Path) -> str:

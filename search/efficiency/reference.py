@@ -3,7 +3,7 @@
 Without blocks the information is `R − rr'/n`, so a mean variance is `Σ W_ii / r_i` and the
 pseudo-determinant `Π r_i · t / n`. Both are separable and convex in r (the second in its logarithm),
 therefore giving out the plots one by one, each where it helps most, ends at the best whole numbers
-(Gross 1956; Fox 1966, marginal allocation).
+(marginal allocation: Gross 1956; Fox 1966; from memory).
 """
 
 from __future__ import annotations

@@ -1,0 +1,58 @@
+"""Every argument that bounds an efficiency, in order from quick to slow. A new one is added here."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+
+from search.efficiency.bounds import first_order, meets, pairs, replication, trace_root
+from search.efficiency.bounds.problem import Problem, problem
+from search.efficiency.records import Bound
+from search.trial.limits import Limits
+from search.trial.records import Trial
+
+
+@dataclass(frozen=True, slots=True)
+class Argument:
+    """One argument.
+
+    Parameters
+    ----------
+    name : as it stands in a certificate
+    applies : whether it holds for a trial at all
+    find : its bound, or None where it has none to give
+    """
+
+    name: str
+    applies: Callable[[Trial], bool]
+    find: Callable[[Problem], Bound | None]
+
+
+ARGUMENTS = tuple(
+    Argument(module.NAME, module.applies, module.find)
+    for module in (first_order, replication, trace_root, pairs, meets)
+)
+
+
+def all_bounds(trial: Trial, limits: Limits) -> Iterator[Bound]:
+    """One bound after another, each computed when it is asked for, the quick ones first.
+
+    Parameters
+    ----------
+    trial : the trial
+    limits : the replication that its rules leave, from `search.trial.limits`
+    """
+    given = problem(trial, limits)
+    if given is None:
+        return
+    for argument in ARGUMENTS:
+        if argument.applies(trial):
+            bound = argument.find(given)
+            # an argument too weak to say anything may end above 1
+            if bound is not None and bound.exact <= 1:
+                yield bound
+
+
+def best_bound(trial: Trial, limits: Limits) -> Bound | None:
+    """The lowest bound of all that apply, the simplest argument on ties; None where there is none."""
+    return min(all_bounds(trial, limits), key=lambda bound: bound.exact, default=None)
