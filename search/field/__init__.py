@@ -1,0 +1,1 @@
+"""Where does each plot go, and what does the crew carry?"""

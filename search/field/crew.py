@@ -1,0 +1,200 @@
+"""What the crew reads, decided once and without a format; paper, sheet and page only draw it."""
+
+from __future__ import annotations
+
+from collections import Counter
+from dataclasses import dataclass
+from datetime import datetime
+from typing import Any
+
+from search.field.cautions import FIRST, USUAL, office_notes
+from search.field.codes import treatment_codes
+from search.field.planted import planted_plots
+from search.field.randomise import Planted
+from search.field.standing import standing_in_words
+from search.field.walk import Pass, passes
+from search.field.wording import clean, counted
+from search.foundation.errors import BadInput
+from search.trial.records import Ground, Trial
+
+MONTHS = [
+    "January",
+    "February",
+    "March",
+    "April",
+    "May",
+    "June",
+    "July",
+    "August",
+    "September",
+    "October",
+    "November",
+    "December",
+]
+
+
+@dataclass(frozen=True, slots=True)
+class TreatmentEntry:
+    """A treatment as the crew meets it.
+
+    Parameters
+    ----------
+    number : counted from 1, in the order of the trial file
+    code : short name on the map
+    plots : how many it has
+    per_plot, total : what to weigh out, with its unit; the total includes spare bags
+    """
+
+    number: int
+    code: str
+    name: str
+    control: bool
+    caution: str
+    plots: int
+    per_plot: str
+    total: str
+
+
+@dataclass(frozen=True, slots=True)
+class BlockEntry:
+    """A block with the letter that stands for it on the map; none where every block is a line."""
+
+    letter: str
+    name: str
+    replicate: str
+    plots: int
+
+
+@dataclass(frozen=True, slots=True)
+class Caution:
+    """A caution.
+
+    Parameters
+    ----------
+    title : what it is about, in a few words; empty where it is about certain treatments
+    text : what to do
+    about : those treatments, numbered from 0; none where it is about everything
+    """
+
+    title: str
+    text: str
+    about: tuple[int, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class CrewPacket:
+    """The whole content of a packet; all text is safe to print.
+
+    Parameters
+    ----------
+    issued : day of issue, `2 March 2027`
+    seed : seed of the layout
+    standing : how good the plan is, in sentences
+    cautions : for everybody in the field, the most important first
+    office : warnings about the statistics, for those who analyse
+    plots : what stands where, by plot number
+    passes : the same plots in planting order
+    spare_bags : bags to weigh out beyond those for the plots, of each treatment
+    """
+
+    title: str
+    mark: str
+    issued: str
+    seed: int
+    paper: str
+    about: tuple[tuple[str, str], ...]
+    size: str
+    standing: tuple[str, ...]
+    cautions: tuple[Caution, ...]
+    office: tuple[str, ...]
+    treatments: tuple[TreatmentEntry, ...]
+    blocks: tuple[BlockEntry, ...]
+    plots: tuple[Planted, ...]
+    ground: Ground | None
+    passes: tuple[Pass, ...]
+    spare_bags: int
+
+
+def crew_packet(trial: Trial, document: dict[str, Any]) -> CrewPacket:
+    """Decide what the crew of a trial reads.
+
+    Parameters
+    ----------
+    trial : the trial
+    document : its plan as in plan.json
+
+    Raises
+    ------
+    BadInput : the plan does not fit the trial
+    """
+    plots = planted_plots(trial, document)
+    treatments = _treatments(trial, plots)
+    return CrewPacket(
+        title=clean(trial.name),
+        mark=clean(document["mark"]),
+        issued=_day(document["issued"]),
+        seed=document["layout"]["seed"],
+        paper=trial.packet.paper,
+        about=tuple((clean(key), clean(value)) for key, value in trial.about),
+        size=", ".join((counted(trial.t, "treatment"), counted(trial.b, "block"), counted(trial.n, "plot"))),
+        standing=standing_in_words(document, trial.n),
+        cautions=_cautions(treatments),
+        office=office_notes(trial, document),
+        treatments=treatments,
+        blocks=_blocks(trial),
+        plots=plots,
+        ground=trial.ground,
+        passes=passes(trial),
+        spare_bags=trial.packet.spare_bags,
+    )
+
+
+def _day(issued: str) -> str:
+    try:
+        day = datetime.strptime(issued, "%Y-%m-%dT%H:%M:%SZ")
+    except ValueError as error:
+        raise BadInput(f"the plan was issued on {issued}, which is no date") from error
+    return f"{day.day} {MONTHS[day.month - 1]} {day.year}"
+
+
+def _treatments(trial: Trial, plots: tuple[Planted, ...]) -> tuple[TreatmentEntry, ...]:
+    names = [clean(treatment.name) for treatment in trial.treatments]
+    stands = Counter(planted.treatment for planted in plots)
+    entries = []
+    for i, (treatment, code) in enumerate(zip(trial.treatments, treatment_codes(names), strict=True)):
+        amount, bags = treatment.amount, stands[i] + trial.packet.spare_bags
+        entries.append(
+            TreatmentEntry(
+                number=i + 1,
+                code=code,
+                name=names[i],
+                control=treatment.control,
+                caution=clean(treatment.caution),
+                plots=stands[i],
+                per_plot=clean(f"{amount.per_plot:.10g} {amount.unit}") if amount else "",
+                total=clean(f"{amount.per_plot * bags:.10g} {amount.unit}") if amount else "",
+            )
+        )
+    return tuple(entries)
+
+
+def _blocks(trial: Trial) -> tuple[BlockEntry, ...]:
+    letters = {j: letter for letter, j in trial.ground.letters} if trial.ground else {}
+    replicate = {j: clean(group.name) for group in trial.rules.replicates for j in group.blocks}
+    return tuple(
+        BlockEntry(letters.get(j, ""), clean(block.name), replicate.get(j, ""), block.plots)
+        for j, block in enumerate(trial.blocks)
+    )
+
+
+def _cautions(treatments: tuple[TreatmentEntry, ...]) -> tuple[Caution, ...]:
+    """The first rule, then what single treatments ask, then the usual ones."""
+    own: dict[str, list[int]] = {}
+    for i, treatment in enumerate(treatments):
+        if treatment.caution:
+            own.setdefault(treatment.caution, []).append(i)
+    return (
+        Caution(*FIRST),
+        *(Caution("", text, tuple(about)) for text, about in own.items()),
+        *(Caution(*usual) for usual in USUAL),
+    )

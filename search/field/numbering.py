@@ -1,0 +1,79 @@
+"""Every plot with its number, block, line and place, as it is staked out in the field."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from search.foundation.errors import BadInput
+from search.trial.records import Ground, Trial
+
+NO_PLOT = "."
+MOST_PLACES = 999
+
+
+@dataclass(frozen=True, slots=True)
+class Place:
+    """A plot of the field.
+
+    Parameters
+    ----------
+    plot : number on the stake, line × 100 + place (× 1000 where a line has more than 99 places)
+    block : number of the block that it belongs to
+    line : line of plots, counted from 1 at the side where numbering starts
+    place : position in the line, counted from 1; places without a plot count too
+    row, column : position on the map as drawn, counted from 0 at its top left
+    """
+
+    plot: int
+    block: int
+    line: int
+    place: int
+    row: int
+    column: int
+
+
+def places(trial: Trial) -> tuple[Place, ...]:
+    """The plots of a trial in the order of their numbers.
+
+    Without a ground every block is a line, drawn and numbered like a page that is read.
+
+    Raises
+    ------
+    BadInput : a line has more places than three digits can number
+    """
+    found = _on_ground(trial.ground) if trial.ground else _blocks_as_lines(trial)
+    return tuple(sorted(found, key=lambda place: place.plot))
+
+
+def _on_ground(ground: Ground) -> Iterator[Place]:
+    start, way = ground.numbering.start, ground.numbering.way
+    block_of = dict(ground.letters)
+    height = len(ground.rows)
+    width = max(len(row) for row in ground.rows)
+    step = _step(width)
+    for row, letters in enumerate(ground.rows):
+        line = height - row if start.startswith("bottom") else row + 1
+        turned = way == "serpentine" and line % 2 == 0
+        from_left = start.endswith("left") != turned
+        for column, letter in enumerate(letters):
+            if letter != NO_PLOT:
+                place = column + 1 if from_left else width - column
+                yield Place(line * step + place, block_of[letter], line, place, row, column)
+
+
+def _blocks_as_lines(trial: Trial) -> Iterator[Place]:
+    step = _step(max(block.plots for block in trial.blocks))
+    for number, block in enumerate(trial.blocks):
+        for column in range(block.plots):
+            line, place = number + 1, column + 1
+            yield Place(line * step + place, number, line, place, number, column)
+
+
+def _step(longest: int) -> int:
+    if longest > MOST_PLACES:
+        raise BadInput(
+            f"a line of the field has {longest} places; plot numbers hold at most {MOST_PLACES} a line: "
+            "break the line into two lines of the map, or the block into two blocks"
+        )
+    return 100 if longest <= 99 else 1000

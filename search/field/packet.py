@@ -1,0 +1,39 @@
+"""Everything that the crew carries, written into one folder."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Any
+
+from search.field.crew import crew_packet
+from search.field.paper import packet_pdf
+from search.field.tables import plots_csv
+from search.foundation.documents import write_whole
+from search.trial.records import Trial
+
+
+def write_packet(trial: Trial, document: dict[str, Any], folder: Path) -> list[Path]:
+    """Write the crew's documents; the same plan gives the same bytes.
+
+    Parameters
+    ----------
+    trial : the trial
+    document : its plan as in plan.json
+    folder : where they go; made if it is not there
+
+    Returns
+    -------
+    the files, the one to print first
+
+    Raises
+    ------
+    BadInput : the plan does not fit the trial, or the folder cannot be written to
+    """
+    packet = crew_packet(trial, document)
+    contents: dict[str, str | bytes] = {
+        "packet.pdf": packet_pdf(packet),
+        "plots.csv": plots_csv(packet),
+    }
+    for name, content in contents.items():
+        write_whole(folder / name, content)
+    return [folder / name for name in contents]

@@ -1,0 +1,45 @@
+"""How good a plan is, in words for somebody who will stand in the field with it."""
+
+from __future__ import annotations
+
+from math import ceil, floor
+from typing import Any
+
+
+def standing_in_words(document: dict[str, Any], plots: int) -> tuple[str, ...]:
+    """What is known of a plan, each sentence true as it stands.
+
+    Parameters
+    ----------
+    document : the plan as in plan.json
+    plots : plots of the trial
+    """
+    score, gap, standing = document["score"], document["gap_percent"], document["standing"]
+    if not score["connected"]:
+        return (
+            "This plan falls into parts that share no block: treatments of one part cannot be "
+            "compared with those of another.",
+        )
+    obeys = f"The plan obeys every rule of the trial. Its efficiency is {100 * score['aim']:.1f} %."
+    if standing == "balanced":
+        return (
+            obeys,
+            "It is balanced: every two treatments are compared equally well, and no plan under "
+            "these rules is better.",
+        )
+    if standing == "proven optimal":
+        return (obeys, "No plan under these rules is better by even one part in a million; that is proved.")
+    if standing == "bounded" and gap is not None and 0 <= gap < 100:
+        return (obeys, *_within(gap, plots))
+    return (obeys, "How much better another plan could be is not known.")
+
+
+def _within(gap_percent: float, plots: int) -> tuple[str, str]:
+    """The gap as the most that could be gained and as plots; both are rounded to the safe side."""
+    reached = 1 - gap_percent / 100
+    gain = ceil(1e4 * (1 / reached - 1) - 1e-9) / 100
+    worth = floor(10 * plots * reached + 1e-9) / 10
+    return (
+        f"No plan under these rules can be more than {gain:.2f} % better; that is proved.",
+        f"Put another way: it is as good as {worth:g} of {plots} plots of the best possible plan.",
+    )

@@ -1,0 +1,48 @@
+"""plots.csv: one row a plot, for spreadsheets."""
+
+from __future__ import annotations
+
+import csv
+import io
+import re
+
+from search.field.crew import CrewPacket
+
+FORMULA = re.compile(r"(^|[;|])(\s*)(?=[=+\-@＝＋－＠])")
+"""Where a spreadsheet might take text for a formula: at the start of a cell, and after a semicolon or
+bar, which some countries' settings take for the end of a cell."""
+
+
+def plots_csv(packet: CrewPacket) -> str:
+    """The plots in the order of their numbers.
+
+    Text that a spreadsheet might run as a formula gets an apostrophe in front; it stays readable.
+    A byte-order mark tells spreadsheets that the file is UTF-8: without it they garble every accent.
+    """
+    resolvable = any(block.replicate for block in packet.blocks)
+    text = io.StringIO()
+    writer = csv.writer(text, quoting=csv.QUOTE_NONNUMERIC, lineterminator="\r\n")
+    head = ["plot", "block", "replicate", "line", "place", "treatment", "code", "caution"]
+    writer.writerow(name for name in head if resolvable or name != "replicate")
+    for planted in packet.plots:
+        place, block = planted.place, packet.blocks[planted.place.block]
+        treatment = packet.treatments[planted.treatment]
+        replicate = [inert(block.replicate)] if resolvable else []
+        writer.writerow(
+            [
+                place.plot,
+                inert(block.name),
+                *replicate,
+                place.line,
+                place.place,
+                inert(treatment.name),
+                inert(treatment.code),
+                inert(treatment.caution),
+            ]
+        )
+    return "\N{BYTE ORDER MARK}" + text.getvalue()
+
+
+def inert(text: str) -> str:
+    """The text with an apostrophe wherever a spreadsheet might see a formula begin."""
+    return FORMULA.sub(r"\1\2'", text)

@@ -1,0 +1,52 @@
+"""The packet on disk: whole, in its folder, the same each time."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import pytest
+
+from search.field.packet import write_packet
+from search.field.planfile import read_plan, write
+from search.foundation.errors import BadInput
+from tests.field.made import document_of, trial_with
+
+
+def test_the_folder_holds_the_packet_and_nothing_else(tmp_path: Path) -> None:
+    """Two files in the folder, which is made; nothing beside it, whatever the trial is called."""
+    trial = trial_with(trial="../../escape")
+    files = write_packet(trial, document_of(trial), tmp_path / "out" / "packet")
+    assert [path.name for path in files] == ["packet.pdf", "plots.csv"]
+    assert {path for path in tmp_path.rglob("*") if path.is_file()} == set(files)
+    assert files[0].read_bytes().startswith(b"%PDF-")
+
+
+def test_the_plan_file_alone_gives_the_same_bytes(tmp_path: Path) -> None:
+    """Drawn again from the plan file, every file of the packet is the same."""
+    trial = trial_with()
+    document = document_of(trial)
+    first = write_packet(trial, document, tmp_path / "a")
+    write(document, tmp_path / "plan.json")
+    again = write_packet(*read_plan(tmp_path / "plan.json"), tmp_path / "b")
+    assert [path.read_bytes() for path in first] == [path.read_bytes() for path in again]
+
+
+def test_a_link_is_replaced_not_followed(tmp_path: Path) -> None:
+    """A file elsewhere that a link in the folder points to stays as it is."""
+    elsewhere = tmp_path / "elsewhere.txt"
+    elsewhere.write_text("mine")
+    folder = tmp_path / "packet"
+    folder.mkdir()
+    (folder / "plots.csv").symlink_to(elsewhere)
+    trial = trial_with()
+    write_packet(trial, document_of(trial), folder)
+    assert elsewhere.read_text() == "mine"
+    assert not (folder / "plots.csv").is_symlink()
+
+
+def test_a_folder_that_is_a_file_is_told(tmp_path: Path) -> None:
+    """The message names the path and the way out."""
+    (tmp_path / "packet").write_text("in the way")
+    trial = trial_with()
+    with pytest.raises(BadInput, match="--out"):
+        write_packet(trial, document_of(trial), tmp_path / "packet")
