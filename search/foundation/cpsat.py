@@ -85,15 +85,26 @@ def solve(
 def _interruptible(solver: CpSolver, model: CpModel, stop: Stop | None) -> CpSolverStatus:
     """Solve in a thread of its own: the main thread must stay in Python to hear an interrupt."""
     statuses: list[CpSolverStatus] = []
-    thread = threading.Thread(target=lambda: statuses.append(solver.solve(model)), daemon=True)
-    thread.start()
+    failures: list[BaseException] = []
+    done = threading.Event()
+
+    def work() -> None:
+        try:
+            statuses.append(solver.solve(model))
+        except BaseException as failure:
+            failures.append(failure)
+        finally:
+            done.set()
+
+    threading.Thread(target=work, daemon=True).start()
     try:
-        while thread.is_alive():
-            thread.join(0.02)
+        while not done.wait(0.05):
             if stop is not None and stop.interrupted:
                 raise KeyboardInterrupt
     except KeyboardInterrupt:
         solver.stop_search()
-        thread.join(5.0)
+        done.wait(5.0)
         raise
+    if failures:
+        raise failures[0]
     return statuses[0]
