@@ -68,6 +68,8 @@ def solve(
     def ask(with_seed: int) -> tuple[CpSolverStatus, CpSolver]:
         solver = cp_model.CpSolver()
         solver.parameters.num_workers = 1
+        # Its own handler would leave SIGINT at "die" when it is done: an interrupt is ours to hear.
+        solver.parameters.catch_sigint_signal = False
         solver.parameters.max_time_in_seconds = max(0.01, seconds)
         if effort is not None:
             solver.parameters.max_deterministic_time = effort

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import signal
 import threading
 import time
 
@@ -61,6 +62,14 @@ def squares_apart(many: int) -> cp_model.CpModel:
 def test_too_little_effort_is_unknown_not_infeasible() -> None:
     """A search cut short knows nothing."""
     assert solve(squares_apart(6), [], seconds=10, effort=1e-4).answer is Answer.UNKNOWN
+
+
+def test_the_solver_leaves_the_interrupt_to_us() -> None:
+    """After a call, an interrupt still reaches Python and does not kill the process."""
+    solve(pigeons(3), [], seconds=10)
+    with pytest.raises(KeyboardInterrupt):  # noqa: PT012
+        signal.raise_signal(signal.SIGINT)
+        time.sleep(1)
 
 
 def test_an_interrupt_ends_the_solver() -> None:
