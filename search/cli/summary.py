@@ -59,7 +59,7 @@ def _figures(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
             ("A, D, worst pair", f"{score['A']:.4f}, {score['D']:.4f}, {score['worst_pair_efficiency']:.4f}"),
             (
                 "lost to blocks",
-                f"{score['loss_to_blocks_percent']:.2f} %, which blocks must win back by cutting the plot variance",
+                f"{score['loss_to_blocks_percent']:.2f} %, to be won back by a smaller plot variance",
             ),
             ("lost to replication", f"{score['loss_to_replication_percent']:.2f} %"),
             ("each pair shares", f"{least} blocks" if least == most else f"{least} to {most} blocks"),
