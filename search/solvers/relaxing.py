@@ -212,4 +212,4 @@ class _Relaxer:
 
 def in_words(trial: Trial, change: Change) -> str:
     """A change as advice."""
-    return f"{place(change.said)} ({quoted(trial, change.said)}): {change.words}"
+    return f"{place(trial, change.said)} ({quoted(trial, change.said)}): {change.words}"

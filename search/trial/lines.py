@@ -60,11 +60,17 @@ def _picked(rules: tuple[_T, ...], positions: set[int] | None) -> tuple[_T, ...]
     return tuple(rule for i, rule in enumerate(rules) if positions and i in positions)
 
 
-def place(said: Said) -> str:
+def place(trial: Trial, said: Said) -> str:
     """Where it stands, for a sentence."""
     if said.line:
         return f"line {said.line}"
-    return "not in the file" if said.sort in ("plots_each", "twice_in_block") else said.key
+    return "left out" if _by_default(trial, said) else said.key
+
+
+def _by_default(trial: Trial, said: Said) -> bool:
+    return said.line == 0 and (
+        (said.sort == "plots_each" and trial.plots_each is None) or said.sort == "twice_in_block"
+    )
 
 
 def quoted(trial: Trial, said: Said) -> str:
@@ -82,10 +88,9 @@ def quoted(trial: Trial, said: Said) -> str:
             return f"{names[at]}: {{plots: {_range(trial, at)}}}"
         case "plots_each":
             ranges = sorted({_range(trial, i) for i in said.items})
-            if said.line:
-                return f"plots_each: {' or '.join(ranges)}"
-            how = "as even as the plots allow" if trial.even else "its own default"
-            return f"plots_each left out: {how}, {' or '.join(ranges)}"
+            if _by_default(trial, said):
+                return f"plots_each: as even as the plots allow, {' or '.join(ranges)}"
+            return f"plots_each: {' or '.join(ranges)}"
         case "never_share_block":
             return f"never_share_block: [{_listed([names[i] for i in rules.never_share_block[at]])}]"
         case "meet_at_least" | "meet_at_most":
@@ -104,7 +109,7 @@ def quoted(trial: Trial, said: Said) -> str:
         case "replicates":
             replicate = rules.replicates[at]
             return f"replicates: {{{replicate.name}: [{_listed([blocks[j] for j in replicate.blocks])}]}}"
-    return "twice_in_block: false" if said.line else "twice_in_block left out: each once in a block"
+    return "twice_in_block: false"
 
 
 def _range(trial: Trial, i: int) -> str:
