@@ -7,6 +7,7 @@ from collections.abc import Iterable, Iterator
 from search.foundation.errors import Clash
 
 MOST_LINES = 12
+SHOWN_BY = {"count": "counting", "clique": "counting plots of treatments that never share a block"}
 MOST_CHANGES = 8
 
 
@@ -20,7 +21,7 @@ def clash_lines(clash: Clash) -> Iterator[str]:
         yield "The blocks cannot hold the treatments, whatever the rules:"
     yield from _listed(clash.among)
     yield f"Why: {clash.cause}."
-    yield f"Shown by: {clash.shown_by}."
+    yield f"Shown by: {SHOWN_BY.get(clash.shown_by, clash.shown_by)}."
     if clash.changes:
         which = "Any one of these changes" if len(clash.changes) > 1 else "This change"
         yield f"{which} leaves a plan (tried, smallest first):"

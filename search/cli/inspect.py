@@ -165,7 +165,7 @@ def _show_verdict(console: Console, found: Inspection) -> None:
     for clash in found.clashes:
         console.print()
         for sentence in clash_lines(clash):
-            indented(console, sentence.strip(), "-" if sentence.startswith(" ") else "")
+            indented(console, sentence.strip(" -"), "-" if sentence.startswith(" ") else "")
 
 
 def _expected(trial: Trial, found: Inspection) -> Iterator[str]:
@@ -180,11 +180,11 @@ def _expected(trial: Trial, found: Inspection) -> Iterator[str]:
         yield "no difference can be tested: no residual degrees of freedom, or no connected plan"
         return
     asked = trial.precision
-    parts = [] if hoped.at_best is None else [f"at best {hoped.at_best:.3g}"]
-    parts += [] if hoped.with_first is None else [f"{hoped.with_first:.3g} with the first plan"]
+    parts = [] if hoped.at_best is None else [f"at best {hoped.at_best:.3g} {hoped.unit}"]
+    parts += [] if hoped.with_first is None else [f"{hoped.with_first:.3g} {hoped.unit} with the first plan"]
     yield (
         f"detectable difference ({hoped.compared}; {asked.level_percent:g} % level, "
-        f"{asked.power_percent:g} % power): {', '.join(parts)} {hoped.unit}"
+        f"{asked.power_percent:g} % power): {', '.join(parts)}"
     )
     if asked.cv_percent is None:
         yield "with precision: {cv_percent: …, mean: …} in the file it is told in the unit of the trial"

@@ -155,10 +155,15 @@ class _Relaxer:
         least = min(self.trial.treatments[i].least for i in said.items)
         most = max(self.trial.treatments[i].most for i in said.items)
         size = Size.ONE_NUMBER if said.sort == "plots" else Size.MANY_NUMBERS
-        for room, down, up in ((least - 1, 1, 0), (self.trial.n - most, 0, 1)):
+        ways = ((least - 1, 1, 0), (self.trial.n - most, 0, 1), (self.trial.n - most, 1, 1))
+        found = False
+        for room, down, up in ways:
+            if found and down and up:
+                return  # one end alone serves
             steps = self._least_step(room, partial(self._ranged, said, down, up))
             if steps is not None:
-                range_ = f"[{least - steps * down}, {most + steps * up}]"
+                found = True
+                range_ = f"[{max(1, least - steps * down)}, {most + steps * up}]"
                 words = f"plots: {range_}" if said.sort == "plots" else f"plots_each: {range_}"
                 yield Change(said, words, size, steps)
 
@@ -196,7 +201,7 @@ class _Relaxer:
             return
         few = self._least_step(len(group) - 2, partial(self._smaller, at))
         if few is not None:
-            out = " and ".join(self.names[i] for i in group[:few])
+            out = ", ".join(self.names[i] for i in group[:few])
             yield Change(said, f"take {out} out of it", Size.ONE_ENTRY, few)
         elif self._without(said):
             yield Change(said, "leave it out", Size.WHOLE_LINE)

@@ -8,6 +8,7 @@ never meet. Search and bounds use both; counts that cannot all hold make the tri
 from __future__ import annotations
 
 from dataclasses import dataclass
+from heapq import heapify, heappop, heappush
 
 import numpy as np
 
@@ -93,6 +94,27 @@ def cliques(apart: Ints | np.ndarray) -> tuple[tuple[int, ...], ...]:
         covered[np.ix_(members, members)] = True
         found.append(tuple(sorted(members)))
     return tuple(dict.fromkeys(found))
+
+
+def caps_of_pairs(rules: Tables) -> Ints:
+    """Most meetings of each pair of treatments, one number for each pair."""
+    above: Ints = rules.meet_most[np.triu_indices(rules.t, 1)]
+    return above
+
+
+def _fewest_crossings(least: list[int], most: list[int], plots: int) -> int:
+    """The least Σ r(r − 1)/2 over r within the ranges, Σ r = plots: dealt out one by one, fewest first."""
+    r = list(least)
+    heap = [(plots_of, i) for i, plots_of in enumerate(r) if plots_of < most[i]]
+    heapify(heap)
+    for _ in range(plots - sum(r)):
+        if not heap:
+            break
+        _, i = heappop(heap)
+        r[i] += 1
+        if r[i] < most[i]:
+            heappush(heap, (r[i], i))
+    return sum(x * (x - 1) // 2 for x in r)
 
 
 def _clash(text: str, shown_by: str = "count") -> Impossible:
@@ -320,6 +342,20 @@ class _Implications:
             raise _clash(
                 f"the rules ask for {floors} meetings of two treatments, "
                 f"but the blocks bring about only {pairs}"
+            )
+
+        self._once_together(bool((caps_of_pairs(rules) <= 1).all()))
+
+    def _once_together(self, applies: bool) -> None:
+        """Where no pair meets twice, no two blocks share two treatments: blocks are counted like pairs."""
+        if not applies:
+            return
+        b = self.tables.b
+        crossings = _fewest_crossings(self.least.tolist(), self.most.tolist(), self.tables.n)
+        if crossings > b * (b - 1) // 2:
+            raise _clash(
+                f"no pair may meet twice, so each two of the {b} blocks share at most one treatment, "
+                f"{b * (b - 1) // 2} times in all; but the plots ask for {crossings} such crossings"
             )
 
     # -- bookkeeping ---------------------------------------------------------------------------

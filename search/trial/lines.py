@@ -64,7 +64,7 @@ def place(trial: Trial, said: Said) -> str:
     """Where it stands, for a sentence."""
     if said.line:
         return f"line {said.line}"
-    return "left out" if _by_default(trial, said) else said.key
+    return "not in the file" if _by_default(trial, said) else said.key
 
 
 def _by_default(trial: Trial, said: Said) -> bool:

@@ -92,6 +92,7 @@ class _Reader:
         settings = settings if isinstance(settings, Section) else Section()
         plants = self._treatments(names, settings, blocks, rules)
         aim = self._aim(treatments, plants)
+        self._power()
         return Trial(
             name=self.section.get("trial", ""),
             treatments=plants,
@@ -233,6 +234,20 @@ class _Reader:
             _treatment(name, wanted or share, wanted is not None, settings.get(name) or Section())
             for name, wanted, share in zip(names, own, ranges, strict=True)
         )
+
+    def _power(self) -> None:
+        section: Section = self.section.get("precision", Section())
+        asked = Precision(**section)
+        if asked.level_percent >= asked.power_percent:
+            key = next(key for key in ("power_percent", "level_percent") if key in section)
+            self.report.add(
+                section.where[key],
+                f"precision.{key}",
+                f"power {asked.power_percent:g} % at level {asked.level_percent:g} %",
+                "a power above the level",
+                "a test finds nothing at all as often as its level says",
+                "power_percent: 80",
+            )
 
     def _aim(self, names: Names, treatments: tuple[Treatment, ...]) -> Aim:
         value = self.section.get("aim", AimKind.ALL_PAIRS.value)

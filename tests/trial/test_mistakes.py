@@ -153,6 +153,9 @@ MISTAKES = {
     "thousands_set_apart": Mistake(5, ("the digits together: 1000000",), "1 000 000", "1000000"),
     "level_of_nought": Mistake(5, ("a number from 0.01 to 50",), "level_percent: 0", "level_percent: 0.01"),
     "power_of_a_hundred": Mistake(5, ("to 99.99",), "100", "99.99"),
+    "power_below_the_level": Mistake(
+        5, ("a power above the level",), "power_percent: 10", "power_percent: 10.1"
+    ),
     "yes_for_true": Mistake(
         5,
         (
