@@ -14,7 +14,7 @@ import numpy as np
 
 from search.foundation.errors import Impossible
 from search.trial.records import Trial
-from search.trial.tables import Ints, Tables, tables
+from search.trial.tables import Bools, Ints, Tables, tables
 
 LISTED = 6
 """At most so many names are spelled out in a sentence."""
@@ -117,6 +117,13 @@ def _fewest_crossings(least: list[int], most: list[int], plots: int) -> int:
     return sum(x * (x - 1) // 2 for x in r)
 
 
+def _shared(stands: Bools) -> Ints:
+    """Blocks that each two treatments share; in floating point, where products of matrices are quick."""
+    counts = stands.astype(np.float64)
+    shared: Ints = (counts @ counts.T).astype(np.int64)
+    return shared
+
+
 def _clash(text: str, shown_by: str = "count") -> Impossible:
     return Impossible([text], shown_by)
 
@@ -166,18 +173,16 @@ class _Implications:
             fewest, most = rules.meet_least[i, j], rules.meet_most[i, j]
             limit = "never may" if rules.apart[i, j] else f"may share at most {most}"
             causes.append(f"{self._named((i, j))} must share {fewest} blocks and {limit}")
-        held = (rules.low > 0).astype(np.int64)
-        together = held @ held.T
+        together = _shared(rules.low > 0)
         for i, j in zip(*np.nonzero(np.triu(rules.apart & (together > 0), 1)), strict=True):
-            block = self.blocks[int(np.argmax(held[i] * held[j]))]
+            block = self.blocks[int(np.argmax((rules.low[i] > 0) & (rules.low[j] > 0)))]
             causes.append(f"{block} must hold both {self._named((i, j))}, which never share a block")
         for i, j in zip(*np.nonzero(np.triu((together > rules.meet_most) & ~rules.apart, 1)), strict=True):
             causes.append(
                 f"{self._named((i, j))} are both required in {together[i, j]} blocks "
                 f"and may share at most {rules.meet_most[i, j]}"
             )
-        open_ = (rules.high > 0).astype(np.int64)
-        common = open_ @ open_.T
+        common = _shared(rules.high > 0)
         for i, j in zip(*np.nonzero(np.triu(rules.meet_least > common, 1)), strict=True):
             causes.append(
                 f"{self._named((i, j))} must share {rules.meet_least[i, j]} blocks, "
