@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from search.cli.output import aside, emit, page
+from search.cli.output import aside, emit, indented, page
 from search.runs.sweep import Progress, RowResult, SweepObserver, SweepResult
 
 if TYPE_CHECKING:
@@ -64,6 +64,9 @@ def show(console: Console, result: SweepResult) -> None:
     """All rows, with what varies."""
     console.print(result.sweep.name, style="bold")
     console.print(_table(result.rows, result.sweep.columns))
+    for row in result.rows:
+        if row.reason:
+            indented(console, f"row {row.row.number} is {row.status}: {row.reason}", "-")
     counts: dict[str, int] = {}
     for row in result.rows:
         counts[str(row.status)] = counts.get(str(row.status), 0) + 1
@@ -77,23 +80,28 @@ def _table(rows: tuple[RowResult, ...] | list[RowResult], columns: tuple[str, ..
     from rich.text import Text
 
     table = Table(box=None, padding=(0, 2, 0, 0))
-    table.add_column("row", justify="right")
+    table.add_column("row", justify="right", no_wrap=True, min_width=3)
     for column in columns:
-        table.add_column(column, overflow="ellipsis", max_width=28, no_wrap=True)
+        table.add_column(_short(column, 24), no_wrap=True)
     for title in ("plots", "best found", "bound", "gap %"):
-        table.add_column(title, justify="right")
-    table.add_column("standing", overflow="ellipsis", max_width=40, no_wrap=True)
+        table.add_column(title, justify="right", no_wrap=True)
+    table.add_column("standing", no_wrap=True)
     for row in rows:
-        cells = [str(row.row.number), *(str(row.row.values.get(c, "")) for c in columns), *_cells(row)]
+        values = (_short(str(row.row.values.get(column, "")), 24) for column in columns)
+        cells = [str(row.row.number), *values, *_cells(row)]
         table.add_row(*map(Text, cells))
     return table
+
+
+def _short(text: str, most: int) -> str:
+    return text if len(text) <= most else f"{text[: most - 1]}…"
 
 
 def _cells(row: RowResult) -> list[str]:
     plots = "" if row.row.trial is None else str(row.row.trial.n)
     plan = row.plan
     if plan is None:
-        return [plots, "", "", "", f"{row.status}: {row.reason}" if row.reason else str(row.status)]
+        return [plots, "", "", "", str(row.status)]
     bound = "" if plan.bound is None else f"{plan.bound.value:.5f}"
     gap = "" if plan.gap_percent is None else f"{plan.gap_percent:.3f}"
     kept = "" if str(row.where_from) == "searched" else " (kept)"
@@ -137,8 +145,9 @@ class LiveTable(SweepObserver):
     def finished(self, result: RowResult, progress: Progress) -> None:
         self.rows = [*self.rows[1 - SHOWN_ROWS :], result]
         if self.live is None and not self.quiet:
+            # nobody sees a live table: a line for each row
             told = " ".join(part for part in _cells(result)[1:] if part)
-            self.console.print(f"row {result.row.number}: {told}   [{_totals(progress)}]", soft_wrap=True)
+            self.console.print(f"row {result.row.number}: {told} ({_totals(progress)})", soft_wrap=True)
         self.progress(progress)
 
     def progress(self, progress: Progress) -> None:
