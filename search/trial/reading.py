@@ -6,7 +6,7 @@ from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
-from search.foundation.errors import Fault, FaultyTrial, shown
+from search.foundation.errors import shown
 from search.trial.catalogue import MOST_CELLS, MOST_PLOTS, TRIAL
 from search.trial.drawing import read_ground
 from search.trial.even import even_ranges
@@ -63,12 +63,8 @@ def trial_from_nodes(root: Node, file: str) -> Trial:
     section = TRIAL.read(root, "", report)
     trial = _Reader(section, report).trial() if section is not None else None
     if trial is None or report.faults:
-        raise FaultyTrial(sorted(report.faults, key=_place))
+        raise report.faulty()
     return trial
-
-
-def _place(fault: Fault) -> tuple[int, int]:
-    return fault.line, fault.column
 
 
 class _Reader:

@@ -5,11 +5,12 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 from typing import Any, Protocol
 
-from search.foundation.errors import Fault
+from search.foundation.errors import Fault, FaultyTrial
 from search.trial.nodes import Node
 from search.trial.words import words_of
 
 Schema = dict[str, Any]
+MOST_FAULTS = 200
 
 
 class Kind(Protocol):
@@ -24,7 +25,7 @@ class Kind(Protocol):
 
 @dataclass(slots=True)
 class Report:
-    """Collects the faults of one file."""
+    """Collects the faults of one file; raises them all once they are `MOST_FAULTS`."""
 
     file: str
     faults: list[Fault] = field(default_factory=list)
@@ -38,6 +39,17 @@ class Report:
         why = why or words.why
         remedy = remedy or f"for example  {words.example}"
         self.faults.append(Fault(key, found, must, why, remedy, self.file, line, column))
+        if len(self.faults) >= MOST_FAULTS:
+            raise self.faulty()
+
+    def faulty(self) -> FaultyTrial:
+        """All faults in the order of the file; where there are very many, the last one says so."""
+        faults = sorted(self.faults, key=lambda fault: (fault.line, fault.column))
+        if len(faults) >= MOST_FAULTS:
+            why = "so many are seldom mistakes one by one: this may be another kind of file"
+            found, must = f"{MOST_FAULTS} faults, and nobody looked further", "a trial file"
+            faults.append(Fault("", found, must, why, "mend the first of them and look again", self.file))
+        return FaultyTrial(faults)
 
 
 class Section(dict[str, Any]):

@@ -37,14 +37,13 @@ def environment() -> dict[str, str]:
     return os.environ | {"PYTHONPATH": str(ROOT), "PYTHONHASHSEED": "0"}
 
 
-def process(folder: Path, *words: str | Path, **more: Any) -> subprocess.Popen[str]:
-    """The command started in a process of its own."""
+def process(folder: Path, *words: str | Path, code: str) -> subprocess.Popen[str]:
+    """`inspect` in a process of its own, through a few lines of Python."""
     return subprocess.Popen(
-        [sys.executable, "-m", "search.cli.entry", *map(str, words)],
+        [sys.executable, "-c", code, "inspect", *map(str, words)],
         cwd=folder,
         env=environment(),
         stdout=subprocess.PIPE,
         stderr=subprocess.PIPE,
         text=True,
-        **more,
     )
