@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import signal
 import subprocess
 import sys
@@ -64,3 +65,18 @@ def test_a_question_is_interrupted(tmp_path: Path) -> None:
     assert status == 130
     assert "Traceback" not in err
     assert not list(tmp_path.iterdir())
+
+
+@pytest.mark.parametrize("delay", [0.5, 3.0])
+def test_an_interrupted_search_keeps_its_best_or_nothing(delay: float, tmp_path: Path) -> None:
+    """`plan` ends with 130; what it leaves is a whole packet with a plan, or no plan at all."""
+    words = ("plan", CONFIGS / "first_trial.yaml", "--seconds", "60", "--out", tmp_path / "out")
+    status, _, err = interrupted(tmp_path, delay, *words, "--store", tmp_path / "store.sqlite")
+    assert status == 130
+    assert "Traceback" not in err
+    plan = tmp_path / "out" / "plan.json"
+    if plan.exists():
+        document = json.loads(plan.read_text(encoding="utf-8"))
+        assert document["ended_by"] == "interrupted"
+        assert document["score"]["connected"]
+    assert not list(tmp_path.rglob(".part-*"))
