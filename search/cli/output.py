@@ -79,8 +79,9 @@ def emit(command: str, status: str, content: Mapping[str, Any], exit_status: int
         "faults": [],
         **content,
     }
-    json.dump(document, sys.stdout, ensure_ascii=False, indent=1, allow_nan=False)
-    sys.stdout.write("\n")
+    # Whole before the first letter is written: what fails half-way would leave two documents.
+    text = json.dumps(document, ensure_ascii=False, indent=1, allow_nan=False)
+    sys.stdout.write(text + "\n")
 
 
 def failure(command: str, status: str, message: str, exit_status: int, as_json: bool) -> int:
