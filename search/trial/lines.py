@@ -34,26 +34,16 @@ def only(trial: Trial, kept: Collection[Said]) -> Trial:
     items: dict[str, set[int]] = {}
     for said in kept:
         items.setdefault(said.sort, set()).update(said.items)
-    rules = trial.rules
     bound = items.get("plots", set()) | items.get("plots_each", set())
     treatments = tuple(
         treatment if i in bound else replace(treatment, least=1, most=max(1, trial.n))
         for i, treatment in enumerate(trial.treatments)
     )
-    return replace(
-        trial,
-        treatments=treatments,
-        rules=Rules(
-            never_share_block=_picked(rules.never_share_block, items.get("never_share_block")),
-            meet_at_least=_picked(rules.meet_at_least, items.get("meet_at_least")),
-            meet_at_most=_picked(rules.meet_at_most, items.get("meet_at_most")),
-            keep_out=_picked(rules.keep_out, items.get("keep_out")),
-            must_hold=_picked(rules.must_hold, items.get("must_hold")),
-            replicates=_picked(rules.replicates, items.get("replicates")),
-            per_replicate=rules.per_replicate,
-            twice_in_block=rules.twice_in_block or "twice_in_block" not in items,
-        ),
-    )
+    named = {said.sort for said in trial.said} & set(Rules.__slots__) - {"twice_in_block"}
+    picked = {sort: _picked(getattr(trial.rules, sort), items.get(sort)) for sort in named}
+    twice = trial.rules.twice_in_block or "twice_in_block" not in items
+    rules = replace(trial.rules, **picked, twice_in_block=twice)
+    return replace(trial, treatments=treatments, rules=rules)
 
 
 def _picked(rules: tuple[_T, ...], positions: set[int] | None) -> tuple[_T, ...]:
@@ -109,7 +99,9 @@ def quoted(trial: Trial, said: Said) -> str:
         case "replicates":
             replicate = rules.replicates[at]
             return f"replicates: {{{replicate.name}: [{_listed([blocks[j] for j in replicate.blocks])}]}}"
-    return "twice_in_block: false"
+        case "twice_in_block":
+            return "twice_in_block: false"
+    return said.key
 
 
 def _range(trial: Trial, i: int) -> str:

@@ -19,7 +19,7 @@ UNSEEN = r"\u00ad\u061c\u115f\u1160\u180e\u200b\u200e\u200f\u2028-\u202e\u2060-\
 Indian scripts (U+200C, U+200D) are letters of their words, and stay."""
 CLEAN = rf"^\s*[^\s{CONTROL}{UNSEEN}](?:[^{CONTROL}{UNSEEN}]*[^\s{CONTROL}{UNSEEN}])?\s*$"
 MOST_RATIO = 10**9
-DECIMAL = r"[+-]?(?:[0-9]{1,18}(?:\.[0-9]{0,30})?|\.[0-9]{1,30})(?:[eE][+-]?[0-9]{1,3})?"
+DECIMAL = r"[+-]?(?:(?:0|[1-9][0-9]{0,17})(?:\.[0-9]{0,30})?|\.[0-9]{1,30})(?:[eE][+-]?[0-9]{1,3})?"
 QUOTIENT = r"[+-]?[0-9]{1,9}/[1-9][0-9]{0,8}"
 
 
@@ -84,7 +84,7 @@ class Whole:
     def read(self, node: Node, key: str, report: Report) -> int | None:
         must = f"a whole number from {self.least} to {self.most:,}"
         text = node.text.strip() if isinstance(node, Scalar) and not node.quoted else ""
-        if not re.fullmatch(r"[+-]?[0-9]{1,30}(\.0{1,30})?", text):
+        if not re.fullmatch(r"[+-]?(0|[1-9][0-9]{0,29})(\.0{1,30})?", text):
             report.add(node, key, describe(node), must, remedy=number_slip(node))
             return None
         value = int(text.split(".")[0])

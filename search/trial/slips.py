@@ -21,6 +21,12 @@ def number_slip(node: Node) -> str:
         return f"{QUOTED}: {text}"
     if re.fullmatch(r"[+-]?[0-9]+,[0-9]+", text):
         return f"a decimal point: {text.replace(',', '.')}"
+    if re.fullmatch(r"[+-]?0+[0-9]+(?:\.[0-9]*)?", text):
+        return f"the number without noughts before it: {text.lstrip('+-0') or '0'}"
+    if re.fullmatch(r"[0-9]{2,4}-[0-9]{1,2}-[0-9]{1,2}|[0-9]{1,2}\.[0-9]{1,2}\.[0-9]{2,4}", text):
+        return "a number: this is a date"
+    if re.fullmatch(r"[0-9]{1,3}(?::[0-9]{1,2}){1,2}", text):
+        return "a number: this is a time, or a ratio that is written p/q where one may stand"
     if text.endswith("%"):
         return f"the number alone: {text[:-1].strip().replace(',', '.')}"
     if re.fullmatch(r"[0-9]{1,3}(?:[ _'’\u00a0\u202f][0-9]{3})+", text):

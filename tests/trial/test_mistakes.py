@@ -156,6 +156,9 @@ MISTAKES = {
     "power_below_the_level": Mistake(
         5, ("a power above the level",), "power_percent: 10", "power_percent: 10.1"
     ),
+    "number_with_a_nought_before_it": Mistake(5, ("the number without noughts before it: 10",), "010", "10"),
+    "date_for_a_number": Mistake(5, ("this is a date",), "2027-03-02", "8.1"),
+    "time_for_a_number": Mistake(5, ("this is a time",), "3:20", "200"),
     "yes_for_true": Mistake(
         5,
         (
