@@ -33,12 +33,14 @@ class Change:
     said : the line
     words : what to write there
     size, steps : how large a change it is
+    serves_all : with it a plan was found for all the other lines too, not only for those of its clash
     """
 
     said: Said
     words: str
     size: Size
     steps: int = 1
+    serves_all: bool = True
 
 
 Changed = Callable[[int], Trial]
@@ -46,6 +48,8 @@ Changed = Callable[[int], Trial]
 
 def changes(trial: Trial, clash: Clash, others: Sequence[Clash], questions: Questions) -> tuple[Change, ...]:
     """Changes to single lines of a clash, each of which alone was seen to leave a plan.
+
+    Where none was seen to leave a plan for the whole file, those that mend this clash are told.
 
     Parameters
     ----------
@@ -56,12 +60,18 @@ def changes(trial: Trial, clash: Clash, others: Sequence[Clash], questions: Ques
     """
     apart = {said for other in others for said in other.lines}
     kept = [said for said in demands(trial) if said not in apart]
-    tried = _Relaxer(trial, kept, questions)
-    found = [change for said in clash.lines for change in tried.of(said)]
+    found = _tried(_Relaxer(trial, kept, questions), clash)
     if not found:
-        found += tried.of_all_plots()
-    found += tried.of_blocks()
+        alone = _tried(_Relaxer(trial, clash.lines, questions), clash)
+        found = [replace(change, serves_all=False) for change in alone]
     return tuple(sorted(found, key=lambda change: (change.size, change.steps, change.said.line)))
+
+
+def _tried(relaxer: _Relaxer, clash: Clash) -> list[Change]:
+    found = [change for said in clash.lines for change in relaxer.of(said)]
+    if not found:
+        found += relaxer.of_all_plots()
+    return found + relaxer.of_blocks()
 
 
 class _Relaxer:
@@ -132,11 +142,11 @@ class _Relaxer:
         return replace(self.trial, blocks=blocks)
 
     def _possible(self, changed: Trial) -> bool:
-        return self.questions.left > 0 and (self.questions.ask(only(changed, self.kept)) is Verdict.POSSIBLE)
+        return self.questions.ask(only(changed, self.kept)) is Verdict.POSSIBLE
 
     def _without(self, said: Said) -> bool:
         left = [other for other in self.kept if other != said]
-        return self.questions.left > 0 and self.questions.ask(only(self.trial, left)) is Verdict.POSSIBLE
+        return self.questions.ask(only(self.trial, left)) is Verdict.POSSIBLE
 
     def _least_step(self, most: int, changed: Changed) -> int | None:
         """The fewest steps after which a plan is there; more steps never take one away."""
@@ -217,4 +227,5 @@ class _Relaxer:
 
 def in_words(trial: Trial, change: Change) -> str:
     """A change as advice."""
-    return f"{place(trial, change.said)} ({quoted(trial, change.said)}): {change.words}"
+    rest = "" if change.serves_all else " (mends this clash; whether the rest can be met was not decided)"
+    return f"{place(trial, change.said)} ({quoted(trial, change.said)}): {change.words}{rest}"
