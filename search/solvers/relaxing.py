@@ -152,7 +152,9 @@ class _Relaxer:
         """The fewest steps after which a plan is there; more steps never take one away."""
         if most < 1 or not self._possible(changed(most)):
             return None
-        low, high = 0, most
+        low, high = 0, 1
+        while high < most and not self._possible(changed(high)):
+            low, high = high, min(2 * high, most)
         while high - low > 1:
             middle = (low + high) // 2
             if self._possible(changed(middle)):
