@@ -8,7 +8,6 @@ import tempfile
 from pathlib import Path
 from types import ModuleType
 
-
 ENTRIES = ("wander", "make_move", "anneal", "best_move")
 """The functions of the kernel that are compiled and kept."""
 
