@@ -7,7 +7,7 @@ from collections.abc import Iterator
 from search.trial.kinds import Items, Report, Section
 from search.trial.names import Names
 from search.trial.nodes import Node
-from search.trial.records import Meeting, Replicate, Rules
+from search.trial.records import Meeting, NotBeside, Replicate, Rules
 
 EVERY = "every block"
 
@@ -52,6 +52,36 @@ class _RulesReader:
             replicates=replicates,
             per_replicate=tuple(sorted({**inside, **outside}.items())),
             twice_in_block=self.section.get("twice_in_block", False),
+            not_beside=self._not_beside(),
+        )
+
+    def _not_beside(self) -> NotBeside | None:
+        section: Section | None = self.section.get("not_beside")
+        if section is None:
+            return None
+        key, node = "rules.not_beside", self.section.where["not_beside"]
+        pairs: list[tuple[int, int]] = []
+        for number, names in enumerate(section.get("pairs", Items()), start=1):
+            found = self._found(names, f"{key}.pairs[{number}]", self.treatments, self.blocks)
+            pair = sorted({i for i, _ in found})
+            if len(pair) == 2:
+                pairs.append((pair[0], pair[1]))
+        itself = section.get("itself", False)
+        if not itself and "pairs" not in section.where:
+            self.report.add(
+                node,
+                key,
+                "nobody to keep apart",
+                "pairs: [[A, B]], or itself: true, or both",
+                "a rule about nobody would keep nothing",
+            )
+        if "plots_apart" in section.where and "distance_m" in section.where:
+            self.report.add(node, key, "plots_apart and distance_m", "one of the two")
+        return NotBeside(
+            pairs=tuple(dict.fromkeys(pairs)),
+            itself=itself,
+            plots_apart=section.get("plots_apart", 1),
+            distance_m=section.get("distance_m"),
         )
 
     def _found(

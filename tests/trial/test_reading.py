@@ -130,13 +130,9 @@ def test_a_fault_is_told_with_its_line(case: str) -> None:
 
 
 NOT_YET: dict[str, dict[str, Any]] = {
-    "not_beside": {"rules": {"not_beside": {"pairs": [["A", "B"]]}}},
     "planted": {"rules": {"planted": {"101": "A"}}},
     "at_most": {"blocks": {"b": {"at_most": 3}}},
-    "wanted": {"blocks": {"wanted": {"count": 3}}},
     "blocks_random": {"blocks_random": 2},
-    "file": {"ground": {"file": "map.csv"}},
-    "blind": {"packet": {"blind": True}},
     "even meetings": {"aim": "even meetings"},
     "worst pair": {"aim": "worst pair"},
 }
