@@ -16,10 +16,10 @@ REFUTED = 1
 @click.option("--json", "as_json", is_flag=True, help="One JSON document on standard output.")
 def command(plan: Path, as_json: bool) -> int:
     """Prove every claim of PLAN (a plan.json) again, in exact arithmetic."""
-    from search.proof.reading import load
+    from search.proof.reading import document_of
     from search.proof.verify import verify
 
-    verdict = verify(load(plan))
+    verdict = verify(document_of(plan))
     if as_json:
         emit("verify", "proved" if verdict.holds else "refuted", verdict.document())
     else:

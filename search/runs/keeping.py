@@ -10,7 +10,7 @@ from search.efficiency.evaluator import score
 from search.efficiency.records import Bound
 from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.conductor import find
-from search.runs.kept import SAME_SCORE, KeptBound, KeptPlan, Problem, Run, problem_of
+from search.runs.kept import SAME_SCORE, KeptBound, KeptPlan, Run, problem_of
 from search.runs.plan import Plan
 from search.runs.store import DEFAULT_PATH, Store
 from search.trial.canonical import Canonical, canonical
@@ -120,7 +120,7 @@ def run_of(plan: Plan, limits: Limits, workers: int) -> Run:
 
 def covers(run: Run, limits: Limits) -> bool:
     """Whether a run has searched at least as far as the limits allow a new one to."""
-    if run.ended_by == Ended.INTERRUPTED:
+    if run.ended_by == Ended.INTERRUPTED or run.ended_by not in list(Ended):
         return False
     if run.ended_by == Ended.BOUND_MET:
         return True
@@ -156,11 +156,6 @@ class Keeping:
     ) -> None:
         self.store.close()
 
-    @property
-    def problem(self) -> Problem:
-        """The trial's problem as the store knows it."""
-        return problem_of(self.trial, self.numbering)
-
     def plan(
         self,
         *,
@@ -184,6 +179,11 @@ class Keeping:
         )
         remember(self.store, self.numbering, plan, run_of(plan, limits, workers))
         return plan
+
+    def issued(self, plan: Plan, mark: str) -> None:
+        """Write the mark of its packet to a plan, if that is the one which is kept."""
+        contents = to_canonical(self.numbering).contents(plan.contents)
+        self.store.issued(self.numbering.digest, self.trial.aim.kind.value, contents, mark)
 
     def better_than(self, efficiency: float) -> float | None:
         """The efficiency of the kept plan where it is above the one given by more than rounding."""

@@ -17,6 +17,8 @@ from search.foundation.errors import Fault, FaultyTrial, shown
 
 MOST_BYTES = 1 << 20
 MOST_NODES = 200_000
+MOST_BITS = 1024
+"""Longer whole numbers are refused unread; Python itself would not print those of 4,300 digits."""
 PLAIN_TAGS = frozenset(f"tag:yaml.org,2002:{kind}" for kind in ("str", "seq", "map"))
 
 
@@ -108,7 +110,11 @@ def nodes_of(data: Any) -> Node:
         return Scalar(0, 0, "true" if data else "false")
     if isinstance(data, str):
         return Scalar(0, 0, data, quoted=True)
-    if isinstance(data, int | float) and math.isfinite(data):
+    if isinstance(data, float) and math.isfinite(data):
+        return Scalar(0, 0, repr(data))
+    if isinstance(data, int):
+        if data.bit_length() > MOST_BITS:
+            raise _refusal("", "a number of hundreds of digits", "numbers that a field can have")
         return Scalar(0, 0, repr(data))
     if isinstance(data, list | tuple):
         return Sequence(0, 0, tuple(nodes_of(item) for item in data))

@@ -289,3 +289,20 @@ def test_numbering_takes_a_moment() -> None:
     began = perf_counter()
     assert canonical(trial).complete
     assert perf_counter() - began < 1
+
+
+@pytest.mark.bench
+@pytest.mark.parametrize(
+    ("t", "count", "pairs"), [(12, 6, 2), (200, 80, 60), (200, 80, 300), (1000, 400, 20), (1000, 400, 300)]
+)
+def test_timings(t: int, count: int, pairs: int) -> None:
+    """One numbering takes less than 0.4 s; pytest -m bench -s tells how much less."""
+    draw = random.Random(1)
+    trial = apart(t, count, 10, [tuple(draw.sample(range(t), 2)) for _ in range(pairs)])  # type: ignore[misc]
+    times = []
+    for _ in range(5):
+        began = perf_counter()
+        complete = canonical(trial).complete
+        times.append(perf_counter() - began)
+    print(f"\nt {t}, b {count}, {pairs} pairs apart: {1000 * sorted(times)[2]:.1f} ms, complete: {complete}")
+    assert sorted(times)[2] < 0.4

@@ -1,0 +1,60 @@
+"""Is the bound true? Its certificate is derived again from the trial and its multipliers."""
+
+from __future__ import annotations
+
+from fractions import Fraction
+from typing import Any
+
+from search.proof.certificates import KINDS
+from search.proof.certificates.case import Case
+from search.proof.certificates.claims import Claim
+from search.proof.intervals import Interval
+from search.proof.parts import Part, quoted, told
+from search.proof.records import Finding, Refuted
+from search.proof.score import RELATIVE
+
+
+def bounded(value: Any, case: Case) -> tuple[Finding, Fraction | None]:
+    """The bound of the file, derived again from trial and multipliers.
+
+    Parameters
+    ----------
+    value : the bound as the file has it, None where it claims none
+    case : the trial that it speaks of
+
+    Returns
+    -------
+    the finding, and the bound as the rational that was proved
+    """
+    if value is None:
+        return Finding("bound", True, "none is claimed"), None
+    claims = Part.of("bound", value)
+    aim = claims.text("aim")
+    if aim != case.aim.value:
+        raise Refuted(f"it speaks of the aim {quoted(aim)}, the trial's is {case.aim.value}")
+    claims.text("argument")
+    exact, value = claims.ratio("exact"), claims.number("value")
+    certificate = claims.part("certificate")
+    certificate.text("statement")
+    claim = _derived(certificate, case)
+    derived = Interval.exactly(claim.ratio).root(claim.power).high
+    if not claim.supports(exact):
+        raise Refuted(f"the certificate proves no more than {told(derived)}, not {told(exact)}")
+    if not Interval.exactly(exact).agrees(value, RELATIVE):
+        raise Refuted(f"its value {told(value)} is not the exact {told(exact)}")
+    sentence = (
+        f"no plan that this trial admits has an efficiency above {told(exact)}; "
+        f"derived again: {told(derived)}"
+    )
+    return Finding("bound", True, sentence), exact
+
+
+def _derived(certificate: Part, case: Case) -> Claim:
+    word = certificate.text("kind")
+    kind = KINDS.get(word)
+    if kind is None:
+        raise Refuted(f"a certificate of a kind that this version cannot check: {quoted(word)}")
+    if case.aim not in kind.AIMS:
+        raise Refuted(f"a certificate of the kind {word} says nothing about the aim {case.aim.value}")
+    claim: Claim = kind.derive(case, certificate.part("multipliers"))
+    return claim

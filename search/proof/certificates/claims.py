@@ -1,0 +1,46 @@
+"""What a certificate proves, and the efficiency that follows from it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from fractions import Fraction
+
+from search.proof.aims import weights
+from search.proof.certificates.case import Case
+from search.proof.certificates.spectrum import Spectrum
+from search.proof.records import Refuted
+from search.proof.reference import best_determinant, least_mean_variance
+from search.trial.records import AimKind
+
+
+@dataclass(frozen=True, slots=True)
+class Claim:
+    """No connected plan of the trial has an efficiency e for its aim with e^power above `ratio`."""
+
+    ratio: Fraction
+    power: int = 1
+
+    def supports(self, efficiency: Fraction) -> bool:
+        """Whether an efficiency may be told as one that no plan passes."""
+        return efficiency >= 0 and efficiency**self.power >= self.ratio
+
+
+def claim_of_variance(case: Case, least: Fraction) -> Claim:
+    """From a number that the aim's mean variance is not below in any plan."""
+    if least <= 0:
+        raise Refuted("the certificate proves no more than that variances are above 0")
+    return Claim(least_mean_variance(case.trial, weights(case.trial)) / least)
+
+
+def claim_of_determinant(case: Case, greatest: Fraction) -> Claim:
+    """From a number that the product of the non-zero eigenvalues of C does not pass in any plan."""
+    return Claim(greatest / best_determinant(case.trial), case.rank)
+
+
+def claim_of_spectrum(case: Case, best: Spectrum) -> Claim:
+    """From the best spectrum that any plan could have; for aims that treat all pairs alike."""
+    if best.vanishes:
+        return Claim(Fraction(0))
+    if case.aim is AimKind.OVERALL:
+        return claim_of_determinant(case, best.product)
+    return claim_of_variance(case, 2 * best.sum_of_inverses / case.rank)

@@ -1,0 +1,188 @@
+"""What the store keeps: problems, the best plan and bound of each, and every run; all by canonical places."""
+
+from __future__ import annotations
+
+import platform
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from datetime import UTC, datetime
+from fractions import Fraction
+from functools import cache
+from importlib.metadata import PackageNotFoundError, version
+from typing import Any
+from uuid import uuid4
+
+from search.trial.canonical import Canonical
+from search.trial.records import Contents, Trial
+
+LIBRARIES = ("evenfield", "numpy", "scipy", "numba", "ortools")
+SAME_SCORE = 1e-12
+"""Efficiencies closer than this differ by rounding alone."""
+
+
+def versions() -> dict[str, str]:
+    """Versions of everything that may change the bits of a plan."""
+    return dict(_versions())
+
+
+@cache
+def _versions() -> tuple[tuple[str, str], ...]:
+    found = [("python", platform.python_version())]
+    for library in LIBRARIES:
+        try:
+            found.append((library, version(library)))
+        except PackageNotFoundError:  # run from a checkout that was never installed
+            continue
+    return tuple(found)
+
+
+def now() -> str:
+    """The time as it is kept: UTC, to the second."""
+    return datetime.now(UTC).strftime("%Y-%m-%dT%H:%M:%SZ")
+
+
+@dataclass(frozen=True, slots=True)
+class Problem:
+    """A problem: its digest, the canonical text under it, and a short description."""
+
+    digest: str
+    text: str
+    t: int
+    b: int
+    n: int
+    sizes: tuple[int, ...]
+    """Plots of the blocks, in canonical order."""
+    name: str
+    """Name of the trial that was last seen with this problem."""
+
+
+def problem_of(trial: Trial, numbering: Canonical) -> Problem:
+    """The problem of a trial."""
+    sizes = tuple(trial.blocks[j].plots for j in numbering.blocks)
+    return Problem(numbering.digest, numbering.text, trial.t, trial.b, trial.n, sizes, trial.name)
+
+
+@dataclass(frozen=True, slots=True)
+class KeptPlan:
+    """A plan: contents in canonical numbering and how they were found.
+
+    Parameters
+    ----------
+    contents : block contents
+    score : efficiency for the aim
+    objective : the aim's mean variance, None where the aim has none
+    seed, moves, seconds : of the run that found it
+    start : what that run started from
+    mark : mark of the packet in which it was issued, or empty
+    versions : of program and libraries
+    made : when, in UTC
+    """
+
+    contents: Contents
+    score: float
+    objective: float | None
+    seed: int
+    moves: int
+    seconds: float
+    start: str
+    mark: str = ""
+    versions: Mapping[str, str] = field(default_factory=versions)
+    made: str = field(default_factory=now)
+
+    def beats(self, other: KeptPlan | None) -> bool:
+        """Whether it is better by more than rounding."""
+        return other is None or self.score > other.score + SAME_SCORE
+
+
+@dataclass(frozen=True, slots=True)
+class KeptBound:
+    """A bound with its certificate in canonical numbering."""
+
+    exact: Fraction
+    argument: str
+    certificate: dict[str, Any]
+    versions: Mapping[str, str] = field(default_factory=versions)
+    made: str = field(default_factory=now)
+
+    def beats(self, other: KeptBound | None) -> bool:
+        """Whether it is tighter."""
+        return other is None or self.exact < other.exact
+
+
+@dataclass(frozen=True, slots=True)
+class Run:
+    """One run of the search, as it was asked for and as it ended.
+
+    Parameters
+    ----------
+    seed, workers : as asked for
+    limit_seconds, limit_moves : the limits it was given
+    moves, seconds : what it took
+    ended_by : what brought it to its end
+    score : efficiency of its plan
+    start : what its plan started from
+    uid : tells the run from every other one, also when stores are merged
+    """
+
+    seed: int
+    workers: int
+    limit_seconds: float | None
+    limit_moves: int | None
+    moves: int
+    seconds: float
+    ended_by: str
+    score: float
+    start: str
+    versions: Mapping[str, str] = field(default_factory=versions)
+    made: str = field(default_factory=now)
+    uid: str = field(default_factory=lambda: uuid4().hex)
+
+
+@dataclass(frozen=True, slots=True)
+class Kept:
+    """The best plan and the best bound of one problem for one aim."""
+
+    plan: KeptPlan | None
+    bound: KeptBound | None
+
+    @property
+    def gap_percent(self) -> float | None:
+        """How much better the best possible plan could be at most, where both sides are known."""
+        if self.plan is None or self.bound is None or self.plan.score <= 0:
+            return None
+        return max(0.0, 100 * (1 - self.plan.score / float(self.bound.exact)))
+
+
+@dataclass(frozen=True, slots=True)
+class Entry:
+    """A line of the store's list."""
+
+    digest: str
+    name: str
+    t: int
+    b: int
+    n: int
+    sizes: tuple[int, ...]
+    aim: str
+    score: float
+    bound: float | None
+    made: str
+    mark: str
+    runs: int
+
+    @property
+    def gap_percent(self) -> float | None:
+        """How much better the best possible plan could be at most, where a bound is kept."""
+        if self.bound is None or self.score <= 0:
+            return None
+        return max(0.0, 100 * (1 - self.score / self.bound))
+
+
+@dataclass(frozen=True, slots=True)
+class Shown:
+    """Everything that is kept for one problem and aim."""
+
+    problem: Problem
+    aim: str
+    kept: Kept
+    runs: tuple[Run, ...]

@@ -1,0 +1,215 @@
+"""Records of the store as rows of its tables, and rows back as records, believed in nothing."""
+
+from __future__ import annotations
+
+import json
+import math
+from collections.abc import Mapping
+from dataclasses import fields
+from fractions import Fraction
+from types import NoneType
+from typing import Any
+
+from search.foundation.documents import canonical_json
+from search.runs.kept import Entry, KeptBound, KeptPlan, Problem, Run
+from search.trial.records import Contents
+
+Row = tuple[Any, ...]
+Types = Mapping[str, type | tuple[type, ...]]
+
+MOST_DIGITS = 2000
+"""Of numerator and denominator of a bound."""
+
+PROBLEM: Types = {"digest": str, "text": str, "t": int, "b": int, "n": int, "sizes": str, "name": str}
+PLAN: Types = {
+    "contents": str,
+    "score": float,
+    "objective": (float, NoneType),
+    "seed": int,
+    "moves": int,
+    "seconds": float,
+    "start": str,
+    "mark": str,
+    "versions": str,
+    "made": str,
+}
+BOUND: Types = {"exact": str, "argument": str, "certificate": str, "versions": str, "made": str}
+RUN: Types = {
+    "seed": int,
+    "workers": int,
+    "limit_seconds": (float, NoneType),
+    "limit_moves": (int, NoneType),
+    "moves": int,
+    "seconds": float,
+    "ended_by": str,
+    "score": float,
+    "start": str,
+    "versions": str,
+    "made": str,
+    "uid": str,
+}
+ENTRY: Types = {
+    "digest": str,
+    "name": str,
+    "t": int,
+    "b": int,
+    "n": int,
+    "sizes": str,
+    "aim": str,
+    "score": float,
+    "bound": (float, NoneType),
+    "made": str,
+    "mark": str,
+    "runs": int,
+}
+
+
+class Damaged(Exception):
+    """A row has not the shape that it must have."""
+
+
+def written(record: Problem | KeptPlan | KeptBound | Run) -> Row:
+    """A record as a row, its columns in the order of its fields."""
+    return tuple(_written(getattr(record, field.name)) for field in fields(record))
+
+
+def _written(value: Any) -> Any:
+    if isinstance(value, Fraction):
+        return f"{value.numerator}/{value.denominator}"
+    if isinstance(value, Mapping):
+        return canonical_json(dict(value))
+    return canonical_json(value) if isinstance(value, tuple) else value
+
+
+def problem_from(row: Row) -> Problem:
+    """A problem.
+
+    Raises
+    ------
+    Damaged : the row is none
+    """
+    values = _typed(row, PROBLEM)
+    sizes = _sizes(values["sizes"])
+    if len(sizes) != values["b"] or sum(sizes) != values["n"]:
+        raise Damaged("sizes")
+    return Problem(**values | {"sizes": sizes})
+
+
+def plan_from(row: Row, problem: Problem) -> KeptPlan:
+    """A plan of a problem, its shape and sizes checked; whether it obeys the rules is for others to ask.
+
+    Raises
+    ------
+    Damaged : the row is none
+    """
+    values = _typed(row, PLAN)
+    _check_efficiency(values["score"])
+    contents = _contents(values["contents"], problem)
+    return KeptPlan(**values | {"contents": contents, "versions": _versions(values["versions"])})
+
+
+def bound_from(row: Row) -> KeptBound:
+    """A bound; whether its certificate proves it is for others to ask.
+
+    Raises
+    ------
+    Damaged : the row is none
+    """
+    values = _typed(row, BOUND)
+    return KeptBound(
+        **values
+        | {
+            "exact": _rational(values["exact"]),
+            "certificate": _certificate(values["certificate"]),
+            "versions": _versions(values["versions"]),
+        }
+    )
+
+
+def run_from(row: Row) -> Run:
+    """A run.
+
+    Raises
+    ------
+    Damaged : the row is none
+    """
+    values = _typed(row, RUN)
+    return Run(**values | {"versions": _versions(values["versions"])})
+
+
+def entry_from(row: Row) -> Entry:
+    """A line of the list.
+
+    Raises
+    ------
+    Damaged : the row is none
+    """
+    values = _typed(row, ENTRY)
+    _check_efficiency(values["score"])
+    return Entry(**values | {"sizes": _sizes(values["sizes"])})
+
+
+def _typed(row: Row, types: Types) -> dict[str, Any]:
+    values = dict(zip(types, row, strict=True))
+    for key, kinds in types.items():
+        value = values[key]
+        if not isinstance(value, kinds) or (isinstance(value, float) and not math.isfinite(value)):
+            raise Damaged(key)
+    return values
+
+
+def _check_efficiency(value: float) -> None:
+    if not 0 <= value <= 1 + 1e-9:
+        raise Damaged("score")
+
+
+def _contents(text: str, problem: Problem) -> Contents:
+    blocks = _parsed(text, list)
+    if len(blocks) != problem.b:
+        raise Damaged("contents")
+    for block, size in zip(blocks, problem.sizes, strict=True):
+        if not isinstance(block, list) or len(block) != size:
+            raise Damaged("contents")
+        if not all(type(i) is int and 0 <= i < problem.t for i in block):
+            raise Damaged("contents")
+    return tuple(tuple(sorted(block)) for block in blocks)
+
+
+def _sizes(text: str) -> tuple[int, ...]:
+    sizes = _parsed(text, list)
+    if not all(type(size) is int and size > 0 for size in sizes):
+        raise Damaged("sizes")
+    return tuple(sizes)
+
+
+def _certificate(text: str) -> dict[str, Any]:
+    certificate: dict[str, Any] = _parsed(text, dict)
+    shape = {"kind": str, "statement": str, "multipliers": dict}
+    if not all(isinstance(certificate.get(key), kind) for key, kind in shape.items()):
+        raise Damaged("certificate")
+    return certificate
+
+
+def _versions(text: str) -> dict[str, str]:
+    return {str(key): str(value) for key, value in _parsed(text, dict).items()}
+
+
+def _rational(text: str) -> Fraction:
+    top, slash, bottom = text.partition("/")
+    plain = all(part.isascii() and part.isdigit() and len(part) <= MOST_DIGITS for part in (top, bottom))
+    if not slash or not plain or int(top) == 0 or int(bottom) == 0:
+        raise Damaged("exact")
+    return Fraction(int(top), int(bottom))
+
+
+def _parsed(text: str, kind: type) -> Any:
+    def refuse(word: str) -> Any:
+        raise ValueError(word)
+
+    try:
+        value = json.loads(text, parse_constant=refuse)
+    except (ValueError, RecursionError):
+        raise Damaged("JSON") from None
+    if not isinstance(value, kind):
+        raise Damaged("JSON")
+    return value

@@ -1,0 +1,56 @@
+"""Where compiled kernels are kept: the user's cache folder, never beside the source."""
+
+from __future__ import annotations
+
+import os
+import tempfile
+from pathlib import Path
+from types import ModuleType
+
+
+def cache_folder() -> Path:
+    """A folder for compiled code that can be written to.
+
+    Returns
+    -------
+    folder : `evenfield` in `XDG_CACHE_HOME` or `~/.cache`; where neither can be written to, a folder
+        of this user's in the system's place for temporary files
+    """
+    base = os.environ.get("XDG_CACHE_HOME") or os.path.join(os.path.expanduser("~"), ".cache")
+    folder = Path(base) / "evenfield"
+    return folder if _writable(folder) else Path(tempfile.gettempdir()) / f"evenfield-{os.getuid()}"
+
+
+def _writable(folder: Path) -> bool:
+    try:
+        folder.mkdir(parents=True, exist_ok=True)
+        with tempfile.TemporaryFile(dir=folder):
+            return True
+    except OSError:
+        return False
+
+
+def are_cached() -> bool:
+    """Whether the kernels of this version were compiled before on this machine, as far as can be seen."""
+    folder = Path(os.environ.get("NUMBA_CACHE_DIR") or cache_folder())
+    source = Path(__file__).with_name("kernel.py").stat().st_mtime
+    return any(index.stat().st_mtime >= source for index in folder.glob("**/kernel.*.nbi"))
+
+
+def warm_up() -> None:
+    """Load the compiled kernels, or compile them; where none is cached this takes about 20 seconds."""
+    kernel()
+
+
+def kernel() -> ModuleType:
+    """The module of compiled functions; the first call loads or compiles it.
+
+    `NUMBA_CACHE_DIR` is honoured where it is set.
+    """
+    import numba
+
+    if "NUMBA_CACHE_DIR" not in os.environ:
+        numba.config.CACHE_DIR = str(cache_folder())
+    from search.solvers import kernel as module
+
+    return module

@@ -1,0 +1,159 @@
+"""The best plan of a small trial by trying every plan, and multipliers for certificates about it."""
+
+from __future__ import annotations
+
+import random
+from fractions import Fraction
+from typing import Any
+
+import numpy as np
+
+from search.proof.certificates import KINDS
+from search.proof.certificates.case import Case
+from search.proof.certificates.claims import Claim
+from search.proof.parts import Part
+from search.proof.records import Refuted
+from search.trial.limits import limits
+from search.trial.records import AimKind, Trial
+from search.trial.tables import tables
+from tests.drawn import all_plans
+from tests.proof.plans import information, replications, weight_matrix
+
+
+def best_efficiency(trial: Trial, most: int = 1500) -> float | None:
+    """The greatest efficiency of all plans for the aim; None where no plan exists or too many do."""
+    try:
+        plans = list(all_plans(trial, most))
+    except OverflowError:
+        return None
+    references = replications(trial)
+    if not plans or not references:
+        return None
+    t = trial.t
+    stack = np.array([information(contents, t) for contents in plans])
+    x = np.linalg.eigvalsh(stack)[:, 1:]
+    connected = x[:, 0] > 1e-9
+    if not connected.any():
+        return 0.0
+    if trial.aim.kind is AimKind.OVERALL:
+        best = max(np.prod(np.array(r, dtype=float)) for r in references) * t / trial.n
+        return float(np.max(np.prod(x[connected], axis=1) / best) ** (1 / (t - 1)))
+    W = weight_matrix(trial)
+    best = min(float(np.sum(W.diagonal() / np.array(r))) for r in references)
+    inverse = np.linalg.inv(stack[connected] + 1 / t)
+    return best / float(np.min(np.sum(inverse * W, axis=(1, 2))))
+
+
+def case_of(trial: Trial) -> Case:
+    """The trial with its rules and what they imply."""
+    return Case(trial, tables(trial), limits(trial))
+
+
+def derived(kind: str, case: Case, multipliers: dict[str, Any]) -> Claim:
+    """What a certificate of the kind proves with these multipliers."""
+    claim: Claim = KINDS[kind].derive(case, Part("multipliers", multipliers))
+    return claim
+
+
+def efficiency_of(claim: Claim) -> float:
+    """The efficiency that the claim lets no plan pass."""
+    return float(claim.ratio) ** (1 / claim.power)
+
+
+def any_multipliers(kind: str, case: Case, draw: random.Random) -> dict[str, Any]:
+    """Multipliers of the right form and of any value, some missing."""
+
+    def price(positive: bool = False) -> str:
+        size = draw.choice((0, 1, 1, 1, 3, 30))
+        x = Fraction(draw.randint(0 if positive else -60, 60), 60) * size
+        return f"{x.numerator}/{x.denominator}"
+
+    sizes = sorted({int(s) for s in case.rules.sizes})
+    groups = sorted({int(g) for g in case.rules.group})
+    kinds = sorted({(int(s), int(g)) for s, g in zip(case.rules.sizes, case.rules.group, strict=True)})
+    sums = [
+        {"treatments": list(limit.treatments), "price": price(positive=True)}
+        for limit in case.implied.sums
+        if draw.random() < 0.7
+    ]
+    match kind:
+        case "replication" if case.aim is not AimKind.OVERALL:
+            return {"price": price(), "sums": sums}
+        case "trace root" if case.aim is AimKind.CONTRASTS:
+            return contrast_root(case, draw)
+        case "second moment by pairs":
+            order = draw.sample(range(case.trial.t), case.trial.t)
+            cut = draw.randint(0, case.trial.t)
+            return {
+                "rows": [
+                    {"treatments": part, "partners": {str(s): price() for s in sizes}}
+                    for part in (order[:cut], order[cut:])
+                    if draw.random() < 0.9
+                ],
+                "plots": {str(s): price() for s in sizes if draw.random() < 0.9},
+                "sums": sums,
+            }
+        case "second moment by block meets":
+            return {
+                "meets": [
+                    {"size": s, "group": g, "with": other, "price": price()}
+                    for s, g in kinds
+                    for other in groups
+                    if draw.random() < 0.9
+                ],
+                "plots": [{"size": s, "group": g, "price": price()} for s, g in kinds],
+                "sums": sums,
+            }
+    return {}
+
+
+def contrast_root(case: Case, draw: random.Random) -> dict[str, Any]:
+    """A rational matrix not far below the root of the Gram matrix of the contrasts."""
+    contrasts = case.trial.aim.contrasts
+    total = sum(c.weight for c in contrasts)
+    roots = [Fraction(int(1000 * float(c.weight / total) ** 0.5), 1000) for c in contrasts]
+    vectors = np.zeros((len(contrasts), case.trial.t))
+    for row, contrast in enumerate(contrasts):
+        for i, x in contrast.of:
+            vectors[row, i] = float(roots[row] * x)
+    x, v = np.linalg.eigh(vectors @ vectors.T)
+    root = (v * np.sqrt(np.maximum(x, 0)) * draw.choice((1, 1, 0.9))) @ v.T
+    texts = [
+        [str(Fraction(round(root[max(a, b), min(a, b)] * 10**9), 10**9)) for b in range(len(root))]
+        for a in range(len(root))
+    ]
+    return {"roots": [str(d) for d in roots], "matrix": texts, "epsilon": draw.choice(("1/10000000", "1/50"))}
+
+
+def changed(multipliers: Any, draw: random.Random) -> Any:
+    """The multipliers with some prices moved a little; prices of sums stay from 0 on."""
+    if isinstance(multipliers, dict):
+        return {
+            key: value if key in ("treatments", "sums") else changed(value, draw)
+            for key, value in multipliers.items()
+        }
+    if isinstance(multipliers, list):
+        return [changed(item, draw) for item in multipliers]
+    if isinstance(multipliers, str) and draw.random() < 0.5:
+        step = draw.choice((Fraction(1, 1000), Fraction(1, 50), Fraction(1, 4), Fraction(2)))
+        return str(Fraction(multipliers) + draw.choice((-1, 1)) * step)
+    return multipliers
+
+
+def sharpened(kind: str, case: Case, draw: random.Random, steps: int) -> Claim:
+    """The strongest claim met on a random climb: certificates err where they are sharp, if anywhere."""
+    multipliers = any_multipliers(kind, case, draw)
+    best = _tried(kind, case, multipliers)
+    for _ in range(steps):
+        other = changed(multipliers, draw) if draw.random() < 0.9 else any_multipliers(kind, case, draw)
+        claim = _tried(kind, case, other)
+        if claim.ratio <= best.ratio:
+            multipliers, best = other, claim
+    return best
+
+
+def _tried(kind: str, case: Case, multipliers: dict[str, Any]) -> Claim:
+    try:
+        return derived(kind, case, multipliers)
+    except Refuted:
+        return Claim(Fraction(10**9))
