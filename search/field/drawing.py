@@ -41,9 +41,7 @@ class Urn:
         plots: list[list[int]] = [[] for _ in trial.blocks]
         for number, site in enumerate(sites):
             plots[site.block].append(number)
-        return cls(
-            contents, trial.t, treatment_roles(trial), block_roles(trial), tuple(map(tuple, plots))
-        )
+        return cls(contents, trial.t, treatment_roles(trial), block_roles(trial), tuple(map(tuple, plots)))
 
     @property
     def n(self) -> int:

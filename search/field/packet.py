@@ -5,11 +5,15 @@ from __future__ import annotations
 from pathlib import Path
 from typing import Any
 
+from search.field.blind import blind_codes, blinded
 from search.field.crew import crew_packet
-from search.field.paper import packet_pdf
+from search.field.paper import key_pdf, labels_pdf, packet_pdf
 from search.field.tables import plots_csv
 from search.foundation.documents import write_whole
 from search.trial.records import Trial
+
+SEALED = "sealed"
+"""Folder for what the crew of a blind trial must not see."""
 
 
 def write_packet(trial: Trial, document: dict[str, Any], folder: Path) -> list[Path]:
@@ -29,11 +33,18 @@ def write_packet(trial: Trial, document: dict[str, Any], folder: Path) -> list[P
     ------
     BadInput : the plan does not fit the trial, or the folder cannot be written to
     """
-    packet = crew_packet(trial, document)
+    whole = crew_packet(trial, document)
+    packet, codes = whole, ()
+    if trial.packet.blind:
+        codes = blind_codes(trial.t, document["layout"]["seed"])
+        packet = crew_packet(*blinded(trial, document), blind=True)
     contents: dict[str, str | bytes] = {
         "packet.pdf": packet_pdf(packet),
+        "labels.pdf": labels_pdf(packet),
         "plots.csv": plots_csv(packet),
     }
+    if codes:
+        contents[f"{SEALED}/key.pdf"] = key_pdf(whole, codes)
     for name, content in contents.items():
         write_whole(folder / name, content)
     return [folder / name for name in contents]

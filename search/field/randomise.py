@@ -135,7 +135,8 @@ def _scheme(trial: Trial, urn: Urn) -> str:
     return "; ".join(
         (
             "treatments drawn among those that play the same part: " + _groups(urn.parts, treatments),
-            "whole blocks drawn among those equal in size, rules and replicate: " + _groups(urn.alike, blocks),
+            "whole blocks drawn among those equal in size, rules and replicate: "
+            + _groups(urn.alike, blocks),
             "plots drawn within each block",
         )
     )

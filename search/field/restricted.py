@@ -49,8 +49,10 @@ def draw_restricted(trial: Trial, urn: Urn, limit: Restriction, random: np.rando
     ------
     Undecided : no layout of these blocks keeps it, or none was found
     """
-    return _by_rejection(urn, limit, random) or _by_walking(urn, limit, random) or _by_solving(
-        trial, urn, limit, random
+    return (
+        _by_rejection(urn, limit, random)
+        or _by_walking(urn, limit, random)
+        or _by_solving(trial, urn, limit, random)
     )
 
 

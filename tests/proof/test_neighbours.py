@@ -101,6 +101,4 @@ def row_like(trial: Trial, distance: float) -> Trial:
 
     from search.trial.records import NotBeside
 
-    return replace(
-        trial, rules=replace(trial.rules, not_beside=NotBeside(itself=True, distance_m=distance))
-    )
+    return replace(trial, rules=replace(trial.rules, not_beside=NotBeside(itself=True, distance_m=distance)))

@@ -62,8 +62,7 @@ def _plan(packet: CrewPacket) -> _Plan:
         )
         for wide, high in sizes
     )
-    rows = len(ground.rows) if ground else 1 + max(row for row, _ in at)
-    columns = len(ground.rows[0]) if ground else 1 + max(column for _, column in at)
+    rows, columns = packet.extent
     forms = forms_for(packet)
     tiling = tiled(rows, columns, shape, [form.least for form in forms], (rooms[0], rooms[1]))
     neighbours = [
