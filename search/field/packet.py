@@ -9,6 +9,7 @@ from search.field.blind import blind_codes, blinded
 from search.field.crew import crew_packet
 from search.field.paper import key_pdf, labels_pdf, packet_pdf
 from search.field.tables import plots_csv
+from search.field.workbook import packet_xlsx
 from search.foundation.documents import write_whole
 from search.trial.records import Trial
 
@@ -42,6 +43,7 @@ def write_packet(trial: Trial, document: dict[str, Any], folder: Path) -> list[P
         "packet.pdf": packet_pdf(packet),
         "labels.pdf": labels_pdf(packet),
         "plots.csv": plots_csv(packet),
+        "packet.xlsx": packet_xlsx(packet),
     }
     if codes:
         contents[f"{SEALED}/key.pdf"] = key_pdf(whole, codes)

@@ -11,8 +11,9 @@ from search.field.sheets.legend import legend_of
 from search.field.sheets.lettering import wrapped
 from search.field.sheets.mapcells import BLOCK, Cell, Form, forms_for
 from search.field.sheets.mapheading import HEAD, heading
-from search.field.sheets.palette import ACCENT, INK, QUIET, WHITE, Colour, tints_for
+from search.field.sheets.palette import ACCENT, INK, QUIET, WHITE, Colour
 from search.field.sheets.sheet import FOOT, MARGIN, PAPERS, Page, Sheet
+from search.field.sheets.tints import block_tints
 from search.field.sheets.tiling import Proportions, Tile, Tiling, proportions, tiled
 from search.field.walk import Pass
 
@@ -65,13 +66,7 @@ def _plan(packet: CrewPacket) -> _Plan:
     rows, columns = packet.extent
     forms = forms_for(packet)
     tiling = tiled(rows, columns, shape, [form.least for form in forms], (rooms[0], rooms[1]))
-    neighbours = [
-        (planted.place.block, at[beyond].place.block)
-        for (row, column), planted in at.items()
-        for beyond in ((row + 1, column), (row, column + 1))
-        if beyond in at and at[beyond].place.block != planted.place.block
-    ]
-    tints = tints_for(len(packet.blocks), neighbours)
+    tints = block_tints(packet)
     return _Plan(packet, sizes[tiling.landscape], shape, tiling, forms[tiling.form], at, tints)
 
 
