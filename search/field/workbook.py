@@ -101,7 +101,9 @@ def _plots(sheet: Worksheet, packet: CrewPacket, styles: _Styles) -> None:
         }
         for column, name in enumerate(names):
             if name in values:
-                _write(sheet, row, column, values[name], styles.warning if name == "caution" else styles.plain)
+                _write(
+                    sheet, row, column, values[name], styles.warning if name == "caution" else styles.plain
+                )
             else:
                 sheet.write_blank(row, column, None, styles.day if name == "sown_on" else styles.open)
     last = len(packet.plots)

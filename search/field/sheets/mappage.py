@@ -13,8 +13,8 @@ from search.field.sheets.mapcells import BLOCK, Cell, Form, forms_for
 from search.field.sheets.mapheading import HEAD, heading
 from search.field.sheets.palette import ACCENT, INK, QUIET, WHITE, Colour
 from search.field.sheets.sheet import FOOT, MARGIN, PAPERS, Page, Sheet
-from search.field.sheets.tints import block_tints
 from search.field.sheets.tiling import Proportions, Tile, Tiling, proportions, tiled
+from search.field.sheets.tints import block_tints
 from search.field.walk import Pass
 
 SIDE = 40

@@ -42,9 +42,7 @@ def _head(room: float) -> Piece:
 
     def draw(sheet: Sheet, top: float) -> None:
         sheet.text(sheet.left, top + 15, "Observations", 17, bold=True)
-        told = (
-            "Plots without treatments, so that nobody scores what they hope to see."
-        )
+        told = "Plots without treatments, so that nobody scores what they hope to see."
         sheet.text(sheet.left, top + 31, told, 9, ink=QUIET)
         for number, name in enumerate(("observer", "date", "growth stage")):
             x = sheet.left + number * room / 3
