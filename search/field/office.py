@@ -10,7 +10,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from search.field.cautions import ENOUGH_DF, office_notes
+from search.field.cautions import ENOUGH_DF
 from search.field.codes import treatment_codes
 from search.field.pictures import Picture, picture
 from search.field.standing import standing_in_words
@@ -61,13 +61,14 @@ class OfficeSheet:
     labels: tuple[str, ...]
 
 
-def office_sheet(trial: Trial, document: dict[str, Any]) -> OfficeSheet:
+def office_sheet(trial: Trial, document: dict[str, Any], notes: tuple[str, ...]) -> OfficeSheet:
     """What the office reads of a plan.
 
     Parameters
     ----------
     trial : the trial
     document : its plan as in plan.json, checked against the trial already
+    notes : warnings about the statistics
     """
     names = [clean(treatment.name) for treatment in trial.treatments]
     variances = _variances(trial, document)
@@ -80,7 +81,7 @@ def office_sheet(trial: Trial, document: dict[str, Any]) -> OfficeSheet:
     return OfficeSheet(
         standing=standing_in_words(document, trial.n),
         groups=tuple(group for group in groups if group.figures),
-        notes=office_notes(trial, document),
+        notes=notes,
         pictures=tuple(_pictures(trial, document, variances)),
         labels=treatment_codes(names) if trial.t <= MOST_LABELS else (),
     )

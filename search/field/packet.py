@@ -47,7 +47,7 @@ def write_packet(trial: Trial, document: dict[str, Any], folder: Path) -> list[P
 def _contents(trial: Trial, document: dict[str, Any]) -> Iterator[tuple[str, str | bytes]]:
     """Names and contents of the files."""
     whole = crew_packet(trial, document)
-    office = office_sheet(trial, document)
+    office = office_sheet(trial, document, whole.office)
     if not trial.packet.blind:
         yield from _for_the_crew(whole, office)
         return

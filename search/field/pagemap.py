@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 from search.field.crew import CrewPacket
 from search.field.sheets.palette import hex_of
-from search.field.sheets.tiling import proportions
+from search.field.sheets.tiling import shape_of
 from search.field.sheets.tints import block_tints
 
 WIDE, LONG = 52.0, 58.0
@@ -70,7 +70,7 @@ class PageMap:
 def page_map(packet: CrewPacket) -> PageMap:
     """The map of a packet."""
     ground = packet.ground
-    shape = proportions(ground.plot_m, ground.gap_m) if ground else proportions(None, (0, 0))
+    shape = shape_of(ground)
     scale = max(WIDE / shape.wide, LONG / shape.long)
     wide, high = shape.wide * scale, min(shape.long * scale, max(LONG, LONGEST))
     across, along = shape.gap_across * scale, shape.gap_along * scale * high / (shape.long * scale)

@@ -8,12 +8,12 @@ from functools import partial
 from search.field.crew import CrewPacket
 from search.field.randomise import Planted
 from search.field.sheets.legend import legend_of
-from search.field.sheets.lettering import wrapped
+from search.field.sheets.lettering import width, wrapped
 from search.field.sheets.mapcells import BLOCK, Cell, Form, forms_for
 from search.field.sheets.mapheading import HEAD, heading
 from search.field.sheets.palette import ACCENT, INK, QUIET, WHITE, Colour
 from search.field.sheets.sheet import FOOT, MARGIN, PAPERS, Page, Sheet
-from search.field.sheets.tiling import Proportions, Tile, Tiling, proportions, tiled
+from search.field.sheets.tiling import Proportions, Tile, Tiling, shape_of, tiled
 from search.field.sheets.tints import block_tints
 from search.field.walk import Pass
 
@@ -52,7 +52,7 @@ class _Plan:
 def _plan(packet: CrewPacket) -> _Plan:
     at = {(planted.place.row, planted.place.column): planted for planted in packet.plots}
     ground = packet.ground
-    shape = proportions(ground.plot_m, ground.gap_m) if ground else proportions(None, (0, 0))
+    shape = shape_of(ground)
     upright = PAPERS[packet.paper]
     sizes = (upright, upright[::-1])
     beside = 2 * SIDE if ground else NAMES
@@ -167,8 +167,10 @@ def _tags(grid: _Grid, sheet: Sheet) -> None:
                 tagged.add(planted.place.block)
                 x, y = grid.corner(row, column)
                 x, y = x - grid.across / 2, y - grid.along / 2
-                sheet.box(x - 5, y - 5, 10, 10, fill=INK)
                 letter = grid.plan.packet.blocks[planted.place.block].letter
+                wide = max(10.0, width(letter, BLOCK, True) + 4)
+                x += wide / 2 - 5
+                sheet.box(x - wide / 2, y - 5, wide, 10, fill=INK)
                 sheet.text(x, y + 3, letter, BLOCK, bold=True, ink=WHITE, align=0.5)
 
 
