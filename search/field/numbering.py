@@ -71,7 +71,7 @@ def _drawn(ground: Ground) -> Iterator[Place]:
         for column, letter in enumerate(letters):
             if letter != NO_PLOT:
                 place = column + 1 if from_left else width - column
-                yield Place(line * step + place, block_of[letter], line, place, row, column)
+                yield Place(line * step + place, block_of.get(letter, 0), line, place, row, column)
 
 
 def _listed(ground: Ground) -> Iterator[Place]:

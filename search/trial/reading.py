@@ -12,7 +12,7 @@ from search.trial.even import even_ranges
 from search.trial.kinds import Report, Section
 from search.trial.names import Names
 from search.trial.nodes import Node, nodes_of, read_nodes
-from search.trial.reading_rules import read_rules
+from search.trial.reading_rules import EVERY, read_rules
 from search.trial.records import (
     Aim,
     AimKind,
@@ -20,6 +20,7 @@ from search.trial.records import (
     Block,
     Contrast,
     Ground,
+    NotBeside,
     PacketSettings,
     Precision,
     Randomise,
@@ -195,37 +196,41 @@ class _Reader:
 
     def _fits_ground(self, rules: Rules, ground: Ground | None, wanted: Wanted | None) -> None:
         """Rules that speak of places need a map that shows them."""
-        where = self.section.get("rules", Section()).where
+        section: Section = self.section.get("rules", Section())
         if rules.not_beside is not None:
-            if ground is None and "ground" not in self.section.where:
-                self.report.add(
-                    where["not_beside"],
-                    "rules.not_beside",
-                    "no ground",
-                    "a map that shows which plots are neighbours",
-                    "without it nobody can tell who stands beside whom",
-                )
-            elif rules.not_beside.distance_m is not None and ground is not None and ground.plot_m is None:
-                self.report.add(
-                    where["not_beside"],
-                    "rules.not_beside.distance_m",
-                    "no plot_m",
-                    "ground.plot_m: the width and length of a plot in metres",
-                    "without it the map has no metres",
-                    "plots_apart, which counts plots",
-                )
+            self._needs_map(rules.not_beside, section.where["not_beside"], ground)
         if wanted is None:
             return
-        for key in ("keep_out", "replicates"):
-            if key in where:
-                self.report.add(
-                    where[key],
-                    f"rules.{key}",
-                    "a rule about single blocks",
-                    "rules about every block, while blocks are still to be cut from the map",
-                    "nobody knows yet where a bay will lie",
-                    "cut the bays first: plan once without the rule, and take the map of its plan.json",
-                )
+        single = [key for key in ("keep_out", "replicates") if key in section.where]
+        single += ["must_hold"] if set(section.get("must_hold", ())) - {EVERY} else []
+        for key in single:
+            self.report.add(
+                section.where[key],
+                f"rules.{key}",
+                "a rule about single blocks",
+                "rules about every block, while blocks are still to be cut from the map",
+                "nobody knows yet where a bay will lie",
+                "cut the bays first: plan once without the rule, and take the map of its plan.json",
+            )
+
+    def _needs_map(self, rule: NotBeside, node: Node, ground: Ground | None) -> None:
+        if ground is None and "ground" not in self.section.where:
+            self.report.add(
+                node,
+                "rules.not_beside",
+                "no ground",
+                "a map that shows which plots are neighbours",
+                "without it nobody can tell who stands beside whom",
+            )
+        elif rule.distance_m is not None and ground is not None and ground.plot_m is None:
+            self.report.add(
+                node,
+                "rules.not_beside.distance_m",
+                "no plot_m",
+                "ground.plot_m: the width and length of a plot in metres",
+                "without it the map has no metres",
+                "plots_apart, which counts plots",
+            )
 
     def _range(self, section: Section, key: str) -> tuple[int, int] | None:
         value = section.get(key)

@@ -7,6 +7,7 @@ from fractions import Fraction
 from typing import Any
 
 from search.trial.listing import table_lines
+from search.trial.reading_rules import EVERY
 from search.trial.records import Aim, AimKind, Ground, Meeting, NotBeside, Rules, Treatment, Trial, Wanted
 
 
@@ -26,8 +27,11 @@ def trial_document(trial: Trial) -> dict[str, Any]:
     if trial.plots_each is not None:
         document["plots_each"] = list(trial.plots_each)
     document["rules"] = _rules(trial.rules, names, blocks)
+    if trial.wanted is not None and "must_hold" in document["rules"]:
+        # Bays that are not cut yet have no rules of their own, whatever their number will be.
+        document["rules"]["must_hold"] = {EVERY: next(iter(document["rules"]["must_hold"].values()))}
     if trial.ground is not None:
-        document["ground"] = _ground(trial.ground, blocks)
+        document["ground"] = written_ground(trial.ground, blocks)
     document["aim"] = _aim(trial.aim, names)
     for key, part in (
         ("search", trial.search),
@@ -109,7 +113,8 @@ def _lists(pairs: Iterable[tuple[str, str]]) -> dict[str, list[str]]:
     return lists
 
 
-def _ground(ground: Ground, blocks: list[str]) -> dict[str, Any]:
+def written_ground(ground: Ground, blocks: list[str]) -> dict[str, Any]:
+    """The ground as JSON data; its blocks have the names given."""
     document: dict[str, Any] = {
         "gap_m": list(ground.gap_m),
         "numbering": {"start": ground.numbering.start, "way": ground.numbering.way},
