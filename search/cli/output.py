@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import os
 import sys
 from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
@@ -12,12 +13,16 @@ from search.foundation.errors import EvenfieldError, FaultyTrial, Impossible
 if TYPE_CHECKING:
     from rich.console import Console
 
+PIPE_WIDTH = 120
+
 
 def page() -> Console:
     """Standard output for people; names from files are never read as markup."""
     from rich.console import Console
 
-    return Console(highlight=False, markup=False, emoji=False, soft_wrap=False)
+    # A file or a pipe has no width of its own: wide enough for every table.
+    width = None if sys.stdout.isatty() or "COLUMNS" in os.environ else PIPE_WIDTH
+    return Console(highlight=False, markup=False, emoji=False, width=width)
 
 
 def aside() -> Console:

@@ -50,6 +50,8 @@ def command(
     from search.trial.reading import read_trial
 
     record = read_trial(trial)
+    if record.wanted is not None:
+        record = _cut(record, quiet=as_json)
     folder = out or default_folder(record)
     limits = _limits(record.search, seconds, moves)
 
@@ -90,6 +92,19 @@ def command(
 
         show_plan(page(), issued)
     return INTERRUPTED if plan.ended_by is Ended.INTERRUPTED else 0
+
+
+def _cut(trial: Trial, quiet: bool) -> Trial:
+    """The trial with its bays cut from the map in the best of the ways that were tried."""
+    from search.field.bays import ways_to_cut
+
+    ways = ways_to_cut(trial)
+    if not quiet:
+        console = aside()
+        console.print("Ways to cut the map, the best first:")
+        for way in ways:
+            console.print(f"  {way.told}")
+    return ways[0].trial
 
 
 def default_folder(trial: Trial) -> Path:

@@ -3,9 +3,7 @@
 from __future__ import annotations
 
 import json
-import platform
 from datetime import UTC, datetime
-from importlib.metadata import PackageNotFoundError, version
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -14,6 +12,7 @@ from search.field.planshape import Document, misfit
 from search.field.randomise import PlotMap
 from search.foundation.documents import canonical_json, write_whole
 from search.foundation.errors import BadInput, shown
+from search.foundation.versions import versions
 from search.trial.reading import trial_from_document
 from search.trial.records import Trial
 from search.trial.writing import trial_document
@@ -24,7 +23,6 @@ if TYPE_CHECKING:
 
 FORMAT = "evenfield plan 1"
 MOST_BYTES = 32 * 1024 * 1024
-LIBRARIES = ("evenfield", "numpy", "scipy", "numba", "ortools")
 
 
 def plan_document(plan: Plan, plot_map: PlotMap, issued: datetime) -> Document:
@@ -51,7 +49,7 @@ def plan_document(plan: Plan, plot_map: PlotMap, issued: datetime) -> Document:
             "provenance": {
                 "seed": plan.seed,
                 "digest": plan.digest,
-                "versions": _versions(),
+                "versions": versions(),
                 "moves": plan.moves,
                 "seconds": plan.seconds,
                 "start": plan.start,
@@ -221,14 +219,3 @@ def _bound(bound: Bound) -> Document:
         "exact": f"{bound.exact.numerator}/{bound.exact.denominator}",
         "certificate": bound.certificate,
     }
-
-
-def _versions() -> dict[str, str]:
-    """Versions of everything that may change the bits of a plan."""
-    found = {"python": platform.python_version()}
-    for library in LIBRARIES:
-        try:
-            found[library] = version(library)
-        except PackageNotFoundError:  # run from a checkout that was never installed
-            continue
-    return found

@@ -68,6 +68,8 @@ def solve(
     def ask(with_seed: int) -> tuple[CpSolverStatus, CpSolver]:
         solver = cp_model.CpSolver()
         solver.parameters.num_workers = 1
+        # Its own handler would leave SIGINT at "die" when it is done: an interrupt is ours to hear.
+        solver.parameters.catch_sigint_signal = False
         solver.parameters.max_time_in_seconds = max(0.01, seconds)
         if effort is not None:
             solver.parameters.max_deterministic_time = effort
@@ -85,15 +87,26 @@ def solve(
 def _interruptible(solver: CpSolver, model: CpModel, stop: Stop | None) -> CpSolverStatus:
     """Solve in a thread of its own: the main thread must stay in Python to hear an interrupt."""
     statuses: list[CpSolverStatus] = []
-    thread = threading.Thread(target=lambda: statuses.append(solver.solve(model)), daemon=True)
-    thread.start()
+    failures: list[BaseException] = []
+    done = threading.Event()
+
+    def work() -> None:
+        try:
+            statuses.append(solver.solve(model))
+        except BaseException as failure:
+            failures.append(failure)
+        finally:
+            done.set()
+
+    threading.Thread(target=work, daemon=True).start()
     try:
-        while thread.is_alive():
-            thread.join(0.02)
+        while not done.wait(0.05):
             if stop is not None and stop.interrupted:
                 raise KeyboardInterrupt
     except KeyboardInterrupt:
         solver.stop_search()
-        thread.join(5.0)
+        done.wait(5.0)
         raise
+    if failures:
+        raise failures[0]
     return statuses[0]

@@ -44,7 +44,7 @@ def _layers(matrix: Whole, digits: int) -> list[NDArray[np.float64]]:
     """The matrix as Σ layer_i 2^(i·digits), every entry of a layer below 2^digits in size."""
     rest = matrix.astype(object)
     layers = []
-    while any(abs(x) >> digits for x in rest.flat):
+    while int(np.abs(rest).max()) >> digits:
         layers.append((rest & ((1 << digits) - 1)).astype(np.float64))
         rest = rest >> digits
     return [*layers, rest.astype(np.float64)]

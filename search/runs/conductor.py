@@ -76,7 +76,8 @@ def find(
     bounds = _Bounds(trial, implied, observer)
     _wait_for_kernels(observer, stop)
 
-    from search.solvers.rounds import Problem, search
+    from search.solvers.records import Problem
+    from search.solvers.rounds import search
 
     stop.restart()
     outcome = search(

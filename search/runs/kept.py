@@ -2,38 +2,19 @@
 
 from __future__ import annotations
 
-import platform
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from datetime import UTC, datetime
 from fractions import Fraction
-from functools import cache
-from importlib.metadata import PackageNotFoundError, version
 from typing import Any
 from uuid import uuid4
 
+from search.foundation.versions import versions
 from search.trial.canonical import Canonical
 from search.trial.records import Contents, Trial
 
-LIBRARIES = ("evenfield", "numpy", "scipy", "numba", "ortools")
 SAME_SCORE = 1e-12
 """Efficiencies closer than this differ by rounding alone."""
-
-
-def versions() -> dict[str, str]:
-    """Versions of everything that may change the bits of a plan."""
-    return dict(_versions())
-
-
-@cache
-def _versions() -> tuple[tuple[str, str], ...]:
-    found = [("python", platform.python_version())]
-    for library in LIBRARIES:
-        try:
-            found.append((library, version(library)))
-        except PackageNotFoundError:  # run from a checkout that was never installed
-            continue
-    return tuple(found)
 
 
 def now() -> str:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import signal
 import threading
 import time
 
@@ -42,9 +43,33 @@ def test_infeasible_is_said_of_what_is() -> None:
     assert solve(pigeons(3), [], seconds=10).answer is Answer.INFEASIBLE
 
 
+def squares_apart(many: int) -> cp_model.CpModel:
+    """Latin squares of an order at which two that are orthogonal do not exist (Tarry 1900, order 6)."""
+    model = cp_model.CpModel()
+    one, other = (
+        [[model.new_int_var(0, many - 1, "") for _ in range(many)] for _ in range(many)] for _ in range(2)
+    )
+    for square in (one, other):
+        for line in (*square, *zip(*square, strict=True)):
+            model.add_all_different(line)
+    both = [
+        a * many + b for row, row2 in zip(one, other, strict=True) for a, b in zip(row, row2, strict=True)
+    ]
+    model.add_all_different(both)
+    return model
+
+
 def test_too_little_effort_is_unknown_not_infeasible() -> None:
     """A search cut short knows nothing."""
-    assert solve(pigeons(14), [], seconds=10, effort=1e-4).answer is Answer.UNKNOWN
+    assert solve(squares_apart(6), [], seconds=10, effort=1e-4).answer is Answer.UNKNOWN
+
+
+def test_the_solver_leaves_the_interrupt_to_us() -> None:
+    """After a call, an interrupt still reaches Python and does not kill the process."""
+    solve(pigeons(3), [], seconds=10)
+    with pytest.raises(KeyboardInterrupt):  # noqa: PT012
+        signal.raise_signal(signal.SIGINT)
+        time.sleep(1)
 
 
 def test_an_interrupt_ends_the_solver() -> None:
@@ -53,5 +78,5 @@ def test_an_interrupt_ends_the_solver() -> None:
     threading.Timer(0.2, stop.interrupt).start()
     started = time.monotonic()
     with pytest.raises(KeyboardInterrupt):
-        solve(pigeons(14), [], seconds=60, stop=stop)
+        solve(squares_apart(6), [], seconds=60, stop=stop)
     assert time.monotonic() - started < 20

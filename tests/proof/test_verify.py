@@ -59,7 +59,11 @@ def uneven_file(kind: str, multipliers: dict[str, Any], exact: Fraction, **more:
 def uneven_files() -> list[dict[str, Any]]:
     """A file for each kind of certificate and each aim."""
     contrasts = {"p": {"of": {"A": 1, "B": -1}}, "q": {"weight": 2, "of": {"A": 2, "C": -1, "D": -1}}}
-    root = {"roots": ["1/2", "4/5"], "matrix": [["63/100", "31/100"], ["31/100", "193/100"]], "epsilon": "1/100"}
+    root = {
+        "roots": ["1/2", "4/5"],
+        "matrix": [["63/100", "31/100"], ["31/100", "193/100"]],
+        "epsilon": "1/100",
+    }
     high = Fraction(11, 10)
     return [
         uneven_file("first order", {}, high),

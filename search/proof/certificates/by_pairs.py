@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Iterator
+from dataclasses import dataclass
 from fractions import Fraction
 
 import numpy as np
@@ -22,6 +23,7 @@ from search.proof.certificates.spectrum import second_moment_spectrum
 from search.proof.parts import Part
 from search.proof.records import Refuted
 from search.trial.records import AimKind
+from search.trial.tables import Ints
 
 AIMS = (AimKind.ALL_PAIRS, AimKind.OVERALL)
 
@@ -49,34 +51,36 @@ def least_squares(case: Case, multipliers: Part) -> Fraction:
     return squares + sum(_treatments(case, plots, partners, each)) + sum(_pairs(case, partners))
 
 
-def _partner_prices(case: Case, multipliers: Part) -> list[dict[int, Fraction]]:
-    """For each treatment the price of a partner, by block size."""
-    nothing = {int(size): Fraction(0) for size in case.rules.sizes}
-    prices = [nothing] * case.trial.t
-    seen: set[int] = set()
+@dataclass(frozen=True, slots=True, eq=False)
+class _Partners:
+    """Prices of partners by block size, one row for treatments alike, and the row of each treatment."""
+
+    rows: list[dict[int, Fraction]]
+    row_of: Ints
+
+
+def _partner_prices(case: Case, multipliers: Part) -> _Partners:
+    """The prices of partners; row 0 is for treatments that no row of the certificate names."""
+    rows = [{int(size): Fraction(0) for size in case.rules.sizes}]
+    row_of = np.zeros(case.trial.t, dtype=np.int64)
     for row in rows_of(multipliers, "rows"):
         members = treatments_of(row, case)
-        if not seen.isdisjoint(members):
+        if row_of[members].any():
             raise Refuted(f"{row.where} names a treatment that another row has already")
-        seen.update(members)
-        price = prices_by_size(row, "partners", case)
-        for i in members:
-            prices[i] = price
-    return prices
+        row_of[members] = len(rows)
+        rows.append(prices_by_size(row, "partners", case))
+    return _Partners(rows, row_of)
 
 
 def _treatments(
-    case: Case,
-    plots: dict[int, Fraction],
-    partners: list[dict[int, Fraction]],
-    each: list[Fraction],
+    case: Case, plots: dict[int, Fraction], partners: _Partners, each: list[Fraction]
 ) -> Iterator[Fraction]:
     """For each treatment the least of D² plus the prices of its blocks."""
-    for i in range(case.trial.t):
+    for i, row in enumerate(partners.row_of):
         blocks = [
             Coordinate(
                 value=1 - Fraction(1, s),
-                cost=partners[i][s] * (s - 1) - price + each[i],
+                cost=partners.rows[row][s] * (s - 1) - price + each[i],
                 low=int(case.rules.low[i, case.rules.sizes == s].sum()),
                 high=int(case.rules.high[i, case.rules.sizes == s].sum()),
             )
@@ -85,28 +89,25 @@ def _treatments(
         yield _found(least_cost(blocks, 1, *case.plots_of(i)))
 
 
-def _pairs(case: Case, partners: list[dict[int, Fraction]]) -> Iterator[Fraction]:
-    """For each pair that may meet the least of 2 c² less the prices of its meetings."""
-    rules, sizes = case.rules, list(partners[0])
-    of_size = [rules.sizes == s for s in sizes]
-    must = [rules.low[:, here] @ rules.low[:, here].T for here in of_size]
-    may = [rules.high[:, here] @ rules.high[:, here].T for here in of_size]
+def _pairs(case: Case, partners: _Partners) -> Iterator[Fraction]:
+    """Over pairs that may meet the least of 2 c² less the prices of their meetings, alike pairs together."""
+    rules, sizes = case.rules, list(partners.rows[0])
+    i, j = np.nonzero(np.triu(~rules.apart, 1))
     most = np.minimum(rules.meet_most, np.minimum.outer(case.implied.most, case.implied.most))
-    solved: dict[tuple[object, ...], Fraction] = {}
-    for i, j in zip(*np.nonzero(np.triu(~rules.apart, 1)), strict=True):
-        blocks = tuple(
-            Coordinate(
-                value=Fraction(1, s),
-                cost=-partners[i][s] - partners[j][s],
-                low=int(must[at][i, j]),
-                high=int(may[at][i, j]),
-            )
-            for at, s in enumerate(sizes)
-        )
-        key = (blocks, int(rules.meet_least[i, j]), int(most[i, j]))
-        if key not in solved:
-            solved[key] = _found(least_cost(blocks, 2, *key[1:]))
-        yield solved[key]
+    one, other = partners.row_of[i], partners.row_of[j]
+    columns = [np.minimum(one, other), np.maximum(one, other), rules.meet_least[i, j], most[i, j]]
+    for s in sizes:
+        low, high = rules.low[:, rules.sizes == s], rules.high[:, rules.sizes == s]
+        columns += [(low @ low.T)[i, j], (high @ high.T)[i, j]]
+    kinds, numbers = np.unique(np.stack(columns, axis=1), axis=0, return_counts=True)
+    for kind, number in zip(kinds.tolist(), numbers.tolist(), strict=True):
+        first, second, fewest, greatest, *ranges = kind
+        prices = partners.rows[first], partners.rows[second]
+        blocks = [
+            Coordinate(Fraction(1, s), -prices[0][s] - prices[1][s], low, high)
+            for s, low, high in zip(sizes, ranges[::2], ranges[1::2], strict=True)
+        ]
+        yield number * _found(least_cost(blocks, 2, fewest, greatest))
 
 
 def _found(cost: Fraction | None) -> Fraction:

@@ -68,7 +68,7 @@ def extreme_spectrum(number: int, total: Fraction, squares: Fraction, cap: Fract
         if number == 1 or squares <= total * mean or cap < mean:
             return Spectrum(((cap, capped), (mean, number)))
         variance = squares - total * mean
-        if cap > mean and variance * (number - 1) / number <= (cap - mean) ** 2:
+        if cap == mean or variance * (number - 1) / number <= (cap - mean) ** 2:
             break
         capped, number = capped + 1, number - 1
         total, squares = total - cap, squares - cap**2

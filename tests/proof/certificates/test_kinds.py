@@ -151,17 +151,16 @@ def test_replication_by_hand() -> None:
 
 
 def test_second_moment_by_pairs_by_hand() -> None:
-    """Nine plots for three treatments in four blocks: the concurrences 2, 2, 3 are forced, and so is tr C².
+    """Four blocks of two for three treatments meet 4 times in 3 pairs: concurrences 1, 1, 2 at the evenest.
 
-    Blocks ABC, AB, AC, BC... by hand for blocks of two only: four blocks of two for three treatments
-    meet 4 times in 3 pairs, so Σ λ² ≥ 6, tr C² = Σ (r/2)² + 2 Σ (λ/2)² ≥ 22/4 + 3 with r = 3, 3, 2.
+    With r = 3, 3, 2 that gives tr C² = Σ (r/2)² + 2 Σ (λ/2)² = 22/4 + 3, and the right prices prove it.
     """
     trial = trial_from_document({"trial": "four", "treatments": 3, "blocks": {"count": 4, "plots": 2}})
     case = case_of(trial)
     plans = list(all_plans(trial))
     true = min(float(np.sum(information(contents, 3) ** 2)) for contents in plans)
     assert true == pytest.approx(22 / 4 + 3)
-    # By convexity: with ν on each meeting the pairs cost 2(a/2)² − 2νa, least at a = 1 and 2 for ν = 3/4;
+    # With ν on each meeting the pairs cost 2(a/2)² − 2νa, least at a = 1 and 2 for ν = 3/4;
     # each treatment costs (r/2)² + (ν − μ) r, least at r = 2 and 3 where ν − μ = −5/4.
     multipliers = {
         "rows": [{"treatments": [0, 1, 2], "partners": {"2": "3/4"}}],
