@@ -102,19 +102,19 @@ class Field:
 
 def walked(field: Field, count: int, along_lines: bool) -> Cut:
     """Bays cut off one after another from a walk through the field, line by line or column by column."""
-    first = (lambda site: site.row) if along_lines else (lambda site: site.column)
-    second = (lambda site: site.column) if along_lines else (lambda site: site.row)
-    plots = sorted(range(len(field.sites)), key=lambda p: first(field.sites[p]))
+    at = [(site.row, site.column) if along_lines else (site.column, site.row) for site in field.sites]
+    plots = sorted(range(len(at)), key=lambda p: at[p])
     order: list[int] = []
-    for turn, (_, line) in enumerate(groupby(plots, key=lambda p: first(field.sites[p]))):
-        order += sorted(line, key=lambda p: second(field.sites[p]), reverse=turn % 2 == 1)
+    for turn, (_, line) in enumerate(groupby(plots, key=lambda p: at[p][0])):
+        order += reversed(list(line)) if turn % 2 else line
     size, larger = divmod(len(order), count)
     bay_of = [0] * len(order)
-    at = 0
+    start = 0
     for bay in range(count):
-        for p in order[at : at + size + (bay < larger)]:
+        end = start + size + (bay < larger)
+        for p in order[start:end]:
             bay_of[p] = bay
-        at += size + (bay < larger)
+        start = end
     return Cut(tuple(bay_of), count, f"along the {'lines' if along_lines else 'columns'}")
 
 

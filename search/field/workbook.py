@@ -145,10 +145,10 @@ def _bags(sheet: Worksheet, packet: CrewPacket, styles: _Styles) -> None:
     _head(sheet, names, styles, [8, 28, 8, 8, 14, 14, 48])
     for row, entry in enumerate(packet.treatments, start=1):
         bags = entry.plots + packet.spare_bags
-        values = (entry.code, entry.name, bags, packet.spare_bags, entry.per_plot, entry.total, entry.caution)
-        for column, value in enumerate(values):
-            style = (styles.bold, styles.warning)[column == 6] if column in (0, 6) else styles.plain
-            _write(sheet, row, column, value, style)
+        _write(sheet, row, 0, entry.code, styles.bold)
+        for column, value in enumerate((entry.name, bags, packet.spare_bags, entry.per_plot, entry.total), 1):
+            _write(sheet, row, column, value, styles.plain)
+        _write(sheet, row, 6, entry.caution, styles.warning)
 
 
 def _key(sheet: Worksheet, packet: CrewPacket, styles: _Styles) -> None:
@@ -203,8 +203,8 @@ def _map(sheet: Worksheet, packet: CrewPacket, book: Workbook, styles: _Styles) 
     sheet.write_string(rows + 1, 0, foot, styles.plain)
 
 
-def _write(sheet: Worksheet, row: int, column: int, value: int | str, style: Format) -> None:
+def _write(sheet: Worksheet, row: int, column: int, value: object, style: Format) -> None:
     if isinstance(value, int):
         sheet.write_number(row, column, value, style)
     else:
-        sheet.write_string(row, column, value, style)
+        sheet.write_string(row, column, str(value), style)

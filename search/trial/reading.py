@@ -201,8 +201,9 @@ class _Reader:
             self._needs_map(rules.not_beside, section.where["not_beside"], ground)
         if wanted is None:
             return
-        single = [key for key in ("keep_out", "replicates") if key in section.where]
-        single += ["must_hold"] if set(section.get("must_hold", ())) - {EVERY} else []
+        single: list[str] = [key for key in ("keep_out", "replicates") if key in section.where]
+        if set(section.get("must_hold", ())) - {EVERY}:
+            single.append("must_hold")
         for key in single:
             self.report.add(
                 section.where[key],
