@@ -7,7 +7,7 @@ from dataclasses import dataclass, replace
 from itertools import combinations
 from math import dist
 
-from search.field.cutting import Cut, Field, compact, walked
+from search.field.cutting import Cut, Field, compact, square_strips, walked
 from search.field.numbering import NO_PLOT, Place, places
 from search.field.positions import positions
 from search.foundation.errors import FaultyTrial, Impossible, Undecided
@@ -18,6 +18,7 @@ from search.trial.wanted import counts
 from search.trial.writing import trial_document, written_ground
 
 LETTERS = "abcdefghijklmnopqrstuvwxyzABCDEFGHIJKLMNOPQRSTUVWXYZ"
+MOST_WAYS = 3
 MOST_COUNTS = 2
 """So many numbers of bays are tried where the wanted sizes allow several."""
 
@@ -68,22 +69,24 @@ def ways_to_cut(trial: Trial) -> tuple[Way, ...]:
     middles = [(middle.x_m, middle.y_m) for middle in positions(sites, trial.ground)]
     field = Field.of(sites, middles)
     ways: list[Way] = []
-    for count in counts(trial.wanted, len(sites))[:MOST_COUNTS]:
-        for cut in _cuts(field, count):
+    for number, count in enumerate(counts(trial.wanted, len(sites))[:MOST_COUNTS]):
+        for cut in _cuts(field, count, starts=1 if number else MOST_WAYS):
             bays = _in_reading_order(cut, sites, trial.ground)
             drawn = _drawn(trial, sites, bays, count)
             if drawn is not None and (known := _bound(drawn)) is not False:
                 ways.append(Way(drawn, cut.how, known, _spread(bays, middles)))
     if not ways:
         raise Impossible(("in no number of bays that fits the map can the counts be met",), "counting")
-    return tuple(sorted(ways, key=lambda way: (-round(way.bound or 0.0, 3), way.spread_m, way.trial.b)))
+    ways.sort(key=lambda way: (-round(way.bound or 0.0, 3), way.spread_m, way.trial.b))
+    return tuple(ways[:MOST_WAYS])
 
 
-def _cuts(field: Field, count: int) -> Iterator[Cut]:
-    """Different cuts into so many bays."""
+def _cuts(field: Field, count: int, starts: int) -> Iterator[Cut]:
+    """Different cuts into so many bays, each made compact from another start."""
     seen = set()
-    for along in (True, False):
-        start = walked(field, count, along)
+    lines = 1 + max(site.row for site in field.sites)
+    for strips in list(dict.fromkeys((square_strips(field, count), lines, 1)))[:starts]:
+        start = walked(field, count, strips)
         for cut in (compact(field, start), start):
             if field.holds_together(cut):
                 if cut.parts not in seen:

@@ -6,7 +6,7 @@ from collections import deque
 from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import groupby
-from math import dist
+from math import dist, sqrt
 from typing import TYPE_CHECKING
 
 from search.field.numbering import Place
@@ -17,8 +17,8 @@ if TYPE_CHECKING:
 
 NEAREST = 10
 """A plot is offered to so many of the nearest bays."""
-ROUNDS = 4
-EFFORT = 3.0
+ROUNDS = 3
+EFFORT = 0.8
 """Deterministic work of the solver a round, so that a field is always cut the same way."""
 SECONDS = 30.0
 MOST_PLOTS = 1_200
@@ -100,13 +100,21 @@ class Field:
         return pieces == cut.count
 
 
-def walked(field: Field, count: int, along_lines: bool) -> Cut:
-    """Bays cut off one after another from a walk through the field, line by line or column by column."""
-    at = [(site.row, site.column) if along_lines else (site.column, site.row) for site in field.sites]
+def walked(field: Field, count: int, strips: int) -> Cut:
+    """Bays cut off one after another from a walk through the field, strip by strip and back again.
+
+    Parameters
+    ----------
+    field : the field
+    count : bays
+    strips : bundles of lines that are walked across; as many as lines makes bays along the lines
+    """
+    lines = 1 + max(site.row for site in field.sites)
+    at = [(site.row * strips // lines, site.column, site.row) for site in field.sites]
     plots = sorted(range(len(at)), key=lambda p: at[p])
     order: list[int] = []
-    for turn, (_, line) in enumerate(groupby(plots, key=lambda p: at[p][0])):
-        order += reversed(list(line)) if turn % 2 else line
+    for turn, (_, strip) in enumerate(groupby(plots, key=lambda p: at[p][0])):
+        order += reversed(list(strip)) if turn % 2 else strip
     size, larger = divmod(len(order), count)
     bay_of = [0] * len(order)
     start = 0
@@ -115,7 +123,16 @@ def walked(field: Field, count: int, along_lines: bool) -> Cut:
         for p in order[start:end]:
             bay_of[p] = bay
         start = end
-    return Cut(tuple(bay_of), count, f"along the {'lines' if along_lines else 'columns'}")
+    how = {1: "along the columns", lines: "along the lines"}.get(strips, f"in {strips} strips")
+    return Cut(tuple(bay_of), count, how)
+
+
+def square_strips(field: Field, count: int) -> int:
+    """Strips for which bays cut from them come out about as long as wide."""
+    xs, ys = zip(*field.middles, strict=True)
+    wide, long = max(xs) - min(xs), max(ys) - min(ys)
+    lines = 1 + max(site.row for site in field.sites)
+    return min(lines, max(1, round(sqrt(count * long / wide)))) if wide > 0 else lines
 
 
 def compact(field: Field, start: Cut) -> Cut:
