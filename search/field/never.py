@@ -48,11 +48,12 @@ def _unseen(
     urn: Urn, limit: Restriction, standing: Standing, random: np.random.Generator
 ) -> list[tuple[int, int]]:
     walk = Walk(urn, limit, standing, random)
-    walk.stiffness, walk.alike, walk.parts = np.inf, [], []
+    walk.alike, walk.parts = [], []
     held = [Counter(standing[list(plots)].tolist()) for plots in urn.plots]
     unseen = {(p, i) for plots, inside in zip(urn.plots, held, strict=True) for p in plots for i in inside}
     unseen -= set(enumerate(walk.standing))
     for _ in range(SWEEPS):
         walk.sweep()
-        unseen -= set(enumerate(walk.standing))
+        if not walk.clashes:
+            unseen -= set(enumerate(walk.standing))
     return sorted(unseen)

@@ -39,7 +39,9 @@ def test_a_table_names_blocks_and_plots() -> None:
 
 def test_a_file_beside_the_trial_becomes_part_of_the_plan(tmp_path: Path) -> None:
     """Semicolons, capitals and a byte-order mark are read; the plan then needs the file no more."""
-    (tmp_path / "map.csv").write_text("\ufeffLine;Place;Block\n1;1;a\n1;2;a\n\n2;1;b\n2;2;b\n", encoding="utf-8")
+    (tmp_path / "map.csv").write_text(
+        "\ufeffLine;Place;Block\n1;1;a\n1;2;a\n\n2;1;b\n2;2;b\n", encoding="utf-8"
+    )
     (tmp_path / "trial.yaml").write_text("trial: x\ntreatments: [A, B]\nground: {file: map.csv}\n")
     trial = read_trial(tmp_path / "trial.yaml")
     document = json.loads(json.dumps(trial_document(trial)))
