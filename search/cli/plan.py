@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from search.cli.output import aside, emit, page
+from search.cli.output import aside, emit, indented, page
 from search.foundation.errors import BadInput
 from search.foundation.stopping import Ended, Limits, Stop
 
@@ -102,8 +102,8 @@ def _cut(trial: Trial, quiet: bool) -> Trial:
     if not quiet:
         console = aside()
         console.print("Ways to cut the map, the best first:")
-        for way in ways:
-            console.print(f"  {way.told}")
+        for number, way in enumerate(ways, start=1):
+            indented(console, way.told, str(number))
     return ways[0].trial
 
 

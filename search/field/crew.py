@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from collections import Counter
-from dataclasses import dataclass
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
 from datetime import datetime
 from typing import Any
 
@@ -161,6 +162,12 @@ def crew_packet(trial: Trial, document: dict[str, Any], blind: bool = False) -> 
         labels=trial.packet.labels,
         blind=blind,
     )
+
+
+def with_codes(packet: CrewPacket, codes: Sequence[str]) -> CrewPacket:
+    """The packet with other codes for its treatments."""
+    coded = (replace(entry, code=code) for entry, code in zip(packet.treatments, codes, strict=True))
+    return replace(packet, treatments=tuple(coded))
 
 
 def _day(issued: str) -> str:

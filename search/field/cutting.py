@@ -185,7 +185,7 @@ def _gathered(field: Field, cut: Cut, nearest: int) -> Cut | None:
     if solved.answer is not Answer.SOLUTION:
         return None
     bay_of = {p: bay for (p, bay), on in zip(joins, solved.values, strict=True) if on}
-    return Cut(tuple(bay_of[p] for p in range(len(field.sites))), cut.count, "as compact as found")
+    return Cut(tuple(bay_of[p] for p in range(len(field.sites))), cut.count, "gathered about their middles")
 
 
 def _even_sizes(model: CpModel, joins: dict[tuple[int, int], IntVar], plots: int, count: int) -> None:

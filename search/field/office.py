@@ -14,7 +14,7 @@ from search.field.cautions import ENOUGH_DF
 from search.field.codes import treatment_codes
 from search.field.pictures import Picture, picture
 from search.field.standing import standing_in_words
-from search.field.wording import clean, counted
+from search.field.wording import clean
 from search.trial.records import Contents, Trial
 from search.trial.tables import incidence
 
@@ -193,7 +193,7 @@ def _origin(document: dict[str, Any]) -> Iterator[Figure]:
         value = "uniform" if layout["restriction"]["uniform"] else "not uniform"
         yield Figure("Under not_beside", value, _sentence(layout["restriction"]["told"]))
     if isinstance(run, dict) and isinstance(run.get("moves"), int) and isinstance(run.get("seed"), int):
-        told = f"{counted(run['moves'], 'move')}; ended by: {clean(str(document.get('ended_by', '')))}."
+        told = f"{run['moves']:,} moves; ended by: {clean(str(document.get('ended_by', '')))}."
         yield Figure("Search", f"seed {run['seed']}", told)
 
 

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
 from search.field.blind import blind_codes, blinded
-from search.field.crew import CrewPacket, crew_packet
+from search.field.crew import CrewPacket, crew_packet, with_codes
 from search.field.geojson import plots_geojson
 from search.field.office import OfficeSheet, office_sheet
 from search.field.page import plan_html
@@ -52,8 +53,11 @@ def _contents(trial: Trial, document: dict[str, Any]) -> Iterator[tuple[str, str
         yield from _for_the_crew(whole, office)
         return
     yield from _for_the_crew(crew_packet(*blinded(trial, document), blind=True), None)
-    yield f"{SEALED}/key.pdf", key_pdf(whole, blind_codes(trial.t, document["layout"]["seed"]))
-    yield f"{SEALED}/office.html", plan_html(whole, office, sealed=True)
+    codes = blind_codes(trial.t, document["layout"]["seed"])
+    key = with_codes(whole, codes)
+    office = replace(office, labels=codes if office.labels else ())
+    yield f"{SEALED}/key.pdf", key_pdf(key)
+    yield f"{SEALED}/office.html", plan_html(key, office, sealed=True)
 
 
 def _for_the_crew(packet: CrewPacket, office: OfficeSheet | None) -> Iterator[tuple[str, str | bytes]]:

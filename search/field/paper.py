@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import io
 from collections.abc import Sequence
-from dataclasses import replace
 
 from search.field.crew import CrewPacket
 from search.field.sheets.bags import bag_pages
@@ -38,19 +37,14 @@ def labels_pdf(packet: CrewPacket) -> bytes:
     return _pdf(packet, label_pages(packet), "labels", footed=False)
 
 
-def key_pdf(packet: CrewPacket, codes: Sequence[str]) -> bytes:
+def key_pdf(packet: CrewPacket) -> bytes:
     """Draw the sealed key of a blind packet, with the list from which its bags are filled.
 
     Parameters
     ----------
-    packet : the packet with the true names
-    codes : for each treatment the code under which the crew knows it
+    packet : the packet with the true names, and the codes under which the crew knows them
     """
-    coded = replace(
-        packet,
-        treatments=tuple(replace(x, code=code) for x, code in zip(packet.treatments, codes, strict=True)),
-    )
-    pages = [*key_pages(packet, codes), *bag_pages(coded, "Sealed bag list")]
+    pages = [*key_pages(packet), *bag_pages(packet, "Sealed bag list")]
     return _pdf(packet, pages, "sealed key")
 
 

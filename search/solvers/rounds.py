@@ -10,7 +10,6 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
-from itertools import count
 
 from search.efficiency.one_thread import one_thread
 from search.foundation.stopping import Ended, Stop

@@ -2,9 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-
-from search.field.crew import CrewPacket
+from search.field.crew import CrewPacket, TreatmentEntry
 from search.field.sheets.flow import Piece, below, pages_of, paragraph, space
 from search.field.sheets.palette import INK, QUIET, WARNING
 from search.field.sheets.scripts import isolated
@@ -15,22 +13,16 @@ CODE, NAME, PLOTS = 0.0, 62.0, 330.0
 OPENED = ("Sealed by", "Opened by", "On, and why")
 
 
-def key_pages(packet: CrewPacket, codes: Sequence[str]) -> list[Page]:
-    """The key, in the order of the codes.
-
-    Parameters
-    ----------
-    packet : the packet with the true names
-    codes : for each treatment the code under which the crew knows it
-    """
+def key_pages(packet: CrewPacket) -> list[Page]:
+    """The key, in the order of the codes under which the crew knows the treatments."""
     size = PAPERS[packet.paper]
     room = size[0] - 2 * MARGIN
-    order = sorted(range(len(codes)), key=lambda i: codes[i])
-    plots: list[list[str]] = [[] for _ in codes]
+    order = sorted(range(len(packet.treatments)), key=lambda i: packet.treatments[i].code)
+    plots: list[list[str]] = [[] for _ in order]
     for planted in packet.plots:
         plots[planted.treatment].append(str(planted.place.plot))
-    rows = [_row(packet, i, codes[i], ", ".join(plots[i]), room) for i in order]
-    return pages_of([_seal(room), *rows], size, _head(packet, len(codes)))
+    rows = [_row(packet.treatments[i], ", ".join(plots[i]), room) for i in order]
+    return pages_of([_seal(room), *rows], size, _head(packet, len(order)))
 
 
 def _head(packet: CrewPacket, many: int) -> Piece:
@@ -64,8 +56,7 @@ def _seal(room: float) -> Piece:
     return below(space(4), told, Piece(36, lines))
 
 
-def _row(packet: CrewPacket, i: int, code: str, plots: str, room: float) -> Piece:
-    entry = packet.treatments[i]
+def _row(entry: TreatmentEntry, plots: str, room: float) -> Piece:
     name = isolated(entry.name) + (", control" if entry.control else "")
     parts = [space(4), paragraph(name, MARGIN + NAME, PLOTS - NAME - 12, size=10.5, leading=14)]
     if entry.caution:
@@ -76,7 +67,7 @@ def _row(packet: CrewPacket, i: int, code: str, plots: str, room: float) -> Piec
     high = max(text.height, where.height)
 
     def draw(sheet: Sheet, top: float) -> None:
-        sheet.text(sheet.left + CODE, top + 14.5, code, 12, bold=True)
+        sheet.text(sheet.left + CODE, top + 14.5, entry.code, 12, bold=True)
         text.draw(sheet, top)
         where.draw(sheet, top)
         sheet.line(sheet.left, top + high, sheet.right, top + high)
