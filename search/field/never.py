@@ -12,7 +12,7 @@ from search.field.settling import model_of
 from search.field.walking import Walk
 from search.foundation.cpsat import Answer
 
-SWEEPS = 30
+SWEEPS, FEWER_SWEEPS = 30, 6
 MOST_ASKED = 60
 MOST_PLOTS = 400
 """Larger fields are looked at block by block alone."""
@@ -52,7 +52,7 @@ def _unseen(
     held = [Counter(standing[list(plots)].tolist()) for plots in urn.plots]
     unseen = {(p, i) for plots, inside in zip(urn.plots, held, strict=True) for p in plots for i in inside}
     unseen -= set(enumerate(walk.standing))
-    for _ in range(SWEEPS):
+    for _ in range(SWEEPS if urn.n <= MOST_PLOTS else FEWER_SWEEPS):
         walk.sweep()
         if not walk.clashes:
             unseen -= set(enumerate(walk.standing))

@@ -18,7 +18,7 @@ from search.trial.records import Trial
 MOST_DRAWN_PLOTS = 1_500_000
 """Plots of all draws by rejection together, about two seconds of work."""
 MOST_DRAWS = 20_000
-SWEEPS = 40
+SWEEPS = 24
 LENGTHENED = 3
 """So often a walk that has not forgotten its start, or ends in a clash, goes on for as long again."""
 TRIES = 5

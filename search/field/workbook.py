@@ -24,6 +24,8 @@ MADE = datetime(2000, 1, 1)
 """Stands for the moment of writing, so that the same packet gives the same bytes."""
 PAPER = {"A4": 9, "letter": 1}
 LARGEST = 1e9
+LINE = 15.0
+"""Points that a line of text takes."""
 
 
 def packet_xlsx(packet: CrewPacket) -> bytes:
@@ -48,7 +50,13 @@ class _Styles:
     """The few formats that every sheet shares."""
 
     def __init__(self, book: Workbook) -> None:
-        ink = {"font_name": "Calibri", "font_size": 11, "font_color": hex_of(INK), "valign": "top"}
+        ink = {
+            "font_name": "Calibri",
+            "font_size": 11,
+            "font_color": hex_of(INK),
+            "valign": "top",
+            "align": "left",
+        }
         head = {**ink, "bold": True, "bg_color": hex_of(PANEL), "bottom": 1, "text_wrap": True}
         self.head = book.add_format(head)
         self.fill_in = book.add_format({**head, "font_color": "#1d5b4f"})
@@ -99,11 +107,11 @@ def _plots(sheet: Worksheet, packet: CrewPacket, styles: _Styles) -> None:
             "caution": treatment.caution,
             "mark": packet.mark,
         }
+        _make_room(sheet, row, treatment.caution, 32)
         for column, name in enumerate(names):
             if name in values:
-                _write(
-                    sheet, row, column, values[name], styles.warning if name == "caution" else styles.plain
-                )
+                style = styles.warning if name == "caution" else styles.plain
+                _write(sheet, row, column, values[name], style)
             else:
                 sheet.write_blank(row, column, None, styles.day if name == "sown_on" else styles.open)
     last = len(packet.plots)
@@ -149,6 +157,7 @@ def _bags(sheet: Worksheet, packet: CrewPacket, styles: _Styles) -> None:
         for column, value in enumerate((entry.name, bags, packet.spare_bags, entry.per_plot, entry.total), 1):
             _write(sheet, row, column, value, styles.plain)
         _write(sheet, row, 6, entry.caution, styles.warning)
+        _make_room(sheet, row, entry.caution, 48)
 
 
 def _key(sheet: Worksheet, packet: CrewPacket, styles: _Styles) -> None:
@@ -160,6 +169,7 @@ def _key(sheet: Worksheet, packet: CrewPacket, styles: _Styles) -> None:
         _write(sheet, row, 1, name, styles.plain)
         _write(sheet, row, 2, entry.plots, styles.plain)
         _write(sheet, row, 3, entry.caution, styles.warning)
+        _make_room(sheet, row, entry.caution, 64)
     row = len(packet.treatments) + 3
     for caution in (c for c in packet.cautions if not c.about):
         _write(sheet, row, 0, f"{caution.title}: {caution.text}", styles.line)
@@ -201,6 +211,13 @@ def _map(sheet: Worksheet, packet: CrewPacket, book: Workbook, styles: _Styles) 
         sheet.write_string(row, column, told, made[key])
     foot = f"Far side at the top. {packet.mark}, issued {packet.issued}. ! has a caution."
     sheet.write_string(rows + 1, 0, foot, styles.plain)
+
+
+def _make_room(sheet: Worksheet, row: int, caution: str, wide: int) -> None:
+    """Make a row high enough that no word of a caution is hidden in a column so many letters wide."""
+    lines = -(-len(caution) * 5 // (4 * wide))
+    if lines > 1:
+        sheet.set_row(row, LINE * lines)
 
 
 def _write(sheet: Worksheet, row: int, column: int, value: object, style: Format) -> None:
