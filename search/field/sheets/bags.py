@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from search.field.crew import CrewPacket, TreatmentEntry
 from search.field.sheets.flow import Piece, below, pages_of, paragraph, space
-from search.field.sheets.lettering import cut, readable
+from search.field.sheets.lettering import cut, readable, width
 from search.field.sheets.palette import INK, QUIET, WARNING
 from search.field.sheets.scripts import isolated
 from search.field.sheets.sheet import MARGIN, PAPERS, Page, Sheet
@@ -13,6 +13,9 @@ from search.field.wording import counted
 CODE, NAME = 0.0, 48.0
 BAGS, SPARE, EACH, TOTAL, TICK = 268.0, 226.0, 138.0, 52.0, 20.0
 """Where the columns of numbers end (the last: begins), in points from the right margin."""
+COLUMN = EACH - TOTAL - 8
+SIZES = (10.5, 8.5, 6.5)
+"""Type for an amount: the largest in which it fits its column."""
 
 
 def bag_pages(packet: CrewPacket, title: str = "Bag list") -> list[Page]:
@@ -63,7 +66,8 @@ def _row(entry: TreatmentEntry, packet: CrewPacket, room: float) -> Piece:
         told = f"Treatment {entry.number} of the trial; plots.csv spells its name in full."
         parts.append(paragraph(told, left, wide, size=8.5, leading=12, ink=QUIET))
     if entry.caution:
-        parts.append(paragraph(entry.caution, left, wide, size=9, leading=12, ink=WARNING, after=1))
+        words = paragraph(entry.caution, left, room - NAME - TOTAL, size=9, leading=12, ink=WARNING, after=1)
+        parts.append(words)
     text = below(*parts, space(5))
     cells = (str(entry.plots + packet.spare_bags), str(packet.spare_bags), entry.per_plot, entry.total)
 
@@ -74,7 +78,8 @@ def _row(entry: TreatmentEntry, packet: CrewPacket, room: float) -> Piece:
             sheet.caution_sign(left - 15, base, 10.5)
         text.draw(sheet, top)
         for x, number in _columns(packet, *cells):
-            sheet.text(sheet.right - x, base, cut(number, 10.5, EACH - TOTAL - 8), 10.5, align=1)
+            size = next((size for size in SIZES if width(number, size) <= COLUMN), SIZES[-1])
+            sheet.text(sheet.right - x, base, cut(number, size, COLUMN), size, align=1)
         for x in (TICK + 14, TICK - 6):
             sheet.box(sheet.right - x, top + 5, 11.5, 11.5, stroke=INK, weight=1)
         sheet.line(sheet.left, top + text.height, sheet.right, top + text.height)

@@ -10,6 +10,7 @@ from search.field.crew import CrewPacket, TreatmentEntry
 from search.field.sheets.lettering import cut, named, width, wrapped
 from search.field.sheets.palette import HAIR, INK, QUIET, WARNING, WARNING_TINT
 from search.field.sheets.qr import qr_code
+from search.field.sheets.scripts import isolated
 from search.field.sheets.sheet import MM, PAPERS, Page, Sheet
 
 ACROSS, DOWN = 3, 7
@@ -17,6 +18,8 @@ SINGLE = (100 * MM, 62 * MM)
 """One label a page, for label printers."""
 INSET = 5 * MM
 QR = 21 * MM
+LEAST_WHERE = 30.0
+"""Points below which the place of a plot is not worth beginning."""
 CAUTION_SIZES = (8.0, 7.0, 6.0, 5.2)
 
 
@@ -62,7 +65,7 @@ def _labels(packet: CrewPacket) -> Iterator[Label]:
         yield Label(
             head=str(plot),
             entry=packet.treatments[planted.treatment],
-            where=f"{packet.blocks[place.block].name}, line {place.line}, place {place.place}",
+            where=f"{isolated(packet.blocks[place.block].name)}, line {place.line}, place {place.place}",
             turn=f"{turn} of {len(stops)}" + (f", pass {walked.number}" if packet.ground else ""),
             coded=f"{packet.mark} {plot}",
         )
@@ -100,13 +103,17 @@ def _label(
     wide = sheet.text(x, base, entry.code, 13 * grown, bold=True)
     if entry.caution:
         sheet.caution_sign(x + wide + 5, base, 11 * grown)
+    told: tuple[str, ...] = ()
     if entry.name not in ("", entry.code):
-        for number, line in enumerate(wrapped(named(entry.name, entry.number), 8.5 * grown, beside, most=2)):
-            sheet.text(x, base + (10.5 + 9.5 * number) * grown, line, 8.5 * grown)
-    base = top + 60 * grown
+        told = wrapped(named(entry.name, entry.number), 8.5 * grown, beside, most=2)
+    for number, line in enumerate(told):
+        sheet.text(x, base + (10.5 + 9.5 * number) * grown, line, 8.5 * grown)
     amount = f"{entry.per_plot}   " if entry.per_plot else ""
+    below = len(told) > 1 or width(amount, 8 * grown, True) + width(label.where, 8 * grown) > beside
+    base = top + (65 if below else 58) * grown
     wide = sheet.text(x, base, cut(amount, 8 * grown, room), 8 * grown, bold=True)
-    sheet.text(x + wide, base, cut(label.where, 8 * grown, room - wide), 8 * grown, ink=QUIET)
+    if room - wide > LEAST_WHERE:
+        sheet.text(x + wide, base, cut(label.where, 8 * grown, room - wide), 8 * grown, ink=QUIET)
     foot = bottom - 1
     wide = sheet.text(x, foot, packet.mark, 8 * grown, bold=True)
     sheet.text(x + wide + 6, foot, packet.issued, 7 * grown, ink=QUIET)
