@@ -6,6 +6,8 @@ from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from datetime import datetime
+from itertools import islice
+from string import ascii_lowercase
 from typing import Any
 
 from search.field.cautions import FIRST, USUAL, office_notes
@@ -209,7 +211,7 @@ def _blocks(trial: Trial) -> tuple[BlockEntry, ...]:
 
 
 def _signs(trial: Trial) -> dict[int, str]:
-    """What stands for each block on the map: its letter there, else a short name, else a number."""
+    """What stands for each block on the map: its letter there, else a short name, a letter, a number."""
     ground = trial.ground
     if ground is None:
         return {}
@@ -218,7 +220,8 @@ def _signs(trial: Trial) -> dict[int, str]:
     names = [clean(block.name) for block in trial.blocks]
     if max(map(len, names)) <= SHORT_NAME:
         return dict(enumerate(names))
-    return {j: str(j + 1) for j in range(trial.b)}
+    signs = ascii_lowercase if trial.b <= len(ascii_lowercase) else map(str, range(1, trial.b + 1))
+    return dict(enumerate(islice(signs, trial.b)))
 
 
 def _cautions(treatments: tuple[TreatmentEntry, ...], blind: bool) -> tuple[Caution, ...]:

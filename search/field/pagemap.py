@@ -6,8 +6,9 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
 from search.field.crew import CrewPacket
+from search.field.positions import is_measured
 from search.field.sheets.palette import hex_of
-from search.field.sheets.tiling import shape_of
+from search.field.sheets.steps import steps_of
 from search.field.sheets.tints import block_tints
 
 WIDE, LONG = 52.0, 58.0
@@ -70,7 +71,7 @@ class PageMap:
 def page_map(packet: CrewPacket) -> PageMap:
     """The map of a packet."""
     ground = packet.ground
-    shape = shape_of(ground)
+    shape = steps_of(packet).shape
     scale = max(WIDE / shape.wide, LONG / shape.long)
     wide, high = shape.wide * scale, min(shape.long * scale, max(LONG, LONGEST))
     across, along = shape.gap_across * scale, shape.gap_along * scale * high / (shape.long * scale)
@@ -79,6 +80,7 @@ def page_map(packet: CrewPacket) -> PageMap:
     def corner(row: int, column: int) -> tuple[float, float]:
         return SIDE + column * (wide + across), 3 + along / 2 + row * (high + along)
 
+    even = bool(ground and ground.plot_m and not is_measured(ground))
     tints = [hex_of(tint) for tint in block_tints(packet)]
     at = {(planted.place.row, planted.place.column): planted for planted in packet.plots}
     cells = []
@@ -111,7 +113,7 @@ def page_map(packet: CrewPacket) -> PageMap:
         outline=" ".join(_outline(packet, corner, (wide, high), (across / 2, along / 2))),
         dots=tuple((x + wide / 2, y + high / 2) for x, y in (corner(*place) for place in empty)),
         arrows=tuple(_arrows(packet, corner, (wide, high))),
-        to_scale=bool(ground and ground.plot_m and shape.true and high == shape.long * scale),
+        to_scale=shape.true and even and high == shape.long * scale,
     )
 
 

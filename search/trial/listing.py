@@ -17,6 +17,7 @@ HEAD = ("line", "place", "block", "x_m", "y_m")
 REQUIRED = ("line", "place")
 MOST_BYTES = 16 << 20
 MOST_LINE, MOST_PLACE = 9_999, 999
+FARTHEST_M = 10_000_000.0
 MOST_TOLD = 20
 """Faults of one table beyond these are the same slip again."""
 
@@ -177,8 +178,10 @@ def _metres(cells: dict[str, str], name: str, number: int, table: Table) -> floa
     if name not in cells:
         return None
     text = cells[name]
-    if re.fullmatch(r"[+-]?[0-9]{1,7}(\.[0-9]{0,9})?", text):
-        return float(text)
+    if re.fullmatch(r"[+-]?[0-9]{1,7}(\.[0-9]{0,20})?([eE][+-]?[0-9]{1,2})?", text):
+        metres = float(text)
+        if abs(metres) <= FARTHEST_M:
+            return metres
     remedy = f"a decimal point: {text.replace(',', '.')}" if "," in text else ""
     table.fault(number, f"{name} {shown(text)}", "a number of metres, on every row", remedy=remedy)
     return None

@@ -63,7 +63,8 @@ def _remarks(ground: Ground | None, shape: Proportions) -> Iterator[str]:
     gaps = gaps if across or along else "no gaps"
     drawn = "To scale." if shape.true else "Lengths shortened, not to scale."
     if is_measured(ground):
-        gaps, drawn = "gaps as measured in the table of plots", "Drawn on a grid, not to scale."
+        gaps = "gaps as measured in the table of plots"
+        drawn = "To scale." if shape.true else "Drawn on a grid, not to scale."
     yield f"Plots {wide:g} m wide, {long:g} m long; {gaps}. {drawn}"
 
 

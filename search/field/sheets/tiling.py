@@ -3,12 +3,9 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from itertools import product
 from math import ceil, floor
-
-from search.field.positions import is_measured
-from search.trial.records import Ground
 
 LONGEST = 9.0
 """A plot is drawn at most so many times as long as wide; a longer one is shortened, and that is said."""
@@ -70,14 +67,6 @@ def proportions(plot_m: tuple[float, float] | None, gap_m: tuple[float, float]) 
     across, along = min(gap_m[0], drawn_wide, most), min(gap_m[1], drawn_long, most)
     true = (drawn_wide, drawn_long, across, along) == (wide, long, *gap_m)
     return Proportions(drawn_wide, drawn_long, across, along, true)
-
-
-def shape_of(ground: Ground | None) -> Proportions:
-    """How a plot of a field is drawn; measured plots lie on a grid all the same, so not to scale."""
-    if ground is None:
-        return proportions(None, (0, 0))
-    shape = proportions(ground.plot_m, ground.gap_m)
-    return replace(shape, true=False) if is_measured(ground) else shape
 
 
 def tiled(
