@@ -53,8 +53,9 @@ def command(file: Path, workers: int | None, out: Path | None, store: Path | Non
     if as_json:
         rows = sweep_frame(result).astype(object)
         content = rows.where(rows.notna(), None).to_dict("records")
-        status = "interrupted" if result.interrupted else "swept"
-        emit("sweep", status, {"sweep": sweep.name, "rows": content, "files": [str(table)]})
+        document = {"sweep": sweep.name, "rows": content, "files": [str(table)]}
+        status = ("interrupted", INTERRUPTED) if result.interrupted else ("swept", 0)
+        emit("sweep", status[0], document, status[1])
     else:
         show(page(), result)
         page().print(f"\n  {table}", soft_wrap=True)

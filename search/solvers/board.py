@@ -89,11 +89,14 @@ def _beds(tables: Tables) -> Beds:
     loose = np.flatnonzero(tables.least < tables.most)
     blocks[:, module.REACH] = blocks[:, module.POOL_PLOTS] + len(loose) * (tables.group < 0)
     home = np.repeat(order, tables.sizes[order])
-    return module.Beds(home=_number(home), blocks=blocks, share=1.0 / tables.sizes, loose=_number(loose))
+    beds: Beds = module.Beds(
+        home=_number(home), blocks=blocks, share=1.0 / tables.sizes, loose=_number(loose)
+    )
+    return beds
 
 
 def _admitted(tables: Tables) -> Admitted:
-    return kernel().Admitted(
+    admitted: Admitted = kernel().Admitted(
         plots=_count(np.stack([tables.least, tables.most])),
         copies=_count(np.stack([tables.low.T, tables.high.T])),
         meetings=_count(np.stack([tables.meet_least, tables.meet_most])),
@@ -101,6 +104,7 @@ def _admitted(tables: Tables) -> Admitted:
         any_apart=bool(tables.apart.any()),
         any_meetings=tables.limits_meetings,
     )
+    return admitted
 
 
 def _planting(tables: Tables, beds: Beds, contents: Contents) -> Planting:
@@ -113,24 +117,28 @@ def _planting(tables: Tables, beds: Beds, contents: Contents) -> Planting:
     gate = tables.apart.astype(np.int64) @ counts
     gate += module.FULL * (counts >= tables.high) + module.PINNED * (counts <= tables.low)
     present = (counts > 0).astype(np.int64)
-    return module.Planting(
+    meetings = present @ present.T
+    np.fill_diagonal(meetings, 0)
+    planting: Planting = module.Planting(
         planted=planted,
         plots=_count(counts.sum(axis=1)),
         copies=_count(counts.T),
-        meetings=_count(present @ present.T),
+        meetings=_count(meetings),
         gate=_count(gate.T),
         room=np.zeros(_room(tables), dtype=np.uint32),
     )
+    return planting
 
 
 def _distances(tables: Tables, *, overall: bool) -> Distances:
     points = tables.t + tables.b
-    return kernel().Distances(
+    distances: Distances = kernel().Distances(
         variance=np.zeros((points, points)),
         worth=np.zeros((1, 1) if overall else (points, points)),
         work=np.zeros((8, _room(tables))),
         overall=overall,
     )
+    return distances
 
 
 def _room(tables: Tables) -> int:

@@ -42,6 +42,9 @@ from numba import njit, types
 LEAST_RATIO = 1e-3
 """A move that shrinks pdet(C) further than this all but disconnects the plan: it is refused."""
 
+NOTHING = 1e-12
+"""A rise or a squared distance below this is nothing but rounding."""
+
 DRAWS = -np.log((np.arange(1024) + 0.5) / 1024)
 """Quantiles of the exponential law: how far uphill a move may go, over the temperature."""
 
@@ -372,6 +375,12 @@ def _score(share, distances, t, u, v, a, c):
 
 
 @_hot
+def _renames(share, variance, t, u, v, a, c):
+    """Whether an exchange only swaps the contents of two blocks: then `w = 0`, else `w'Gw` is not small."""
+    return _products(share, variance, t, u, v, a, c)[2] < NOTHING
+
+
+@_hot
 def _true_rise(overall, t, rise, ratio):
     return -np.log(ratio) / (t - 1) if overall else rise
 
@@ -668,9 +677,11 @@ def anneal(board, random, temperature, cooling, moves, tries, most_accepted, ris
         scored += 1
         allowed = temperature * DRAWS[place]
         temperature *= cooling
-        if rise > allowed or ratio < LEAST_RATIO:
+        if not (rise <= allowed and ratio >= LEAST_RATIO):
             continue
         if _true_rise(distances.overall, t, rise, ratio) > allowed:
+            continue
+        if abs(rise) < NOTHING and _renames(beds.share, distances.variance, t, u, v, a, c):
             continue
         if _meets(beds, admitted, planting, u, v, a, c):
             _move_points(beds, planted, distances, t, u, v, a, c)

@@ -22,13 +22,28 @@ from search.solvers.streams import stream
 from search.solvers.walk import Report
 from search.trial.records import Contents
 
+__all__ = [
+    "Best",
+    "Outcome",
+    "Problem",
+    "Run",
+    "best_of",
+    "end",
+    "first_plan",
+    "job",
+    "left",
+    "runs_of",
+    "search",
+    "temperatures",
+]
+
 RUNS = 6
 """Runs of a round: one, two or three workers share them evenly."""
-REHEATED = 2
+REHEATED = 4
 """Of these, from the second round on, runs that start from the best plan so far."""
 SHORTEST, PER_PAIR = 20_000, 10
 """Moves of a run in the first round: at least so many, and so many for every ordered pair of plots."""
-GROWTH, GROWING = 1.25, 20
+GROWTH, GROWING = 1.2, 25
 """From round to round runs grow by this factor, for so many rounds."""
 SPARE = 0.01
 """A limit in moves is met when this part of it is left."""

@@ -9,6 +9,7 @@ from search.foundation.errors import did_you_mean, shown
 from search.trial.catalogue import MOST_PLOTS
 from search.trial.kinds import Report, Section
 from search.trial.listing import Table, open_table, spots_of
+from search.trial.names import plain
 from search.trial.records import Block, Ground, Numbering, Spot
 
 EMPTY = "."
@@ -29,15 +30,16 @@ def read_ground(
     if section is None:
         return None, None
     given = [form for form in FORMS if form in section.where]
-    if len(given) != 1:
+    if len(given) > 1:
         report.add(
-            section.where[given[1]] if given else None,
+            section.where[given[1]],
             "ground",
-            " and ".join(given) or "no map",
-            "the map in one form: rows drawn with letters, or file or places with a table of plots",
+            " and ".join(given),
+            "the map in one form",
+            "two accounts of one field: one of them is wrong",
+            "rows drawn with letters, or file or places with a table of plots",
         )
-        return None, None
-    if given[0] not in section:
+    if len(given) != 1 or given[0] not in section:
         return None, None
     settings = _settings(section, report)
     if given[0] == "rows":
@@ -54,6 +56,7 @@ def _settings(section: Section, report: Report) -> dict[str, Any]:
             "ground.corner",
             f"the latitude {corner[0]:g}",
             "[latitude, longitude], the latitude from -90 to 90",
+            remedy="latitude first",
         )
     return {
         "plot_m": (plot[0], plot[1]) if plot is not None and len(plot) == 2 else None,
@@ -156,6 +159,7 @@ def _sound(rows: tuple[str, ...], section: Section, report: Report) -> bool:
                 key,
                 f"{shown(strange)} in line {number} of the map",
                 "letters a-z and A-Z for blocks, a dot for a place without a plot",
+                remedy="a dot, or a letter of its own for the block",
             )
         elif len(row) != width:
             report.add(
@@ -168,11 +172,13 @@ def _sound(rows: tuple[str, ...], section: Section, report: Report) -> bool:
             )
     plots = sum(c != EMPTY for row in rows for c in row)
     if not 0 < plots <= MOST_PLOTS:
-        report.add(node, key, f"{plots:,} plots", f"1 to {MOST_PLOTS:,} plots")
+        remedy = "a letter for every plot"
+        report.add(node, key, f"{plots:,} plots", f"1 to {MOST_PLOTS:,} plots", remedy=remedy)
     return len(report.faults) == before
 
 
 def _names(letters: list[str], section: Section, report: Report) -> dict[str, str]:
+    node = next(section.where[form] for form in FORMS if form in section.where)
     given: Section = section.get("names", Section())
     known = set(letters)
     for letter in given:
@@ -182,19 +188,18 @@ def _names(letters: list[str], section: Section, report: Report) -> dict[str, st
                 "ground.names",
                 shown(letter),
                 "a letter that is on the map",
-                remedy=did_you_mean(letter, letters),
+                remedy=did_you_mean(letter, letters) or f"the letters of the map: {', '.join(letters[:60])}",
             )
     names = {letter: given.get(letter, letter) for letter in letters}
     seen: dict[str, str] = {}
     for letter, name in names.items():
-        plain = "".join(name.split()).casefold()
-        if plain in seen:
+        if plain(name) in seen:
             report.add(
-                given.where.get(letter),
+                given.key_at.get(letter, node),
                 "ground.names",
-                f"{shown(name)} for {seen[plain]} and {letter}",
+                f"{shown(name)} for {seen[plain(name)]} and {letter}",
                 "a name of its own for every block, unlike in more than case and blanks",
                 remedy="use only small letters, or name the blocks",
             )
-        seen.setdefault(plain, letter)
+        seen.setdefault(plain(name), letter)
     return names

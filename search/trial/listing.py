@@ -10,6 +10,7 @@ from pathlib import Path
 
 from search.foundation.errors import Fault, did_you_mean, shown
 from search.trial.kinds import MOST_NAME, Report
+from search.trial.names import plain
 from search.trial.nodes import Node
 from search.trial.records import Spot
 
@@ -188,14 +189,14 @@ def _metres(cells: dict[str, str], name: str, number: int, table: Table) -> floa
 
 
 def _block(name: str, spelled: dict[str, str], number: int, table: Table) -> str | None:
-    plain = "".join(name.split()).casefold()
-    if not plain or len(name) > MOST_NAME or not name.isprintable():
+    key = plain(name)
+    if not key or len(name) > MOST_NAME or not name.isprintable():
         table.fault(number, f"the block {shown(name)}", f"a name of at most {MOST_NAME} characters")
         return None
-    if spelled.setdefault(plain, name) != name:
+    if spelled.setdefault(key, name) != name:
         table.fault(
             number,
-            f"{shown(name)} beside {shown(spelled[plain])}",
+            f"{shown(name)} beside {shown(spelled[key])}",
             "block names that differ in more than case and blanks",
         )
         return None

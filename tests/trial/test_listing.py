@@ -102,7 +102,7 @@ def test_one_form_of_map_alone() -> None:
     """Rows and a table together are two accounts of one field; none at all is no map."""
     with pytest.raises(FaultyTrial, match="rows and places"):
         with_places(TABLE, rows="aabb")
-    with pytest.raises(FaultyTrial, match="no map"):
+    with pytest.raises(FaultyTrial, match="neither rows"):
         trial_from_document({"trial": "x", "treatments": 2, "ground": {"plot_m": [1, 2]}})
 
 
