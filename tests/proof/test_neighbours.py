@@ -9,6 +9,7 @@ import pytest
 from search.field.beside import clash_in_words
 from search.field.numbering import places
 from search.proof.neighbours import kept_apart
+from search.proof.plots import planted
 from search.proof.reading import Plot
 from search.proof.records import Refuted
 from search.trial.reading import trial_from_document
@@ -70,35 +71,38 @@ def test_finder_and_checker_agree_with_a_count_by_hand(
             kept_apart(trial, plots)
 
 
-def test_measured_plots_are_as_far_apart_as_measured() -> None:
-    """A tramline of 3 m between two plots of one line counts as 3 m."""
+@pytest.mark.parametrize(("distance", "apart"), [(3.0, True), (3.1, False)])
+def test_measured_plots_are_as_far_apart_as_measured(distance: float, apart: bool) -> None:
+    """B stands on both sides of a tramline whose edges are 3 m apart (by hand: 6 − 1.5 − 1.5)."""
     table = "line,place,block,x_m,y_m\n1,1,a,0,0\n1,2,a,1.5,0\n1,3,b,6,0\n1,4,b,7.5,0"
-    for distance, apart in ((3.0, True), (3.1, False)):
-        trial = trial_from_document(
-            {
-                "trial": "row",
-                "treatments": ["A", "B"],
-                "plots_each": 2,
-                "ground": {"places": table, "plot_m": [1.5, 9]},
-                "rules": {"not_beside": {"pairs": [["A", "A"]][:0] or [["A", "B"]], "distance_m": distance}},
-            }
-        )
-        standing = "ABBA"
-        plots = plots_of(trial, standing)
-        assert clash_in_words(trial, places(trial), [0, 1, 1, 0])
-        with pytest.raises(Refuted):
+    trial = trial_from_document(
+        {
+            "trial": "row",
+            "treatments": ["A", "B"],
+            "plots_each": 2,
+            "ground": {"places": table, "plot_m": [1.5, 9]},
+            "rules": {"not_beside": {"itself": True, "distance_m": distance}},
+        }
+    )
+    plots = plots_of(trial, "ABBA")
+    assert (clash_in_words(trial, places(trial), [0, 1, 1, 0]) == "") == apart
+    if apart:
+        assert kept_apart(trial, plots) is not None
+    else:
+        with pytest.raises(Refuted, match="plot 102 stands beside B on plot 103"):
             kept_apart(trial, plots)
-        only = tuple(plot for plot in plots if plot.number in (102, 103))
-        same = row_like(trial, distance)
-        clashes = clash_in_words(same, places(same), [0, 1, 1, 0]) != ""
-        assert clashes != apart
-        assert len(only) == 2
 
 
-def row_like(trial: Trial, distance: float) -> Trial:
-    """The same plots under a rule that keeps each treatment from itself."""
-    from dataclasses import replace
-
-    from search.trial.records import NotBeside
-
-    return replace(trial, rules=replace(trial.rules, not_beside=NotBeside(itself=True, distance_m=distance)))
+def test_a_plan_whose_bays_are_not_cut_is_refuted() -> None:
+    """Plots of a bare map belong to no block, so no plan can say that they do."""
+    trial = trial_from_document(
+        {
+            "trial": "bare",
+            "treatments": ["A", "B"],
+            "blocks": {"wanted": {"count": 2}},
+            "ground": {"rows": "xxxx"},
+        }
+    )
+    found = tuple(Plot(100 + place, (place - 1) // 2, 1, place, place % 2) for place in range(1, 5))
+    with pytest.raises(Refuted, match="where the field has no plot"):
+        planted(trial, ((0, 1), (0, 1)), found)

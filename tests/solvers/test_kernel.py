@@ -26,16 +26,7 @@ from search.trial.limits import limits
 from search.trial.records import Trial
 from tests.drawn import small_trials
 from tests.solvers import plainly
-from tests.solvers.problems import (
-    FOREVER,
-    in_turn,
-    moves_from,
-    pairs,
-    plain,
-    plain_tables,
-    problem_of,
-    within,
-)
+from tests.solvers.problems import FOREVER, in_turn, moves_from, pairs, plain, plain_tables, problem_of, within
 
 
 def aim_of(kind: str, t: int) -> Floats | None:
