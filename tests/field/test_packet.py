@@ -13,10 +13,16 @@ from tests.field.made import document_of, trial_with
 
 
 def test_the_folder_holds_the_packet_and_nothing_else(tmp_path: Path) -> None:
-    """Two files in the folder, which is made; nothing beside it, whatever the trial is called."""
+    """Five files in the folder, which is made; nothing beside it, whatever the trial is called."""
     trial = trial_with(trial="../../escape")
     files = write_packet(trial, document_of(trial), tmp_path / "out" / "packet")
-    assert [path.name for path in files] == ["packet.pdf", "plots.csv"]
+    assert [path.name for path in files] == [
+        "packet.pdf",
+        "labels.pdf",
+        "packet.xlsx",
+        "plots.csv",
+        "plan.html",
+    ]
     assert {path for path in tmp_path.rglob("*") if path.is_file()} == set(files)
     assert files[0].read_bytes().startswith(b"%PDF-")
 

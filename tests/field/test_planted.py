@@ -51,3 +51,22 @@ def test_a_plan_that_breaks_a_rule_is_never_printed(document: Document) -> None:
     }
     with pytest.raises(BadInput, match="breaks a rule"):
         planted_plots(trial_with(), {**document, "plots": swapped, "blocks": blocks})
+
+
+def test_neighbours_that_clash_are_never_printed() -> None:
+    """Two plots of one block exchanged so that a treatment stands beside itself are found."""
+    trial = trial_with(rules={"not_beside": {"itself": True}})
+    document = document_of(trial)
+    planted_plots(trial, document)
+    for one in document["plots"]:
+        for other in document["plots"]:
+            if one["block"] != other["block"] or one["treatment"] == other["treatment"]:
+                continue
+            to = {one["plot"]: other["treatment"], other["plot"]: one["treatment"]}
+            plots = [{**x, "treatment": to.get(x["plot"], x["treatment"])} for x in document["plots"]]
+            try:
+                planted_plots(trial, {**document, "plots": plots})
+            except BadInput as error:
+                assert "stands beside" in str(error)
+                return
+    pytest.fail("no exchange made a clash")
