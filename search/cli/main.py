@@ -16,7 +16,7 @@ import click
 from search.cli.output import failure, report
 from search.foundation.errors import BadInput, EvenfieldError
 
-COMMANDS = ("inspect", "plan", "verify", "packet", "sweep", "kept")
+COMMANDS = ("inspect", "plan", "verify", "exists", "packet", "sweep", "kept")
 INTERNAL = 70
 INTERRUPTED = 130
 

@@ -1,0 +1,227 @@
+"""Blocks with a given stabiliser, each known by how often its orbit covers each orbit of pairs.
+
+Counts are packed into one whole number, a field of bits for each orbit of pairs, so that adding two
+vectors is one addition and "nothing above λ" is one addition and one mask.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+from math import gcd
+
+import numpy as np
+from numpy.typing import NDArray
+
+Ints = NDArray[np.int64]
+
+
+@dataclass(frozen=True, slots=True)
+class Packing:
+    """How counts are packed: `rows` fields, each wide enough to hold 3λ without touching the next."""
+
+    rows: int
+    most: int
+    width: int = field(init=False)
+    guards: int = field(init=False)
+    slack: int = field(init=False)
+    target: int = field(init=False)
+
+    def __post_init__(self) -> None:
+        width = (3 * self.most).bit_length() + 1
+        ones = sum(1 << width * i for i in range(self.rows))
+        object.__setattr__(self, "width", width)
+        object.__setattr__(self, "guards", ones << width - 1)
+        object.__setattr__(self, "slack", ones * ((1 << width - 1) - 1 - self.most))
+        object.__setattr__(self, "target", ones * self.most)
+
+    def over(self, packed: int) -> int:
+        """Not 0 where some count is above the most that is allowed (counts up to 3λ are told apart)."""
+        return (packed + self.slack) & self.guards
+
+    def count(self, packed: int, row: int) -> int:
+        """One count."""
+        return packed >> self.width * row & (1 << self.width) - 1
+
+    def fits(self, packed: int, room: int) -> bool:
+        """Whether every count is within the room that is left."""
+        return ((room | self.guards) - packed) & self.guards == self.guards
+
+
+@dataclass(frozen=True, slots=True)
+class Column:
+    """The orbit of one block.
+
+    Parameters
+    ----------
+    counts : how often the orbit covers each orbit of pairs, packed
+    blocks : how many blocks are counted: the order of the group over that of the stabiliser asked for
+    block : one of them
+    """
+
+    counts: int
+    blocks: int
+    block: tuple[int, ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Action:
+    """A permutation group on points, with its orbits on pairs.
+
+    Parameters
+    ----------
+    elements : (order, v) all permutations
+    labels : (v, v) number of the orbit of each pair; -1 on the diagonal
+    lengths : pairs in each orbit
+    """
+
+    elements: Ints
+    labels: Ints
+    lengths: Ints
+
+    @classmethod
+    def of(cls, elements: Ints) -> Action:
+        """The action of a group given by all its elements."""
+        v = elements.shape[1]
+        labels = np.full((v, v), -1, dtype=np.int64)
+        lengths: list[int] = []
+        for x in range(v):
+            for y in range(x + 1, v):
+                if labels[x, y] < 0:
+                    labels[elements[:, x], elements[:, y]] = len(lengths)
+                    labels[elements[:, y], elements[:, x]] = len(lengths)
+                    lengths.append(int(np.count_nonzero(labels == len(lengths))) // 2)
+        return cls(elements, labels, np.array(lengths, dtype=np.int64))
+
+    @property
+    def order(self) -> int:
+        """Number of elements."""
+        return len(self.elements)
+
+    def developed(self, block: tuple[int, ...]) -> tuple[tuple[int, ...], ...]:
+        """The orbit of a block."""
+        images = np.sort(self.elements[:, list(block)], axis=1)
+        return tuple(map(tuple, np.unique(images, axis=0).tolist()))
+
+
+@dataclass(frozen=True, slots=True)
+class Stabiliser:
+    """A cyclic subgroup: its elements, its orbits on points, and which of those its normaliser joins."""
+
+    elements: Ints
+    orbits: tuple[tuple[int, ...], ...]
+    classes: tuple[int, ...]
+
+
+def stabilisers(action: Action) -> Iterator[Stabiliser]:
+    """One cyclic subgroup of each conjugacy class, largest first."""
+    elements = action.elements
+    order, v = elements.shape
+    marks = np.random.default_rng(0).integers(1 << 40, size=v)  # an element is known by its sum of marks
+    by_mark = np.argsort(elements @ marks)
+    sorted_marks = (elements @ marks)[by_mark]
+    inverse = np.argsort(elements, axis=1)
+    left = np.ones(order, dtype=np.bool_)
+    cyclic: list[Ints] = []
+    for g in range(order):
+        if not left[g]:
+            continue
+        powers = [np.arange(v)]
+        while not np.array_equal(power := elements[g][powers[-1]], powers[0]):
+            powers.append(power)
+        cyclic.append(np.stack(powers))
+        for i, power in enumerate(powers):
+            if gcd(i, len(powers)) == 1:  # the other generators, and all that are conjugate
+                conjugates = np.take_along_axis(elements, power[inverse], axis=1)
+                left[by_mark[np.searchsorted(sorted_marks, conjugates @ marks)]] = False
+    for group in sorted(cyclic, key=len, reverse=True):
+        yield _with_orbits(group, elements)
+
+
+def _with_orbits(group: Ints, elements: Ints) -> Stabiliser:
+    least = group.min(axis=0)
+    generator = group[1] if len(group) > 1 else group[0]
+    after = elements[:, generator]
+    normal = np.zeros(len(elements), dtype=np.bool_)
+    for power in group:
+        normal |= (power[elements] == after).all(axis=1)
+    joined = least[elements[normal]].min(axis=0)  # the least point that the normaliser takes it near to
+    leaders = sorted(set(least.tolist()), key=lambda x: (int(joined[x]), x))
+    orbits = tuple(tuple(np.flatnonzero(least == x).tolist()) for x in leaders)
+    return Stabiliser(group, orbits, tuple(int(joined[x]) for x in leaders))
+
+
+@dataclass(slots=True)
+class Budget:
+    """Work that may still be done, counted in steps so that an outcome does not depend on the clock."""
+
+    steps: int
+
+    def spend(self, steps: int = 1) -> bool:
+        """Take steps off; False when none are left."""
+        self.steps -= steps
+        return self.steps > 0
+
+
+def columns(
+    action: Action, stabiliser: Stabiliser, k: int, packing: Packing, budget: Budget
+) -> Iterator[Column]:
+    """Blocks of k points that are unions of orbits of a stabiliser and cover no pair more than λ times.
+
+    The orbits of the stabiliser are taken in an order in which those that its normaliser joins stand
+    together; the first one chosen may then be the first of its class, since the normaliser carries any
+    other there.
+    """
+    many = action.order // len(stabiliser.elements)
+    orbits = stabiliser.orbits
+    inner, cross = _weights(action, stabiliser, many, packing)
+    sizes = [len(orbit) for orbit in orbits]
+    rest = [sum(sizes[i:]) for i in range(len(sizes) + 1)]
+
+    def extend(
+        chosen: tuple[int, ...], size: int, counts: int, candidates: list[tuple[int, int]]
+    ) -> Iterator[Column]:
+        for position, (orbit, extra) in enumerate(candidates):
+            if size + rest[orbit] < k or not budget.spend():
+                return
+            if not chosen and orbit and stabiliser.classes[orbit] == stabiliser.classes[orbit - 1]:
+                continue
+            now, total = size + sizes[orbit], counts + extra
+            taken = (*chosen, orbit)
+            if now == k:
+                block = tuple(sorted(x for i in taken for x in orbits[i]))
+                yield Column(total, many, block)
+                continue
+            row = cross[orbit]
+            further = [
+                (other, sum_)
+                for other, before in candidates[position + 1 :]
+                if now + sizes[other] <= k
+                and not packing.over(sum_ := before + row[other])
+                and not packing.over(total + sum_)
+            ]
+            budget.spend(len(candidates) // 8)
+            yield from extend(taken, now, total, further)
+
+    first = [(i, own) for i, own in enumerate(inner) if sizes[i] <= k and own >= 0]
+    yield from extend((), 0, 0, first)
+
+
+def _weights(
+    action: Action, stabiliser: Stabiliser, many: int, packing: Packing
+) -> tuple[list[int], list[list[int]]]:
+    """Packed counts within each orbit (-1: too many) and between each two (capped: they will be refused)."""
+    rows, p = len(action.lengths), len(stabiliser.orbits)
+    owner = np.zeros(len(action.labels), dtype=np.int64)
+    for i, orbit in enumerate(stabiliser.orbits):
+        owner[list(orbit)] = i
+    x, y = np.triu_indices(len(owner), 1)
+    one, other = np.minimum(owner[x], owner[y]), np.maximum(owner[x], owner[y])
+    cells, counts = np.unique((one * p + other) * rows + action.labels[x, y], return_counts=True)
+    shares = np.minimum(counts * many // action.lengths[cells % rows], packing.most + 1)
+    table = [[0] * p for _ in range(p)]
+    for cell, share in zip(cells.tolist(), shares.tolist(), strict=True):
+        pair, row = divmod(cell, rows)
+        table[pair // p][pair % p] += share << packing.width * row
+    inner = [-1 if packing.over(table[i][i]) else table[i][i] for i in range(p)]
+    return inner, table
