@@ -31,7 +31,7 @@ DIRECT: tuple[Construction, ...] = (
     doubling,
     nested,
 )
-SEARCHES: tuple[Construction, ...] = (orbits, embedding)
+SEARCHES: tuple[Construction, ...] = (embedding, orbits)
 
 
 def build(sizes: Balanced) -> Built | None:

@@ -43,9 +43,9 @@ class Packing:
         """One count."""
         return packed >> self.width * row & (1 << self.width) - 1
 
-    def fits(self, packed: int, room: int) -> bool:
-        """Whether every count is within the room that is left."""
-        return ((room | self.guards) - packed) & self.guards == self.guards
+    def masks(self) -> list[int]:
+        """For each row the bits of its count."""
+        return [((1 << self.width) - 1) << self.width * row for row in range(self.rows)]
 
 
 @dataclass(frozen=True, slots=True)
@@ -151,16 +151,29 @@ def _with_orbits(group: Ints, elements: Ints) -> Stabiliser:
     return Stabiliser(group, orbits, tuple(int(joined[x]) for x in leaders))
 
 
+GENEROUS = 4
+
+
 @dataclass(slots=True)
 class Budget:
     """Work that may still be done, counted in steps so that an outcome does not depend on the clock."""
 
     steps: int
+    used: int = 0
+
+    @property
+    def spent(self) -> bool:
+        """Whether the work was cut short."""
+        return self.used >= self.steps
 
     def spend(self, steps: int = 1) -> bool:
         """Take steps off; False when none are left."""
-        self.steps -= steps
-        return self.steps > 0
+        self.used += steps
+        return self.used < self.steps
+
+    def share(self, among: int, *, at_least: int) -> Budget:
+        """A share of what is left, a generous one as few use theirs up."""
+        return Budget(max(GENEROUS * (self.steps - self.used) // among, at_least))
 
 
 def columns(
@@ -170,7 +183,8 @@ def columns(
 
     The orbits of the stabiliser are taken in an order in which those that its normaliser joins stand
     together; the first one chosen may then be the first of its class, since the normaliser carries any
-    other there.
+    other there. Every branch has its share of the work, so that what is found before the work runs out
+    is spread over all of them.
     """
     many = action.order // len(stabiliser.elements)
     orbits = stabiliser.orbits
@@ -179,18 +193,17 @@ def columns(
     rest = [sum(sizes[i:]) for i in range(len(sizes) + 1)]
 
     def extend(
-        chosen: tuple[int, ...], size: int, counts: int, candidates: list[tuple[int, int]]
+        chosen: tuple[int, ...], size: int, counts: int, candidates: list[tuple[int, int]], budget: Budget
     ) -> Iterator[Column]:
-        for position, (orbit, extra) in enumerate(candidates):
+        heads = first if not chosen else range(len(candidates))
+        for left, position in zip(range(len(heads), 0, -1), heads, strict=True):
+            orbit, extra = candidates[position]
             if size + rest[orbit] < k or not budget.spend():
                 return
-            if not chosen and orbit and stabiliser.classes[orbit] == stabiliser.classes[orbit - 1]:
-                continue
             now, total = size + sizes[orbit], counts + extra
             taken = (*chosen, orbit)
             if now == k:
-                block = tuple(sorted(x for i in taken for x in orbits[i]))
-                yield Column(total, many, block)
+                yield Column(total, many, tuple(sorted(x for i in taken for x in orbits[i])))
                 continue
             row = cross[orbit]
             further = [
@@ -201,10 +214,14 @@ def columns(
                 and not packing.over(total + sum_)
             ]
             budget.spend(len(candidates) // 8)
-            yield from extend(taken, now, total, further)
+            share = budget.share(left, at_least=20 * k)
+            yield from extend(taken, now, total, further, share)
+            budget.spend(share.used)
 
-    first = [(i, own) for i, own in enumerate(inner) if sizes[i] <= k and own >= 0]
-    yield from extend((), 0, 0, first)
+    usable = [(i, own) for i, own in enumerate(inner) if sizes[i] <= k and own >= 0]
+    classes = [stabiliser.classes[i] for i, _ in usable]
+    first = [p for p, joined in enumerate(classes) if p == 0 or joined != classes[p - 1]]
+    yield from extend((), 0, 0, usable, budget)
 
 
 def _weights(

@@ -12,29 +12,37 @@ from search.foundation.cpsat import Answer, solve
 
 
 def cover(columns: Sequence[Column], packing: Packing, budget: Budget) -> tuple[Column, ...] | None:
-    """Depth-first: the first row that lacks something, every column that helps; the last one is looked up."""
-    last = {column.counts: column for column in columns}
-    rows = [[c for c in columns if packing.count(c.counts, i)] for i in range(packing.rows)]
-    order = sorted(range(packing.rows), key=lambda i: len(rows[i]))
+    """Depth-first: every column that helps the first row that lacks something; the last one is looked up.
 
-    def extend(room: int, row: int, start: int, chosen: tuple[Column, ...]) -> tuple[Column, ...] | None:
-        if room in last:
-            return (*chosen, last[room])
-        while row < len(order) and not packing.count(room, order[row]):
-            row, start = row + 1, 0
-        if row == len(order):
-            return None
-        helpers = rows[order[row]]
-        for i in range(start, len(helpers)):
-            if not budget.spend():
+    None with work left in the budget means that these columns hold no solution.
+    """
+    by_counts = {column.counts: column for column in columns}
+    guards = packing.guards
+    masks = packing.masks()
+    helping = [sum(1 for counts in by_counts if counts & mask) for mask in masks]
+    order = [masks[row] for row in sorted(range(packing.rows), key=helping.__getitem__)]
+
+    def extend(room: int, fitting: list[int], chosen: tuple[int, ...]) -> tuple[int, ...] | None:
+        if room in by_counts:
+            return (*chosen, room)
+        mask = next((mask for mask in order if room & mask), 0)
+        helpers = [counts for counts in fitting if counts & mask]
+        others = [counts for counts in fitting if not counts & mask]
+        for i, counts in enumerate(helpers):
+            if not budget.spend(1 + (len(fitting) - i) // 8):
                 return None
-            if packing.fits(helpers[i].counts, room):
-                found = extend(room - helpers[i].counts, row, i, (*chosen, helpers[i]))
-                if found is not None:
-                    return found
+            less = room - counts
+            guarded = less | guards
+            # What came before among the helpers has been tried with everything, so it can be left out.
+            left = [c for c in helpers[i:] if (guarded - c) & guards == guards]
+            left += [c for c in others if (guarded - c) & guards == guards]
+            found = extend(less, left, (*chosen, counts))
+            if found is not None:
+                return found
         return None
 
-    return extend(packing.target, 0, 0, ()) if all(rows) else None
+    found = extend(packing.target, list(by_counts), ()) if all(helping) else None
+    return None if found is None else tuple(by_counts[counts] for counts in found)
 
 
 def cover_by_solver(

@@ -21,11 +21,11 @@ from search.designs.constructions.orbits import LIGHT, base_blocks, described, d
 from search.designs.records import Blocks
 from search.foundation.cpsat import Answer, solve
 
-EFFORT = 20.0
+EFFORT = 5.0
 """Deterministic work of CP-SAT for one rest."""
-RESTS = 6
+RESTS = 4
 """Rests that are tried."""
-GROUPS = 60
+GROUPS = 40
 """Groups under which rests are looked for."""
 MOST_BLOCKS = 40
 """Above this the model is too large to be worth a try."""

@@ -26,29 +26,36 @@ class Effort:
 
     Parameters
     ----------
-    steps : of the search for blocks, for each stabiliser, and of the cover
-    solver : deterministic work of CP-SAT where the cover did not end
+    steps : of the search for blocks, for each stabiliser
     columns : orbits of blocks kept
+    cover : steps of the cover
+    solver : deterministic work of CP-SAT where the cover was cut short
     """
 
     steps: int
-    solver: float
     columns: int
+    cover: int
+    solver: float
 
 
-LIGHT = Effort(3_000, 0.03, 1_500)
-MEDIUM = Effort(40_000, 0.5, 8_000)
-HEAVY = Effort(1_000_000, 15.0, 40_000)
+LIGHT = Effort(3_000, 2_000, 30_000, 0.03)
+MEDIUM = Effort(40_000, 10_000, 1_000_000, 0.5)
+HEAVY = Effort(300_000, 60_000, 30_000_000, 15.0)
+SEARCHED_TREATMENTS = 100
+SEARCHED_REPLICATION = 20
+"""Up to here every set was searched once for longer than a user would wait; what was found is stored."""
 MOST_ROWS = 400
 """Orbits of pairs beyond which a group is of no help."""
 SYMMETRIC = 8
 """Times as many steps for symmetric designs, where few blocks pass the test that any two meet in λ points."""
-TRIED = 150
+TRIED = 90
 """Groups tried with light effort; a third of them once more with medium effort."""
 
 
 def orbits(sizes: Balanced, build: Build) -> Built | None:
     """The first design that a bounded search under groups of many kinds comes upon."""
+    if sizes.t <= SEARCHED_TREATMENTS and sizes.r <= SEARCHED_REPLICATION:
+        return None
     candidates = promising(sizes)
     for effort, many in ((LIGHT, TRIED), (MEDIUM, TRIED // 3)):
         for group in candidates[:many]:
@@ -66,7 +73,7 @@ def described(group: Group, base: Sequence[tuple[int, ...]]) -> str:
 
 def promising(sizes: Balanced, *, most_fixed: int = 2) -> list[Group]:
     """Groups worth trying, the largest interleaved with those of about half as many elements as blocks."""
-    largest = groups(sizes.t, least=max(3, sizes.b // 12), most=6 * sizes.b, most_fixed=most_fixed)
+    largest = groups(sizes.t, least=max(3, sizes.b // 12), most=16 * sizes.b, most_fixed=most_fixed)
     middling = sorted(largest, key=lambda group: abs(2 * group.order - sizes.b))
     both = (group for pair in zip(largest, middling, strict=True) for group in pair)
     return list(dict.fromkeys(both))
@@ -79,8 +86,9 @@ def base_blocks(sizes: Balanced, group: Group, effort: Effort) -> Blocks | None:
         return None
     packing = Packing(len(action.lengths), sizes.meetings)
     found = list(_columns(sizes, action, packing, effort))
-    chosen = cover(found, packing, Budget(effort.steps))
-    if chosen is None:
+    budget = Budget(effort.cover)
+    chosen = cover(found, packing, budget)
+    if chosen is None and budget.spent:
         chosen = cover_by_solver(found, packing, effort=effort.solver, seconds=30 * effort.solver)
     if chosen is None:
         return None
