@@ -15,7 +15,13 @@ def test_a_design_is_told_in_words(capsys: pytest.CaptureFixture[str]) -> None:
     """Verdict, construction, b, r, λ and E on one short page."""
     assert invoke(["exists", "--treatments", "13", "--block-size", "4"]) == 0
     page = " ".join(capsys.readouterr().out.split())
-    for words in ("13 blocks", "on 4 plots", "every pair in 1 block", "0.8125", "exists: lines of the projective"):
+    for words in (
+        "13 blocks",
+        "on 4 plots",
+        "every pair in 1 block",
+        "0.8125",
+        "exists: lines of the projective",
+    ):
         assert words in page
 
 

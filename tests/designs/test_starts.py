@@ -62,7 +62,9 @@ def test_replicates_are_matched() -> None:
 
 def test_pairs_kept_apart_rule_balance_out() -> None:
     """Where two treatments never share a block nothing balanced is offered, but the nearest is."""
-    trial = _trial(13, {"count": 13, "plots": 4}, plots_each=[3, 5], rules={"never_share_block": [["T01", "T02"]]})
+    trial = _trial(
+        13, {"count": 13, "plots": 4}, plots_each=[3, 5], rules={"never_share_block": [["T01", "T02"]]}
+    )
     found = _started(trial)
     assert found
     assert not any(start.balanced for start in found)
@@ -96,7 +98,10 @@ def test_the_nearest_design_is_changed_to_fit() -> None:
     """12 treatments in 12 blocks of 4, one block of 3: (13, 4, 1) without a treatment and a block, told so."""
     sizes = {f"bay {j}": 4 for j in range(12)} | {"bay 11": 3}
     found = _started(_trial(12, sizes))
-    assert any("13 treatments in 13 blocks of 4 (1 treatment taken out, 1 block taken out" in s.where_from for s in found)
+    assert any(
+        "13 treatments in 13 blocks of 4 (1 treatment taken out, 1 block taken out" in s.where_from
+        for s in found
+    )
 
 
 def test_treatments_that_may_stand_twice_are_not_bunched() -> None:

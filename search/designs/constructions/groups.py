@@ -43,16 +43,16 @@ class Group:
     factors : A is their product
     copies, fixed : copies of A, fixed points
     multiplier : for each factor its automorphism: u for x → ux on Zn; e + (q − 1)s for x → ωᵉ x^(pˢ) on GF(q)
-    cycle : length of the cycles in which the multiplier turns copies
-    turning : cycles among the copies, cycles among the fixed points; the rest stay
+    turning : lengths of the cycles in which the multiplier turns the first copies; the rest stay
+    turning_fixed : the same for the fixed points
     """
 
     factors: tuple[Factor, ...]
     copies: int
     fixed: int
     multiplier: tuple[int, ...]
-    cycle: int = 1
-    turning: tuple[int, int] = (0, 0)
+    turning: tuple[int, ...] = ()
+    turning_fixed: tuple[int, ...] = ()
 
     @property
     def n(self) -> int:
@@ -67,7 +67,8 @@ class Group:
     @property
     def multiplier_order(self) -> int:
         """Order of the multiplier as a permutation."""
-        return lcm(_order(_automorphism(self.factors, self.multiplier)), self.cycle)
+        cycles = (*self.turning, *self.turning_fixed)
+        return lcm(_order(_automorphism(self.factors, self.multiplier)), *cycles)
 
     @property
     def order(self) -> int:
@@ -78,8 +79,9 @@ class Group:
         base = "x".join(map(str, self.factors))
         copies = "1 copy" if self.copies == 1 else f"{self.copies} copies"
         fixed = f" and {self.fixed} fixed" if self.fixed else ""
-        copied, still = self.turning
-        turns = f", turning {copied}+{still} cycles of {self.cycle}" if self.cycle > 1 else ""
+        cycles = [f"copies by {length}" for length in self.turning]
+        cycles += [f"fixed points by {length}" for length in self.turning_fixed]
+        turns = f" turning {', '.join(cycles)}" if cycles else ""
         return f"{base}, {copies}{fixed}, multiplier of order {self.multiplier_order}{turns}"
 
     def permutations(self) -> Permutations:
@@ -100,17 +102,20 @@ class Group:
         n = self.n
         automorphism = np.array(_automorphism(self.factors, self.multiplier))
         image = np.arange(self.points)
-        for copy in range(self.copies):
-            to = _turned(copy, self.cycle, self.turning[0])
+        for copy, to in enumerate(_turned(self.copies, self.turning)):
             image[copy * n : (copy + 1) * n] = automorphism + to * n
-        start = self.copies * n
-        for point in range(self.fixed):
-            image[start + point] = start + _turned(point, self.cycle, self.turning[1])
+        for point, to in enumerate(_turned(self.fixed, self.turning_fixed)):
+            image[self.copies * n + point] = self.copies * n + to
         return image
 
 
-def _turned(i: int, cycle: int, cycles: int) -> int:
-    return i if i >= cycle * cycles else i - i % cycle + (i + 1) % cycle
+def _turned(many: int, cycles: tuple[int, ...]) -> list[int]:
+    """Where each of many things goes when the first are turned in cycles."""
+    images: list[int] = []
+    for length in cycles:
+        start = len(images)
+        images += [start + (i + 1) % length for i in range(length)]
+    return images + list(range(len(images), many))
 
 
 def groups(v: int, *, least: int, most: int, most_fixed: int) -> list[Group]:
@@ -125,21 +130,24 @@ def groups(v: int, *, least: int, most: int, most_fixed: int) -> list[Group]:
                 for multiplier in _multipliers(factors):
                     found += [
                         group
-                        for cycle, turning in _turnings(copies, fixed)
+                        for turning in _turnings(copies, fixed)
                         if least
-                        <= (group := Group(factors, copies, fixed, multiplier, cycle, turning)).order
+                        <= (group := Group(factors, copies, fixed, multiplier, *turning)).order
                         <= most
                     ]
-    found.sort(key=lambda g: (-g.order, g.fixed, g.copies, g.factors, g.multiplier, g.cycle, g.turning))
+    found.sort(
+        key=lambda g: (-g.order, g.fixed, g.copies, g.factors, g.multiplier, g.turning, g.turning_fixed)
+    )
     return found
 
 
-def _turnings(copies: int, fixed: int) -> Iterator[tuple[int, tuple[int, int]]]:
-    yield 1, (0, 0)
-    for cycle in range(2, max(copies, fixed) + 1):
-        for turning in product(range(copies // cycle + 1), range(fixed // cycle + 1)):
-            if any(turning):
-                yield cycle, turning
+def _turnings(copies: int, fixed: int) -> Iterator[tuple[tuple[int, ...], tuple[int, ...]]]:
+    """Cycles all of one length, any number of them."""
+    yield (), ()
+    for length in range(2, max(copies, fixed) + 1):
+        for many, many_fixed in product(range(copies // length + 1), range(fixed // length + 1)):
+            if many or many_fixed:
+                yield (length,) * many, (length,) * many_fixed
 
 
 @cache

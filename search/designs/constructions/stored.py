@@ -74,7 +74,7 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         "orbit engine, light effort, 0.0 s",
     ),
     (12, 4, 3): Recipe(
-        Group((Factor(3),), 4, 0, (2,), 3, (1, 0)),
+        Group((Factor(3),), 4, 0, (2,), (3,)),
         ((1, 2, 10, 11), (0, 3, 7, 8), (0, 4, 5, 9), (0, 3, 6, 10)),
         "orbit engine, light effort, 0.0 s",
     ),
@@ -119,7 +119,7 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         "orbit engine, light effort, 0.0 s",
     ),
     (16, 6, 3): Recipe(
-        Group((Factor(4),), 4, 0, (1,), 3, (1, 0)),
+        Group((Factor(4),), 4, 0, (1,), (3,)),
         ((0, 2, 5, 7, 12, 14), (0, 1, 6, 7, 12, 13), (0, 2, 4, 6, 8, 10), (0, 1, 4, 5, 8, 9)),
         "orbit engine, light effort, 0.01 s",
     ),
@@ -159,7 +159,7 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         "orbit engine, light effort, 0.02 s",
     ),
     (21, 6, 4): Recipe(
-        Group((Factor(5),), 4, 1, (4,), 3, (1, 0)),
+        Group((Factor(5),), 4, 1, (4,), (3,)),
         (
             (0, 5, 10, 16, 19, 20),
             (0, 5, 10, 17, 18, 20),
@@ -172,7 +172,7 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         "orbit engine, light effort, 0.02 s",
     ),
     (21, 9, 6): Recipe(
-        Group((Factor(5),), 4, 1, (4,), 3, (1, 0)),
+        Group((Factor(5),), 4, 1, (4,), (3,)),
         ((0, 1, 4, 5, 6, 9, 10, 11, 14), (0, 1, 4, 5, 7, 8, 16, 19, 20), (1, 4, 6, 9, 12, 13, 15, 16, 19)),
         "orbit engine, light effort, 0.07 s",
     ),
@@ -201,13 +201,18 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ((0, 1, 2, 3, 4, 25), (0, 5, 10, 15, 20, 25), (5, 6, 11, 15, 22, 23), (5, 10, 12, 16, 19, 22)),
         "orbit engine, light effort, 0.02 s",
     ),
+    (27, 13, 6): Recipe(
+        Group((Factor(27, True),), 1, 0, (2,)),
+        ((1, 4, 6, 7, 9, 13, 14, 15, 16, 17, 19, 20, 24),),
+        "orbit engine, light effort, 0.06 s",
+    ),
     (28, 4, 1): Recipe(
         Group((Factor(9, True),), 3, 1, (2,)),
         ((0, 9, 18, 27), (1, 2, 12, 15), (3, 6, 19, 20), (10, 11, 21, 24)),
         "orbit engine, light effort, 0.0 s",
     ),
     (28, 7, 2): Recipe(
-        Group((Factor(9),), 3, 1, (4,), 3, (1, 0)),
+        Group((Factor(9),), 3, 1, (4,), (3,)),
         ((0, 1, 9, 13, 18, 25, 27), (0, 1, 3, 5, 11, 14, 24)),
         "orbit engine, light effort, 0.01 s",
     ),
@@ -227,7 +232,7 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         "orbit engine, light effort, 0.01 s",
     ),
     (31, 10, 3): Recipe(
-        Group((Factor(7),), 4, 3, (2,), 3, (1, 0)),
+        Group((Factor(7),), 4, 3, (2,), (3,)),
         (
             (0, 1, 2, 3, 4, 5, 6, 28, 29, 30),
             (0, 1, 7, 9, 14, 18, 22, 23, 25, 28),
@@ -247,6 +252,22 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ((3, 10, 17, 24, 31, 35), (3, 10, 17, 24, 31, 35), (1, 2, 3, 6, 12, 18), (1, 6, 9, 17, 19, 32)),
         "orbit engine, light effort, 0.02 s",
     ),
+    (36, 15, 6): Recipe(
+        Group(
+            (
+                Factor(4),
+                Factor(9, True),
+            ),
+            1,
+            0,
+            (
+                1,
+                4,
+            ),
+        ),
+        ((0, 1, 2, 9, 12, 15, 18, 22, 26, 28, 29, 30, 31, 33, 35),),
+        "orbit engine, 20000 steps, 0.1 s",
+    ),
     (37, 4, 1): Recipe(
         Group((Factor(37),), 1, 0, (10,)),
         ((0, 1, 3, 24),),
@@ -263,7 +284,7 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         "orbit engine, light effort, 0.01 s",
     ),
     (43, 7, 2): Recipe(
-        Group((Factor(7),), 6, 1, (6,), 5, (1, 0)),
+        Group((Factor(7),), 6, 1, (6,), (5,)),
         (
             (0, 7, 14, 21, 28, 35, 42),
             (0, 7, 14, 21, 28, 35, 42),
@@ -312,7 +333,7 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         "orbit engine, light effort, 0.02 s",
     ),
     (56, 11, 2): Recipe(
-        Group((Factor(7),), 8, 0, (2,), 6, (1, 0)),
+        Group((Factor(7),), 8, 0, (2,), (6,)),
         (
             (0, 7, 14, 21, 28, 35, 42, 43, 44, 46, 49),
             (1, 9, 18, 22, 30, 39, 42, 49, 52, 54, 55),
@@ -326,12 +347,12 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         "orbit engine, light effort, 0.05 s",
     ),
     (65, 5, 1): Recipe(
-        Group((Factor(13),), 5, 0, (2,), 2, (2, 0)),
+        Group((Factor(13),), 5, 0, (2,), (2, 2)),
         ((0, 13, 26, 39, 52), (1, 12, 18, 21, 52), (2, 11, 26, 42, 49), (0, 27, 38, 57, 60)),
         "orbit engine, light effort, 0.03 s",
     ),
     (66, 6, 1): Recipe(
-        Group((Factor(13),), 5, 1, (3,), 3, (1, 0)),
+        Group((Factor(13),), 5, 1, (3,), (3,)),
         (
             (0, 13, 26, 39, 52, 65),
             (40, 42, 48, 59, 60, 63),
@@ -340,6 +361,16 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
             (0, 6, 21, 22, 42, 64),
         ),
         "orbit engine, 300000 steps, 15.82 s",
+    ),
+    (91, 7, 1): Recipe(
+        Group((Factor(13),), 7, 0, (2,), (3, 3)),
+        (
+            (0, 13, 26, 39, 52, 65, 78),
+            (2, 11, 19, 20, 31, 34, 78),
+            (0, 15, 24, 44, 47, 58, 59),
+            (4, 9, 53, 64, 65, 81, 88),
+        ),
+        "orbit engine, light effort, 0.09 s",
     ),
 }
 """(t, k, λ) to the recipe."""

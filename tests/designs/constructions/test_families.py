@@ -48,7 +48,9 @@ def test_each_construction_gives_its_design(construct: Construction, t: int, k: 
     assert replicate_faults(built.blocks, built.replicates, t) == ()
 
 
-@pytest.mark.parametrize("construct", [complement, flats, residual, derived, nested, sums, extension, doubling])
+@pytest.mark.parametrize(
+    "construct", [complement, flats, residual, derived, nested, sums, extension, doubling]
+)
 def test_a_construction_that_does_not_apply_says_nothing(construct: Construction) -> None:
     """(10, 3, 2) is no flat, no sum, no relative of a symmetric design at hand."""
     assert construct(_sizes(10, 30, 3), lambda sizes: None) is None

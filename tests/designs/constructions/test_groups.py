@@ -12,7 +12,7 @@ GROUPS = [
     Group((Factor(7),), 1, 0, (2,)),
     Group((Factor(9, True),), 1, 1, (2,)),
     Group((Factor(9, True),), 2, 0, (8 + 1,)),  # a power of the primitive element after the Frobenius map
-    Group((Factor(7),), 4, 3, (2,), 3, (1, 1)),
+    Group((Factor(7),), 4, 3, (2,), (3,), (3,)),
     Group((Factor(4, True), Factor(3)), 1, 0, (1, 2)),
 ]
 

@@ -38,7 +38,10 @@ def test_a_cover_sums_to_the_target_by_both_ways() -> None:
     packing = Packing(len(action.lengths), 2)
     trivial = list(stabilisers(action))[-1]
     found = list(columns(action, trivial, 3, packing, Budget(10_000)))
-    for chosen in (cover(found, packing, Budget(10_000)), cover_by_solver(found, packing, effort=1, seconds=20)):
+    for chosen in (
+        cover(found, packing, Budget(10_000)),
+        cover_by_solver(found, packing, effort=1, seconds=20),
+    ):
         assert chosen is not None
         assert sum(column.counts for column in chosen) == packing.target
 
@@ -48,7 +51,9 @@ def test_a_cover_that_cannot_be_is_not_found() -> None:
     action = Action.of(SEVEN.permutations())
     packing = Packing(len(action.lengths), 3)
     trivial = list(stabilisers(action))[-1]
-    even = [c for c in columns(action, trivial, 3, packing, Budget(10_000)) if packing.count(c.counts, 0) == 2]
+    even = [
+        c for c in columns(action, trivial, 3, packing, Budget(10_000)) if packing.count(c.counts, 0) == 2
+    ]
     budget = Budget(100_000)
     assert cover(even, packing, budget) is None
     assert not budget.spent
