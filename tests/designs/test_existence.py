@@ -15,7 +15,7 @@ from tests.designs.test_conditions import TABLED
 
 @pytest.mark.parametrize("row", TABLED)
 def test_tabled_designs_are_built(row: tuple[int, int, int, int, int]) -> None:
-    """The sets of Fisher & Yates and of Cochran & Cox 1957 (from memory) are built, with E = λt/(rk) (Yates 1936)."""
+    """Fisher & Yates, Cochran & Cox 1957 (sets from memory): all are built, with E = λt/(rk) (Yates 1936)."""
     t, k, r, b, meetings = row
     verdict = exists(t, k, blocks=b)
     assert verdict.existence is Existence.EXISTS

@@ -21,7 +21,7 @@ def test_square_lattices_reach_their_efficiency(s: int, r: int) -> None:
 
 @pytest.mark.parametrize(("s", "r"), [(4, 3), (5, 5), (6, 2), (9, 4)])
 def test_rectangular_lattices_hold_no_pair_twice(s: int, r: int) -> None:
-    """Blocks of s − 1, every treatment once a replicate, no two together more than once (Harshbarger 1949)."""
+    """Blocks of s − 1, every treatment once a replicate, no two together twice (Harshbarger 1949)."""
     parts = rectangular_lattice(s, r)
     assert parts is not None
     assert _holds_everything(parts, s * (s - 1))

@@ -95,7 +95,7 @@ def test_linked_blocks_share_equally_many_treatments() -> None:
 
 
 def test_the_nearest_design_is_changed_to_fit() -> None:
-    """12 treatments in 12 blocks of 4, one block of 3: (13, 4, 1) without a treatment and a block, told so."""
+    """12 treatments in blocks of 4 and one of 3: (13, 4, 1) without a treatment and a block, told so."""
     sizes = {f"bay {j}": 4 for j in range(12)} | {"bay 11": 3}
     found = _started(_trial(12, sizes))
     assert any(

@@ -8,12 +8,10 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass, field
-from math import gcd
 
 import numpy as np
-from numpy.typing import NDArray
 
-Ints = NDArray[np.int64]
+from search.designs.constructions.action import Action, Stabiliser
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,93 +62,6 @@ class Column:
     block: tuple[int, ...]
 
 
-@dataclass(frozen=True, slots=True)
-class Action:
-    """A permutation group on points, with its orbits on pairs.
-
-    Parameters
-    ----------
-    elements : (order, v) all permutations
-    labels : (v, v) number of the orbit of each pair; -1 on the diagonal
-    lengths : pairs in each orbit
-    """
-
-    elements: Ints
-    labels: Ints
-    lengths: Ints
-
-    @classmethod
-    def of(cls, elements: Ints) -> Action:
-        """The action of a group given by all its elements."""
-        v = elements.shape[1]
-        labels = np.full((v, v), -1, dtype=np.int64)
-        lengths: list[int] = []
-        for x in range(v):
-            for y in range(x + 1, v):
-                if labels[x, y] < 0:
-                    labels[elements[:, x], elements[:, y]] = len(lengths)
-                    labels[elements[:, y], elements[:, x]] = len(lengths)
-                    lengths.append(int(np.count_nonzero(labels == len(lengths))) // 2)
-        return cls(elements, labels, np.array(lengths, dtype=np.int64))
-
-    @property
-    def order(self) -> int:
-        """Number of elements."""
-        return len(self.elements)
-
-    def developed(self, block: tuple[int, ...]) -> tuple[tuple[int, ...], ...]:
-        """The orbit of a block."""
-        images = np.sort(self.elements[:, list(block)], axis=1)
-        return tuple(map(tuple, np.unique(images, axis=0).tolist()))
-
-
-@dataclass(frozen=True, slots=True)
-class Stabiliser:
-    """A cyclic subgroup: its elements, its orbits on points, and which of those its normaliser joins."""
-
-    elements: Ints
-    orbits: tuple[tuple[int, ...], ...]
-    classes: tuple[int, ...]
-
-
-def stabilisers(action: Action) -> Iterator[Stabiliser]:
-    """One cyclic subgroup of each conjugacy class, largest first."""
-    elements = action.elements
-    order, v = elements.shape
-    marks = np.random.default_rng(0).integers(1 << 40, size=v)  # an element is known by its sum of marks
-    by_mark = np.argsort(elements @ marks)
-    sorted_marks = (elements @ marks)[by_mark]
-    inverse = np.argsort(elements, axis=1)
-    left = np.ones(order, dtype=np.bool_)
-    cyclic: list[Ints] = []
-    for g in range(order):
-        if not left[g]:
-            continue
-        powers = [np.arange(v)]
-        while not np.array_equal(power := elements[g][powers[-1]], powers[0]):
-            powers.append(power)
-        cyclic.append(np.stack(powers))
-        for i, power in enumerate(powers):
-            if gcd(i, len(powers)) == 1:  # the other generators, and all that are conjugate
-                conjugates = np.take_along_axis(elements, power[inverse], axis=1)
-                left[by_mark[np.searchsorted(sorted_marks, conjugates @ marks)]] = False
-    for group in sorted(cyclic, key=len, reverse=True):
-        yield _with_orbits(group, elements)
-
-
-def _with_orbits(group: Ints, elements: Ints) -> Stabiliser:
-    least = group.min(axis=0)
-    generator = group[1] if len(group) > 1 else group[0]
-    after = elements[:, generator]
-    normal = np.zeros(len(elements), dtype=np.bool_)
-    for power in group:
-        normal |= (power[elements] == after).all(axis=1)
-    joined = least[elements[normal]].min(axis=0)  # the least point that the normaliser takes it near to
-    leaders = sorted(set(least.tolist()), key=lambda x: (int(joined[x]), x))
-    orbits = tuple(tuple(np.flatnonzero(least == x).tolist()) for x in leaders)
-    return Stabiliser(group, orbits, tuple(int(joined[x]) for x in leaders))
-
-
 GENEROUS = 4
 
 
@@ -186,7 +97,7 @@ def columns(
     other there. Every branch has its share of the work, so that what is found before the work runs out
     is spread over all of them.
     """
-    many = action.order // len(stabiliser.elements)
+    many = action.order // stabiliser.order
     orbits = stabiliser.orbits
     inner, cross = _weights(action, stabiliser, many, packing)
     sizes = [len(orbit) for orbit in orbits]

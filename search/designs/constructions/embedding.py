@@ -15,7 +15,7 @@ from itertools import islice
 import numpy as np
 
 from search.designs.conditions import Balanced, conditions
-from search.designs.constructions.columns import Ints
+from search.designs.constructions.action import Ints
 from search.designs.constructions.common import Build, Built
 from search.designs.constructions.orbits import LIGHT, base_blocks, described, developed, promising
 from search.designs.records import Blocks

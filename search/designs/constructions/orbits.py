@@ -13,7 +13,8 @@ from dataclasses import dataclass
 import numpy as np
 
 from search.designs.conditions import Balanced
-from search.designs.constructions.columns import Action, Budget, Column, Packing, columns, stabilisers
+from search.designs.constructions.action import Action, stabilisers
+from search.designs.constructions.columns import Budget, Column, Packing, columns
 from search.designs.constructions.common import Build, Built
 from search.designs.constructions.covering import cover, cover_by_solver
 from search.designs.constructions.groups import Group, groups
@@ -98,7 +99,7 @@ def base_blocks(sizes: Balanced, group: Group, effort: Effort) -> Blocks | None:
 def _columns(sizes: Balanced, action: Action, packing: Packing, effort: Effort) -> Iterator[Column]:
     seen = set[tuple[int, int]]()
     for stabiliser in stabilisers(action):
-        if action.order // len(stabiliser.elements) > sizes.b:
+        if action.order // stabiliser.order > sizes.b:
             continue
         steps = effort.steps * (SYMMETRIC if sizes.b == sizes.t else 1)
         for column in columns(action, stabiliser, sizes.k, packing, Budget(steps)):

@@ -8,7 +8,8 @@ import pytest
 
 from search.designs.checking import block_faults
 from search.designs.conditions import conditions
-from search.designs.constructions.columns import Action, Budget, Packing, columns, stabilisers
+from search.designs.constructions.action import Action, stabilisers
+from search.designs.constructions.columns import Budget, Packing, columns
 from search.designs.constructions.covering import cover, cover_by_solver
 from search.designs.constructions.groups import Factor, Group
 from search.designs.constructions.orbits import LIGHT, base_blocks, developed
@@ -17,7 +18,7 @@ SEVEN = Group((Factor(7),), 1, 0, (1,))
 
 
 def test_columns_are_all_orbits_that_fit() -> None:
-    """Under the cyclic group of order 7 the triples that cover no pair twice are two orbits, by trying all."""
+    """Under the cyclic group of order 7 triples that cover no pair twice are two orbits (all tried)."""
     action = Action.of(SEVEN.permutations())
     packing = Packing(len(action.lengths), 1)
     trivial = list(stabilisers(action))[-1]
@@ -47,7 +48,7 @@ def test_a_cover_sums_to_the_target_by_both_ways() -> None:
 
 
 def test_a_cover_that_cannot_be_is_not_found() -> None:
-    """Columns that cover a pair an even number of times never sum to an odd λ, and the search ends by itself."""
+    """Columns that cover a pair an even number of times never sum to an odd λ; the search ends by itself."""
     action = Action.of(SEVEN.permutations())
     packing = Packing(len(action.lengths), 3)
     trivial = list(stabilisers(action))[-1]
@@ -78,7 +79,7 @@ def test_the_engine_builds_known_designs(t: int, k: int, b: int, group: Group) -
 
 
 def test_a_group_without_a_design_gives_none() -> None:
-    """No cyclic (16, 6, 2): the known difference sets lie in other groups (common knowledge; all columns tried)."""
+    """No cyclic (16, 6, 2): its difference sets lie in other groups (common knowledge; all columns tried)."""
     sizes = conditions(16, 16, 6).allowed
     assert sizes is not None
     assert base_blocks(sizes, Group((Factor(16),), 1, 0, (1,)), LIGHT) is None

@@ -29,11 +29,11 @@ def test_bruck_ryser_and_chowla_refuse(t: int, k: int) -> None:
 
 @pytest.mark.parametrize(
     ("t", "k"),
-    [(7, 3), (13, 4), (11, 5), (21, 5), (16, 6), (31, 6), (15, 7), (57, 8), (19, 9), (37, 9), (25, 9), (31, 10),
-     (23, 11), (56, 11), (45, 12), (40, 13), (79, 13), (31, 15), (36, 15), (71, 15), (111, 11)],
+    [(7, 3), (13, 4), (11, 5), (21, 5), (16, 6), (31, 6), (15, 7), (57, 8), (19, 9), (37, 9), (25, 9),
+     (31, 10), (23, 11), (56, 11), (45, 12), (40, 13), (79, 13), (31, 15), (36, 15), (71, 15), (111, 11)],
 )  # fmt: skip
 def test_known_symmetric_designs_pass(t: int, k: int) -> None:
-    """Designs that exist (CHECKS.md, MATH.md) pass, and so does the plane of order 10, which only a computer ruled out."""
+    """Designs that exist (CHECKS.md, MATH.md) pass; so does the plane of order 10, ruled out by computer."""
     sizes = conditions(t, t, k).allowed
     assert sizes is not None
     assert not schuetzenberger(sizes)
@@ -41,7 +41,7 @@ def test_known_symmetric_designs_pass(t: int, k: int) -> None:
 
 
 def test_a_small_solution_means_solvable_everywhere() -> None:
-    """Where z² = ax² + by² has a solution in small whole numbers, no prime forbids one; where none does, there is one."""
+    """z² = ax² + by² has a solution in small whole numbers exactly where no prime forbids one."""
     for a, b in product(range(1, 12), [x for x in range(-11, 12) if x]):
         small = any(
             round((a * x * x + b * y * y) ** 0.5) ** 2 == a * x * x + b * y * y
@@ -52,7 +52,7 @@ def test_a_small_solution_means_solvable_everywhere() -> None:
 
 
 def test_hilbert_symbols_multiply_to_one() -> None:
-    """Over all primes and the reals the product is 1 (Hilbert's reciprocity; Serre 1973, chapter III, theorem 3)."""
+    """Over all primes and the reals the product is 1 (reciprocity; Serre 1973, chapter III, theorem 3)."""
     for a, b in product([x for x in range(-15, 16) if x], repeat=2):
         real = -1 if a < 0 and b < 0 else 1
         total = real
