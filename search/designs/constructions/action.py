@@ -96,10 +96,10 @@ class _Elements:
 
     @classmethod
     def of(cls, rows: Ints) -> _Elements:
-        marks = np.random.default_rng(0).integers(1 << 40, size=rows.shape[1])
+        marks: Ints = np.random.default_rng(0).integers(1 << 40, size=(rows.shape[1],))
         sums = rows @ marks
-        order = np.argsort(sums)
-        return cls(rows, np.argsort(rows, axis=1), marks, order, np.sort(sums))
+        by_mark = np.argsort(sums)
+        return cls(rows, np.argsort(rows, axis=1), marks, by_mark, np.take(sums, by_mark))
 
     def numbers(self, rows: Ints) -> Ints:
         return self.by_mark[np.searchsorted(self.sorted_marks, rows @ self.marks)]

@@ -12,7 +12,7 @@ from search.foundation.cpsat import Answer, solve
 
 
 def cover(columns: Sequence[Column], packing: Packing, budget: Budget) -> tuple[Column, ...] | None:
-    """Depth-first: every column that helps the first row that lacks something; the last one is looked up.
+    """Depth-first: every column that helps the first row that lacks something; the last two are looked up.
 
     None with work left in the budget means that these columns hold no solution.
     """
@@ -23,10 +23,11 @@ def cover(columns: Sequence[Column], packing: Packing, budget: Budget) -> tuple[
     order = [masks[row] for row in sorted(range(packing.rows), key=helping.__getitem__)]
 
     def extend(room: int, fitting: list[int], chosen: tuple[int, ...]) -> tuple[int, ...] | None:
-        if room in by_counts:
-            return (*chosen, room)
         mask = next((mask for mask in order if room & mask), 0)
         helpers = [counts for counts in fitting if counts & mask]
+        two = next((counts for counts in helpers if room - counts in by_counts), 0)
+        if two:
+            return (*chosen, two, room - two)
         others = [counts for counts in fitting if not counts & mask]
         for i, counts in enumerate(helpers):
             if not budget.spend(1 + (len(fitting) - i) // 8):
@@ -41,6 +42,8 @@ def cover(columns: Sequence[Column], packing: Packing, budget: Budget) -> tuple[
                 return found
         return None
 
+    if packing.target in by_counts:
+        return (by_counts[packing.target],)
     found = extend(packing.target, list(by_counts), ()) if all(helping) else None
     return None if found is None else tuple(by_counts[counts] for counts in found)
 

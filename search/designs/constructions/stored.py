@@ -133,6 +133,42 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ((1, 2, 4, 8, 9, 13, 15, 16), (3, 5, 6, 7, 10, 11, 12, 14)),
         "orbit engine, light effort, 0.07 s",
     ),
+    (18, 3, 2): Recipe(
+        Group((Factor(17),), 1, 1, (16,)),
+        ((1, 16, 17), (0, 1, 16), (0, 3, 8), (0, 4, 10)),
+        "orbit engine, light effort, 0.0 s",
+    ),
+    (18, 6, 5): Recipe(
+        Group(
+            (
+                Factor(2),
+                Factor(9, True),
+            ),
+            1,
+            0,
+            (
+                1,
+                4,
+            ),
+        ),
+        (
+            (0, 1, 2, 9, 10, 11),
+            (0, 1, 2, 9, 10, 11),
+            (0, 3, 6, 9, 12, 15),
+            (0, 3, 6, 9, 12, 15),
+            (0, 4, 8, 9, 13, 17),
+            (1, 5, 6, 11, 12, 16),
+            (1, 3, 8, 11, 13, 15),
+            (1, 3, 4, 11, 15, 17),
+            (1, 2, 3, 5, 6, 7),
+        ),
+        "orbit engine, light effort, 0.05 s",
+    ),
+    (18, 9, 8): Recipe(
+        Group((Factor(17),), 1, 1, (1,)),
+        ((0, 1, 2, 4, 5, 6, 9, 11, 17), (0, 3, 5, 6, 7, 9, 12, 13, 14)),
+        "orbit engine, light effort, 0.3 s",
+    ),
     (19, 3, 1): Recipe(
         Group((Factor(19),), 1, 0, (4,)),
         ((1, 7, 11),),
@@ -142,6 +178,11 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         Group((Factor(19),), 1, 0, (4,)),
         ((0, 1, 7, 11),),
         "orbit engine, light effort, 0.01 s",
+    ),
+    (19, 6, 5): Recipe(
+        Group((Factor(19),), 1, 0, (18,)),
+        ((1, 7, 8, 11, 12, 18), (2, 3, 5, 14, 16, 17), (4, 6, 9, 10, 13, 15)),
+        "orbit engine, light effort, 0.18 s",
     ),
     (19, 9, 4): Recipe(
         Group((Factor(19),), 1, 0, (7,)),
@@ -195,6 +236,17 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         Group((Factor(25, True),), 1, 0, (0,)),
         ((0, 1, 5, 12), (0, 2, 8, 17)),
         "orbit engine, light effort, 0.01 s",
+    ),
+    (25, 9, 6): Recipe(
+        Group((Factor(6),), 4, 1, (5,), (3,)),
+        (
+            (0, 3, 6, 9, 13, 16, 19, 22, 24),
+            (0, 1, 5, 14, 15, 16, 18, 19, 23),
+            (0, 2, 4, 7, 9, 11, 18, 20, 22),
+            (0, 1, 5, 6, 7, 11, 12, 13, 17),
+            (0, 2, 4, 6, 8, 10, 12, 14, 16),
+        ),
+        "orbit engine, light effort, 0.95 s",
     ),
     (25, 10, 6): Recipe(
         Group((Factor(5),), 5, 0, (4,), (3,)),
@@ -257,6 +309,11 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ((0, 1, 10), (8, 19, 30)),
         "orbit engine, light effort, 0.15 s",
     ),
+    (35, 5, 2): Recipe(
+        Group((Factor(35),), 1, 0, (6,)),
+        ((3, 10, 17, 24, 31), (3, 10, 17, 24, 31), (0, 1, 2, 6, 12), (0, 8, 13, 17, 32), (0, 9, 17, 19, 32)),
+        "orbit engine, light effort, 0.08 s",
+    ),
     (36, 6, 2): Recipe(
         Group((Factor(35),), 1, 1, (6,)),
         ((3, 10, 17, 24, 31, 35), (3, 10, 17, 24, 31, 35), (1, 2, 3, 6, 12, 18), (1, 6, 9, 17, 19, 32)),
@@ -277,6 +334,11 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ),
         ((0, 1, 2, 9, 12, 15, 18, 22, 26, 28, 29, 30, 31, 33, 35),),
         "orbit engine, 20000 steps, 0.1 s",
+    ),
+    (37, 3, 1): Recipe(
+        Group((Factor(37),), 1, 0, (10,)),
+        ((3, 4, 30), (6, 8, 23), (9, 12, 16), (0, 5, 14)),
+        "orbit engine, light effort, 0.09 s",
     ),
     (37, 4, 1): Recipe(
         Group((Factor(37),), 1, 0, (10,)),
@@ -358,10 +420,38 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ),
         "orbit engine, light effort, 0.64 s",
     ),
+    (46, 6, 2): Recipe(
+        Group((Factor(9, True),), 5, 1, (1,), (4,)),
+        (
+            (1, 2, 22, 26, 36, 45),
+            (0, 13, 17, 18, 28, 29),
+            (0, 14, 16, 18, 30, 33),
+            (0, 9, 32, 34, 40, 44),
+            (3, 6, 31, 35, 40, 44),
+            (9, 10, 11, 18, 19, 20),
+        ),
+        "orbit engine, light effort, 0.64 s",
+    ),
     (49, 4, 1): Recipe(
         Group((Factor(49),), 1, 0, (18,)),
         ((0, 1, 3, 15), (0, 6, 10, 33)),
         "orbit engine, light effort, 0.02 s",
+    ),
+    (52, 4, 1): Recipe(
+        Group(
+            (
+                Factor(4, True),
+                Factor(13),
+            ),
+            1,
+            0,
+            (
+                0,
+                3,
+            ),
+        ),
+        ((0, 13, 26, 39), (0, 1, 3, 9), (0, 14, 29, 48)),
+        "orbit engine, light effort, 0.07 s",
     ),
     (56, 11, 2): Recipe(
         Group((Factor(7),), 8, 0, (2,), (6,)),
@@ -392,6 +482,18 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
             (0, 6, 21, 22, 42, 64),
         ),
         "orbit engine, 300000 steps, 15.82 s",
+    ),
+    (76, 6, 1): Recipe(
+        Group((Factor(19),), 4, 0, (7,), (3,)),
+        (
+            (0, 19, 38, 59, 60, 71),
+            (4, 28, 44, 67, 70, 72),
+            (0, 5, 32, 46, 61, 70),
+            (7, 8, 30, 37, 39, 50),
+            (1, 12, 26, 27, 49, 56),
+            (0, 2, 6, 9, 37, 64),
+        ),
+        "orbit engine, 60000000 steps, 313.78 s",
     ),
     (79, 13, 2): Recipe(
         Group((Factor(11),), 7, 2, (2,), (5,), (2,)),

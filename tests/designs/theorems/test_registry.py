@@ -10,7 +10,8 @@ from search.designs.theorems import obstruction
 REFUSED = [
     (15, 5, 21, "Hall and Connor"), (21, 6, 28, "Hall and Connor"), (22, 7, 22, "Schützenberger"),
     (29, 8, 29, "Bruck"), (36, 6, 42, "Hall and Connor"), (36, 8, 45, "Hall and Connor"),
-    (43, 7, 43, "Bruck"), (46, 10, 46, "Schützenberger"), (46, 6, 69, "Houghten"), (22, 8, 33, "Bilous"), (100, 10, 110, "Lam"),
+    (43, 7, 43, "Bruck"), (46, 10, 46, "Schützenberger"), (46, 6, 69, "Houghten"),
+    (22, 8, 33, "Bilous"), (100, 10, 110, "Lam"),
 ]  # fmt: skip
 """(t, k, b) and the theorem: the must-be-refused list of CHECKS.md, and the affine plane of order 10."""
 
