@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from math import comb
 
+from search.designs.attempts import notes
 from search.designs.building import build
 from search.designs.checking import faults
 from search.designs.conditions import Balanced, conditions, smallest
@@ -68,9 +69,15 @@ def decide(sizes: Balanced, *, resolvable: bool = False) -> Verdict:
             raise RuntimeError(f"a construction failed its check for {sizes}: {wrong[0]}")
         return Verdict(Existence.EXISTS, design.construction, sizes, design, resolvable)
     if not resolvable and (paper := known(sizes)):
-        return Verdict(Existence.EXISTS, f"by the literature, not built here: {paper}", sizes)
+        note = f"; {tried}" if (tried := notes(sizes)) else ""
+        return Verdict(Existence.EXISTS, f"by the literature, not built here: {paper}{note}", sizes)
+    return Verdict(Existence.UNKNOWN, _tried(sizes, resolvable), sizes, resolvable=resolvable)
+
+
+def _tried(sizes: Balanced, resolvable: bool) -> str:
+    note = "" if resolvable else notes(sizes)
     tried = "no theorem here forbids it and no construction here gave one, which does not decide it"
-    return Verdict(Existence.UNKNOWN, tried, sizes, resolvable=resolvable)
+    return f"{tried} ({note})" if note else tried
 
 
 def _plain(sizes: Balanced) -> Design | None:

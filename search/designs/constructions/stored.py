@@ -128,6 +128,11 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ((1, 4, 13, 16),),
         "orbit engine, light effort, 0.05 s",
     ),
+    (17, 5, 5): Recipe(
+        Group((Factor(17),), 1, 0, (2,)),
+        ((0, 1, 5, 12, 16),),
+        "orbit engine, light effort, 0.01 s",
+    ),
     (17, 8, 7): Recipe(
         Group((Factor(17),), 1, 0, (2,)),
         ((1, 2, 4, 8, 9, 13, 15, 16), (3, 5, 6, 7, 10, 11, 12, 14)),
@@ -189,6 +194,27 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ((1, 4, 5, 6, 7, 9, 11, 16, 17),),
         "orbit engine, light effort, 0.0 s",
     ),
+    (20, 4, 3): Recipe(
+        Group(
+            (
+                Factor(4, True),
+                Factor(5),
+            ),
+            1,
+            0,
+            (
+                1,
+                1,
+            ),
+        ),
+        ((0, 1, 2, 3), (0, 5, 10, 15), (0, 5, 10, 15), (0, 5, 10, 15), (0, 6, 12, 18)),
+        "orbit engine, light effort, 0.09 s",
+    ),
+    (20, 5, 4): Recipe(
+        Group((Factor(19),), 1, 1, (7,)),
+        ((0, 1, 7, 11, 19), (0, 1, 2, 4, 14)),
+        "orbit engine, light effort, 0.2 s",
+    ),
     (21, 3, 1): Recipe(
         Group((Factor(21),), 1, 0, (13,)),
         ((0, 2, 5), (0, 4, 10), (3, 10, 17), (0, 1, 13)),
@@ -212,10 +238,20 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ),
         "orbit engine, light effort, 0.02 s",
     ),
+    (21, 6, 5): Recipe(
+        Group((Factor(21),), 1, 0, (8,)),
+        ((0, 3, 7, 10, 14, 17), (0, 1, 3, 8, 9, 12), (0, 1, 2, 4, 6, 15)),
+        "orbit engine, light effort, 0.08 s",
+    ),
     (21, 9, 6): Recipe(
         Group((Factor(5),), 4, 1, (4,), (3,)),
         ((0, 1, 4, 5, 6, 9, 10, 11, 14), (0, 1, 4, 5, 7, 8, 16, 19, 20), (1, 4, 6, 9, 12, 13, 15, 16, 19)),
         "orbit engine, light effort, 0.07 s",
+    ),
+    (21, 10, 9): Recipe(
+        Group((Factor(21),), 1, 0, (1,)),
+        ((0, 1, 5, 6, 7, 8, 9, 11, 14, 17), (0, 2, 4, 6, 7, 8, 9, 14, 17, 18)),
+        "orbit engine, light effort, 0.05 s",
     ),
     (22, 4, 2): Recipe(
         Group((Factor(21),), 1, 1, (13,)),
@@ -288,6 +324,11 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ((0, 1, 7, 16, 20, 23, 24, 25), (0, 2, 3, 11, 14, 17, 19, 21)),
         "orbit engine, light effort, 0.05 s",
     ),
+    (31, 4, 2): Recipe(
+        Group((Factor(31),), 1, 0, (15,)),
+        ((1, 4, 27, 30),),
+        "orbit engine, light effort, 0.02 s",
+    ),
     (31, 5, 2): Recipe(
         Group((Factor(31),), 1, 0, (7,)),
         ((1, 2, 4, 8, 16),),
@@ -314,6 +355,11 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ((3, 10, 17, 24, 31), (3, 10, 17, 24, 31), (0, 1, 2, 6, 12), (0, 8, 13, 17, 32), (0, 9, 17, 19, 32)),
         "orbit engine, light effort, 0.08 s",
     ),
+    (35, 17, 8): Recipe(
+        Group((Factor(35),), 1, 0, (4,)),
+        ((0, 1, 3, 4, 7, 9, 11, 12, 13, 14, 16, 17, 21, 27, 28, 29, 33),),
+        "orbit engine, 3000 steps, 0.05 s",
+    ),
     (36, 6, 2): Recipe(
         Group((Factor(35),), 1, 1, (6,)),
         ((3, 10, 17, 24, 31, 35), (3, 10, 17, 24, 31, 35), (1, 2, 3, 6, 12, 18), (1, 6, 9, 17, 19, 32)),
@@ -335,6 +381,27 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ((0, 1, 2, 9, 12, 15, 18, 22, 26, 28, 29, 30, 31, 33, 35),),
         "orbit engine, 20000 steps, 0.1 s",
     ),
+    (36, 15, 8): Recipe(
+        Group(
+            (
+                Factor(4),
+                Factor(9, True),
+            ),
+            1,
+            0,
+            (
+                3,
+                0,
+            ),
+        ),
+        (
+            (0, 1, 2, 3, 4, 5, 9, 10, 11, 24, 25, 26, 27, 28, 29),
+            (0, 1, 3, 4, 6, 7, 9, 12, 15, 20, 23, 26, 27, 30, 33),
+            (0, 1, 4, 5, 6, 8, 9, 13, 17, 20, 21, 25, 27, 31, 35),
+            (0, 1, 3, 5, 7, 8, 9, 14, 16, 20, 22, 24, 27, 32, 34),
+        ),
+        "orbit engine, light effort, 0.05 s",
+    ),
     (37, 3, 1): Recipe(
         Group((Factor(37),), 1, 0, (10,)),
         ((3, 4, 30), (6, 8, 23), (9, 12, 16), (0, 5, 14)),
@@ -349,6 +416,16 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         Group((Factor(37),), 1, 0, (10,)),
         ((1, 7, 9, 10, 12, 16, 26, 33, 34),),
         "orbit engine, light effort, 0.01 s",
+    ),
+    (37, 10, 5): Recipe(
+        Group((Factor(37),), 1, 0, (10,)),
+        ((0, 1, 2, 6, 8, 10, 15, 20, 23, 26), (0, 1, 3, 4, 5, 10, 13, 19, 26, 30)),
+        "orbit engine, light effort, 0.01 s",
+    ),
+    (39, 3, 1): Recipe(
+        Group((Factor(19),), 2, 1, (4,)),
+        ((0, 19, 38), (1, 7, 11), (0, 20, 21)),
+        "orbit engine, light effort, 0.09 s",
     ),
     (41, 5, 1): Recipe(
         Group((Factor(41),), 1, 0, (10,)),
@@ -437,6 +514,19 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ((0, 1, 3, 15), (0, 6, 10, 33)),
         "orbit engine, light effort, 0.02 s",
     ),
+    (51, 6, 2): Recipe(
+        Group((Factor(25, True),), 2, 1, (26,)),
+        (
+            (0, 5, 10, 15, 20, 50),
+            (0, 5, 10, 15, 20, 50),
+            (25, 32, 39, 41, 48, 50),
+            (25, 32, 39, 41, 48, 50),
+            (0, 1, 4, 25, 31, 49),
+            (8, 22, 31, 36, 44, 49),
+            (1, 4, 8, 22, 36, 44),
+        ),
+        "orbit engine, light effort, 0.05 s",
+    ),
     (52, 4, 1): Recipe(
         Group(
             (
@@ -461,6 +551,11 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
             (0, 1, 4, 7, 9, 24, 26, 40, 41, 45, 53),
         ),
         "orbit engine, 300000 steps, 6.19 s",
+    ),
+    (61, 4, 1): Recipe(
+        Group((Factor(61),), 1, 0, (9,)),
+        ((0, 1, 5, 11),),
+        "orbit engine, light effort, 0.03 s",
     ),
     (61, 5, 1): Recipe(
         Group((Factor(61),), 1, 0, (12,)),
@@ -505,6 +600,11 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
         ),
         "orbit engine, 300000 steps, 0.35 s",
     ),
+    (91, 6, 1): Recipe(
+        Group((Factor(91),), 1, 0, (30,)),
+        ((0, 4, 13, 58, 72, 74),),
+        "orbit engine, light effort, 0.11 s",
+    ),
     (91, 7, 1): Recipe(
         Group((Factor(13),), 7, 0, (2,), (3, 3)),
         (
@@ -514,6 +614,24 @@ RECIPES: dict[tuple[int, int, int], Recipe] = {
             (4, 9, 53, 64, 65, 81, 88),
         ),
         "orbit engine, light effort, 0.09 s",
+    ),
+    (96, 20, 4): Recipe(
+        Group(
+            (
+                Factor(2),
+                Factor(3),
+                Factor(16, True),
+            ),
+            1,
+            0,
+            (
+                1,
+                1,
+                5,
+            ),
+        ),
+        ((0, 1, 10, 11, 16, 18, 29, 31, 32, 35, 36, 39, 48, 53, 57, 60, 64, 70, 72, 78),),
+        "orbit engine, 100000 steps, 1.97 s",
     ),
 }
 """(t, k, λ) to the recipe."""
