@@ -49,6 +49,8 @@ def directly(sizes: Balanced) -> Built | None:
 
 @cache
 def _searched(sizes: Balanced) -> Built | None:
+    if 2 * sizes.k > sizes.t:
+        return complement(sizes, build)
     return _first(SEARCHES, sizes)
 
 

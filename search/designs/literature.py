@@ -11,7 +11,10 @@ BEKER_HAEMERS = (
     "Beker and Haemers 1980, 2-designs having an intersection number k − n, "
     "Journal of Combinatorial Theory A 28, 64–81"
 )
-MATHON_ROSA = "in the table of Mathon and Rosa 2007, 2-(v,k,λ) designs of small order, Handbook of Combinatorial Designs"
+MATHON_ROSA = (
+    "listed by Mathon and Rosa 2007, 2-(v,k,λ) designs of small order, "
+    "Handbook of Combinatorial Designs, second edition"
+)
 BROUWER_WILBRINK = (
     "Brouwer and Wilbrink 1984, A symmetric design with parameters 2-(49,16,5), "
     "Journal of Combinatorial Theory A 37, 193–194"

@@ -63,22 +63,24 @@ def test_complete_blocks_exist() -> None:
 
 
 @pytest.mark.parametrize(
-    ("t", "k", "more", "words"),
+    ("t", "k", "blocks", "meetings", "words"),
     [
-        (2, 2, {}, "2 treatments"),
-        (5, 6, {}, "blocks of 6"),
-        (5, 1, {}, "blocks of 1"),
-        (1001, 4, {}, "1001 treatments"),
-        (999, 400, {}, "plots are more"),
-        (7, 3, {"blocks": 7, "meetings": 1}, "not both"),
-        (7, 3, {"blocks": 0}, "0 blocks"),
-        (7, 3, {"meetings": -1}, "-1 meetings"),
+        (2, 2, None, None, "2 treatments"),
+        (5, 6, None, None, "blocks of 6"),
+        (5, 1, None, None, "blocks of 1"),
+        (1001, 4, None, None, "1001 treatments"),
+        (999, 400, None, None, "plots are more"),
+        (7, 3, 7, 1, "not both"),
+        (7, 3, 0, None, "0 blocks"),
+        (7, 3, None, -1, "-1 meetings"),
     ],
 )
-def test_unusable_numbers_get_one_clear_message(t: int, k: int, more: dict[str, int], words: str) -> None:
+def test_unusable_numbers_get_one_clear_message(
+    t: int, k: int, blocks: int | None, meetings: int | None, words: str
+) -> None:
     """Each is refused in words that name it."""
     with pytest.raises(BadInput, match=words):
-        exists(t, k, **more)
+        exists(t, k, blocks=blocks, meetings=meetings)
 
 
 @pytest.mark.parametrize(("t", "k"), [(3, 2), (3, 3), (1000, 999)])
