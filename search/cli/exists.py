@@ -140,6 +140,7 @@ def _issue(design: Design, folder: Path) -> tuple[Path, ...]:
     from search.foundation.stopping import Ended
     from search.runs.conductor import checked
     from search.runs.plan import Plan
+    from search.trial.canonical import canonical
     from search.trial.limits import limits
     from search.trial.reading import trial_from_document
 
@@ -156,7 +157,7 @@ def _issue(design: Design, folder: Path) -> tuple[Path, ...]:
         moves=0,
         seconds=0.0,
         start=design.construction,
-        digest="",
+        digest=canonical(trial).digest,
     )
     return issue(checked(plan), folder).files
 

@@ -11,8 +11,8 @@ ATTEMPTS = {
     ),
     (56, 12, 3): "tried: as the residual of (71, 15, 3)",
     (28, 10, 5): (
-        "tried: 15 groups of order 14 to 84 on 4 copies of Z7, one of order 21 with 407,680 different orbits of "
-        "blocks, and 322 groups of order 8 to 88 with up to 60,000 steps for each stabiliser"
+        "tried: 15 groups of order 14 to 84 on 4 copies of Z7, one of order 21 with 407,680 different orbits "
+        "of blocks, and 322 groups of order 8 to 88 with up to 60,000 steps for each stabiliser"
     ),
 }
 """(t, k, λ) to a note."""

@@ -11,7 +11,6 @@ from search.designs.checking import block_faults
 from search.designs.conditions import conditions
 from search.designs.constructions.orbits import LIGHT, base_blocks, developed
 from search.designs.constructions.stored import RECIPES
-from search.designs.records import Existence
 from search.designs.survey import COLUMNS, admissible, as_csv, survey
 
 TABLE = Path(__file__).parents[2] / "results" / "balanced_designs.csv"
@@ -37,6 +36,13 @@ def test_up_to_ten_replications_one_set_is_unknown() -> None:
     assert [(row["treatments"], row["block_size"], row["meetings"]) for row in unknown] == [("51", "6", "1")]
 
 
+def test_the_table_was_made_fast() -> None:
+    """No set took ten seconds, and nine in ten less than one."""
+    seconds = [float(row["seconds"]) for row in _kept()]
+    assert max(seconds) < 10
+    assert sum(x < 1 for x in seconds) >= 0.9 * len(seconds)
+
+
 def test_nine_in_ten_sets_up_to_twenty_replications_are_decided() -> None:
     """Existing or impossible, each with a reason."""
     rows = _kept()
@@ -57,11 +63,10 @@ def test_a_sample_of_the_table_is_made_again() -> None:
 
 @pytest.mark.slow
 def test_the_whole_table_is_made_again() -> None:
-    """Every row comes out as it is kept, seconds aside, and no built set takes ten seconds."""
+    """Every row comes out as it is kept, seconds aside."""
     made = list(survey(admissible(range(3, 101), range(2, 21))))
     lines = list(csv.DictReader(as_csv(made).splitlines()))
     assert [{**row, "seconds": ""} for row in lines] == [{**row, "seconds": ""} for row in _kept()]
-    assert all(entry.seconds < 10 for entry in made if entry.verdict.existence is Existence.EXISTS)
 
 
 @pytest.mark.slow
