@@ -78,6 +78,9 @@ class Rules:
     per_replicate: tuple[tuple[int, int], ...] = ()
     """(treatment, times): stands that often in each replicate, instead of once."""
     twice_in_block: bool = False
+    unforced: tuple[tuple[int, int], ...] = ()
+    """(treatment, block): may stay out however large the block is. Never in a file: a trial with a `keep_out`
+    left out must not ask for more than one that keeps it."""
 
 
 @dataclass(frozen=True, slots=True)
