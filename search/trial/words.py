@@ -230,12 +230,6 @@ WORDS: dict[str, Words] = {
         "rows: |  with lines such as  aaabbb  below it",
     ),
     "ground.file": Words("Map in a file", "A CSV with line, place and block.", DRILL, "file: map.csv"),
-    "ground.places": Words(
-        "Table of plots",
-        "The lines of such a CSV, in the file itself.",
-        DRILL,
-        "places: |  with a CSV below it",
-    ),
     "ground.names": Words(
         "Names of the blocks",
         "What the letters of the map stand for.",
