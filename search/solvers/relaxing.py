@@ -142,11 +142,16 @@ class _Relaxer:
         return replace(self.trial, blocks=blocks)
 
     def _possible(self, changed: Trial) -> bool:
-        return self.questions.ask(only(changed, self.kept)) is Verdict.POSSIBLE
+        return self._as_a_file(only(changed, self.kept))
 
     def _without(self, said: Said) -> bool:
         left = [other for other in self.kept if other != said]
-        return self.questions.ask(only(self.trial, left)) is Verdict.POSSIBLE
+        return self._as_a_file(only(self.trial, left))
+
+    def _as_a_file(self, changed: Trial) -> bool:
+        """Whether a plan is seen for the trial as its file would then be read."""
+        as_read = replace(changed, rules=replace(changed.rules, unforced=()))
+        return self.questions.ask(as_read) is Verdict.POSSIBLE
 
     def _least_step(self, most: int, changed: Changed) -> int | None:
         """The fewest steps after which a plan is there; more steps never take one away."""
