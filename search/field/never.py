@@ -7,9 +7,9 @@ from collections import Counter
 import numpy as np
 
 from search.field.beside import Restriction
-from search.field.drawing import Standing, Urn
+from search.field.chain import Walk
 from search.field.settling import model_of
-from search.field.walking import Walk
+from search.field.urn import Standing, Urn
 from search.foundation.cpsat import Answer
 
 SWEEPS, FEWER_SWEEPS = 30, 6

@@ -111,7 +111,7 @@ def _efficiency(trial: Trial, document: dict[str, Any]) -> Iterator[Figure]:
 
 def _losses(trial: Trial, score: dict[str, Any]) -> Iterator[Figure]:
     replication, blocks = (score.get(f"loss_to_{word}_percent") for word in ("replication", "blocks"))
-    if not score["connected"] or not isinstance(replication, float) or not isinstance(blocks, float):
+    if not score["connected"] or replication is None or blocks is None:
         return
     yield Figure("Lost to replication", f"{replication:.2f} %", "By plots shared out otherwise than is best.")
     yield Figure(
@@ -135,6 +135,8 @@ def _precision(trial: Trial, document: dict[str, Any]) -> Iterator[Figure]:
         "trials, a good habit elsewhere.",
     )
     average, largest = score.get("average_pair_variance"), score.get("largest_pair_variance")
+    if min(average or 0, largest or 0) <= 0:
+        return
     found = expected_of(trial.precision, average, largest, df)
     if found is None:
         return
@@ -168,7 +170,7 @@ def _precision(trial: Trial, document: dict[str, Any]) -> Iterator[Figure]:
 def _pairs(
     document: dict[str, Any], names: list[str], variances: NDArray[np.float64] | None
 ) -> Iterator[Figure]:
-    meetings = document["score"].get("meetings", {})
+    meetings = document["score"].get("meetings") or {}
     least, most = meetings.get("least"), meetings.get("most")
     if isinstance(least, int) and isinstance(most, int):
         value = str(least) if least == most else f"{least} to {most}"

@@ -9,10 +9,10 @@ from dataclasses import dataclass
 import numpy as np
 
 from search.field.beside import restriction
-from search.field.drawing import Urn
 from search.field.never import never_on
 from search.field.numbering import Place, places
 from search.field.restricted import draw_restricted
+from search.field.urn import Urn
 from search.foundation.errors import BadInput
 from search.trial.checker import broken_rules
 from search.trial.records import Contents, Trial

@@ -8,9 +8,9 @@ from dataclasses import dataclass
 import numpy as np
 
 from search.field.beside import Restriction
-from search.field.drawing import Standing, Urn
+from search.field.chain import Walk, forgets
 from search.field.settling import settled, unsettled_block
-from search.field.walking import Walk, forgets
+from search.field.urn import Standing, Urn
 from search.foundation.cpsat import Answer
 from search.foundation.errors import Undecided
 from search.trial.records import Trial

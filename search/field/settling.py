@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from search.field.beside import Restriction
-from search.field.drawing import Standing, Urn
+from search.field.urn import Standing, Urn
 from search.foundation.cpsat import Answer, solve
 
 if TYPE_CHECKING:

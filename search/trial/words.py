@@ -231,7 +231,7 @@ WORDS: dict[str, Words] = {
     ),
     "ground.file": Words(
         "Map in a file",
-        "A CSV beside this file: line, place, block of every plot, and where measured x_m, y_m of its middle.",
+        "A CSV beside this file: line, place, block of every plot; where measured x_m, y_m of its middle.",
         DRILL,
         "file: map.csv",
     ),

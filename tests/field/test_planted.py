@@ -11,6 +11,9 @@ from search.field.planted import planted_plots
 from search.foundation.errors import BadInput
 from tests.field.made import document_of, trial_with
 
+COMPLETE = {"rows": "aaaaaaaa\nbbbbbbbb\ncccccccc"}
+"""Three complete blocks of eight, each a line."""
+
 
 @pytest.fixture(scope="module")
 def document() -> Document:
@@ -54,19 +57,21 @@ def test_a_plan_that_breaks_a_rule_is_never_printed(document: Document) -> None:
 
 
 def test_neighbours_that_clash_are_never_printed() -> None:
-    """Two plots of one block exchanged so that a treatment stands beside itself are found."""
-    trial = trial_with(rules={"not_beside": {"itself": True}})
+    """Arlen moved within its block to a plot beside Elder, whom it must not meet, is found."""
+    trial = trial_with(
+        treatments=["Arlen", "Elder", "C", "D", "E", "F", "G", "H"],
+        rules={"not_beside": {"pairs": [["Arlen", "Elder"]]}},
+        ground=COMPLETE,
+        plots_each=None,
+    )
     document = document_of(trial)
-    planted_plots(trial, document)
-    for one in document["plots"]:
-        for other in document["plots"]:
-            if one["block"] != other["block"] or one["treatment"] == other["treatment"]:
-                continue
-            to = {one["plot"]: other["treatment"], other["plot"]: one["treatment"]}
-            plots = [{**x, "treatment": to.get(x["plot"], x["treatment"])} for x in document["plots"]]
-            try:
-                planted_plots(trial, {**document, "plots": plots})
-            except BadInput as error:
-                assert "stands beside" in str(error)
-                return
-    pytest.fail("no exchange made a clash")
+    assert len(planted_plots(trial, document)) == 24
+    standing = {plot["plot"]: plot["treatment"] for plot in document["plots"]}
+    elder = next(plot for plot, name in standing.items() if name == "Elder")
+    beside = elder + 1 if elder + 1 in standing else elder - 1
+    block = {plot["plot"]: plot["block"] for plot in document["plots"]}
+    arlen = next(p for p, name in standing.items() if name == "Arlen" and block[p] == block[beside])
+    standing[arlen], standing[beside] = standing[beside], "Arlen"
+    plots = [{**plot, "treatment": standing[plot["plot"]]} for plot in document["plots"]]
+    with pytest.raises(BadInput, match="stands beside"):
+        planted_plots(trial, {**document, "plots": plots})

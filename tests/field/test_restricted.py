@@ -14,11 +14,11 @@ from scipy.stats import chisquare
 
 from search.field import restricted
 from search.field.beside import Restriction, clash_in_words, restriction
-from search.field.drawing import Urn
+from search.field.chain import Walk
 from search.field.numbering import Place, places
 from search.field.planfile import plan_document
 from search.field.randomise import lay_out
-from search.field.walking import Walk
+from search.field.urn import Urn
 from search.foundation.errors import Undecided
 from search.proof import verify as proof
 from search.trial.reading import trial_from_document

@@ -9,7 +9,7 @@ from random import Random
 import numpy as np
 
 from search.field.beside import Restriction
-from search.field.drawing import Standing, Urn
+from search.field.urn import Standing, Urn
 
 BLOCK_SHARE, LABEL_SHARE = 0.08, 0.04
 """Shares of the steps that exchange two whole blocks, and the names of two treatments."""
