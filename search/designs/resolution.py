@@ -4,20 +4,23 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from functools import cache
+from itertools import islice
 
 from search.designs.building import build, directly
 from search.designs.conditions import Balanced, with_meetings
 from search.designs.constructions.common import Built
-from search.designs.constructions.orbits import MEDIUM, base_blocks, described, developed, promising
+from search.designs.constructions.orbits import LIGHT, base_blocks, described, developed, promising
 from search.designs.constructions.sums import together
 from search.designs.records import Blocks, Design
 from search.designs.theorems import obstruction
 from search.foundation.cpsat import Answer, solve
 
-EFFORT = 4.0
+EFFORT = 2.0
 """Deterministic work of CP-SAT for one design."""
-GROUPS = 150
+GROUPS = 120
 """Groups under which further designs are looked for when the first has no replicates."""
+DEALT = 8
+"""Designs whose blocks are tried to be dealt into replicates."""
 
 Replicates = tuple[tuple[int, ...], ...]
 
@@ -51,7 +54,7 @@ def _by_sum(sizes: Balanced) -> Built | None:
 
 def _by_search(sizes: Balanced) -> Built | None:
     """Deal the blocks of one design after another, as not every one can be dealt."""
-    for candidate in _candidates(sizes):
+    for candidate in islice(_candidates(sizes), DEALT):
         replicates = dealt(candidate.blocks, sizes, effort=EFFORT)
         if replicates:
             return Built(candidate.blocks, f"{candidate.how}; dealt into replicates by CP-SAT", replicates)
@@ -64,7 +67,7 @@ def _candidates(sizes: Balanced) -> Iterator[Built]:
         return
     yield at_hand
     for group in promising(sizes)[:GROUPS]:
-        base = base_blocks(sizes, group, MEDIUM)
+        base = base_blocks(sizes, group, LIGHT)
         if base is not None:
             yield Built(developed(group, base), described(group, base))
 

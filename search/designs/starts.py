@@ -69,7 +69,7 @@ def starts(trial: Trial, *, effort: float = EFFORT) -> Iterator[Start]:
 def _fitting(rules: Tables) -> Iterator[Template]:
     """Designs with just the trial's numbers of treatments, blocks and plots."""
     sizes = set(rules.sizes.tolist())
-    if len(sizes) > 1 or rules.high.max() > 1:
+    if len(sizes) > 1:
         return
     k = sizes.pop()
     r, left = divmod(rules.n, rules.t)

@@ -45,20 +45,23 @@ HEAVY = Effort(300_000, 60_000, 30_000_000, 15.0)
 SEARCHED_TREATMENTS = 100
 SEARCHED_REPLICATION = 20
 """Up to here every set was searched once for longer than a user would wait; what was found is stored."""
+MOST_TREATMENTS = 150
+"""Beyond this even one group takes too long for an answer while somebody waits."""
 MOST_ROWS = 400
 """Orbits of pairs beyond which a group is of no help."""
 SYMMETRIC = 8
 """Times as many steps for symmetric designs, where few blocks pass the test that any two meet in λ points."""
-TRIED = 90
-"""Groups tried with light effort; a third of them once more with medium effort."""
+TRIED = 60
+"""Groups tried with light effort; a sixth of them once more with medium effort."""
 
 
 def orbits(sizes: Balanced, build: Build) -> Built | None:
     """The first design that a bounded search under groups of many kinds comes upon."""
-    if sizes.t <= SEARCHED_TREATMENTS and sizes.r <= SEARCHED_REPLICATION:
+    searched_before = sizes.t <= SEARCHED_TREATMENTS and sizes.r <= SEARCHED_REPLICATION
+    if searched_before or sizes.t > MOST_TREATMENTS:
         return None
     candidates = promising(sizes)
-    for effort, many in ((LIGHT, TRIED), (MEDIUM, TRIED // 3)):
+    for effort, many in ((LIGHT, TRIED), (MEDIUM, TRIED // 6)):
         for group in candidates[:many]:
             base = base_blocks(sizes, group, effort)
             if base is not None:
