@@ -5,7 +5,7 @@ from __future__ import annotations
 from math import comb
 
 from search.designs.attempts import notes
-from search.designs.building import build
+from search.designs.building import build, directly
 from search.designs.checking import faults
 from search.designs.conditions import Balanced, conditions, smallest
 from search.designs.literature import known
@@ -16,6 +16,8 @@ from search.foundation.errors import BadInput
 
 MOST_TREATMENTS = 1000
 MOST_PLOTS = 200_000
+RESOLVED_UP_TO = 10
+"""Replicates up to which every resolvable design was found in about a second."""
 
 
 def exists(
@@ -72,6 +74,20 @@ def decide(sizes: Balanced, *, resolvable: bool = False) -> Verdict:
         note = f"; {tried}" if (tried := notes(sizes)) else ""
         return Verdict(Existence.EXISTS, f"by the literature, not built here: {paper}{note}", sizes)
     return Verdict(Existence.UNKNOWN, _tried(sizes, resolvable), sizes, resolvable=resolvable)
+
+
+def at_once(sizes: Balanced, *, resolvable: bool = False) -> Verdict:
+    """The verdict as far as theorems, constructions without a search, and the literature give it."""
+    if reason := obstruction(sizes, resolvable=resolvable):
+        return Verdict(Existence.IMPOSSIBLE, reason, sizes, resolvable=resolvable)
+    if resolvable and sizes.r <= RESOLVED_UP_TO:
+        return decide(sizes, resolvable=True)
+    if not resolvable:
+        if built := directly(sizes):
+            return Verdict(Existence.EXISTS, built.how, sizes, Design(sizes, built.blocks, built.how))
+        if paper := known(sizes):
+            return Verdict(Existence.EXISTS, f"by the literature, not built here: {paper}", sizes)
+    return Verdict(Existence.UNKNOWN, "`evenfield exists` searches longer", sizes, resolvable=resolvable)
 
 
 def _tried(sizes: Balanced, resolvable: bool) -> str:

@@ -12,6 +12,7 @@ import numpy as np
 from search.designs.adapting import adapted
 from search.designs.building import directly
 from search.designs.conditions import Balanced, conditions, multiples
+from search.designs.existence import RESOLVED_UP_TO
 from search.designs.labelling import Template, labelled
 from search.designs.lattices import lattice
 from search.designs.records import Blocks
@@ -89,7 +90,7 @@ def _balanced(rules: Tables, k: int) -> Iterator[Template]:
         if built is not None:
             yield Template(sizes.t, built.blocks, f"balanced design: {built.how}", balanced=True)
         return
-    design = resolved(sizes)
+    design = resolved(sizes) if sizes.r <= RESOLVED_UP_TO else None
     if design is not None:
         where_from = f"balanced design in replicates: {design.construction}"
         yield Template(sizes.t, design.blocks, where_from, design.replicates, balanced=True)

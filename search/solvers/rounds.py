@@ -36,6 +36,8 @@ __all__ = [
     "search",
 ]
 
+KEPT = "kept plan"
+
 RUNS = 6
 """Runs of a round: one, two or three workers share them evenly."""
 REHEATED = 4
@@ -83,6 +85,7 @@ def search(
     seed: int,
     workers: int,
     watch: Watch,
+    known: str = KEPT,
 ) -> Outcome:
     """Search the best plan for a problem.
 
@@ -90,12 +93,13 @@ def search(
     ----------
     problem : rules and aim
     start : a plan within the rules
-    kept : the best plan of an earlier search, within the rules: the outcome is never worse
+    kept : a good plan within the rules, of an earlier search mostly: the outcome is never worse
     target : called with the number of each round before it; an objective that reaches it ends the search
     stop : limits in seconds and in moves, and interrupts
     seed : any whole number; the same one gives the same plan with any number of workers
     workers : threads
     watch : told the best objective, the moves scored and the seconds gone, a few times a second
+    known : where the kept plan comes from, in words
 
     Returns
     -------
@@ -104,7 +108,7 @@ def search(
     """
     warm_up()
     with one_thread(), Crew(workers, stop, watch) as crew:
-        origin, best, cooling = crew.one(lambda: prepared(problem, start, kept, seed, stop))
+        origin, best, cooling = crew.one(lambda: prepared(problem, start, kept, seed, stop, known))
         number = moves = 0
         while (ended := end(problem, best, target(number), moves, stop)) is None and cooling is not None:
             runs = runs_of(number, problem, origin, best, kept is not None, left(moves, stop))
@@ -124,7 +128,7 @@ def search(
 
 
 def prepared(
-    problem: Problem, start: Contents, kept: Contents | None, seed: int, stop: Stop
+    problem: Problem, start: Contents, kept: Contents | None, seed: int, stop: Stop, known: str = KEPT
 ) -> tuple[Contents, Best, Cooling | None]:
     """What comes before the first round.
 
@@ -138,7 +142,7 @@ def prepared(
     origin = connected(problem, start, stream(seed, CONNECTING), stop) or kept or start
     best = Best(origin, objective(problem, origin), -1, "first plan")
     if kept is not None and (of_kept := objective(problem, kept)) <= best.objective:
-        best = Best(kept, of_kept, -1, "kept plan")
+        best = Best(kept, of_kept, -1, known)
     if math.isinf(objective(problem, origin)) or not movable(problem, origin, stream(seed, MOVING), stop):
         return origin, best, None
     return origin, best, calibrated(problem, origin, stream(seed, CALIBRATING), stop)
