@@ -42,7 +42,8 @@ def only(trial: Trial, kept: Collection[Said]) -> Trial:
     named = {said.sort for said in trial.said} & set(Rules.__slots__) - {"twice_in_block"}
     picked: dict[str, Any] = {sort: _picked(getattr(trial.rules, sort), items.get(sort)) for sort in named}
     twice = trial.rules.twice_in_block or "twice_in_block" not in items
-    rules = replace(trial.rules, **picked, twice_in_block=twice)
+    left_out = set(trial.rules.keep_out) - set(picked.get("keep_out", trial.rules.keep_out))
+    rules = replace(trial.rules, **picked, twice_in_block=twice, unforced=tuple(sorted(left_out)))
     return replace(trial, treatments=treatments, rules=rules)
 
 

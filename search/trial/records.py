@@ -87,6 +87,9 @@ class Rules:
     meet_at_most: tuple[Meeting, ...] = ()
     keep_out: tuple[tuple[int, int], ...] = ()
     """(treatment, block): the treatment may not enter the block."""
+    unforced: tuple[tuple[int, int], ...] = ()
+    """(treatment, block): may stay out however large the block is. Never in a file: a trial with a `keep_out`
+    left out must not ask for more than one that keeps it."""
     must_hold: tuple[tuple[int, int], ...] = ()
     """(treatment, block): the block must contain the treatment."""
     replicates: tuple[Replicate, ...] = ()

@@ -85,14 +85,14 @@ def _answers(ask: Questions) -> list[tuple[dict[str, Any], Verdict]]:
 
 @pytest.mark.parametrize("seed", range(len(SORTS)))
 def test_the_planted_clash_is_found_among_a_hundred_rules(seed: int) -> None:
-    """60 treatments, about 120 lines: the planted lines and no other, in less than 10 s."""
+    """60 treatments, about 120 lines: the planted lines and no other, in less than 10 s of one processor."""
     drawn = impossible(seed)
     trial = trial_from_document(drawn.document)
     assert len(demands(trial)) > 100
-    started = time.monotonic()
+    started = time.process_time()
     (clash,) = find_clashes(trial, questions())
     offered = changes(trial, clash, (), questions())
-    assert time.monotonic() - started < 10
+    assert time.process_time() - started < 10
     assert clash.is_smallest
     assert offered
     found = {said.key for said in clash.lines}
