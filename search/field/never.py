@@ -16,7 +16,8 @@ SWEEPS, FEWER_SWEEPS = 30, 6
 MOST_ASKED = 60
 MOST_PLOTS = 400
 """Larger fields are looked at block by block alone."""
-SECONDS = 1.0
+EFFORT = 0.5
+"""Deterministic work of the solver for one question."""
 
 Never = tuple[tuple[int, int], ...]
 
@@ -36,12 +37,15 @@ def never_on(
     small = urn.n <= MOST_PLOTS
     block_of = {p: j for j, plots in enumerate(urn.plots) for p in plots}
     never = []
+    complete = small and len(unseen) <= MOST_ASKED
     for p, i in unseen[:MOST_ASKED]:
         asked = model_of(urn, limit, standing, range(len(urn.plots)) if small else (block_of[p],))
         asked.model.add(asked.stands[p, i] == 1)
-        if asked.settle(0, SECONDS)[0] is Answer.INFEASIBLE:
+        answer, _ = asked.settle(0, EFFORT)
+        complete &= answer is not Answer.UNKNOWN
+        if answer is Answer.INFEASIBLE:
             never.append((p, i))
-    return tuple(never), small and len(unseen) <= MOST_ASKED
+    return tuple(never), complete
 
 
 def _unseen(

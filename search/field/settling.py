@@ -13,7 +13,10 @@ from search.foundation.cpsat import Answer, solve
 if TYPE_CHECKING:
     from ortools.sat.python.cp_model import CpModel, IntVar
 
-SECONDS = 20.0
+EFFORT = 20.0
+"""Deterministic work of the solver: the same seed gives the same layout on a slow machine too."""
+SECONDS = 300.0
+"""Wall time after which the solver is given up all the same."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -23,10 +26,11 @@ class Model:
     model: CpModel
     stands: dict[tuple[int, int], IntVar]
 
-    def settle(self, seed: int, seconds: float) -> tuple[Answer, dict[int, int]]:
+    def settle(self, seed: int, effort: float) -> tuple[Answer, dict[int, int]]:
         """A layout without clashes: the treatment of each plot."""
         keys = list(self.stands)
-        solved = solve(self.model, [self.stands[key] for key in keys], seconds=seconds, seed=seed)
+        wanted = [self.stands[key] for key in keys]
+        solved = solve(self.model, wanted, seconds=SECONDS, effort=effort, seed=seed)
         return solved.answer, {p: i for (p, i), on in zip(keys, solved.values, strict=False) if on}
 
 
@@ -58,7 +62,7 @@ def model_of(urn: Urn, limit: Restriction, standing: Standing, blocks: range | t
 def settled(urn: Urn, limit: Restriction, standing: Standing, seed: int) -> tuple[Answer, Standing]:
     """A layout of the same blocks without clashes."""
     model = model_of(urn, limit, standing, range(len(urn.plots)))
-    answer, found = model.settle(seed, SECONDS)
+    answer, found = model.settle(seed, EFFORT)
     layout = standing.copy()
     for p, i in found.items():
         layout[p] = i
@@ -68,6 +72,6 @@ def settled(urn: Urn, limit: Restriction, standing: Standing, seed: int) -> tupl
 def unsettled_block(urn: Urn, limit: Restriction, standing: Standing) -> int | None:
     """A block whose own plots cannot keep its treatments apart, if there is one."""
     for j in range(len(urn.plots)):
-        if model_of(urn, limit, standing, (j,)).settle(0, 2.0)[0] is Answer.INFEASIBLE:
+        if model_of(urn, limit, standing, (j,)).settle(0, EFFORT)[0] is Answer.INFEASIBLE:
             return j
     return None
