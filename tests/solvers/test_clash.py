@@ -54,7 +54,7 @@ def test_divide_and_conquer_finds_a_smallest_set(n: int, data: st.DataObject) ->
     assert len(asked) - 1 - c <= 2 * c * (1 + math.ceil(math.log2(max(2, n / c)))) + 2 * c
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=40, deadline=None)
 @given(small_trials(most_treatments=4, most_plots=8))
 def test_a_clash_is_confirmed_by_trying_every_plan(trial: Trial) -> None:
     """On tiny impossible trials no plan obeys the clashing lines, and each line left out gives one."""
