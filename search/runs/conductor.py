@@ -15,7 +15,7 @@ from search.efficiency.records import Bound
 from search.efficiency.reference import reference_product, reference_variance
 from search.foundation.stopping import Limits, Observer, Stop
 from search.runs.plan import Plan
-from search.solvers.start import feasible_start
+from search.solvers.start import feasible_start, further_starts
 from search.trial.canonical import canonical
 from search.trial.checker import broken_rules
 from search.trial.limits import Limits as Replication
@@ -90,6 +90,7 @@ def find(
         workers=workers,
         watch=lambda value, moves, seconds: observer.progress(bounds.efficiency(value), moves, seconds),
         known="" if best is None else best.where_from,
+        others=further_starts(trial, rules, implied, seed=seed),
     )
     bounds.finish()
     broken = broken_rules(trial, outcome.contents)

@@ -8,7 +8,7 @@ plan, whoever works on which run, unless the clock or an interrupt cuts in.
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
 
 from search.efficiency.one_thread import one_thread
@@ -86,6 +86,7 @@ def search(
     workers: int,
     watch: Watch,
     known: str = KEPT,
+    others: Sequence[Contents] = (),
 ) -> Outcome:
     """Search the best plan for a problem.
 
@@ -100,6 +101,8 @@ def search(
     workers : threads
     watch : told the best objective, the moves scored and the seconds gone, a few times a second
     known : where the kept plan comes from, in words
+    others : more plans within the rules; runs start from them in turn, for rules can part the plans into
+        islands that no legal move joins
 
     Returns
     -------
@@ -108,10 +111,10 @@ def search(
     """
     warm_up()
     with one_thread(), Crew(workers, stop, watch) as crew:
-        origin, best, cooling = crew.one(lambda: prepared(problem, start, kept, seed, stop, known))
+        origins, best, cooling = crew.one(lambda: prepared(problem, start, kept, seed, stop, known, others))
         number = moves = 0
         while (ended := end(problem, best, target(number), moves, stop)) is None and cooling is not None:
-            runs = runs_of(number, problem, origin, best, kept is not None, left(moves, stop))
+            runs = runs_of(number, problem, origins, best, kept is not None, left(moves, stop))
             found = crew.round([job(problem, run, cooling, seed, stop) for run in runs], best.objective)
             best = best_of(problem, best, runs, found)
             moves += sum(what.moves for what in found if what is not None)
@@ -128,14 +131,21 @@ def search(
 
 
 def prepared(
-    problem: Problem, start: Contents, kept: Contents | None, seed: int, stop: Stop, known: str = KEPT
-) -> tuple[Contents, Best, Cooling | None]:
+    problem: Problem,
+    start: Contents,
+    kept: Contents | None,
+    seed: int,
+    stop: Stop,
+    known: str = KEPT,
+    others: Sequence[Contents] = (),
+) -> tuple[tuple[Contents, ...], Best, Cooling | None]:
     """What comes before the first round.
 
     Returns
     -------
-    origin : what runs scramble: the start, connected where that is in reach
-    best : the better of it and the kept plan
+    origins : what runs scramble, in turn: the start, connected where that is in reach, and the others
+        that are connected; of all these those that have a legal move
+    best : the best of them and the kept plan
     cooling : the temperatures of all runs; None where nothing can be searched, since no connected plan or
         no legal move was found
     """
@@ -143,9 +153,15 @@ def prepared(
     best = Best(origin, objective(problem, origin), -1, "first plan")
     if kept is not None and (of_kept := objective(problem, kept)) <= best.objective:
         best = Best(kept, of_kept, -1, known)
-    if math.isinf(objective(problem, origin)) or not movable(problem, origin, stream(seed, MOVING), stop):
-        return origin, best, None
-    return origin, best, calibrated(problem, origin, stream(seed, CALIBRATING), stop)
+    connected_others = [other for other in others if math.isfinite(objective(problem, other))]
+    for other in connected_others:
+        if (of_other := objective(problem, other)) < best.objective:
+            best = Best(other, of_other, -1, "first plan")
+    plans = [origin, *connected_others] if math.isfinite(objective(problem, origin)) else connected_others
+    origins = tuple(plan for plan in plans if movable(problem, plan, stream(seed, MOVING), stop))
+    if not origins:
+        return origins, best, None
+    return origins, best, calibrated(problem, origins[0], stream(seed, CALIBRATING), stop)
 
 
 def end(problem: Problem, best: Best, target: float, moves: int, stop: Stop) -> Ended | None:
@@ -169,7 +185,7 @@ def left(moves: int, stop: Stop) -> float:
 
 
 def runs_of(
-    number: int, problem: Problem, origin: Contents, best: Best, kept: bool, moves: float
+    number: int, problem: Problem, origins: Sequence[Contents], best: Best, kept: bool, moves: float
 ) -> list[Run]:
     """The runs of a round.
 
@@ -177,7 +193,7 @@ def runs_of(
     ----------
     number : of the round
     problem : gives the length of runs, by the plots
-    origin : what runs scramble
+    origins : what runs scramble, in turn
     best : the best plan so far, from which some runs start as it is
     kept : whether one does so in the first round already
     moves : moves that may still be scored; the runs share what is left
@@ -190,7 +206,7 @@ def runs_of(
     return [
         Run(number * RUNS + i, best.contents, known, True, each)
         if i < reheated
-        else Run(number * RUNS + i, origin, "random start", False, each)
+        else Run(number * RUNS + i, origins[(number + i) % len(origins)], "random start", False, each)
         for i in range(many)
     ]
 

@@ -13,6 +13,8 @@ from search.trial.records import Contents, Trial
 from search.trial.tables import Ints, Tables, contents_of
 
 ATTEMPTS = 12
+FURTHER, FURTHER_PLOTS = 8, 2_000
+"""Further starts that are tried, and the plots beyond which building them takes too long."""
 
 
 def feasible_start(
@@ -53,6 +55,24 @@ def feasible_start(
     if broken:  # the model or the solver is at fault, not the trial
         raise Undecided(f"the solver's plan breaks a rule ({broken[0]}), so nothing is known")
     return contents, "start from the rule solver"
+
+
+def further_starts(
+    trial: Trial, tables: Tables, limits: Limits, *, seed: int, many: int = FURTHER
+) -> tuple[Contents, ...]:
+    """More plans within the rules, as far as the greedy builder finds any, all different.
+
+    Rules can part the plans into islands that no exchange or replacement joins: so start on several.
+    """
+    if tables.n > FURTHER_PLOTS:
+        return ()
+    rng = np.random.default_rng((seed, 1))
+    found: dict[Contents, None] = {}
+    for _ in range(many):
+        counts = build(tables, limits, rng)
+        if counts is not None and not broken_rules(trial, contents := contents_of(counts)):
+            found[contents] = None
+    return tuple(found)
 
 
 def build(tables: Tables, limits: Limits, rng: np.random.Generator) -> Ints | None:

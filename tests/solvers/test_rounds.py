@@ -265,21 +265,21 @@ def test_runs_of_a_round_do_not_depend_on_workers_or_clock() -> None:
     """Six runs, growing slowly; four of them gentle once there is a plan; fewer where little is left."""
     problem, start = plain(12, 15, 4)
     best = Best(start, 0.5, 3, "random start")
-    first, second = (runs_of(number, problem, start, best, False, np.inf) for number in (0, 1))
+    first, second = (runs_of(number, problem, [start], best, False, np.inf) for number in (0, 1))
     assert [run.number for run in [*first, *second]] == list(range(12))
     assert [run.gently for run in first] == [False] * 6
     assert [run.gently for run in second] == [True] * 4 + [False] * 2
     assert first[0].moves < second[0].moves < 2 * first[0].moves
-    assert runs_of(0, problem, start, best, True, np.inf)[0].gently
-    assert [run.moves for run in runs_of(5, problem, start, best, False, 50_000)] == [25_000, 25_000]
-    assert [run.moves for run in runs_of(5, problem, start, best, False, 700)] == [700]
+    assert runs_of(0, problem, [start], best, True, np.inf)[0].gently
+    assert [run.moves for run in runs_of(5, problem, [start], best, False, 50_000)] == [25_000, 25_000]
+    assert [run.moves for run in runs_of(5, problem, [start], best, False, 700)] == [700]
 
 
 def test_of_equal_plans_the_lowest_run_wins() -> None:
     """Rounding does not decide between runs, and the plan before the round stays where none is better."""
     problem, start = plain(12, 15, 4)
     before = Best(start, 0.6, 2, "random start")
-    runs = runs_of(1, problem, start, before, False, np.inf)[:3]
+    runs = runs_of(1, problem, [start], before, False, np.inf)[:3]
     results = [Found(start, 0.5, 1), Found(start, 0.5 - 1e-15, 1), None]
     assert best_of(problem, before, runs, results).run == runs[0].number
     assert best_of(problem, replace(before, objective=0.5), runs, results).run == 2
