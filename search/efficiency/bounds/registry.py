@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 from search.efficiency.bounds import first_order, meets, pairs, replication, trace_root
 from search.efficiency.bounds.problem import Problem, problem
+from search.efficiency.bounds.spectral import local
 from search.efficiency.records import Bound
 from search.trial.limits import Limits
 from search.trial.records import Trial
@@ -28,9 +29,12 @@ class Argument:
     find: Callable[[Problem], Bound | None]
 
 
-ARGUMENTS = tuple(
-    Argument(module.NAME, module.applies, module.find)
-    for module in (first_order, replication, trace_root, pairs, meets)
+ARGUMENTS = (
+    *(
+        Argument(module.NAME, module.applies, module.find)
+        for module in (first_order, replication, trace_root, pairs, meets, local)
+    ),
+    Argument(local.FINER, local.applies, local.find_finer),
 )
 
 
