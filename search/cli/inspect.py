@@ -1,18 +1,25 @@
-"""`evenfield inspect`: what the file says, what its rules imply, and whether they can be met."""
+"""`evenfield inspect`: what will be planted, what the rules force, and whether they can be met."""
 
 from __future__ import annotations
 
 from collections import Counter
+from collections.abc import Iterator
+from dataclasses import asdict
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import click
 
+from search.cli.clashes import clash_lines
 from search.cli.output import emit, indented, page
 from search.designs.conditions import Balanced
 from search.runs.inspection import Inspection
 from search.trial.records import Trial
 
+if TYPE_CHECKING:
+    from rich.console import Console
+
+LISTED = 6
 EXIT = {"possible": 0, "impossible": 3, "undecided": 4}
 
 
@@ -34,7 +41,7 @@ def command(trial: Path, seconds: float, as_json: bool) -> int:
     record = read_trial(trial)
     found = inspect(record, seconds=seconds)
     if as_json:
-        emit("inspect", found.status, document(record, found))
+        emit("inspect", found.status, document(record, found), EXIT[found.status])
     else:
         show(record, found)
     return EXIT[found.status]
@@ -72,7 +79,10 @@ def document(trial: Trial, found: Inspection) -> dict[str, Any]:
         },
         "causes": list(found.causes),
         "shown_by": found.shown_by,
+        "clashes": [clash.document() for clash in found.clashes],
+        "never_meeting": [[trial.treatments[i].name for i in pair] for pair in found.never_meeting],
         "residual_df": found.residual_df,
+        "prospects": None if found.prospects is None else asdict(found.prospects),
         "warnings": list(found.warnings),
     }
 
@@ -92,12 +102,13 @@ def show(trial: Trial, found: Inspection) -> None:
     """The inspection as a page that a planner reads."""
     console = page()
     console.print(trial.name, style="bold")
-    indented(console, f"{trial.t} treatments on {trial.n} plots: {sizes_in_words(trial)}")
-    indented(console, _replication(trial))
-    indented(console, f"aim: {trial.aim.kind.value}")
-    if found.implied is not None and found.implied.told:
-        console.print("\nWhat the rules imply", style="bold")
-        for sentence in found.implied.told:
+    for sentence in planted(trial):
+        indented(console, sentence)
+    forced = list(found.implied.told) if found.implied is not None else []
+    forced += list(_never_meeting(trial, found))
+    if forced:
+        console.print("\nWhat the rules force", style="bold")
+        for sentence in forced:
             indented(console, sentence, "-")
     console.print("\nBalance", style="bold")
     indented(console, found.balanced)
@@ -108,17 +119,75 @@ def show(trial: Trial, found: Inspection) -> None:
         for design in found.near:
             indented(console, _in_words(design), "-")
     console.print("\nCan the rules be met?", style="bold")
-    if found.status == "possible":
-        indented(console, f"Yes: a plan that obeys them all was found ({found.shown_by}).")
-    else:
-        words = "No" if found.status == "impossible" else "Not decided"
-        indented(console, f"{words}{f' (shown by: {found.shown_by})' if found.shown_by else ''}:")
-        for cause in found.causes:
-            indented(console, cause, "-")
+    _show_verdict(console, found)
     console.print("\nBefore you search", style="bold")
-    indented(console, f"{found.residual_df} residual degrees of freedom if the plan is connected")
+    for sentence in _expected(trial, found):
+        indented(console, sentence)
     for warning in found.warnings:
         indented(console, warning, "!", "yellow")
+
+
+def planted(trial: Trial) -> Iterator[str]:
+    """What will be planted, in sentences."""
+    yield f"{trial.t} treatments on {trial.n} plots: {sizes_in_words(trial)}"
+    yield _replication(trial)
+    if trial.controls:
+        yield f"control: {', '.join(trial.treatments[i].name for i in trial.controls)}"
+    rules = {
+        "never_share_block": len(trial.rules.never_share_block),
+        "meet_at_least": len(trial.rules.meet_at_least),
+        "meet_at_most": len(trial.rules.meet_at_most),
+        "keep_out": len(trial.rules.keep_out),
+        "must_hold": len(trial.rules.must_hold),
+        "replicates": len(trial.rules.replicates),
+    }
+    told = ", ".join(f"{word} {many}" for word, many in rules.items() if many)
+    once = "twice in a block allowed" if trial.rules.twice_in_block else "each once in a block"
+    yield f"rules: {told}; {once}" if told else f"rules: none; {once}"
+    yield f"aim: {trial.aim.kind.value}"
+
+
+def _never_meeting(trial: Trial, found: Inspection) -> Iterator[str]:
+    pairs = [" and ".join(trial.treatments[i].name for i in pair) for pair in found.never_meeting]
+    if pairs:
+        more = f" and {len(pairs) - LISTED} more pairs" if len(pairs) > LISTED else ""
+        yield f"can never meet, whatever the plan: {'; '.join(pairs[:LISTED])}{more}"
+
+
+def _show_verdict(console: Console, found: Inspection) -> None:
+    if found.status == "possible":
+        indented(console, f"Yes: a plan that obeys them all was found ({found.shown_by}).")
+        return
+    if found.status == "undecided":
+        indented(console, f"Not decided: {'; '.join(found.causes)}")
+        return
+    indented(console, "No plan obeys them.")
+    for clash in found.clashes:
+        console.print()
+        for sentence in clash_lines(clash):
+            indented(console, sentence.strip(" -"), "-" if sentence.startswith(" ") else "")
+
+
+def _expected(trial: Trial, found: Inspection) -> Iterator[str]:
+    yield f"{found.residual_df} residual degrees of freedom if the plan is connected"
+    hoped = found.prospects
+    if hoped is None:
+        return
+    first = f"the first plan found has {hoped.first:.4f}" if hoped.first else "the first plan is disconnected"
+    if hoped.bound is not None:
+        yield f"efficiency: at best {hoped.bound:.4f} ({hoped.argument}); {first}, a search will better it"
+    if hoped.at_best is None and hoped.with_first is None:
+        yield "no difference can be tested: no residual degrees of freedom, or no connected plan"
+        return
+    asked = trial.precision
+    parts = [] if hoped.at_best is None else [f"at best {hoped.at_best:.3g} {hoped.unit}"]
+    parts += [] if hoped.with_first is None else [f"{hoped.with_first:.3g} {hoped.unit} with the first plan"]
+    yield (
+        f"detectable difference ({hoped.compared}; {asked.level_percent:g} % level, "
+        f"{asked.power_percent:g} % power): {', '.join(parts)}"
+    )
+    if asked.cv_percent is None:
+        yield "with precision: {cv_percent: …, mean: …} in the file it is told in the unit of the trial"
 
 
 def _in_words(design: Balanced) -> str:

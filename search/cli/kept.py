@@ -37,33 +37,23 @@ def list_(store: Path | None, most: int, as_json: bool) -> int:
         emit("kept", "listed", {"count": count, "plans": [_entry(entry) for entry in entries]})
         return 0
     from rich.table import Table
+    from rich.text import Text
 
     table = Table(box=None, padding=(0, 2, 0, 0))
-    for title, side in (
-        ("problem", "left"),
-        ("trial", "left"),
-        ("treatments", "right"),
-        ("plots", "right"),
-        ("aim", "left"),
-        ("efficiency", "right"),
-        ("gap %", "right"),
-        ("issued", "left"),
-        ("runs", "right"),
-    ):
-        table.add_column(title, justify=side)  # type: ignore[arg-type]
+    table.add_column("problem", no_wrap=True, min_width=8)
+    table.add_column("trial", no_wrap=True, overflow="ellipsis", max_width=40)
+    table.add_column("t", justify="right", no_wrap=True)
+    table.add_column("plots", justify="right", no_wrap=True)
+    table.add_column("aim", no_wrap=True, overflow="ellipsis")
+    table.add_column("efficiency", justify="right", no_wrap=True, min_width=10)
+    table.add_column("gap %", justify="right", no_wrap=True, min_width=5)
+    table.add_column("issued", no_wrap=True, min_width=5)
+    table.add_column("runs", justify="right", no_wrap=True)
     for entry in entries:
         gap = entry.gap_percent
-        table.add_row(
-            entry.digest[:8],
-            entry.name[:32],
-            str(entry.t),
-            str(entry.n),
-            entry.aim,
-            f"{entry.score:.6f}",
-            "" if gap is None else f"{gap:.3f}",
-            entry.mark,
-            str(entry.runs),
-        )
+        cells = [entry.digest[:8], entry.name, str(entry.t), str(entry.n), entry.aim, f"{entry.score:.6f}"]
+        cells += ["" if gap is None else f"{gap:.3f}", entry.mark, str(entry.runs)]
+        table.add_row(*map(Text, cells))
     console = page()
     console.print(table)
     console.print(f"{len(entries)} of {count} kept plans" if count != 1 else "1 kept plan")

@@ -1,6 +1,8 @@
 """The command `evenfield`: finds the command, runs it, and turns every ending into an exit status.
 
 0 done   1 refuted   2 bad input   3 impossible   4 undecided   70 our fault   130 interrupted
+
+The form of what is printed is described in `search.cli.output`.
 """
 
 from __future__ import annotations
@@ -13,10 +15,11 @@ from importlib import import_module
 
 import click
 
+from search.cli.interrupts import HEARD
 from search.cli.output import failure, report
 from search.foundation.errors import BadInput, EvenfieldError
 
-COMMANDS = ("inspect", "plan", "verify", "packet", "sweep", "kept")
+COMMANDS = ("new", "inspect", "plan", "verify", "packet", "sweep", "kept", "schema")
 INTERNAL = 70
 INTERRUPTED = 130
 
@@ -59,6 +62,8 @@ def invoke(arguments: Sequence[str]) -> int:
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return 0
     except Exception as error:
+        if HEARD.is_set():  # raised within a library, an interrupt may surface as anything
+            return failure(command, "interrupted", "interrupted", INTERRUPTED, as_json)
         if os.environ.get("EVENFIELD_DEBUG"):
             traceback.print_exc()
         text = f"internal error, please report it: {type(error).__name__}: {error}"
@@ -71,10 +76,5 @@ def _click_message(error: click.ClickException) -> str:
     return error.format_message() + hint
 
 
-def run() -> None:
-    """Entry point of the command line."""
-    sys.exit(invoke(sys.argv[1:]))
-
-
 if __name__ == "__main__":
-    run()
+    sys.exit(invoke(sys.argv[1:]))

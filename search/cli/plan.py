@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from search.cli.output import aside, emit, page
-from search.foundation.errors import BadInput
+from search.foundation.errors import BadInput, Impossible
 from search.foundation.stopping import Ended, Limits, Stop
 
 if TYPE_CHECKING:
@@ -71,25 +71,31 @@ def command(
         from search.cli.watching import Watching, interruptible
 
         stop = Stop(limits)
-        with interruptible(stop), Watching(aside(), quiet=as_json) as watching:
-            watching.begin(record)
-            plan = keeping.plan(
-                limits=limits,
-                seed=record.search.seed if seed is None else seed,
-                workers=workers or record.search.workers or _processors(),
-                observer=watching,
-                stop=stop,
-            )
+        try:
+            with interruptible(stop), Watching(aside(), quiet=as_json) as watching:
+                watching.begin(record)
+                plan = keeping.plan(
+                    limits=limits,
+                    seed=record.search.seed if seed is None else seed,
+                    workers=workers or record.search.workers or _processors(),
+                    observer=watching,
+                    stop=stop,
+                )
+        except Impossible as error:
+            from search.runs.explaining import explained
+
+            raise explained(record, error) from None
         chosen = record.randomise.seed if layout_seed is None else layout_seed
         issued = issue(plan, folder, chosen)
         keeping.issued(plan, issued.document["mark"])
+    status = INTERRUPTED if plan.ended_by is Ended.INTERRUPTED else 0
     if as_json:
-        emit("plan", "planned", _document(issued))
+        emit("plan", "planned", _document(issued), status)
     else:
         from search.cli.summary import show_plan
 
         show_plan(page(), issued)
-    return INTERRUPTED if plan.ended_by is Ended.INTERRUPTED else 0
+    return status
 
 
 def default_folder(trial: Trial) -> Path:

@@ -62,7 +62,7 @@ def _figures(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
                 f"{score['loss_to_blocks_percent']:.2f} %, to be won back by a smaller plot variance",
             ),
             ("lost to replication", f"{score['loss_to_replication_percent']:.2f} %"),
-            ("each pair shares", f"{least} blocks" if least == most else f"{least} to {most} blocks"),
+            ("each pair shares", _blocks(least, most)),
         ]
     rows.append(("residual degrees of freedom", str(score["residual_df"])))
     rows += _expected(trial, document)
@@ -101,6 +101,12 @@ def _expected(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
             )
         )
     return rows
+
+
+def _blocks(least: int, most: int) -> str:
+    if least == most:
+        return "one block" if least == 1 else f"{least} blocks"
+    return f"{least} to {most} blocks"
 
 
 def _near(path: Path) -> str:

@@ -8,8 +8,8 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from search.cli.output import aside, emit, page
-from search.runs.sweep import Progress, RowResult, SweepObserver, SweepResult
+from search.cli.output import aside, emit, indented, page
+from search.runs.sweep import Progress, RowResult, SweepObserver, SweepResult, WhereFrom
 
 if TYPE_CHECKING:
     from rich.console import Console
@@ -17,6 +17,7 @@ if TYPE_CHECKING:
     from rich.table import Table
 
 INTERRUPTED = 130
+FIGURES_WIDTH = 62
 SHOWN_ROWS = 12
 """Rows of the live table; earlier ones scroll away."""
 
@@ -52,8 +53,9 @@ def command(file: Path, workers: int | None, out: Path | None, store: Path | Non
     if as_json:
         rows = sweep_frame(result).astype(object)
         content = rows.where(rows.notna(), None).to_dict("records")
-        status = "interrupted" if result.interrupted else "swept"
-        emit("sweep", status, {"sweep": sweep.name, "rows": content, "files": [str(table)]})
+        document = {"sweep": sweep.name, "rows": content, "files": [str(table)]}
+        status = ("interrupted", INTERRUPTED) if result.interrupted else ("swept", 0)
+        emit("sweep", status[0], document, status[1])
     else:
         show(page(), result)
         page().print(f"\n  {table}", soft_wrap=True)
@@ -63,7 +65,10 @@ def command(file: Path, workers: int | None, out: Path | None, store: Path | Non
 def show(console: Console, result: SweepResult) -> None:
     """All rows, with what varies."""
     console.print(result.sweep.name, style="bold")
-    console.print(_table(result.rows, result.sweep.columns))
+    console.print(_table(console, result.rows, result.sweep.columns))
+    for row in result.rows:
+        if row.reason:
+            indented(console, f"row {row.row.number} is {row.status}: {row.reason}", "-")
     counts: dict[str, int] = {}
     for row in result.rows:
         counts[str(row.status)] = counts.get(str(row.status), 0) + 1
@@ -72,32 +77,42 @@ def show(console: Console, result: SweepResult) -> None:
         console.print("Interrupted: what finished is kept, and the same command goes on from there.")
 
 
-def _table(rows: tuple[RowResult, ...] | list[RowResult], columns: tuple[str, ...]) -> Table:
+def _table(
+    console: Console, rows: tuple[RowResult, ...] | list[RowResult], columns: tuple[str, ...]
+) -> Table:
     from rich.table import Table
     from rich.text import Text
 
     table = Table(box=None, padding=(0, 2, 0, 0))
-    table.add_column("row", justify="right")
+    # What varies gets the room that the figures leave.
+    room = max(6, min(28, (console.width - FIGURES_WIDTH) // max(1, len(columns)) - 2))
+    table.add_column("row", justify="right", no_wrap=True, min_width=3)
     for column in columns:
-        table.add_column(column, overflow="ellipsis", max_width=28, no_wrap=True)
+        table.add_column(_short(column.rsplit(".", 1)[-1], room), no_wrap=True)
     for title in ("plots", "best found", "bound", "gap %"):
-        table.add_column(title, justify="right")
-    table.add_column("standing", overflow="ellipsis", max_width=40, no_wrap=True)
+        table.add_column(title, justify="right", no_wrap=True)
+    table.add_column("standing", no_wrap=True)
+    table.add_column("", no_wrap=True)
     for row in rows:
-        cells = [str(row.row.number), *(str(row.row.values.get(c, "")) for c in columns), *_cells(row)]
+        values = (_short(str(row.row.values.get(column, "")), room) for column in columns)
+        cells = [str(row.row.number), *values, *_cells(row)]
         table.add_row(*map(Text, cells))
     return table
+
+
+def _short(text: str, most: int) -> str:
+    return text if len(text) <= most else f"{text[: most - 1]}…"
 
 
 def _cells(row: RowResult) -> list[str]:
     plots = "" if row.row.trial is None else str(row.row.trial.n)
     plan = row.plan
     if plan is None:
-        return [plots, "", "", "", f"{row.status}: {row.reason}" if row.reason else str(row.status)]
+        return [plots, "", "", "", str(row.status), ""]
     bound = "" if plan.bound is None else f"{plan.bound.value:.5f}"
     gap = "" if plan.gap_percent is None else f"{plan.gap_percent:.3f}"
-    kept = "" if str(row.where_from) == "searched" else " (kept)"
-    return [plots, f"{plan.score.aim:.5f}", bound, gap, f"{plan.standing.value}{kept}"]
+    kept = "kept" if row.where_from is WhereFrom.KEPT else ""
+    return [plots, f"{plan.score.aim:.5f}", bound, gap, plan.standing.value, kept]
 
 
 class LiveTable(SweepObserver):
@@ -137,8 +152,9 @@ class LiveTable(SweepObserver):
     def finished(self, result: RowResult, progress: Progress) -> None:
         self.rows = [*self.rows[1 - SHOWN_ROWS :], result]
         if self.live is None and not self.quiet:
+            # nobody sees a live table: a line for each row
             told = " ".join(part for part in _cells(result)[1:] if part)
-            self.console.print(f"row {result.row.number}: {told}   [{_totals(progress)}]", soft_wrap=True)
+            self.console.print(f"row {result.row.number}: {told} ({_totals(progress)})", soft_wrap=True)
         self.progress(progress)
 
     def progress(self, progress: Progress) -> None:
@@ -150,7 +166,7 @@ class LiveTable(SweepObserver):
         from rich.console import Group
 
         columns = tuple(dict.fromkeys(key for row in self.rows for key in row.row.values))
-        return Group(_table(self.rows, columns), _totals(progress))
+        return Group(_table(self.console, self.rows, columns), _totals(progress))
 
 
 def _totals(progress: Progress) -> str:

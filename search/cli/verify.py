@@ -21,7 +21,8 @@ def command(plan: Path, as_json: bool) -> int:
 
     verdict = verify(document_of(plan))
     if as_json:
-        emit("verify", "proved" if verdict.holds else "refuted", verdict.document())
+        status = 0 if verdict.holds else REFUTED
+        emit("verify", "proved" if verdict.holds else "refuted", verdict.document(), status)
     else:
         console = page()
         for finding in verdict.findings:

@@ -74,15 +74,54 @@ class BadInput(EvenfieldError):
     """A plan file, a store or an option that cannot be used, with what to do instead."""
 
 
+@dataclass(frozen=True, slots=True)
+class Clash:
+    """Lines of a file that cannot all hold, told in its own words.
+
+    Parameters
+    ----------
+    lines : the clashing lines, each as (key, line number or 0, what it asks for)
+    among : lines that say what there is to plant and where, in the same form
+    is_smallest : every clashing line is needed: without it a plan was found
+    cause : why they clash, in a sentence
+    shown_by : how that was shown
+    changes : what to relax, the smallest change first; each alone was seen to leave a plan
+    """
+
+    lines: tuple[tuple[str, int, str], ...]
+    among: tuple[tuple[str, int, str], ...]
+    is_smallest: bool
+    cause: str
+    shown_by: str
+    changes: tuple[str, ...]
+
+    def document(self) -> dict[str, object]:
+        """The clash as plain JSON data."""
+        return {
+            "lines": [_line(line) for line in self.lines],
+            "among": [_line(line) for line in self.among],
+            "smallest": self.is_smallest,
+            "cause": self.cause,
+            "shown_by": self.shown_by,
+            "changes": list(self.changes),
+        }
+
+
+def _line(line: tuple[str, int, str]) -> dict[str, object]:
+    key, number, text = line
+    return {"key": key, "line": number, "text": text}
+
+
 class Impossible(EvenfieldError):
-    """No plan obeys the rules; `causes` says why in the words of the file."""
+    """No plan obeys the rules; `causes` says why, `clashes` which lines of the file cannot all hold."""
 
     exit_status = 3
     status = "impossible"
 
-    def __init__(self, causes: Sequence[str], shown_by: str) -> None:
+    def __init__(self, causes: Sequence[str], shown_by: str, clashes: Sequence[Clash] = ()) -> None:
         self.causes = tuple(causes)
         self.shown_by = shown_by
+        self.clashes = tuple(clashes)
         super().__init__("; ".join(self.causes))
 
 

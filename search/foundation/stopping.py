@@ -67,6 +67,11 @@ class Stop:
         """Whether the time limit has passed."""
         return self.limits.seconds is not None and self.elapsed >= self.limits.seconds
 
+    @property
+    def due(self) -> bool:
+        """Whether to end now, for the one reason or the other."""
+        return self.interrupted or self.out_of_time
+
 
 class Observer:
     """Watches a search; every method does nothing by default."""

@@ -15,6 +15,7 @@ from search.efficiency.reference import reference_product, reference_variance
 from search.foundation.stopping import Limits, Observer, Stop
 from search.runs.plan import Plan
 from search.solvers.start import feasible_start
+from search.trial.canonical import canonical
 from search.trial.checker import broken_rules
 from search.trial.limits import Limits as Replication
 from search.trial.limits import limits as implied_limits
@@ -46,7 +47,7 @@ def find(
     limits : how far to search; its clock starts when the kernels are ready
     seed : of the search; the same seed gives the same plan with any number of workers
     workers : threads
-    digest : of the problem, recorded in the plan
+    digest : of the problem where it is known already, recorded in the plan
     kept : the best plan of earlier searches: the result is never worse
     observer : is told of the first plan, of bounds and of progress
     stop : ends the search from outside
@@ -76,7 +77,8 @@ def find(
     bounds = _Bounds(trial, implied, observer)
     _wait_for_kernels(observer, stop)
 
-    from search.solvers.rounds import Problem, search
+    from search.solvers.records import Problem
+    from search.solvers.rounds import search
 
     stop.restart()
     outcome = search(
@@ -104,7 +106,7 @@ def find(
             moves=outcome.moves,
             seconds=outcome.seconds,
             start=outcome.start,
-            digest=digest,
+            digest=digest or canonical(trial).digest,
         )
     )
 

@@ -99,6 +99,9 @@ class Database:
         except sqlite3.Error as error:
             cause = REMEDIES.get(getattr(error, "sqlite_errorcode", 0) & 0xFF, f"{error}; {ANOTHER}")
             raise BadInput(f"cannot {doing} the store {self.path}: {cause}") from error
+        except UnicodeDecodeError as error:  # the message of the system quotes what is damaged
+            cause = REMEDIES[sqlite3.SQLITE_CORRUPT]
+            raise BadInput(f"cannot {doing} the store {self.path}: {cause}") from error
         except OSError as error:
             reason = (error.strerror or "no access").lower()
             raise BadInput(f"cannot {doing} the store {self.path}: {reason}; {ELSEWHERE}") from error

@@ -3,18 +3,17 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
 from search.designs.conditions import Balanced, conditions, nearby, smallest
-from search.foundation.errors import Impossible, Undecided
+from search.foundation.errors import Clash, Impossible, Undecided
+from search.runs.cautions import cautions, never_meeting
+from search.runs.explaining import USUAL_SECONDS, explained
+from search.runs.prospects import Prospects, prospects
 from search.solvers.start import feasible_start
 from search.trial.limits import Limits, limits
-from search.trial.records import AimKind, Trial
+from search.trial.records import Trial
 from search.trial.tables import tables
-
-ENOUGH_DF = 12
-MANY_PLOTS = 20
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,24 +25,30 @@ class Inspection:
     status : possible, impossible or undecided
     shown_by : how that was decided
     causes : why it is impossible or undecided
+    clashes : lines of the file that cannot all hold, and what to relax
     implied : what the rules leave of the replication; None where counts clash
     balanced : what counting says of a balanced design, in a sentence
     design : its parameters where the counts allow one
     fewest : the smallest balanced sizes for the trial's treatments and usual block size
     near : other balanced sizes near to the trial's
+    never_meeting : pairs that can never meet, though no rule says so by itself
     residual_df : expected for a connected plan
+    prospects : what the trial can be expected to show; None where that is not known
     warnings : what a biometrician would want to know first
     """
 
     status: str
     shown_by: str
     causes: tuple[str, ...]
+    clashes: tuple[Clash, ...]
     implied: Limits | None
     balanced: str
     design: Balanced | None
     fewest: Balanced | None
     near: tuple[Balanced, ...]
+    never_meeting: tuple[tuple[int, int], ...]
     residual_df: int
+    prospects: Prospects | None
     warnings: tuple[str, ...]
 
 
@@ -57,12 +62,15 @@ def inspect(trial: Trial, *, seconds: float, seed: int = 1) -> Inspection:
     seed : of the greedy builder and the solver
     """
     implied, status, shown_by, causes = None, "possible", "", tuple[str, ...]()
+    clashes, expected = tuple[Clash, ...](), None
     try:
         implied = limits(trial)
         rules = replace(tables(trial), least=implied.least, most=implied.most)
-        _, shown_by = feasible_start(trial, rules, implied, seed=seed, seconds=seconds)
+        first, shown_by = feasible_start(trial, rules, implied, seed=seed, seconds=seconds)
+        expected = prospects(trial, implied, first)
     except Impossible as error:
         status, shown_by, causes = "impossible", error.shown_by, error.causes
+        clashes = explained(trial, error, seconds=min(seconds, USUAL_SECONDS), seed=seed).clashes
     except Undecided as error:
         status, causes = "undecided", (str(error),)
     sentence, design = balance(trial)
@@ -73,13 +81,16 @@ def inspect(trial: Trial, *, seconds: float, seed: int = 1) -> Inspection:
         status=status,
         shown_by=shown_by,
         causes=causes,
+        clashes=clashes,
         implied=implied,
         balanced=sentence,
         design=design,
         fewest=fewest,
         near=tuple(x for x in nearby(trial.t, usual, trial.n) if x not in (fewest, design)),
+        never_meeting=never_meeting(trial),
         residual_df=max(0, trial.n - trial.b - trial.t + 1),
-        warnings=tuple(_warnings(trial, implied)),
+        prospects=expected,
+        warnings=cautions(trial, implied),
     )
 
 
@@ -122,31 +133,3 @@ def _barred_by_rules(trial: Trial, design: Balanced) -> str:
     if inside and trial.rules.replicates and trial.b < trial.t + design.r - 1:
         return "in complete replicates it would need t + r − 1 blocks at least (Bose 1942)"
     return ""
-
-
-def _warnings(trial: Trial, implied: Limits | None) -> Iterator[str]:
-    if trial.n < trial.t + trial.b - 1:
-        yield (
-            f"{trial.n} plots cannot connect {trial.t} treatments in {trial.b} blocks: at least "
-            f"{trial.t + trial.b - 1} are needed, so not every difference can be estimated"
-        )
-    df = trial.n - trial.b - trial.t + 1
-    if df < ENOUGH_DF:
-        yield (
-            f"{max(0, df)} residual degrees of freedom: fewer than the {ENOUGH_DF} that EPPO standard "
-            "PP 1/152 asks of efficacy trials, a good habit elsewhere"
-        )
-    large = [block.name for block in trial.blocks if block.plots > MANY_PLOTS]
-    if large:
-        yield f"blocks of over {MANY_PLOTS} plots are seldom even: {', '.join(large[:6])}"
-    if implied is None:
-        return
-    alone = [x.name for x, most in zip(trial.treatments, implied.most, strict=True) if most == 1]
-    if alone:
-        yield f"one plot only: {', '.join(alone[:6])}; one lost plot loses the treatment"
-    if trial.aim.kind is AimKind.AGAINST_CONTROL:
-        others = [int(implied.least[i]) for i in range(trial.t) if i not in trial.controls]
-        rest = max(others, default=0)
-        weak = [trial.treatments[c].name for c in trial.controls if implied.most[c] < rest]
-        if weak:
-            yield f"control with fewer plots than others, though all are compared with it: {', '.join(weak)}"

@@ -191,7 +191,9 @@ class Store:
                 (digest, digest, digest),
             ).fetchall()
             return tuple(
-                Shown(problem, aim, self._kept(problem, aim), self.runs(digest, aim)) for (aim,) in aims
+                Shown(problem, aim, self._kept(problem, aim), self.runs(digest, aim))
+                for (aim,) in aims
+                if isinstance(aim, str)  # anything may stand in a file that somebody wrote into
             )
 
     def _only_one(self, word: str) -> str:

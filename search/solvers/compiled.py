@@ -3,9 +3,13 @@
 from __future__ import annotations
 
 import os
+import sys
 import tempfile
 from pathlib import Path
 from types import ModuleType
+
+ENTRIES = ("wander", "make_move", "anneal", "best_move")
+"""The functions of the kernel that are compiled and kept."""
 
 
 def cache_folder() -> Path:
@@ -31,14 +35,18 @@ def _writable(folder: Path) -> bool:
 
 
 def are_cached() -> bool:
-    """Whether the kernels of this version were compiled before on this machine, as far as can be seen."""
+    """Whether the kernel of this version was compiled before on this machine, as far as can be seen."""
     folder = Path(os.environ.get("NUMBA_CACHE_DIR") or cache_folder())
-    source = Path(__file__).with_name("kernel.py").stat().st_mtime
-    return any(index.stat().st_mtime >= source for index in folder.glob("**/kernel.*.nbi"))
+    written = Path(__file__).with_name("kernel.py").stat().st_mtime
+    python = f"py{sys.version_info.major}{sys.version_info.minor}"
+    return all(
+        any(index.stat().st_mtime >= written for index in folder.glob(f"**/kernel.{entry}-*.{python}*.nbi"))
+        for entry in ENTRIES
+    )
 
 
 def warm_up() -> None:
-    """Load the compiled kernels, or compile them; where none is cached this takes about 20 seconds."""
+    """Load the compiled kernels, or compile them; where none is kept this takes about 10 seconds."""
     kernel()
 
 
@@ -50,7 +58,7 @@ def kernel() -> ModuleType:
     import numba
 
     if "NUMBA_CACHE_DIR" not in os.environ:
-        numba.config.CACHE_DIR = str(cache_folder())
+        numba.config.CACHE_DIR = str(cache_folder())  # type: ignore[attr-defined]  # made at run time
     from search.solvers import kernel as module
 
     return module

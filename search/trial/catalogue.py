@@ -22,12 +22,14 @@ from search.trial.kinds import (
     Text,
     Whole,
 )
-from search.trial.nodes import Mapping, Node, Scalar
+from search.trial.nodes import Mapping, Node, Scalar, describe
 from search.trial.records import AimKind
 
-MOST_TREATMENTS = 5_000
+MOST_TREATMENTS = 2_000
 MOST_BLOCKS = 5_000
 MOST_PLOTS = 100_000
+MOST_CELLS = 2_000_000
+"""Treatments times blocks: tables of that size still fit into a small machine."""
 
 COUNT = Whole(1, MOST_PLOTS)
 PAIR = Listing(Text(), 2, 2)
@@ -70,7 +72,7 @@ class BlocksKind:
 
     def schema(self) -> Schema:
         named = self.named.schema()
-        named["propertyNames"] = {"not": {"enum": ["count", "plots", "wanted"]}}
+        named["propertyNames"]["not"] = {"enum": ["count", "plots", "wanted"]}
         return {"anyOf": [self.alike.schema(), named]}
 
 
@@ -82,6 +84,29 @@ MEETINGS = Either(
     sequence=Listing(Fields({"pair": PAIR, "blocks": Whole(0, MOST_BLOCKS)}, ("pair", "blocks"))),
 )
 
+
+@dataclass(frozen=True, slots=True)
+class ReplicatesKind:
+    """Names with lists of blocks; a number here is a slip of its own."""
+
+    table: Kind = Table(Listing(Text(), 1), reserved={"per_replicate": Table(COUNT)})
+
+    def read(self, node: Node, key: str, report: Report) -> Any:
+        if isinstance(node, Scalar) and not node.nothing:
+            report.add(
+                node,
+                key,
+                describe(node),
+                "names with lists of blocks",
+                remedy="plots_each says how many plots a treatment has; here: name: [blocks]",
+            )
+            return None
+        return self.table.read(node, key, report)
+
+    def schema(self) -> Schema:
+        return self.table.schema()
+
+
 RULES = Fields(
     {
         "never_share_block": Listing(Listing(Text(), 2)),
@@ -89,14 +114,7 @@ RULES = Fields(
         "meet_at_most": MEETINGS,
         "keep_out": Table(Listing(Text(), 1)),
         "must_hold": Table(Listing(Text(), 1)),
-        "replicates": Table(
-            Either(
-                "a list of blocks",
-                sequence=Listing(Text(), 1),
-                mapping=Table(COUNT),
-                remedy="plots_each says how many plots a treatment has; here: name: [blocks]",
-            )
-        ),
+        "replicates": ReplicatesKind(),
         "per_replicate": Table(COUNT),
         "twice_in_block": Flag(),
         "not_beside": NotYet("a rule about neighbouring plots"),
@@ -123,7 +141,8 @@ GROUND = Fields(
         "north_deg": Number(-360, 360),
         "corner": Listing(Number(-180, 180), 2, 2),
         "file": NotYet("a map in a file of its own"),
-    }
+    },
+    one_of=("rows", "file"),
 )
 
 AIM = Either(
@@ -192,11 +211,24 @@ TRIAL = Fields(
     TRIAL_KEYS,
     required=("trial", "treatments"),
     slips={
+        **dict.fromkeys(RULES.kinds, "set it in under rules:"),
         "reps": "plots_each: the number of plots for each treatment",
         "replicates": "plots_each for a number of plots, rules.replicates for groups of blocks",
         "varieties": "treatments",
         "bays": "blocks",
         "name": "trial",
         "plots": "plots_each",
+        "title": "trial",
+        "lines": "treatments",
+        "entries": "treatments",
+        "genotypes": "treatments",
+        "field": "ground",
+        "map": "ground",
+        "constraints": "rules",
+        "criterion": "aim",
+        "goal": "aim",
+        "replication": "plots_each: the number of plots for each treatment",
+        "replications": "plots_each: the number of plots for each treatment",
     },
+    one_of=("blocks", "ground"),
 )

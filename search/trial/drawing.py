@@ -5,6 +5,7 @@ from __future__ import annotations
 from search.foundation.errors import shown
 from search.trial.catalogue import MOST_PLOTS
 from search.trial.kinds import Report, Section
+from search.trial.names import plain
 from search.trial.records import Block, Ground, Numbering
 
 EMPTY = "."
@@ -20,11 +21,8 @@ def read_ground(section: Section | None, report: Report) -> tuple[Ground | None,
     """
     if section is None:
         return None, None
-    node = section.where.get("rows")
     rows: tuple[str, ...] | None = section.get("rows")
     if rows is None:
-        if node is None:
-            report.add(None, "ground.rows", "nothing", "the map, a line of text for a line of plots")
         return None, None
     if not _sound(rows, section, report):
         return None, None
@@ -39,6 +37,7 @@ def read_ground(section: Section | None, report: Report) -> tuple[Ground | None,
             "ground.corner",
             f"the latitude {corner[0]:g}",
             "[latitude, longitude], the latitude from -90 to 90",
+            remedy="latitude first",
         )
     ground = Ground(
         rows=rows,
@@ -64,6 +63,7 @@ def _sound(rows: tuple[str, ...], section: Section, report: Report) -> bool:
                 key,
                 f"{shown(strange)} in line {number} of the map",
                 "letters a-z and A-Z for blocks, a dot for a place without a plot",
+                remedy="a dot, or a letter of its own for the block",
             )
         elif len(row) != width:
             report.add(
@@ -76,26 +76,33 @@ def _sound(rows: tuple[str, ...], section: Section, report: Report) -> bool:
             )
     plots = sum(c != EMPTY for row in rows for c in row)
     if not 0 < plots <= MOST_PLOTS:
-        report.add(node, key, f"{plots:,} plots", f"1 to {MOST_PLOTS:,} plots")
+        remedy = "a letter for every plot"
+        report.add(node, key, f"{plots:,} plots", f"1 to {MOST_PLOTS:,} plots", remedy=remedy)
     return len(report.faults) == before
 
 
 def _names(letters: list[str], section: Section, report: Report) -> dict[str, str]:
+    node = section.where["rows"]
     given: Section = section.get("names", Section())
     for letter in given:
         if letter not in letters:
-            report.add(given.key_at[letter], "ground.names", shown(letter), "a letter that is on the map")
+            report.add(
+                given.key_at[letter],
+                "ground.names",
+                shown(letter),
+                "a letter that is on the map",
+                remedy=f"the letters of the map: {', '.join(letters)}",
+            )
     names = {letter: given.get(letter, letter) for letter in letters}
     seen: dict[str, str] = {}
     for letter, name in names.items():
-        plain = "".join(name.split()).casefold()
-        if plain in seen:
+        if plain(name) in seen:
             report.add(
-                given.where.get(letter),
+                given.key_at.get(letter, node),
                 "ground.names",
-                f"{shown(name)} for {seen[plain]} and {letter}",
+                f"{shown(name)} for {seen[plain(name)]} and {letter}",
                 "a name of its own for every block, unlike in more than case and blanks",
                 remedy="use only small letters, or name the blocks",
             )
-        seen.setdefault(plain, letter)
+        seen.setdefault(plain(name), letter)
     return names

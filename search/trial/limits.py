@@ -8,12 +8,13 @@ never meet. Search and bounds use both; counts that cannot all hold make the tri
 from __future__ import annotations
 
 from dataclasses import dataclass
+from heapq import heapify, heappop, heappush
 
 import numpy as np
 
 from search.foundation.errors import Impossible
 from search.trial.records import Trial
-from search.trial.tables import Ints, Tables, tables
+from search.trial.tables import Bools, Ints, Tables, tables
 
 LISTED = 6
 """At most so many names are spelled out in a sentence."""
@@ -95,6 +96,34 @@ def cliques(apart: Ints | np.ndarray) -> tuple[tuple[int, ...], ...]:
     return tuple(dict.fromkeys(found))
 
 
+def caps_of_pairs(rules: Tables) -> Ints:
+    """Most meetings of each pair of treatments, one number for each pair."""
+    above: Ints = rules.meet_most[np.triu_indices(rules.t, 1)]
+    return above
+
+
+def _fewest_crossings(least: list[int], most: list[int], plots: int) -> int:
+    """The least Σ r(r − 1)/2 over r within the ranges, Σ r = plots: dealt out one by one, fewest first."""
+    r = list(least)
+    heap = [(plots_of, i) for i, plots_of in enumerate(r) if plots_of < most[i]]
+    heapify(heap)
+    for _ in range(plots - sum(r)):
+        if not heap:
+            break
+        _, i = heappop(heap)
+        r[i] += 1
+        if r[i] < most[i]:
+            heappush(heap, (r[i], i))
+    return sum(x * (x - 1) // 2 for x in r)
+
+
+def _shared(stands: Bools) -> Ints:
+    """Blocks that each two treatments share; in floating point, where products of matrices are quick."""
+    counts = stands.astype(np.float64)
+    shared: Ints = (counts @ counts.T).astype(np.int64)
+    return shared
+
+
 def _clash(text: str, shown_by: str = "count") -> Impossible:
     return Impossible([text], shown_by)
 
@@ -144,18 +173,16 @@ class _Implications:
             fewest, most = rules.meet_least[i, j], rules.meet_most[i, j]
             limit = "never may" if rules.apart[i, j] else f"may share at most {most}"
             causes.append(f"{self._named((i, j))} must share {fewest} blocks and {limit}")
-        held = (rules.low > 0).astype(np.int64)
-        together = held @ held.T
+        together = _shared(rules.low > 0)
         for i, j in zip(*np.nonzero(np.triu(rules.apart & (together > 0), 1)), strict=True):
-            block = self.blocks[int(np.argmax(held[i] * held[j]))]
+            block = self.blocks[int(np.argmax((rules.low[i] > 0) & (rules.low[j] > 0)))]
             causes.append(f"{block} must hold both {self._named((i, j))}, which never share a block")
         for i, j in zip(*np.nonzero(np.triu((together > rules.meet_most) & ~rules.apart, 1)), strict=True):
             causes.append(
                 f"{self._named((i, j))} are both required in {together[i, j]} blocks "
                 f"and may share at most {rules.meet_most[i, j]}"
             )
-        open_ = (rules.high > 0).astype(np.int64)
-        common = open_ @ open_.T
+        common = _shared(rules.high > 0)
         for i, j in zip(*np.nonzero(np.triu(rules.meet_least > common, 1)), strict=True):
             causes.append(
                 f"{self._named((i, j))} must share {rules.meet_least[i, j]} blocks, "
@@ -320,6 +347,20 @@ class _Implications:
             raise _clash(
                 f"the rules ask for {floors} meetings of two treatments, "
                 f"but the blocks bring about only {pairs}"
+            )
+
+        self._once_together(bool((caps_of_pairs(rules) <= 1).all()))
+
+    def _once_together(self, applies: bool) -> None:
+        """Where no pair meets twice, no two blocks share two treatments: blocks are counted like pairs."""
+        if not applies:
+            return
+        b = self.tables.b
+        crossings = _fewest_crossings(self.least.tolist(), self.most.tolist(), self.tables.n)
+        if crossings > b * (b - 1) // 2:
+            raise _clash(
+                f"no pair may meet twice, so each two of the {b} blocks share at most one treatment, "
+                f"{b * (b - 1) // 2} times in all; but the plots ask for {crossings} such crossings"
             )
 
     # -- bookkeeping ---------------------------------------------------------------------------

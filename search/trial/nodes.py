@@ -13,13 +13,19 @@ from typing import Any
 
 import yaml
 
-from search.foundation.errors import Fault, FaultyTrial, shown
+from search.foundation.errors import shown
+from search.trial.textfile import read_text, refusal, refuse_hidden
+from search.trial.yaml_slips import yaml_fault
 
-MOST_BYTES = 1 << 20
 MOST_NODES = 200_000
+MOST_DEPTH = 50
 MOST_BITS = 1024
 """Longer whole numbers are refused unread; Python itself would not print those of 4,300 digits."""
-PLAIN_TAGS = frozenset(f"tag:yaml.org,2002:{kind}" for kind in ("str", "seq", "map"))
+NOTHING = ("", "~", "null", "Null", "NULL")
+"""What YAML calls nothing, unless it stands in quotes."""
+ONCE = "a file that says each thing once"
+WHY_ONCE = "what is not written out cannot be seen in the file, and would be planned all the same"
+_Events = getattr(yaml, "CBaseLoader", yaml.BaseLoader)
 
 
 @dataclass(frozen=True, slots=True)
@@ -36,6 +42,11 @@ class Scalar(Node):
 
     text: str
     quoted: bool = False
+
+    @property
+    def nothing(self) -> bool:
+        """Whether the place was left empty."""
+        return not self.quoted and self.text in NOTHING
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,7 +66,7 @@ class Mapping(Node):
 def describe(node: Node) -> str:
     """What stands there, short enough for a message."""
     if isinstance(node, Scalar):
-        return shown(node.text) if node.text or node.quoted else "nothing"
+        return "nothing" if node.nothing else shown(node.text)
     if isinstance(node, Sequence):
         return f"a list of {len(node.items)}"
     if isinstance(node, Mapping):
@@ -71,7 +82,7 @@ def read_nodes(path: Path) -> Node:
     ------
     FaultyTrial : no such file, not text, too large, not YAML, or YAML that hides something
     """
-    return parse_nodes(_text(path), str(path))
+    return _parsed(read_text(path), str(path))
 
 
 def parse_nodes(text: str, file: str) -> Node:
@@ -81,20 +92,8 @@ def parse_nodes(text: str, file: str) -> Node:
     ------
     FaultyTrial : not YAML, or YAML that hides something (tags, aliases that explode)
     """
-    loader = yaml.BaseLoader(text)
-    try:
-        root = loader.get_single_node()
-        if root is None:
-            raise _refusal(file, "an empty file", "a trial: treatments, blocks and rules")
-        return _Converter(file).convert(root)
-    except yaml.MarkedYAMLError as error:
-        raise _yaml_fault(error, text, file) from None
-    except (yaml.YAMLError, ValueError) as error:
-        raise _refusal(file, _first_line(error), "text that YAML can carry") from None
-    except RecursionError:
-        raise _refusal(file, "lists in lists, hundreds deep", "the form of the README") from None
-    finally:
-        loader.dispose()
+    refuse_hidden(text, file)
+    return _parsed(text, file)
 
 
 def nodes_of(data: Any) -> Node:
@@ -111,99 +110,132 @@ def nodes_of(data: Any) -> Node:
     if isinstance(data, str):
         return Scalar(0, 0, data, quoted=True)
     if isinstance(data, float) and math.isfinite(data):
-        return Scalar(0, 0, repr(data))
+        # JSON knows no difference between 3 and 3.0: both are whole.
+        return Scalar(0, 0, str(int(data)) if data.is_integer() and abs(data) < 1e15 else repr(data))
     if isinstance(data, int):
         if data.bit_length() > MOST_BITS:
-            raise _refusal("", "a number of hundreds of digits", "numbers that a field can have")
+            raise _no_data("a number of hundreds of digits", "numbers that a field can have")
         return Scalar(0, 0, repr(data))
     if isinstance(data, list | tuple):
         return Sequence(0, 0, tuple(nodes_of(item) for item in data))
     if isinstance(data, dict):
         return Mapping(0, 0, tuple((nodes_of(k), nodes_of(v)) for k, v in data.items()))
-    raise _refusal("", shown(repr(data)), "plain data: text, numbers, lists, mappings")
+    raise _no_data(shown(repr(data)), "plain data: text, numbers, lists, mappings")
 
 
-class _Converter:
+def _no_data(found: str, must: str) -> Exception:
+    return refusal("", found, must, "a trial is kept as JSON, and read again from it", "hand over plain data")
+
+
+def _parsed(text: str, file: str) -> Node:
+    try:
+        return _Builder(file).document(text)
+    except yaml.MarkedYAMLError as error:
+        raise yaml_fault(error, text, file) from None
+    except (yaml.YAMLError, ValueError) as error:
+        found = shown(str(error).split("\n", 1)[0])
+        why = "what cannot be read cannot be planned"
+        raise refusal(file, found, "text that YAML can carry", why, "delete what is not text") from None
+
+
+@dataclass(slots=True)
+class _Open:
+    """A list or mapping whose end is not yet read."""
+
+    event: Any
+    children: list[Node]
+    size: int = 1
+
+
+class _Builder:
+    """Builds nodes from the parser's events, one by one, so that nothing hostile is ever unfolded."""
+
     def __init__(self, file: str) -> None:
         self.file = file
+        self.stack: list[_Open] = []
+        self.anchors: dict[str, tuple[Node, int]] = {}
+        self.root: Node | None = None
         self.count = 0
-        self.open: set[int] = set()
 
-    def convert(self, node: yaml.Node) -> Node:
-        line, column = node.start_mark.line + 1, node.start_mark.column + 1
-        self.count += 1
-        if self.count > MOST_NODES or id(node) in self.open:
-            raise _refusal(
-                self.file,
-                "aliases (&, *) that unfold without end",
-                "a file that says each thing once",
-                line,
-                column,
-            )
-        if node.tag not in PLAIN_TAGS:
-            raise _refusal(
-                self.file, f"the tag {shown(node.tag)}", "plain YAML without tags (!)", line, column
-            )
-        if isinstance(node, yaml.ScalarNode):
-            return Scalar(line, column, node.value, quoted=node.style is not None)
-        self.open.add(id(node))
-        result: Node
-        if isinstance(node, yaml.SequenceNode):
-            result = Sequence(line, column, tuple(self.convert(item) for item in node.value))
+    def document(self, text: str) -> Node:
+        parser = _Events(text)
+        try:
+            while parser.check_event():
+                self._take(parser.get_event())
+        finally:
+            parser.dispose()
+        if self.root is None or (isinstance(self.root, Scalar) and self.root.nothing):
+            must = "a trial: treatments, blocks and rules"
+            why = "nothing is planned without a file to go by"
+            raise refusal(self.file, "an empty file", must, why, "`evenfield new` writes a first one")
+        return self.root
+
+    def _take(self, event: Any) -> None:
+        if isinstance(event, yaml.AliasEvent):
+            self._alias(event)
+        elif isinstance(event, yaml.ScalarEvent):
+            self._refuse_tag(event)
+            line, column = _place(event)
+            self._add(Scalar(line, column, event.value, event.style not in (None, "")), event.anchor, 1)
+        elif isinstance(event, yaml.CollectionStartEvent):
+            self._refuse_tag(event)
+            if len(self.stack) >= MOST_DEPTH:
+                remedy = "look for brackets that are opened again and again"
+                raise self._refusal(
+                    event, "lists in lists, more than fifty deep", "the form of a trial", remedy
+                )
+            self.stack.append(_Open(event, []))
+        elif isinstance(event, yaml.CollectionEndEvent):
+            self._close()
+        elif isinstance(event, yaml.DocumentStartEvent) and self.root is not None:
+            remedy = "one file for each trial; delete the line `---`"
+            raise self._refusal(event, "a second document after ---", "one trial in a file", remedy)
+
+    def _close(self) -> None:
+        done = self.stack.pop()
+        line, column = _place(done.event)
+        children = done.children
+        node: Node
+        if isinstance(done.event, yaml.SequenceStartEvent):
+            node = Sequence(line, column, tuple(children))
         else:
-            pairs = tuple((self.convert(k), self.convert(v)) for k, v in node.value)
-            result = Mapping(line, column, pairs)
-        self.open.discard(id(node))
-        return result
+            node = Mapping(line, column, tuple(zip(children[::2], children[1::2], strict=True)))
+        self._add(node, done.event.anchor, done.size)
 
+    def _add(self, node: Node, anchor: str | None, size: int) -> None:
+        if anchor is not None:
+            self.anchors[anchor] = node, size
+        if not self.stack:
+            self.root = node
+            return
+        self.stack[-1].children.append(node)
+        self.stack[-1].size += size
 
-def _text(path: Path) -> str:
-    try:
-        if path.is_dir():
-            raise _refusal(str(path), "a folder", "a trial file in YAML")
-        if path.stat().st_size > MOST_BYTES:
-            raise _refusal(str(path), f"{path.stat().st_size:,} bytes", f"at most {MOST_BYTES:,}")
-        with path.open("rb") as stream:
-            data = stream.read(MOST_BYTES + 1)
-        if len(data) > MOST_BYTES:
-            raise _refusal(str(path), "a stream without end", f"at most {MOST_BYTES:,} bytes")
-        return data.decode("utf-8-sig")
-    except UnicodeDecodeError as error:
-        line = error.object[: error.start].count(b"\n") + 1
-        raise _refusal(
-            str(path), "bytes that are not UTF-8 text", "a text file saved as UTF-8", line, 1
-        ) from None
-    except (OSError, ValueError) as error:
-        reason = getattr(error, "strerror", None) or "it cannot be opened"
-        raise _refusal(str(path), reason.lower(), "a trial file that can be read") from None
-
-
-def _yaml_fault(error: yaml.MarkedYAMLError, text: str, file: str) -> FaultyTrial:
-    mark = error.problem_mark or error.context_mark
-    line, column = (mark.line + 1, mark.column + 1) if mark else (0, 0)
-    lines = text.splitlines()
-    here = lines[line - 1] if 0 < line <= len(lines) else ""
-    if "\t" in here:
-        return _refusal(file, "a tab", "blanks before and between words", line, here.index("\t") + 1)
-    remedy = "look at the blanks before this line and at colons, brackets and quotes in it"
-    return FaultyTrial(
-        [
-            Fault(
-                "",
-                (error.problem or "something that is not YAML"),
-                "YAML: `key: value`, one a line",
-                remedy=remedy,
-                file=file,
-                line=line,
-                column=column,
+    def _alias(self, event: Any) -> None:
+        if event.anchor not in self.anchors:
+            found = f"the alias *{event.anchor}, which nothing before it explains"
+            raise self._refusal(
+                event, found, "a file that says each thing once", "write it out, or in quotes"
             )
-        ]
-    )
+        node, size = self.anchors[event.anchor]
+        self._counted(event, size)
+        self._add(node, None, size)
+
+    def _refuse_tag(self, event: Any) -> None:
+        self._counted(event, 1)
+        if event.tag is not None:
+            remedy = "leave the tag out; put a text that begins with ! in quotes"
+            raise self._refusal(event, f"the tag {shown(event.tag)}", "plain YAML without tags (!)", remedy)
+
+    def _counted(self, event: Any, size: int) -> None:
+        self.count += size
+        if self.count > MOST_NODES:
+            found = f"more than {MOST_NODES:,} values, aliases (&, *) unfolded"
+            raise self._refusal(event, found, ONCE, "write out what is meant")
+
+    def _refusal(self, event: Any, found: str, must: str, remedy: str) -> Exception:
+        return refusal(self.file, found, must, WHY_ONCE, remedy, *_place(event))
 
 
-def _refusal(file: str, found: str, must: str, line: int = 0, column: int = 0) -> FaultyTrial:
-    return FaultyTrial([Fault("", found, must, file=file, line=line, column=column)])
-
-
-def _first_line(error: Exception) -> str:
-    return str(error).splitlines()[0] if str(error) else "something unreadable"
+def _place(event: Any) -> tuple[int, int]:
+    return event.start_mark.line + 1, event.start_mark.column + 1

@@ -2,15 +2,16 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
-from search.foundation.errors import Fault, FaultyTrial
-from search.trial.catalogue import MOST_PLOTS, TRIAL
+from search.foundation.errors import shown
+from search.trial.catalogue import MOST_CELLS, MOST_PLOTS, TRIAL
 from search.trial.drawing import read_ground
 from search.trial.even import even_ranges
 from search.trial.kinds import Report, Section
-from search.trial.names import Names
+from search.trial.names import Names, plain
 from search.trial.nodes import Node, nodes_of, read_nodes
 from search.trial.reading_rules import read_rules
 from search.trial.records import (
@@ -23,6 +24,7 @@ from search.trial.records import (
     Precision,
     Randomise,
     Rules,
+    Said,
     SearchSettings,
     Treatment,
     Trial,
@@ -61,12 +63,8 @@ def trial_from_nodes(root: Node, file: str) -> Trial:
     section = TRIAL.read(root, "", report)
     trial = _Reader(section, report).trial() if section is not None else None
     if trial is None or report.faults:
-        raise FaultyTrial(sorted(report.faults, key=_place))
+        raise report.faulty()
     return trial
-
-
-def _place(fault: Fault) -> tuple[int, int]:
-    return fault.line, fault.column
 
 
 class _Reader:
@@ -75,27 +73,29 @@ class _Reader:
     def __init__(self, section: Section, report: Report) -> None:
         self.section = section
         self.report = report
+        self.plots_each = self._range(section, "plots_each", "plots_each")
 
     def trial(self) -> Trial | None:
         names = self._treatment_names()
         ground, blocks = read_ground(self.section.get("ground"), self.report)
         blocks = self._blocks(blocks)
-        if names is None or blocks is None:
+        if names is None or blocks is None or not self._in_reach(len(names), len(blocks)):
             return None
         treatments = Names("treatment", names)
         bays = Names("block", [block.name for block in blocks])
-        rules = read_rules(self.section.get("rules"), treatments, bays, self.report) or Rules()
+        rules, said = read_rules(self.section.get("rules", Section()), treatments, bays, self.report)
         settings = self.section.get("treatments")
         settings = settings if isinstance(settings, Section) else Section()
         plants = self._treatments(names, settings, blocks, rules)
         aim = self._aim(treatments, plants)
+        self._power()
         return Trial(
             name=self.section.get("trial", ""),
             treatments=plants,
             blocks=blocks,
             rules=rules,
             even="plots_each" not in self.section and any(not x.own_range for x in plants),
-            plots_each=self._range(self.section, "plots_each"),
+            plots_each=self.plots_each,
             aim=aim,
             ground=ground,
             about=tuple(self.section.get("about", {}).items()),
@@ -104,7 +104,25 @@ class _Reader:
             precision=Precision(**self.section.get("precision", {})),
             packet=PacketSettings(**self.section.get("packet", {})),
             file=self.report.file,
+            said=(*self._frame(plants), *said),
         )
+
+    def _frame(self, treatments: tuple[Treatment, ...]) -> Iterator[Said]:
+        """Where the file says how many plots there are, and how many each treatment has."""
+        section = self.section
+        for word in ("treatments", "ground" if "blocks" not in section else "blocks"):
+            node = section.key_at[word]
+            yield Said(word, (), word, node.line, node.column)
+        settings: Section = section.get("treatments", Section())
+        own = [i for i, treatment in enumerate(treatments) if treatment.own_range]
+        for i in own:
+            node = settings[treatments[i].name].key_at["plots"]
+            yield Said("plots", (i,), f"treatments.{treatments[i].name}.plots", node.line, node.column)
+        others = tuple(i for i in range(len(treatments)) if i not in set(own))
+        each = section.key_at.get("plots_each")
+        if others:
+            place = (each.line, each.column) if each is not None else (0, 0)
+            yield Said("plots_each", others, "plots_each", *place)
 
     def _treatment_names(self) -> list[str] | None:
         value = self.section.get("treatments")
@@ -122,54 +140,63 @@ class _Reader:
         """Refuse names that differ only in case or blanks."""
         seen: dict[str, str] = {}
         for name, place in zip(names, places, strict=True):
-            plain = "".join(name.split()).casefold()
-            if plain in seen:
+            if plain(name) in seen:
                 self.report.add(
                     place,
                     key,
-                    f'"{name}" beside "{seen[plain]}"',
+                    f"{shown(name)} beside {shown(seen[plain(name)])}",
                     "names that differ in more than case and blanks",
                     "on a label in the field they would be taken for one another",
                     "rename one of them",
                 )
-            seen.setdefault(plain, name)
+            seen.setdefault(plain(name), name)
 
     def _blocks(self, drawn: tuple[Block, ...] | None) -> tuple[Block, ...] | None:
         section: Section | None = self.section.get("blocks")
-        where = self.section.where
         if section is None:
-            if drawn is None and "ground" not in where and "blocks" not in where:
-                self.report.add(
-                    None,
-                    "blocks",
-                    "neither blocks nor ground",
-                    "blocks with their plots, or a map",
-                    remedy="blocks: {count: 6, plots: 8}",
-                )
             return drawn
         if "count" in section.where or "plots" in section.where:
             if "count" not in section or "plots" not in section:
+                return None
+            if not self._few_enough(section["count"] * section["plots"]):
                 return None
             blocks = tuple(Block(f"block {j}", section["plots"]) for j in range(1, section["count"] + 1))
         else:
             self._unlike(list(section.key_at), list(section.key_at.values()), "blocks")
             blocks = tuple(Block(name, plots) for name, plots in section.items())
+            if not self._few_enough(sum(section.values())):
+                return None
         if drawn is not None and sorted(map(repr, drawn)) != sorted(map(repr, blocks)):
             self.report.add(
-                where["blocks"],
+                self.section.where["blocks"],
                 "blocks",
                 "blocks unlike those on the map",
                 "blocks as ground draws them, or no blocks at all",
                 "two accounts of one field: one of them is wrong",
                 "leave blocks out",
             )
-        plots = sum(block.plots for block in blocks)
-        if plots > MOST_PLOTS:
-            self.report.add(where["blocks"], "blocks", f"{plots:,} plots", f"at most {MOST_PLOTS:,}")
         return drawn if drawn is not None else blocks
 
-    def _range(self, section: Section, key: str) -> tuple[int, int] | None:
-        value = section.get(key)
+    def _few_enough(self, plots: int) -> bool:
+        if plots > MOST_PLOTS:
+            node = self.section.key_at["blocks"]
+            why = "no field trial is so large: a digit too many, most likely"
+            most = f"at most {MOST_PLOTS:,} plots in all"
+            self.report.add(node, "blocks", f"{plots:,} plots", most, why, "fewer or smaller blocks")
+        return plots <= MOST_PLOTS
+
+    def _in_reach(self, treatments: int, blocks: int) -> bool:
+        if treatments * blocks > MOST_CELLS:
+            why = "larger tables would not fit into a small machine"
+            most = f"treatments times blocks at most {MOST_CELLS:,}"
+            found = f"{treatments:,} treatments in {blocks:,} blocks"
+            self.report.add(
+                self.section.key_at["treatments"], "treatments", found, most, why, "split the trial"
+            )
+        return treatments * blocks <= MOST_CELLS
+
+    def _range(self, section: Section, word: str, key: str) -> tuple[int, int] | None:
+        value = section.get(word)
         if value is None:
             return None
         if isinstance(value, int):
@@ -179,10 +206,10 @@ class _Reader:
         least, most = value
         if least > most:
             self.report.add(
-                section.where[key],
+                section.where[word],
                 key,
                 f"[{least}, {most}]",
-                "[least, most]",
+                "[least, most], the smaller number first",
                 remedy=f"[{most}, {least}]",
             )
         return least, most
@@ -190,8 +217,11 @@ class _Reader:
     def _treatments(
         self, names: list[str], settings: Section, blocks: tuple[Block, ...], rules: Rules
     ) -> tuple[Treatment, ...]:
-        own = [self._range(settings.get(name, Section()) or Section(), "plots") for name in names]
-        each = self._range(self.section, "plots_each")
+        own = [
+            self._range(settings.get(name) or Section(), "plots", f"treatments.{name}.plots")
+            for name in names
+        ]
+        each = self.plots_each
         if each is None:
             ranges = even_ranges(_own_limits(own, blocks, rules), sum(block.plots for block in blocks))
         else:
@@ -200,6 +230,20 @@ class _Reader:
             _treatment(name, wanted or share, wanted is not None, settings.get(name) or Section())
             for name, wanted, share in zip(names, own, ranges, strict=True)
         )
+
+    def _power(self) -> None:
+        section: Section = self.section.get("precision", Section())
+        asked = Precision(**section)
+        if asked.level_percent >= asked.power_percent:
+            key = next(key for key in ("power_percent", "level_percent") if key in section)
+            self.report.add(
+                section.where[key],
+                f"precision.{key}",
+                f"power {asked.power_percent:g} % at level {asked.level_percent:g} %",
+                "a power above the level",
+                "a test finds nothing at all as often as its level says",
+                "power_percent: 80",
+            )
 
     def _aim(self, names: Names, treatments: tuple[Treatment, ...]) -> Aim:
         value = self.section.get("aim", AimKind.ALL_PAIRS.value)
@@ -228,6 +272,7 @@ class _Reader:
                     f"coefficients that sum to {sum(of.values())}",
                     "coefficients that sum to 0, not all 0",
                     "otherwise it is no comparison, and the site mean would enter it",
+                    "change one of them so that plus and minus are equal",
                 )
             known = [(i, c) for i, c in zip(numbers, of.values(), strict=True) if i is not None]
             contrasts.append(Contrast(label, fields.get("weight", 1), tuple(known)))

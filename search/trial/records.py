@@ -180,6 +180,25 @@ class PacketSettings:
 
 
 @dataclass(frozen=True, slots=True)
+class Said:
+    """One thing that the file says and that every plan must obey, with its place in the file.
+
+    Parameters
+    ----------
+    sort : the word of the file: a key of `rules`, `plots` (of one treatment), `plots_each` or `blocks`
+    items : what it became: positions in that tuple of `Rules`, or numbers of treatments
+    key : where it stands, such as `rules.keep_out.Heather[1]`
+    line, column : of the file; 0 where the file leaves it to a default, or there is no file
+    """
+
+    sort: str
+    items: tuple[int, ...]
+    key: str
+    line: int = 0
+    column: int = 0
+
+
+@dataclass(frozen=True, slots=True)
 class Trial:
     """A trial as read: checked, complete, read-only."""
 
@@ -198,6 +217,8 @@ class Trial:
     precision: Precision = Precision()
     packet: PacketSettings = PacketSettings()
     file: str = field(default="", compare=False)
+    said: tuple[Said, ...] = field(default=(), compare=False, repr=False)
+    """Where the file says what, in the order of the file."""
 
     @property
     def t(self) -> int:

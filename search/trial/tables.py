@@ -73,16 +73,16 @@ def tables(trial: Trial) -> Tables:
         low += sizes // t
     for i, j in rules.must_hold:
         low[i, j] = max(1, low[i, j])
+    held = set(rules.must_hold)
     for i, j in rules.keep_out:
         high[i, j] = 0
-        if (i, j) not in rules.must_hold:
+        if (i, j) not in held:
             low[i, j] = 0
 
     apart = np.zeros((t, t), dtype=np.bool_)
     for together in rules.never_share_block:
-        for i in together:
-            for j in together:
-                apart[i, j] = i != j
+        apart[np.ix_(together, together)] = True
+    np.fill_diagonal(apart, False)
     meet_least = np.zeros((t, t), dtype=np.int64)
     meet_most = np.full((t, t), b, dtype=np.int64)
     for meeting in rules.meet_at_least:

@@ -72,63 +72,6 @@ def test_contrasts_are_exact() -> None:
     assert contrast.of == ((0, Fraction(1)), (1, Fraction(-1, 3)), (2, Fraction(-2, 3)))
 
 
-HEAD = "trial: x\ntreatments: [A, B, C]\n"
-BLOCKS = "blocks: {count: 3, plots: 2}\n"
-FAULTS = {
-    "unknown key": (HEAD + BLOCKS + "ruels: {}\n", 4, "rules"),
-    "unknown rule": (HEAD + BLOCKS + "rules: {never_share_blocks: []}\n", 4, "never_share_block"),
-    "reps": (HEAD + BLOCKS + "reps: 3\n", 4, "plots_each"),
-    "number under replicates": (HEAD + BLOCKS + "rules: {replicates: 3}\n", 4, "names with values"),
-    "unknown treatment": (HEAD + BLOCKS + "rules: {never_share_block: [[A, Bb]]}\n", 4, '"B"'),
-    "keep_out turned round": (
-        HEAD + BLOCKS + "rules: {keep_out: {block 1: [A]}}\n",
-        4,
-        "the two sides may be turned round",
-    ),
-    "must_hold turned round": (
-        HEAD + BLOCKS + "rules: {must_hold: {A: [block 1]}}\n",
-        4,
-        "the two sides may be turned round",
-    ),
-    "decimal comma": (HEAD + BLOCKS + 'precision: {mean: "8,1"}\n', 4, "8.1"),
-    "per cent": (HEAD + BLOCKS + "precision: {cv_percent: 9%}\n", 4, "the number alone: 9"),
-    "twin names": ("trial: x\ntreatments: [Arlen, ARLEN]\n" + BLOCKS, 2, "differ in more than case"),
-    "key twice": (HEAD + BLOCKS + "aim: overall\naim: overall\n", 5, "each key once"),
-    "range turned round": (HEAD + BLOCKS + "plots_each: [4, 3]\n", 4, "[3, 4]"),
-    "tab": (HEAD + "blocks:\n\tone: 3\n", 4, "a tab"),
-    "no blocks": (HEAD, 0, "blocks with their plots, or a map"),
-    "control without control": (HEAD + BLOCKS + "aim: against control\n", 4, "control: true"),
-    "contrast that is none": (
-        HEAD + BLOCKS + "aim: {contrasts: {c: {of: {A: 1, B: 1}}}}\n",
-        4,
-        "sum to 0",
-    ),
-    "unknown aim": (HEAD + BLOCKS + "aim: all pears\n", 4, '"all pairs"'),
-    "ragged map": (HEAD + "ground:\n  rows: |\n    aab\n    bb\n", 4, "lines of one length"),
-    "strange map": (HEAD + "ground:\n  rows: |\n    aa1\n    bbb\n", 4, "letters a-z"),
-    "replicates overlap": (
-        HEAD + BLOCKS + "rules: {replicates: {r: [block 1], s: [block 1]}}\n",
-        4,
-        "each block in one replicate",
-    ),
-    "a billion treatments": ("trial: x\ntreatments: 1000000000\n" + BLOCKS, 2, "5,000"),
-    "tag": (HEAD + "blocks: !!python/object:os.system {count: 3, plots: 2}\n", 3, "without tags"),
-    "alias of itself": (HEAD + BLOCKS + "about: &a {more: *a}\n", 4, "aliases"),
-    "not yaml": (HEAD + "blocks: {count: 3\n", 4, "YAML"),
-    "empty": ("", 0, "a trial"),
-}
-
-
-@pytest.mark.parametrize("case", FAULTS)
-def test_a_fault_is_told_with_its_line(case: str) -> None:
-    """Each mistake names its line and what to write instead."""
-    text, line, words = FAULTS[case]
-    with pytest.raises(FaultyTrial) as caught:
-        from_text(text)
-    assert words in str(caught.value)
-    assert line in {fault.line for fault in caught.value.faults}
-
-
 NOT_YET: dict[str, dict[str, Any]] = {
     "not_beside": {"rules": {"not_beside": {"pairs": [["A", "B"]]}}},
     "planted": {"rules": {"planted": {"101": "A"}}},
@@ -147,20 +90,3 @@ def test_what_is_not_done_yet_is_refused_by_name(case: str) -> None:
     """A key of the design that this version cannot keep is refused, never ignored."""
     with pytest.raises(FaultyTrial, match="not yet"):
         tiny_trial(**NOT_YET[case])
-
-
-def test_all_faults_are_told_at_once() -> None:
-    """Four mistakes in one file are four faults, in the order of the file."""
-    text = "trial: x\ntreatments: [A, a]\nblocks: {count: 3, plots: none}\naim: nothing\nreps: 3\n"
-    with pytest.raises(FaultyTrial) as caught:
-        from_text(text)
-    assert [fault.line for fault in caught.value.faults] == [2, 3, 4, 5]
-
-
-def test_aliases_that_explode_are_refused_quickly() -> None:
-    """A file of a few lines cannot unfold into millions of nodes."""
-    bomb = "a: &a [x, x, x, x, x, x, x, x, x, x]\n"
-    for name, before in zip("bcdefgh", "abcdefg", strict=True):
-        bomb += f"{name}: &{name} [{', '.join(['*' + before] * 10)}]\n"
-    with pytest.raises(FaultyTrial, match="aliases"):
-        from_text(bomb)

@@ -1,0 +1,104 @@
+"""What a trial can be expected to show before any search: at best, and with the first plan found."""
+
+from __future__ import annotations
+
+import time
+from dataclasses import dataclass, replace
+from math import sqrt
+
+from search.efficiency.bounds import all_bounds
+from search.efficiency.evaluator import score
+from search.efficiency.precision import detectable_multiple
+from search.efficiency.records import Bound
+from search.efficiency.reference import reference_variance
+from search.trial.limits import Limits
+from search.trial.records import Aim, AimKind, Contents, Trial
+
+MOST_TREATMENTS = 500
+"""Beyond, scoring a plan takes longer than a page that is read before a search may."""
+BOUND_SECONDS = 4.0
+IN_DEVIATIONS = "plot standard deviations"
+
+
+@dataclass(frozen=True, slots=True)
+class Prospects:
+    """Expected before any search.
+
+    Parameters
+    ----------
+    compared : which differences the figures speak of
+    bound : no plan has an efficiency above it, as far as quick arguments tell; None where none applies
+    argument : the argument behind it
+    first : efficiency of the first plan found; 0 where it is disconnected
+    unit : of the differences
+    at_best, with_first : difference that is detected with the power asked for, at best and with the first
+        plan, on average over what is compared; None where nothing can be tested
+    """
+
+    compared: str
+    bound: float | None
+    argument: str
+    first: float
+    unit: str
+    at_best: float | None
+    with_first: float | None
+
+
+def prospects(trial: Trial, implied: Limits, first: Contents) -> Prospects | None:
+    """What the trial can be expected to show; None for a trial too large to look at quickly.
+
+    The mean pair variance of any plan is at least `reference / bound`, in units of the plot variance.
+
+    Parameters
+    ----------
+    trial : the trial
+    implied : what its rules leave of the replication
+    first : a plan that obeys the rules
+    """
+    if trial.t > MOST_TREATMENTS:
+        return None
+    compared = "differences of this aim"
+    if trial.aim.kind in (AimKind.ALL_PAIRS, AimKind.OVERALL):
+        # The overall aim speaks of no single difference: its pairs are told.
+        trial, compared = replace(trial, aim=Aim(AimKind.ALL_PAIRS)), "pairs, on average"
+    bound = _quick_bound(trial, implied)
+    plan = score(trial, first)
+    df = trial.n - trial.b - trial.t + 1
+    best = None if bound is None else float(reference_variance(trial)) / bound.value
+    deviation, unit = _plot_deviation(trial)
+    return Prospects(
+        compared=compared,
+        bound=None if bound is None else bound.value,
+        argument="" if bound is None else bound.argument,
+        first=plan.aim,
+        unit=unit,
+        at_best=_detectable(trial, best, df, deviation),
+        with_first=_detectable(trial, plan.aim_variance, plan.residual_df, deviation),
+    )
+
+
+def _quick_bound(trial: Trial, implied: Limits) -> Bound | None:
+    started = time.monotonic()
+    best: Bound | None = None
+    for bound in all_bounds(trial, implied):
+        if best is None or bound.exact < best.exact:
+            best = bound
+        if time.monotonic() - started > BOUND_SECONDS:
+            break
+    return best
+
+
+def _plot_deviation(trial: Trial) -> tuple[float, str]:
+    asked = trial.precision
+    if asked.cv_percent is None:
+        return 1.0, IN_DEVIATIONS
+    if asked.mean is None:
+        return asked.cv_percent, "% of the mean"
+    return asked.cv_percent / 100 * asked.mean, asked.unit
+
+
+def _detectable(trial: Trial, variance: float | None, df: int, deviation: float) -> float | None:
+    if variance is None or df < 1:
+        return None
+    asked = trial.precision
+    return detectable_multiple(df, asked.level_percent, asked.power_percent) * deviation * sqrt(variance)

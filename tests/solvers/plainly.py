@@ -1,0 +1,43 @@
+"""A small search told in words, to be run with the compiler and without."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+
+from search.solvers.board import board_of, contents_on
+from search.solvers.compiled import kernel
+from search.solvers.records import Problem
+from search.solvers.streams import stream
+from search.solvers.walk import Walk
+from tests.solvers.problems import FOREVER, in_turn, pairs, plain_tables
+
+
+def told() -> str:
+    """Plans, moves and distances of a few calls of every entry point of the kernel."""
+    sizes = [3, 3, 2, 2, 2]
+    table = plain_tables(5, sizes, plots=(2, 3))
+    table.apart[0, 1] = table.apart[1, 0] = True
+    table = replace(table, meet_most=np.where(table.apart, 0, 2))
+    start = ((0, 2, 3), (1, 2, 4), (0, 3), (1, 4), (2, 3))
+    lines = []
+    for weights in (pairs(5), None):
+        problem = Problem(table, weights)
+        board, random = board_of(problem, start), stream(7, 1)
+        lines.append(repr(kernel().wander(board.plain, random, 40, False)) + repr(contents_on(board)))
+        joined = kernel().wander(board.plain, random, 200, True)
+        lines.append(repr(joined) + repr(contents_on(board)))
+        walk = Walk(problem, contents_on(board), random, FOREVER)
+        accepted = walk.cool(0.2, 0.01, 300)
+        walk.descend(200)
+        lines.append(f"{accepted} {walk.moves} {walk.contents} {walk.board.distances.variance.sum():.9f}")
+    problem = Problem(plain_tables(4, [3, 3, 2], plots=(1, 3)), pairs(4))
+    walk = Walk(problem, in_turn(4, [3, 3, 2]), stream(1, 1), FOREVER)
+    lines.append(repr(walk.best_move(np.inf)))
+    return "\n".join(lines)
+
+
+if __name__ == "__main__":
+    with np.errstate(over="ignore"):  # the random numbers wrap round on purpose
+        print(told())
