@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
+import time
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
-from search.efficiency.bounds import first_order, meets, pairs, replication, trace_root
+from search.efficiency.bounds import first_order, meets, normalised, pairs, replication, trace_root
 from search.efficiency.bounds.problem import Problem, problem
 from search.efficiency.bounds.spectral import local
 from search.efficiency.records import Bound
@@ -20,26 +21,37 @@ class Argument:
     Parameters
     ----------
     name : as it stands in a certificate
+    sentence : the argument for a planner
     applies : whether it holds for a trial at all
     find : its bound, or None where it has none to give
     """
 
     name: str
+    sentence: str
     applies: Callable[[Trial], bool]
     find: Callable[[Problem], Bound | None]
 
 
+@dataclass(frozen=True, slots=True)
+class Tried:
+    """An argument that applies, what it gave, and how long that took."""
+
+    argument: Argument
+    bound: Bound | None
+    seconds: float
+
+
 ARGUMENTS = (
     *(
-        Argument(module.NAME, module.applies, module.find)
-        for module in (first_order, replication, trace_root, pairs, meets, local)
+        Argument(module.NAME, module.SENTENCE, module.applies, module.find)
+        for module in (first_order, replication, trace_root, pairs, meets, normalised, local)
     ),
-    Argument(local.FINER, local.applies, local.find_finer),
+    Argument(local.FINER, local.FINER_SENTENCE, local.applies, local.find_finer),
 )
 
 
-def all_bounds(trial: Trial, limits: Limits) -> Iterator[Bound]:
-    """One bound after another, each computed when it is asked for, the quick ones first.
+def tried(trial: Trial, limits: Limits) -> Iterator[Tried]:
+    """Every argument that applies, each tried when it is asked for, the quick ones first.
 
     Parameters
     ----------
@@ -51,10 +63,19 @@ def all_bounds(trial: Trial, limits: Limits) -> Iterator[Bound]:
         return
     for argument in ARGUMENTS:
         if argument.applies(trial):
+            start = time.perf_counter()
             bound = argument.find(given)
             # an argument too weak to say anything may end above 1
-            if bound is not None and bound.exact <= 1:
-                yield bound
+            if bound is not None and bound.exact > 1:
+                bound = None
+            yield Tried(argument, bound, time.perf_counter() - start)
+
+
+def all_bounds(trial: Trial, limits: Limits) -> Iterator[Bound]:
+    """One bound after another, each computed when it is asked for, the quick ones first."""
+    for one in tried(trial, limits):
+        if one.bound is not None:
+            yield one.bound
 
 
 def best_bound(trial: Trial, limits: Limits) -> Bound | None:

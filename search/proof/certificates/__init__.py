@@ -13,6 +13,7 @@ from search.proof.certificates import (
     by_pairs,
     first_order,
     local_spectral,
+    normalised,
     replication,
     trace_root,
 )
@@ -24,5 +25,6 @@ KINDS: dict[str, ModuleType] = {
     "second moment by pairs": by_pairs,
     "second moment by block meets": by_meets,
     "local spectral": local_spectral,
+    "normalised moment": normalised,
 }
 """What a certificate's "kind" may say."""

@@ -19,7 +19,7 @@ Floats = NDArray[np.float64]
 BITS = 160
 MOST_INTERVALS = 4000
 MOST_LOGARITHM = 6.0
-"""Further than this the logarithm is not followed: near x = 1 the series of one interval falls short of it."""
+"""Further up the logarithm is not followed: near x = 1 the series of one interval falls short of it."""
 LAST_PLACE = 1 - 1e-6
 TERMS = 24
 """Terms of the series of −log that are used on one interval."""

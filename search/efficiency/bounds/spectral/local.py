@@ -33,8 +33,16 @@ from search.efficiency.records import Bound
 from search.trial.records import AimKind, Trial
 
 NAME = "local spectral"
+SENTENCE = (
+    "Meetings of treatments, overlaps of blocks, and the ways that lead from one to the next over "
+    "several blocks are all whole numbers; no set of variances that disagrees with them can occur."
+)
 FINER = "local spectral, split further"
-STEPS = 12
+FINER_SENTENCE = (
+    "The same, with plans sorted by how far their meetings are from even and by how many differences "
+    "are badly measured, and each sort looked at for itself."
+)
+STEPS = 6
 """Levels and splits that the finer bound adds at most."""
 MOST_LEVELS = 6
 
