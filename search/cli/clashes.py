@@ -24,10 +24,10 @@ def clash_lines(clash: Clash) -> Iterator[str]:
     yield f"Shown by: {SHOWN_BY.get(clash.shown_by, clash.shown_by)}."
     if clash.changes:
         which = "Any one of these changes" if len(clash.changes) > 1 else "This change"
-        yield f"{which} leaves a plan (tried, smallest first):"
+        yield f"{which} serves (each tried, smallest first):"
         yield from (f"  - {change}" for change in clash.changes[:MOST_CHANGES])
     else:
-        yield "No change to a single line was found that leaves a plan."
+        yield "No change to a single line was found in the time that leaves a plan."
 
 
 def _head(clash: Clash) -> str:

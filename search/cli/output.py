@@ -69,6 +69,11 @@ def indented(console: Console, text: str, mark: str = "", style: str = "") -> No
     console.print(grid)
 
 
+def shortened(text: str, most: int = 80) -> str:
+    """A sentence cut to fit a line; the plan file has it whole."""
+    return text if len(text) <= most else f"{text[: most - 1].rstrip()}…"
+
+
 def emit(command: str, status: str, content: Mapping[str, Any], exit_status: int = 0) -> None:
     """Print the one JSON document of a command on standard output."""
     document: dict[str, Any] = {

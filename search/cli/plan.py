@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
-from search.cli.output import aside, emit, page
+from search.cli.output import aside, emit, indented, page
 from search.foundation.errors import BadInput, Impossible
 from search.foundation.stopping import Ended, Limits, Stop
 
@@ -50,6 +50,8 @@ def command(
     from search.trial.reading import read_trial
 
     record = read_trial(trial)
+    if record.wanted is not None:
+        record = _cut(record, quiet=as_json)
     folder = out or default_folder(record)
     limits = _limits(record.search, seconds, moves)
 
@@ -96,6 +98,19 @@ def command(
 
         show_plan(page(), issued)
     return status
+
+
+def _cut(trial: Trial, quiet: bool) -> Trial:
+    """The trial with its bays cut from the map in the best of the ways that were tried."""
+    from search.field.bays import ways_to_cut
+
+    ways = ways_to_cut(trial)
+    if not quiet:
+        console = aside()
+        console.print("Ways to cut the map, the best first:")
+        for number, way in enumerate(ways, start=1):
+            indented(console, way.told, str(number))
+    return ways[0].trial
 
 
 def default_folder(trial: Trial) -> Path:

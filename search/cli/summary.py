@@ -5,7 +5,7 @@ from __future__ import annotations
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
-from search.cli.output import indented
+from search.cli.output import indented, shortened
 from search.field.cautions import office_notes
 from search.field.standing import standing_in_words
 from search.trial.records import Trial
@@ -67,7 +67,7 @@ def _figures(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
     rows.append(("residual degrees of freedom", str(score["residual_df"])))
     rows += _expected(trial, document)
     far = f"{run['seconds']:.1f} s, {run['moves']:,} moves, seed {run['seed']}"
-    rows += [("search", f"{far}: {ENDED[document['ended_by']]}"), ("start", run["start"])]
+    rows += [("search", f"{far}: {ENDED[document['ended_by']]}"), ("start", shortened(run["start"]))]
     return rows
 
 

@@ -10,6 +10,7 @@ from contextlib import contextmanager
 from types import FrameType
 from typing import TYPE_CHECKING
 
+from search.cli.output import shortened
 from search.foundation.stopping import Observer, Stop
 
 if TYPE_CHECKING:
@@ -76,8 +77,10 @@ class Watching(Observer):
         self._say(text)
 
     def first_plan(self, efficiency: float, where_from: str) -> None:
-        self.best = efficiency
-        self._say(f"first plan: efficiency {efficiency:.4f} ({where_from})")
+        name = "a better one" if self.best else "first plan"
+        if efficiency > self.best:
+            self.best = efficiency
+            self._say(f"{name}: efficiency {efficiency:.4f} ({shortened(where_from)})")
 
     def bound(self, efficiency: float, argument: str) -> None:
         self.limit = efficiency

@@ -42,31 +42,37 @@ class Balanced:
 
 
 @dataclass(frozen=True, slots=True)
-class Verdict:
+class Counted:
     """Whether the counts allow a balanced design; `reason` says why not."""
 
     allowed: Balanced | None
     reason: str = ""
 
 
-def conditions(t: int, b: int, k: int) -> Verdict:
+def conditions(t: int, b: int, k: int) -> Counted:
     """Whether t treatments in b blocks of k plots can be balanced as far as counting goes.
 
     Source: the two counts of plots and of pairs; Fisher's inequality (Fisher 1940).
     """
     if not 2 <= k < t:
-        return Verdict(None, f"blocks of {k} plots are not incomplete blocks for {t} treatments")
+        return Counted(None, f"blocks of {k} plots are not incomplete blocks for {t} treatments")
     if b * k % t:
-        return Verdict(None, f"{b * k} plots cannot be shared equally among {t} treatments")
+        return Counted(None, f"{b * k} plots cannot be shared equally among {t} treatments")
     r = b * k // t
     if r * (k - 1) % (t - 1):
-        return Verdict(
+        return Counted(
             None,
             f"each treatment meets {r * (k - 1)} others, which cannot be shared equally among {t - 1}",
         )
     if b < t:
-        return Verdict(None, f"{b} blocks are fewer than {t} treatments (Fisher's inequality)")
-    return Verdict(Balanced(t, b, k, r, r * (k - 1) // (t - 1)))
+        return Counted(None, f"{b} blocks are fewer than {t} treatments (Fisher's inequality)")
+    return Counted(Balanced(t, b, k, r, r * (k - 1) // (t - 1)))
+
+
+def with_meetings(t: int, k: int, meetings: int) -> Balanced | None:
+    """The parameters with every pair in `meetings` blocks, where the counts allow them."""
+    b, left = divmod(meetings * t * (t - 1), k * (k - 1))
+    return None if left else conditions(t, b, k).allowed
 
 
 def multiples(t: int, k: int) -> Iterator[Balanced]:

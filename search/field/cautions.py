@@ -73,11 +73,30 @@ def _notes(trial: Trial, document: dict[str, Any]) -> Iterator[str]:
     pinned = _pinned(trial)
     if pinned:
         yield f"The rules leave no choice in the number of plots of {listed(pinned)}."
+    yield from _restricted(document["layout"].get("restriction"))
     if gap is not None and gap > WIDE_GAP_PERCENT:
         yield (
             f"The gap between plan and bound is {gap:.2f} %: a longer search may find a better plan, "
             "or the bound may be loose."
         )
+
+
+def _restricted(restriction: dict[str, Any] | None) -> Iterator[str]:
+    """What a rule about neighbours does to the randomisation."""
+    if restriction is None:
+        return
+    yield (
+        "The layout was drawn under the rule not_beside, so the tests of the analysis are only approximately "
+        f"valid. It was {clean(restriction['told'])}."
+    )
+    plots: dict[str, list[str]] = {}
+    for pair in restriction["never"]:
+        plots.setdefault(clean(pair["treatment"]), []).append(str(pair["plot"]))
+    if plots:
+        told = [f"{name} (plot {listed(numbers)})" for name, numbers in plots.items()]
+        yield f"With the blocks as drawn these can never stand on a plot of their block: {listed(told)}."
+    if not restriction["never_complete"]:
+        yield "Not every plot was searched for treatments that the rule keeps off it for good."
 
 
 def _weak_controls(trial: Trial, plots: Counter[str]) -> Iterator[str]:

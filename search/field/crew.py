@@ -3,12 +3,16 @@
 from __future__ import annotations
 
 from collections import Counter
-from dataclasses import dataclass
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
 from datetime import datetime
+from itertools import islice
+from string import ascii_lowercase
 from typing import Any
 
 from search.field.cautions import FIRST, USUAL, office_notes
 from search.field.codes import treatment_codes
+from search.field.numbering import extent
 from search.field.planted import planted_plots
 from search.field.randomise import Planted
 from search.field.standing import standing_in_words
@@ -17,6 +21,8 @@ from search.field.wording import clean, counted
 from search.foundation.errors import BadInput
 from search.trial.records import Ground, Trial
 
+SHORT_NAME = 4
+"""Letters of a block's name that still stand for it on the map."""
 MONTHS = [
     "January",
     "February",
@@ -41,6 +47,7 @@ class TreatmentEntry:
     ----------
     number : counted from 1, in the order of the trial file
     code : short name on the map
+    name : whole name; empty in a blind packet
     plots : how many it has
     per_plot, total : what to weigh out, with its unit; the total includes spare bags
     """
@@ -94,7 +101,10 @@ class CrewPacket:
     office : warnings about the statistics, for those who analyse
     plots : what stands where, by plot number
     passes : the same plots in planting order
+    extent : rows and columns of the map
     spare_bags : bags to weigh out beyond those for the plots, of each treatment
+    labels : on sheets, or single
+    blind : whether codes stand in the place of treatments
     """
 
     title: str
@@ -111,24 +121,28 @@ class CrewPacket:
     blocks: tuple[BlockEntry, ...]
     plots: tuple[Planted, ...]
     ground: Ground | None
+    extent: tuple[int, int]
     passes: tuple[Pass, ...]
     spare_bags: int
+    labels: str
+    blind: bool
 
 
-def crew_packet(trial: Trial, document: dict[str, Any]) -> CrewPacket:
+def crew_packet(trial: Trial, document: dict[str, Any], blind: bool = False) -> CrewPacket:
     """Decide what the crew of a trial reads.
 
     Parameters
     ----------
     trial : the trial
     document : its plan as in plan.json
+    blind : names are codes already and stand for nothing else
 
     Raises
     ------
     BadInput : the plan does not fit the trial
     """
     plots = planted_plots(trial, document)
-    treatments = _treatments(trial, plots)
+    treatments = _treatments(trial, plots, blind)
     return CrewPacket(
         title=clean(trial.name),
         mark=clean(document["mark"]),
@@ -138,15 +152,24 @@ def crew_packet(trial: Trial, document: dict[str, Any]) -> CrewPacket:
         about=tuple((clean(key), clean(value)) for key, value in trial.about),
         size=", ".join((counted(trial.t, "treatment"), counted(trial.b, "block"), counted(trial.n, "plot"))),
         standing=standing_in_words(document, trial.n),
-        cautions=_cautions(treatments),
-        office=office_notes(trial, document),
+        cautions=_cautions(treatments, blind),
+        office=() if blind else office_notes(trial, document),
         treatments=treatments,
         blocks=_blocks(trial),
         plots=plots,
         ground=trial.ground,
+        extent=extent([planted.place for planted in plots], trial.ground),
         passes=passes(trial),
         spare_bags=trial.packet.spare_bags,
+        labels=trial.packet.labels,
+        blind=blind,
     )
+
+
+def with_codes(packet: CrewPacket, codes: Sequence[str]) -> CrewPacket:
+    """The packet with other codes for its treatments."""
+    coded = (replace(entry, code=code) for entry, code in zip(packet.treatments, codes, strict=True))
+    return replace(packet, treatments=tuple(coded))
 
 
 def _day(issued: str) -> str:
@@ -157,7 +180,7 @@ def _day(issued: str) -> str:
     return f"{day.day} {MONTHS[day.month - 1]} {day.year}"
 
 
-def _treatments(trial: Trial, plots: tuple[Planted, ...]) -> tuple[TreatmentEntry, ...]:
+def _treatments(trial: Trial, plots: tuple[Planted, ...], blind: bool) -> tuple[TreatmentEntry, ...]:
     names = [clean(treatment.name) for treatment in trial.treatments]
     stands = Counter(planted.treatment for planted in plots)
     entries = []
@@ -167,7 +190,7 @@ def _treatments(trial: Trial, plots: tuple[Planted, ...]) -> tuple[TreatmentEntr
             TreatmentEntry(
                 number=i + 1,
                 code=code,
-                name=names[i],
+                name="" if blind else names[i],
                 control=treatment.control,
                 caution=clean(treatment.caution),
                 plots=stands[i],
@@ -179,7 +202,7 @@ def _treatments(trial: Trial, plots: tuple[Planted, ...]) -> tuple[TreatmentEntr
 
 
 def _blocks(trial: Trial) -> tuple[BlockEntry, ...]:
-    letters = {j: letter for letter, j in trial.ground.letters} if trial.ground else {}
+    letters = _signs(trial)
     replicate = {j: clean(group.name) for group in trial.rules.replicates for j in group.blocks}
     return tuple(
         BlockEntry(letters.get(j, ""), clean(block.name), replicate.get(j, ""), block.plots)
@@ -187,7 +210,21 @@ def _blocks(trial: Trial) -> tuple[BlockEntry, ...]:
     )
 
 
-def _cautions(treatments: tuple[TreatmentEntry, ...]) -> tuple[Caution, ...]:
+def _signs(trial: Trial) -> dict[int, str]:
+    """What stands for each block on the map: its letter there, else a short name, a letter, a number."""
+    ground = trial.ground
+    if ground is None:
+        return {}
+    if ground.letters:
+        return {j: letter for letter, j in ground.letters}
+    names = [clean(block.name) for block in trial.blocks]
+    if max(map(len, names)) <= SHORT_NAME:
+        return dict(enumerate(names))
+    signs = ascii_lowercase if trial.b <= len(ascii_lowercase) else map(str, range(1, trial.b + 1))
+    return dict(enumerate(islice(signs, trial.b)))
+
+
+def _cautions(treatments: tuple[TreatmentEntry, ...], blind: bool) -> tuple[Caution, ...]:
     """The first rule, then what single treatments ask, then the usual ones."""
     own: dict[str, list[int]] = {}
     for i, treatment in enumerate(treatments):
@@ -196,5 +233,18 @@ def _cautions(treatments: tuple[TreatmentEntry, ...]) -> tuple[Caution, ...]:
     return (
         Caution(*FIRST),
         *(Caution("", text, tuple(about)) for text, about in own.items()),
+        *([Caution(*_blinding(treatments))] if blind else []),
         *(Caution(*usual) for usual in USUAL),
     )
+
+
+def _blinding(treatments: tuple[TreatmentEntry, ...]) -> tuple[str, str]:
+    """That treatments are hidden, and what the cautions give away: safety is never hidden with them."""
+    told = "Treatments stand under codes; the sealed key has their names. Whoever is hurt: open the key."
+    warned = sum(bool(treatment.caution) for treatment in treatments)
+    if 0 < warned < len(treatments):
+        told += (
+            f" Blinding is weakened: {warned} of {len(treatments)} codes carry a caution, which tells them "
+            "from the others."
+        )
+    return "Blind trial", told

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 from search.foundation.errors import BadInput
@@ -40,26 +40,55 @@ def places(trial: Trial) -> tuple[Place, ...]:
 
     Raises
     ------
-    BadInput : a line has more places than three digits can number
+    BadInput : a line has more places than three digits can number, or the blocks are not cut yet
     """
-    found = _on_ground(trial.ground) if trial.ground else _blocks_as_lines(trial)
+    if trial.wanted is not None:
+        raise BadInput("the blocks of this trial are not cut from its map yet: plan the trial first")
+    if trial.ground is None:
+        found = _blocks_as_lines(trial)
+    elif trial.ground.spots:
+        found = _listed(trial.ground)
+    else:
+        found = _drawn(trial.ground)
     return tuple(sorted(found, key=lambda place: place.plot))
 
 
-def _on_ground(ground: Ground) -> Iterator[Place]:
-    start, way = ground.numbering.start, ground.numbering.way
+def extent(sites: Sequence[Place], ground: Ground | None) -> tuple[int, int]:
+    """Rows and columns of the map as drawn, empty ones at its edges included."""
+    if ground and ground.rows:
+        return len(ground.rows), len(ground.rows[0])
+    return 1 + max(site.row for site in sites), 1 + max(site.column for site in sites)
+
+
+def _drawn(ground: Ground) -> Iterator[Place]:
     block_of = dict(ground.letters)
     height = len(ground.rows)
     width = max(len(row) for row in ground.rows)
     step = _step(width)
     for row, letters in enumerate(ground.rows):
-        line = height - row if start.startswith("bottom") else row + 1
-        turned = way == "serpentine" and line % 2 == 0
-        from_left = start.endswith("left") != turned
+        line = height - row if ground.numbering.start.startswith("bottom") else row + 1
+        from_left = _from_left(ground, line)
         for column, letter in enumerate(letters):
             if letter != NO_PLOT:
                 place = column + 1 if from_left else width - column
-                yield Place(line * step + place, block_of[letter], line, place, row, column)
+                yield Place(line * step + place, block_of.get(letter, 0), line, place, row, column)
+
+
+def _listed(ground: Ground) -> Iterator[Place]:
+    """Plots of a table: line and place are given, row and column follow from them."""
+    height = max(spot.line for spot in ground.spots)
+    width = max(spot.place for spot in ground.spots)
+    step = _step(width)
+    for spot in ground.spots:
+        row = height - spot.line if ground.numbering.start.startswith("bottom") else spot.line - 1
+        column = spot.place - 1 if _from_left(ground, spot.line) else width - spot.place
+        plot = spot.line * step + spot.place
+        yield Place(plot, spot.block or 0, spot.line, spot.place, row, column)
+
+
+def _from_left(ground: Ground, line: int) -> bool:
+    turned = ground.numbering.way == "serpentine" and line % 2 == 0
+    return ground.numbering.start.endswith("left") != turned
 
 
 def _blocks_as_lines(trial: Trial) -> Iterator[Place]:

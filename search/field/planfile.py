@@ -91,8 +91,25 @@ def _planted(trial: Trial, plot_map: PlotMap) -> Document:
             }
             for planted in plot_map.plots
         ],
-        "layout": {"seed": plot_map.seed, "scheme": plot_map.scheme},
+        "layout": _layout(trial, plot_map),
     }
+
+
+def _layout(trial: Trial, plot_map: PlotMap) -> Document:
+    layout: Document = {"seed": plot_map.seed, "scheme": plot_map.scheme}
+    restricted = plot_map.restricted
+    if restricted is not None:
+        layout["restriction"] = {
+            "method": restricted.method,
+            "uniform": restricted.uniform,
+            "told": restricted.told,
+            "never": [
+                {"plot": plot_map.plots[p].place.plot, "treatment": trial.treatments[i].name}
+                for p, i in restricted.never
+            ],
+            "never_complete": restricted.complete,
+        }
+    return layout
 
 
 def _moment(issued: datetime) -> str:

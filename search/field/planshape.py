@@ -3,21 +3,49 @@
 from __future__ import annotations
 
 import re
+from dataclasses import dataclass
 from typing import Any
 
 Document = dict[str, Any]
 ANY_KEY = "*"
 """Stands for keys that are names."""
+
+
+@dataclass(frozen=True, slots=True)
+class Optional:
+    """A shape for a value that may be missing."""
+
+    shape: Any
+
+
 _NUMBER = (int, float)
 _MAYBE = (int, float, type(None))
+RESTRICTION = Optional(
+    {
+        "method": str,
+        "uniform": bool,
+        "told": str,
+        "never": [{"plot": int, "treatment": str}],
+        "never_complete": bool,
+    }
+)
 SHAPE: Document = {
     "mark": str,
     "issued": re.compile(r"\d{4}-\d\d-\d\dT\d\d:\d\d:\d\dZ", re.ASCII),
     "trial": dict,
     "blocks": {ANY_KEY: [str]},
     "plots": [{"plot": int, "block": str, "line": int, "place": int, "treatment": str}],
-    "layout": {"seed": int, "scheme": str},
-    "score": {"aim": _NUMBER, "residual_df": int, "connected": bool},
+    "layout": {"seed": int, "scheme": str, "restriction": RESTRICTION},
+    "score": {
+        "aim": _NUMBER,
+        "residual_df": int,
+        "connected": bool,
+        "average_pair_variance": Optional(_NUMBER),
+        "largest_pair_variance": Optional(_NUMBER),
+        "loss_to_replication_percent": Optional(_NUMBER),
+        "loss_to_blocks_percent": Optional(_NUMBER),
+        "meetings": Optional({"least": int, "most": int}),
+    },
     "bound": (dict, type(None)),
     "gap_percent": _MAYBE,
     "standing": re.compile("balanced|proven optimal|bounded|feasible"),
@@ -33,6 +61,8 @@ def misfit(document: Document) -> str:
 
 def _misfit(value: Any, shape: Any, where: str) -> str:
     """The first place at which a value has not the shape that it must have, or an empty text."""
+    if isinstance(shape, Optional):
+        return "" if value is None else _misfit(value, shape.shape, where)
     if isinstance(shape, dict):
         if not isinstance(value, dict):
             return f"{where} is not an object"

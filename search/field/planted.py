@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from search.field.beside import clash_in_words
 from search.field.numbering import places
 from search.field.planshape import Document
 from search.field.randomise import Planted
@@ -38,4 +39,7 @@ def planted_plots(trial: Trial, document: Document) -> tuple[Planted, ...]:
     contents = tuple(tuple(sorted(number_of[name] for name in stood)) for stood in held)
     if broken := broken_rules(trial, contents):
         raise BadInput(f"the plan breaks a rule of its trial: {broken[0]}; plan the trial again")
-    return tuple(Planted(site, number_of[listed[site.plot]["treatment"]]) for site in sites)
+    standing = [number_of[listed[site.plot]["treatment"]] for site in sites]
+    if clash := clash_in_words(trial, sites, standing):
+        raise BadInput(f"the plan breaks a rule of its trial: {clash}; plan the trial again")
+    return tuple(Planted(site, i) for site, i in zip(sites, standing, strict=True))

@@ -8,11 +8,14 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from search.field.beside import restriction
+from search.field.never import never_on
 from search.field.numbering import Place, places
+from search.field.restricted import draw_restricted
+from search.field.urn import Urn
 from search.foundation.errors import BadInput
 from search.trial.checker import broken_rules
 from search.trial.records import Contents, Trial
-from search.trial.roles import block_roles, treatment_roles
 
 MOST_SEED = 10**9
 """Seeds drawn here have at most nine digits, so that one can be copied from paper."""
@@ -27,6 +30,26 @@ class Planted:
 
 
 @dataclass(frozen=True, slots=True)
+class Restricted:
+    """A draw under `not_beside`, whose tests are only approximately valid.
+
+    Parameters
+    ----------
+    method : rejection, chain or solver
+    uniform : whether every layout that keeps the rule had the same chance
+    told : the same in a sentence
+    never : (plot, treatment): pairs that no layout of the blocks as drawn can have
+    complete : whether every such pair was looked for
+    """
+
+    method: str
+    uniform: bool
+    told: str
+    never: tuple[tuple[int, int], ...]
+    complete: bool
+
+
+@dataclass(frozen=True, slots=True)
 class PlotMap:
     """A layout: which treatment stands where, and how that was drawn.
 
@@ -36,12 +59,14 @@ class PlotMap:
     contents : block contents after randomisation
     seed : seed of the layout
     scheme : what was drawn at random among what, in words
+    restricted : how the rule about neighbours narrowed the draw; None without one
     """
 
     plots: tuple[Planted, ...]
     contents: Contents
     seed: int
     scheme: str
+    restricted: Restricted | None = None
 
 
 def fresh_seed() -> int:
@@ -64,7 +89,8 @@ def lay_out(trial: Trial, contents: Contents, seed: int) -> PlotMap:
     """Draw a layout of a plan.
 
     Every draw has the same chance among all ways to rename treatments that play the same part, to
-    move whole blocks among those equal in size, rules and replicate, and to order plots in a block.
+    move whole blocks among those equal in size, rules and replicate, and to order plots in a block;
+    under `not_beside` among those of them that keep it, as far as `restriction` says.
 
     Parameters
     ----------
@@ -75,49 +101,42 @@ def lay_out(trial: Trial, contents: Contents, seed: int) -> PlotMap:
     Raises
     ------
     BadInput : the plan breaks a rule of its trial
+    Undecided : its treatments cannot be kept apart as `not_beside` asks, or no way was found
     """
+    if own := broken_rules(trial, contents):
+        raise BadInput(f"the plan breaks a rule of its trial: {own[0]}; plan the trial again")
     random = np.random.default_rng(seed)
-    parts, alike = treatment_roles(trial), block_roles(trial)
-    renamed = _shuffled(range(trial.t), parts, random)
-    moved = _shuffled(range(trial.b), alike, random)
-    drawn = tuple(tuple(sorted(renamed[i] for i in contents[moved[j]])) for j in range(trial.b))
-    if broken := broken_rules(trial, drawn):
-        if own := broken_rules(trial, contents):
-            raise BadInput(f"the plan breaks a rule of its trial: {own[0]}; plan the trial again")
-        raise RuntimeError(f"a layout broke a rule that its plan keeps: {broken[0]}")
-
     sites = places(trial)
-    standing: dict[int, int] = {}
-    for j, block in enumerate(drawn):
-        plots = [site.plot for site in sites if site.block == j]
-        standing.update(zip(plots, random.permutation(block).tolist(), strict=True))
+    urn, limit = Urn.of(trial, contents, sites), restriction(trial, sites)
+    restricted = None
+    if limit is None:
+        standing = urn.draw(random)
+    else:
+        drawn = draw_restricted(trial, urn, limit, random)
+        standing = drawn.standing
+        never = never_on(urn, limit, standing, random)
+        restricted = Restricted(drawn.method, drawn.uniform, drawn.told, *never)
+    held = urn.contents_of(standing)
+    if broken := broken_rules(trial, held):
+        raise RuntimeError(f"a layout broke a rule that its plan keeps: {broken[0]}")
     return PlotMap(
-        plots=tuple(Planted(site, standing[site.plot]) for site in sites),
-        contents=drawn,
+        plots=tuple(Planted(site, i) for site, i in zip(sites, standing.tolist(), strict=True)),
+        contents=held,
         seed=seed,
-        scheme=_scheme(trial, parts, alike),
+        scheme=_scheme(trial, urn),
+        restricted=restricted,
     )
 
 
-def _shuffled(
-    items: Sequence[int], classes: tuple[tuple[int, ...], ...], random: np.random.Generator
-) -> list[int]:
-    """The items with each class permuted within itself, uniformly."""
-    moved = list(items)
-    for members in classes:
-        for at, to in zip(members, random.permutation(members).tolist(), strict=True):
-            moved[at] = to
-    return moved
-
-
-def _scheme(trial: Trial, parts: tuple[tuple[int, ...], ...], alike: tuple[tuple[int, ...], ...]) -> str:
+def _scheme(trial: Trial, urn: Urn) -> str:
     """What was drawn among what, in words that name treatments and blocks."""
     treatments = [treatment.name for treatment in trial.treatments]
     blocks = [block.name for block in trial.blocks]
     return "; ".join(
         (
-            "treatments drawn among those that play the same part: " + _groups(parts, treatments),
-            "whole blocks drawn among those equal in size, rules and replicate: " + _groups(alike, blocks),
+            "treatments drawn among those that play the same part: " + _groups(urn.parts, treatments),
+            "whole blocks drawn among those equal in size, rules and replicate: "
+            + _groups(urn.alike, blocks),
             "plots drawn within each block",
         )
     )

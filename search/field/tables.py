@@ -35,7 +35,7 @@ def plots_csv(packet: CrewPacket) -> str:
                 *replicate,
                 place.line,
                 place.place,
-                inert(treatment.name),
+                inert(treatment.name or treatment.code),
                 inert(treatment.code),
                 inert(treatment.caution),
             ]

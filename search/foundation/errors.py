@@ -85,7 +85,7 @@ class Clash:
     is_smallest : every clashing line is needed: without it a plan was found
     cause : why they clash, in a sentence
     shown_by : how that was shown
-    changes : what to relax, the smallest change first; each alone was seen to leave a plan
+    changes : what to relax, the smallest change first; each alone was tried and serves
     """
 
     lines: tuple[tuple[str, int, str], ...]

@@ -46,6 +46,8 @@ def _same_contents(trial: Trial, contents: Contents, plots: tuple[Plot, ...]) ->
 
 def _field(ground: Ground) -> dict[Place, int]:
     """The block of every place of the map that has a plot."""
+    if ground.spots:
+        return {(spot.line, spot.place): spot.block for spot in ground.spots if spot.block is not None}
     block = dict(ground.letters)
     from_top = ground.numbering.start.startswith("top")
     rows = ground.rows if from_top else ground.rows[::-1]
@@ -65,6 +67,8 @@ def _blocks_as_lines(trial: Trial) -> dict[Place, int]:
 
 
 def _longest_line(trial: Trial) -> int:
+    if trial.ground and trial.ground.spots:
+        return max(spot.place for spot in trial.ground.spots)
     if trial.ground:
         return max(len(row) for row in trial.ground.rows)
     return max(block.plots for block in trial.blocks)

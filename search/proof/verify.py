@@ -8,7 +8,7 @@ from pathlib import Path
 from typing import Any
 
 from search.foundation.errors import Impossible
-from search.proof import plots, reading, rules, score, stamp, standing
+from search.proof import neighbours, plots, reading, rules, score, stamp, standing
 from search.proof.bound import bounded
 from search.proof.certificates.case import Case
 from search.proof.information import information
@@ -81,7 +81,9 @@ def _planting(file: Part, proof: _Proof) -> None:
     if not counts:
         return
     proof.step("rules", lambda: rules.obeyed(trial, contents))
-    proof.step("plots", lambda: plots.planted(trial, contents, reading.plots_of(file, trial)))
+    placed = proof.step("plots", lambda: plots.planted(trial, contents, reading.plots_of(file, trial)))
+    if placed:
+        proof.step("neighbours", lambda: neighbours.kept_apart(trial, reading.plots_of(file, trial)))
     proof.step("score", lambda: _claims(file, trial, contents, proof))
 
 

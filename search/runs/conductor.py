@@ -7,6 +7,7 @@ import threading
 from collections.abc import Iterator
 from dataclasses import dataclass, field, replace
 
+from search.designs.starts import Start, starts
 from search.efficiency.aims import weights
 from search.efficiency.bounds import all_bounds
 from search.efficiency.evaluator import score
@@ -71,9 +72,7 @@ def find(
         stop=stop,
     )
     observer.first_plan(score(trial, first).aim, where_from)
-    if kept is not None and broken_rules(trial, kept):
-        kept = None  # a store that somebody wrote into: never trust it with the rules
-
+    best = _best_known(trial, kept, observer)
     bounds = _Bounds(trial, implied, observer)
     _wait_for_kernels(observer, stop)
 
@@ -84,12 +83,13 @@ def find(
     outcome = search(
         Problem(rules, weights(trial)),
         first,
-        kept=kept,
+        kept=None if best is None else best.contents,
         target=bounds.target,
         stop=stop,
         seed=seed,
         workers=workers,
         watch=lambda value, moves, seconds: observer.progress(bounds.efficiency(value), moves, seconds),
+        known="" if best is None else best.where_from,
     )
     bounds.finish()
     broken = broken_rules(trial, outcome.contents)
@@ -109,6 +109,20 @@ def find(
             digest=digest or canonical(trial).digest,
         )
     )
+
+
+def _best_known(trial: Trial, kept: Contents | None, observer: Observer) -> Start | None:
+    """The best of the kept plan and of designs that fit the trial or nearly do, before any search."""
+    candidates = list(starts(trial))
+    if kept is not None and not broken_rules(trial, kept):
+        # Checked, for anybody may have written into the store.
+        candidates.insert(0, Start(kept, "kept plan"))
+    if not candidates:
+        return None
+    efficiencies = [score(trial, start.contents).aim for start in candidates]
+    best = max(range(len(candidates)), key=lambda i: (efficiencies[i], -i))
+    observer.first_plan(efficiencies[best], candidates[best].where_from)
+    return candidates[best]
 
 
 def checked(plan: Plan) -> Plan:

@@ -6,6 +6,8 @@ from collections import Counter
 from dataclasses import dataclass, replace
 
 from search.designs.conditions import Balanced, conditions, nearby, smallest
+from search.designs.existence import at_once
+from search.designs.records import Existence
 from search.foundation.errors import Clash, Impossible, Undecided
 from search.runs.cautions import cautions, never_meeting
 from search.runs.explaining import USUAL_SECONDS, explained
@@ -95,7 +97,7 @@ def inspect(trial: Trial, *, seconds: float, seed: int = 1) -> Inspection:
 
 
 def balance(trial: Trial) -> tuple[str, Balanced | None]:
-    """What counting says of a balanced design for the trial, and its parameters if it may exist."""
+    """Whether a balanced design fits the trial, and its parameters if one does or may."""
     sizes = {block.plots for block in trial.blocks}
     if sizes == {trial.t}:
         return "Every block holds every treatment: complete blocks, balanced as they stand.", None
@@ -111,12 +113,26 @@ def balance(trial: Trial) -> tuple[str, Balanced | None]:
     design = verdict.allowed
     if reason := _barred_by_rules(trial, design):
         return f"The sizes would allow a balanced design, the rules do not: {reason}.", None
+    known = at_once(design, resolvable=_in_replicates(trial))
+    numbers = (
+        f"each treatment on {design.r} plots, each pair in "
+        f"{'one block' if design.meetings == 1 else f'{design.meetings} blocks'}, efficiency "
+        f"{float(design.efficiency):.4f}"
+    )
+    match known.existence:
+        case Existence.IMPOSSIBLE:
+            return f"No balanced design exists for these numbers: {known.reason}.", None
+        case Existence.EXISTS:
+            return f"A balanced design fits: {numbers}. Construction: {known.reason}.", design
     return (
-        f"The counts allow a balanced design: each treatment on {design.r} plots, each pair in "
-        f"{design.meetings} {'block' if design.meetings == 1 else 'blocks'}, efficiency "
-        f"{float(design.efficiency):.4f}. The search tells whether it can be built.",
+        f"The counts allow a balanced design ({numbers}); whether one exists is not known here: {known.reason}.",
         design,
     )
+
+
+def _in_replicates(trial: Trial) -> bool:
+    inside = {j for replicate in trial.rules.replicates for j in replicate.blocks}
+    return len(inside) == trial.b
 
 
 def _barred_by_rules(trial: Trial, design: Balanced) -> str:
@@ -129,7 +145,4 @@ def _barred_by_rules(trial: Trial, design: Balanced) -> str:
         return f"every pair would meet in {design.meetings} blocks, fewer than a rule asks for"
     if (rules.least > design.r).any() or (rules.most < design.r).any():
         return f"every treatment would have {design.r} plots, which some may not"
-    inside = (rules.group >= 0).all()
-    if inside and trial.rules.replicates and trial.b < trial.t + design.r - 1:
-        return "in complete replicates it would need t + r − 1 blocks at least (Bose 1942)"
     return ""

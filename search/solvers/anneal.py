@@ -8,10 +8,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from search.foundation.stopping import Stop
-from search.solvers.board import board_of, contents_on, objective
+from search.solvers.board import board_of, contents_on, objective, unit_of
 from search.solvers.compiled import kernel
 from search.solvers.records import Problem
-from search.solvers.walk import Report, Walk, quiet
+from search.solvers.walk import ROUNDING, Report, Walk, quiet
 from search.trial.records import Contents
 
 Stream = NDArray[np.uint64]
@@ -140,11 +140,11 @@ def calibrated(problem: Problem, start: Contents, random: Stream, stop: Stop) ->
     points = problem.tables.t + problem.tables.b
     probed = max(PROBED, PROBED_PER_POINT * points)
     rises = walk.rises(probed)
-    worse = rises[np.isfinite(rises) & (rises > 1e-12)]
+    noise = ROUNDING * unit_of(problem, objective(problem, walk.contents))
+    worse = rises[np.isfinite(rises) & (rises > noise)]
     median = float(np.median(worse)) if len(worse) else 0.0
     walk.cool(0.0, 0.0, walk.neighbourhood)
-    level = walk.cool(0.0, 0.0, probed)  # moves that change nothing are accepted however cold
     hot = median / 100
-    while hot < median / 2 and walk.cool(hot, hot, probed) < level + probed / points and not stop.due:
+    while hot < median / 2 and walk.cool(hot, hot, probed) < probed / points and not stop.due:
         hot *= HEATING
     return Cooling(hot, hot / SPAN)

@@ -42,6 +42,11 @@ def objective(problem: Problem, contents: Contents) -> float:
     return float((problem.weights * pseudo_inverse(information)).sum())
 
 
+def unit_of(problem: Problem, value: float) -> float:
+    """What tolerances of an objective are parts of: a trace is measured by its own size, a logarithm by 1."""
+    return 1.0 if problem.weights is None else abs(value)
+
+
 def board_of(problem: Problem, contents: Contents) -> Board:
     """A board with a plan on it; the distances wait for `refresh`."""
     tables = problem.tables

@@ -75,16 +75,18 @@ class Questions:
         """Whether a plan obeys the trial; counting alone never says that one does."""
         key = (trial.rules, trial.treatments, trial.blocks, by_counting)
         if key not in self.answers:
+            if self.left <= 0 and not by_counting:
+                return Verdict.UNKNOWN
             self.answers[key] = self._decided(trial, by_counting)
         return self.answers[key]
 
     def _decided(self, trial: Trial, by_counting: bool) -> Verdict:
         try:
             implied = limits(trial)
-            if by_counting or self.left <= 0:
+            if by_counting:
                 return Verdict.UNKNOWN
             rules = replace(tables(trial), least=implied.least, most=implied.most)
-            seconds = min(QUESTION_SECONDS, self.left)
+            seconds = min(QUESTION_SECONDS, max(0.1, self.left))
             feasible_start(trial, rules, implied, seed=self.seed, seconds=seconds)
         except Impossible:
             return Verdict.IMPOSSIBLE
@@ -120,7 +122,7 @@ def _one_clash(trial: Trial, lines: Sequence[Said], questions: Questions) -> Cla
         return questions.ask(only(trial, kept), by_counting=True) is Verdict.IMPOSSIBLE
 
     def in_full(kept: Sequence[Said]) -> bool:
-        return questions.left > 0 and questions.ask(only(trial, kept)) is Verdict.IMPOSSIBLE
+        return questions.ask(only(trial, kept)) is Verdict.IMPOSSIBLE
 
     found = [] if by_counting([]) else list(lines)
     if by_counting(found):

@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 import sys
 import tempfile
+from functools import cache
 from pathlib import Path
 from types import ModuleType
 
@@ -50,6 +51,7 @@ def warm_up() -> None:
     kernel()
 
 
+@cache
 def kernel() -> ModuleType:
     """The module of compiled functions; the first call loads or compiles it.
 

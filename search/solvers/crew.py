@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+import math
 import threading
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import Future, ThreadPoolExecutor, wait
 from types import TracebackType
+from typing import TypeVar
 
 from search.foundation.stopping import Stop
 from search.solvers.anneal import Found
@@ -19,9 +21,15 @@ Watch = Callable[[float, int, float], None]
 Job = Callable[[Report], Found]
 """A run, waiting for somebody to report moves to."""
 
+T = TypeVar("T")
+
 
 class Crew:
-    """Workers on one search; the kernels they run release Python's lock.
+    """Workers on one search; the kernel releases Python's lock, so that they work at the same time.
+
+    The caller's thread only waits, since Ctrl-C is heard there and must not fall into the kernel. The
+    first one sets the flag of the stop, so that work ends soon and what was found is handed back; where
+    the flag is set already, the interrupt goes on to the caller.
 
     Parameters
     ----------
@@ -47,11 +55,15 @@ class Crew:
             self._stop.interrupt()  # or the threads would work to the end of their runs
         self._pool.shutdown(cancel_futures=True)
 
-    def work(self, jobs: Sequence[Job], best: float) -> list[Found | None]:
-        """Do the jobs of a round, and wait for all of them.
+    def one(self, task: Callable[[], T]) -> T:
+        """What a single task comes to."""
+        future = self._pool.submit(task)
+        for _ in self._finished({future}):
+            pass
+        return future.result()
 
-        The first Ctrl-C only sets the flag of the stop, so that what was found is handed back; where
-        it is set already the interrupt goes on to the caller.
+    def round(self, jobs: Sequence[Job], best: float) -> list[Found | None]:
+        """Do the jobs of a round, and wait for all of them.
 
         Parameters
         ----------
@@ -63,7 +75,13 @@ class Crew:
         found : what each job came to; None for one that was not begun before the search was due to end
         """
         futures = [self._pool.submit(self._do, job) for job in jobs]
-        waiting: set[Future[Found | None]] = set(futures)
+        for done in self._finished(set(futures)):
+            best = min(best, *(_objective(future) for future in done), math.inf)
+            self._watch(best, self._moves, self._stop.elapsed)
+        return [future.result() for future in futures]
+
+    def _finished(self, waiting: set[Future[T]]) -> Iterator[set[Future[T]]]:
+        """What was finished since the last look, a few times a second, until nothing is left."""
         while waiting:
             try:
                 done, waiting = wait(waiting, timeout=WATCH_SECONDS)
@@ -71,11 +89,8 @@ class Crew:
                 if self._stop.interrupted:
                     raise
                 self._stop.interrupt()
-                continue
-            reached = [found.objective for future in done if (found := future.result()) is not None]
-            best = min([best, *reached])
-            self._watch(best, self._moves, self._stop.elapsed)
-        return [future.result() for future in futures]
+            else:
+                yield done
 
     def _do(self, job: Job) -> Found | None:
         return None if self._stop.due else job(self._report)
@@ -83,3 +98,8 @@ class Crew:
     def _report(self, moves: int) -> None:
         with self._lock:
             self._moves += moves
+
+
+def _objective(future: Future[Found | None]) -> float:
+    found = future.result()
+    return math.inf if found is None else found.objective

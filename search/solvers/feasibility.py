@@ -17,6 +17,8 @@ if TYPE_CHECKING:
     from ortools.sat.python.cp_model import CpModel, IntVar
 
 MOST_MEETING_VARIABLES = 2_000_000
+MEETING_VARIABLES_A_SECOND = 25_000
+"""So many are written down within a second: a model that takes longer than it may be solved is not begun."""
 
 
 def decide(
@@ -42,8 +44,10 @@ def decide(
     Undecided : not decided in the time
     """
     pairs = len(_limited_pairs(tables))
-    if pairs * tables.b > MOST_MEETING_VARIABLES:
-        raise Undecided(f"{pairs:,} limited pairs in {tables.b} blocks are too many for the rule solver")
+    if pairs * tables.b > min(MOST_MEETING_VARIABLES, MEETING_VARIABLES_A_SECOND * seconds):
+        raise Undecided(
+            f"{pairs:,} limited pairs in {tables.b} blocks are too many for the rule solver in {seconds:g} s"
+        )
     model, variables = _model(tables, limits)
     flat = [v for row in variables for v in row]
     solved = solve(model, flat, seconds=seconds, effort=effort, seed=seed, stop=stop)

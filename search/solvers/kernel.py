@@ -375,12 +375,6 @@ def _score(share, distances, t, u, v, a, c):
 
 
 @_hot
-def _renames(share, variance, t, u, v, a, c):
-    """Whether an exchange only swaps the contents of two blocks: then `w = 0`, else `w'Gw` is not small."""
-    return _products(share, variance, t, u, v, a, c)[2] < NOTHING
-
-
-@_hot
 def _true_rise(overall, t, rise, ratio):
     return -np.log(ratio) / (t - 1) if overall else rise
 
@@ -654,17 +648,18 @@ def make_move(board, plot, partner):
     return _true_rise(distances.overall, t, rise, ratio)
 
 
-@_entry(types.UniTuple(_INT, 3)(_BOARD, _RANDOM, _FLOAT, _FLOAT, _INT, _INT, _INT, _F1))
+@_entry(types.UniTuple(_INT, 4)(_BOARD, _RANDOM, _FLOAT, _FLOAT, _INT, _INT, _INT, _F1))
 def anneal(board, random, temperature, cooling, moves, tries, most_accepted, rises):
     """Simulated annealing (Metropolis et al. 1953; Kirkpatrick, Gelatt & Vecchi 1983).
 
     Ends after `moves` scored moves, `tries` drawn ones or `most_accepted` accepted ones, whichever
     comes first; the temperature is multiplied by `cooling` after each scored move. The first rises are
-    written to `rises`, as many as it has room for. Returns the moves scored, drawn and accepted.
+    written to `rises`, as many as it has room for. Returns the moves scored, drawn, accepted, and accepted
+    though they raise the objective.
     """
     beds, admitted, planting, distances = _named(board)
     planted, t = planting.planted, _treatments(planting)
-    scored, drawn, accepted = 0, 0, 0
+    scored, drawn, accepted, climbed = 0, 0, 0, 0
     while scored < moves and drawn < tries and accepted < most_accepted:
         drawn += 1
         plot, partner, place = _draw(beds, random)
@@ -681,13 +676,14 @@ def anneal(board, random, temperature, cooling, moves, tries, most_accepted, ris
             continue
         if _true_rise(distances.overall, t, rise, ratio) > allowed:
             continue
-        if abs(rise) < NOTHING and _renames(beds.share, distances.variance, t, u, v, a, c):
-            continue
+        if abs(rise) < NOTHING and _products(beds.share, distances.variance, t, u, v, a, c)[2] < NOTHING:
+            continue  # w = 0: two blocks alike but for u and v would only swap their names
         if _meets(beds, admitted, planting, u, v, a, c):
             _move_points(beds, planted, distances, t, u, v, a, c)
             _plant(admitted, planting, plot, partner, u, v, a, c)
             accepted += 1
-    return scored, drawn, accepted
+            climbed += int(rise > NOTHING)
+    return scored, drawn, accepted, climbed
 
 
 @_entry(types.Tuple((_INT, _INT, _INT, _FLOAT))(_BOARD, _INT, _INT, _FLOAT))

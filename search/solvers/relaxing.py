@@ -33,12 +33,14 @@ class Change:
     said : the line
     words : what to write there
     size, steps : how large a change it is
+    serves_all : with it a plan was found for all the other lines too, not only for those of its clash
     """
 
     said: Said
     words: str
     size: Size
     steps: int = 1
+    serves_all: bool = True
 
 
 Changed = Callable[[int], Trial]
@@ -46,6 +48,8 @@ Changed = Callable[[int], Trial]
 
 def changes(trial: Trial, clash: Clash, others: Sequence[Clash], questions: Questions) -> tuple[Change, ...]:
     """Changes to single lines of a clash, each of which alone was seen to leave a plan.
+
+    Where none was seen to leave a plan for the whole file, those that mend this clash are told.
 
     Parameters
     ----------
@@ -56,12 +60,18 @@ def changes(trial: Trial, clash: Clash, others: Sequence[Clash], questions: Ques
     """
     apart = {said for other in others for said in other.lines}
     kept = [said for said in demands(trial) if said not in apart]
-    tried = _Relaxer(trial, kept, questions)
-    found = [change for said in clash.lines for change in tried.of(said)]
+    found = _tried(_Relaxer(trial, kept, questions), clash)
     if not found:
-        found += tried.of_all_plots()
-    found += tried.of_blocks()
+        alone = _tried(_Relaxer(trial, clash.lines, questions), clash)
+        found = [replace(change, serves_all=False) for change in alone]
     return tuple(sorted(found, key=lambda change: (change.size, change.steps, change.said.line)))
+
+
+def _tried(relaxer: _Relaxer, clash: Clash) -> list[Change]:
+    found = [change for said in clash.lines for change in relaxer.of(said)]
+    if not found:
+        found += relaxer.of_all_plots()
+    return found + relaxer.of_blocks()
 
 
 class _Relaxer:
@@ -132,17 +142,24 @@ class _Relaxer:
         return replace(self.trial, blocks=blocks)
 
     def _possible(self, changed: Trial) -> bool:
-        return self.questions.left > 0 and (self.questions.ask(only(changed, self.kept)) is Verdict.POSSIBLE)
+        return self._as_a_file(only(changed, self.kept))
 
     def _without(self, said: Said) -> bool:
         left = [other for other in self.kept if other != said]
-        return self.questions.left > 0 and self.questions.ask(only(self.trial, left)) is Verdict.POSSIBLE
+        return self._as_a_file(only(self.trial, left))
+
+    def _as_a_file(self, changed: Trial) -> bool:
+        """Whether a plan is seen for the trial as its file would then be read."""
+        as_read = replace(changed, rules=replace(changed.rules, unforced=()))
+        return self.questions.ask(as_read) is Verdict.POSSIBLE
 
     def _least_step(self, most: int, changed: Changed) -> int | None:
         """The fewest steps after which a plan is there; more steps never take one away."""
         if most < 1 or not self._possible(changed(most)):
             return None
-        low, high = 0, most
+        low, high = 0, 1
+        while high < most and not self._possible(changed(high)):
+            low, high = high, min(2 * high, most)
         while high - low > 1:
             middle = (low + high) // 2
             if self._possible(changed(middle)):
@@ -217,4 +234,5 @@ class _Relaxer:
 
 def in_words(trial: Trial, change: Change) -> str:
     """A change as advice."""
-    return f"{place(trial, change.said)} ({quoted(trial, change.said)}): {change.words}"
+    rest = "" if change.serves_all else " (mends this clash; whether the rest can be met was not decided)"
+    return f"{place(trial, change.said)} ({quoted(trial, change.said)}): {change.words}{rest}"

@@ -14,12 +14,12 @@ from dataclasses import dataclass
 from search.efficiency.one_thread import one_thread
 from search.foundation.stopping import Ended, Stop
 from search.solvers.anneal import Cooling, Found, anneal, calibrated, connected, movable, scrambled
-from search.solvers.board import objective
+from search.solvers.board import objective, unit_of
 from search.solvers.compiled import warm_up
 from search.solvers.crew import Crew, Watch
 from search.solvers.records import Outcome, Problem
 from search.solvers.streams import stream
-from search.solvers.walk import Report
+from search.solvers.walk import ROUNDING, Report
 from search.trial.records import Contents
 
 __all__ = [
@@ -29,13 +29,14 @@ __all__ = [
     "Run",
     "best_of",
     "end",
-    "first_plan",
     "job",
     "left",
+    "prepared",
     "runs_of",
     "search",
-    "temperatures",
 ]
+
+KEPT = "kept plan"
 
 RUNS = 6
 """Runs of a round: one, two or three workers share them evenly."""
@@ -49,8 +50,6 @@ SPARE = 0.01
 """A limit in moves is met when this part of it is left."""
 MET = 1e-9
 """A plan whose objective is this near to the target has reached it."""
-SAME = 1e-12
-"""Objectives this near differ by rounding alone, and the lower run wins."""
 CONNECTING, MOVING, CALIBRATING = -1, -2, -3
 """Random streams of what comes before the runs."""
 
@@ -86,6 +85,7 @@ def search(
     seed: int,
     workers: int,
     watch: Watch,
+    known: str = KEPT,
 ) -> Outcome:
     """Search the best plan for a problem.
 
@@ -93,12 +93,13 @@ def search(
     ----------
     problem : rules and aim
     start : a plan within the rules
-    kept : the best plan of an earlier search, within the rules: the outcome is never worse
+    kept : a good plan within the rules, of an earlier search mostly: the outcome is never worse
     target : called with the number of each round before it; an objective that reaches it ends the search
     stop : limits in seconds and in moves, and interrupts
     seed : any whole number; the same one gives the same plan with any number of workers
     workers : threads
     watch : told the best objective, the moves scored and the seconds gone, a few times a second
+    known : where the kept plan comes from, in words
 
     Returns
     -------
@@ -107,14 +108,13 @@ def search(
     """
     warm_up()
     with one_thread(), Crew(workers, stop, watch) as crew:
-        origin, best = first_plan(problem, start, kept, seed, stop)
-        cooling = temperatures(problem, origin, seed, stop)
+        origin, best, cooling = crew.one(lambda: prepared(problem, start, kept, seed, stop, known))
         number = moves = 0
-        while (ended := end(best, target(number), moves, stop)) is None and cooling is not None:
+        while (ended := end(problem, best, target(number), moves, stop)) is None and cooling is not None:
             runs = runs_of(number, problem, origin, best, kept is not None, left(moves, stop))
-            found = crew.work([job(problem, run, cooling, seed, stop) for run in runs], best.objective)
-            best = best_of(best, runs, found)
-            moves += sum(x.moves for x in found if x is not None)
+            found = crew.round([job(problem, run, cooling, seed, stop) for run in runs], best.objective)
+            best = best_of(problem, best, runs, found)
+            moves += sum(what.moves for what in found if what is not None)
             number += 1
     return Outcome(
         contents=best.contents,
@@ -127,32 +127,31 @@ def search(
     )
 
 
-def first_plan(
-    problem: Problem, start: Contents, kept: Contents | None, seed: int, stop: Stop
-) -> tuple[Contents, Best]:
-    """Where runs start from, connected if that is in reach, and the best plan before any of them."""
-    random = stream(seed, CONNECTING)
-    origin = connected(problem, start, random, stop) or kept or start
+def prepared(
+    problem: Problem, start: Contents, kept: Contents | None, seed: int, stop: Stop, known: str = KEPT
+) -> tuple[Contents, Best, Cooling | None]:
+    """What comes before the first round.
+
+    Returns
+    -------
+    origin : what runs scramble: the start, connected where that is in reach
+    best : the better of it and the kept plan
+    cooling : the temperatures of all runs; None where nothing can be searched, since no connected plan or
+        no legal move was found
+    """
+    origin = connected(problem, start, stream(seed, CONNECTING), stop) or kept or start
     best = Best(origin, objective(problem, origin), -1, "first plan")
-    if kept is not None:
-        of_kept = objective(problem, kept)
-        if of_kept <= best.objective:
-            best = Best(kept, of_kept, -1, "kept plan")
-    return origin, best
+    if kept is not None and (of_kept := objective(problem, kept)) <= best.objective:
+        best = Best(kept, of_kept, -1, known)
+    if math.isinf(objective(problem, origin)) or not movable(problem, origin, stream(seed, MOVING), stop):
+        return origin, best, None
+    return origin, best, calibrated(problem, origin, stream(seed, CALIBRATING), stop)
 
 
-def temperatures(problem: Problem, origin: Contents, seed: int, stop: Stop) -> Cooling | None:
-    """The temperatures of all runs; None where there is nothing to search: disconnected, or no legal move."""
-    if math.isinf(objective(problem, origin)):
-        return None
-    if not movable(problem, origin, stream(seed, MOVING), stop):
-        return None
-    return calibrated(problem, origin, stream(seed, CALIBRATING), stop)
-
-
-def end(best: Best, target: float, moves: int, stop: Stop) -> Ended | None:
+def end(problem: Problem, best: Best, target: float, moves: int, stop: Stop) -> Ended | None:
     """Whether the search ends before the next round, and why."""
-    if best.objective <= target + MET * max(1.0, abs(target)):
+    slack = MET * unit_of(problem, target) if math.isfinite(target) else 0.0
+    if best.objective <= target + slack:
         return Ended.BOUND_MET
     if stop.interrupted:
         return Ended.INTERRUPTED
@@ -184,7 +183,7 @@ def runs_of(
     moves : moves that may still be scored; the runs share what is left
     """
     length = max(SHORTEST, PER_PAIR * problem.tables.n**2) * GROWTH ** min(number, GROWING)
-    many = int(max(1, min(RUNS, moves // SHORTEST)))
+    many = RUNS if moves >= RUNS * SHORTEST else max(1, int(moves // SHORTEST))
     each = math.ceil(min(length, moves / many))
     reheated = REHEATED if number > 0 else int(kept)
     known = best.start if best.run < 0 else "best plan of an earlier run"
@@ -209,12 +208,11 @@ def job(problem: Problem, run: Run, cooling: Cooling, seed: int, stop: Stop) -> 
     return work
 
 
-def best_of(best: Best, runs: Iterable[Run], found: Iterable[Found | None]) -> Best:
+def best_of(problem: Problem, best: Best, runs: Iterable[Run], found: Iterable[Found | None]) -> Best:
     """The best plan before the round or in it; of equal ones that of the lowest run."""
     for run, what in zip(runs, found, strict=True):
-        if what is None or not math.isfinite(what.objective):
+        if what is None:
             continue
-        margin = SAME * max(1.0, abs(what.objective))
-        if what.objective < best.objective - margin or math.isinf(best.objective):
+        if best.objective - what.objective > ROUNDING * unit_of(problem, what.objective):
             best = Best(what.contents, what.objective, run.number, run.start)
     return best

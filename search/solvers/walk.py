@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from search.foundation.stopping import Stop
-from search.solvers.board import Board, board_of, contents_on, objective, refresh
+from search.solvers.board import Board, board_of, contents_on, objective, refresh, unit_of
 from search.solvers.compiled import kernel
 from search.solvers.records import Problem
 from search.trial.records import Contents
@@ -24,6 +24,8 @@ REFRESH_AFTER = 5_000
 """Accepted moves after which the distances are measured from scratch."""
 DRAWS_PER_MOVE = 50
 """Where rules leave less than one legal move in so many draws, fewer moves are scored than asked for."""
+ROUNDING = 1e-12
+"""Objectives that differ by less are equal but for rounding, see `unit_of`."""
 NOTHING = np.zeros(0)
 
 Report = Callable[[int], None]
@@ -78,7 +80,7 @@ class Walk:
     def rises(self, many: int) -> NDArray[np.float64]:
         """How much random legal moves would raise the objective; none of them is made."""
         rises = np.zeros(many)
-        scored, _, _ = kernel().anneal(
+        scored, *_ = kernel().anneal(
             self._plain, self.random, -np.inf, 1.0, many, DRAWS_PER_MOVE * many, 1, rises
         )
         self._scored(scored)
@@ -94,13 +96,13 @@ class Walk:
 
         Returns
         -------
-        accepted : moves made
+        climbed : moves made although they raise the objective
         """
         factor = (cold / hot) ** (1 / moves) if cold > 0 and moves > 0 else 1.0
         most = max(1, CALL_ENTRIES // len(self.board.distances.variance) ** 2)
-        temperature, left, draws, accepted = hot, moves, DRAWS_PER_MOVE * moves, 0
+        temperature, left, draws, climbed = hot, moves, DRAWS_PER_MOVE * moves, 0
         while left > 0 and draws > 0:
-            scored, drawn, made = kernel().anneal(
+            scored, drawn, accepted, up = kernel().anneal(
                 self._plain,
                 self.random,
                 temperature,
@@ -113,12 +115,12 @@ class Walk:
             temperature *= factor**scored
             left -= scored
             draws -= drawn
-            accepted += made
+            climbed += up
             self._scored(scored)
-            self._made(made)
+            self._made(accepted)
             if self.stop.due:
                 break
-        return accepted
+        return climbed
 
     def descend(self, most_moves: int) -> None:
         """Make the best of all moves until none improves, or so many moves are scored.
@@ -128,8 +130,8 @@ class Walk:
         """
         end = self.moves + most_moves
         self.cool(0.0, 0.0, min(self.neighbourhood, most_moves))
-        least_gain = 1e-12 * max(1.0, abs(objective(self.problem, self.contents)))
-        while self.moves < end and not self.stop.due and self.step(-least_gain):
+        noise = ROUNDING * unit_of(self.problem, objective(self.problem, self.contents))
+        while self.moves < end and not self.stop.due and self.step(-noise):
             pass
 
     def step(self, below: float) -> bool:

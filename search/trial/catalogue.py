@@ -28,6 +28,8 @@ from search.trial.records import AimKind
 MOST_TREATMENTS = 2_000
 MOST_BLOCKS = 5_000
 MOST_PLOTS = 100_000
+MOST_APART = 20
+"""Plots; who wants more apart wants them in other blocks."""
 MOST_CELLS = 2_000_000
 """Treatments times blocks: tables of that size still fit into a small machine."""
 
@@ -60,7 +62,10 @@ class BlocksKind:
         MOST_BLOCKS,
     )
     alike: Kind = Fields({"count": Whole(1, MOST_BLOCKS), "plots": COUNT}, ("count", "plots"))
-    cut: Kind = Fields({"wanted": NotYet("blocks to be cut from the bare map")})
+    cut: Kind = Fields(
+        {"wanted": Fields({"plots": RANGE, "count": Whole(1, MOST_BLOCKS)}, one_of=("plots", "count"))},
+        ("wanted",),
+    )
 
     def read(self, node: Node, key: str, report: Report) -> Any:
         words = set()
@@ -73,7 +78,7 @@ class BlocksKind:
     def schema(self) -> Schema:
         named = self.named.schema()
         named["propertyNames"]["not"] = {"enum": ["count", "plots", "wanted"]}
-        return {"anyOf": [self.alike.schema(), named]}
+        return {"anyOf": [self.alike.schema(), self.cut.schema(), named]}
 
 
 BLOCKS = BlocksKind()
@@ -117,7 +122,14 @@ RULES = Fields(
         "replicates": ReplicatesKind(),
         "per_replicate": Table(COUNT),
         "twice_in_block": Flag(),
-        "not_beside": NotYet("a rule about neighbouring plots"),
+        "not_beside": Fields(
+            {
+                "pairs": Listing(PAIR, 1),
+                "itself": Flag(),
+                "plots_apart": Whole(1, MOST_APART),
+                "distance_m": Number(0, 1000, above=True),
+            }
+        ),
         "planted": NotYet("plots that are in the soil already"),
     },
     slips={
@@ -131,6 +143,8 @@ GROUND = Fields(
         "plot_m": Listing(Number(0, 1000, above=True), 2, 2),
         "gap_m": Listing(Number(0, 1000), 2, 2),
         "rows": Lines(4 * MOST_PLOTS),
+        "file": Text(1000),
+        "places": Lines(300 * MOST_PLOTS),
         "names": Table(Text()),
         "numbering": Fields(
             {
@@ -140,9 +154,8 @@ GROUND = Fields(
         ),
         "north_deg": Number(-360, 360),
         "corner": Listing(Number(-180, 180), 2, 2),
-        "file": NotYet("a map in a file of its own"),
     },
-    one_of=("rows", "file"),
+    one_of=("rows", "file", "places"),
 )
 
 AIM = Either(
@@ -201,7 +214,7 @@ TRIAL_KEYS: dict[str, Kind] = {
             "paper": Choice(("A4", "letter")),
             "spare_bags": Whole(0, 1000),
             "labels": Choice(("sheet", "single")),
-            "blind": NotYet("a packet that hides the treatments from the crew"),
+            "blind": Flag(),
         }
     ),
     "blocks_random": NotYet("planning for the combined analysis"),

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Collection
 from dataclasses import replace
-from typing import TypeVar
+from typing import Any, TypeVar
 
 from search.trial.reading_rules import EVERY
 from search.trial.records import Meeting, Rules, Said, Trial
@@ -40,9 +40,10 @@ def only(trial: Trial, kept: Collection[Said]) -> Trial:
         for i, treatment in enumerate(trial.treatments)
     )
     named = {said.sort for said in trial.said} & set(Rules.__slots__) - {"twice_in_block"}
-    picked = {sort: _picked(getattr(trial.rules, sort), items.get(sort)) for sort in named}
+    picked: dict[str, Any] = {sort: _picked(getattr(trial.rules, sort), items.get(sort)) for sort in named}
     twice = trial.rules.twice_in_block or "twice_in_block" not in items
-    rules = replace(trial.rules, **picked, twice_in_block=twice)
+    left_out = set(trial.rules.keep_out) - set(picked.get("keep_out", trial.rules.keep_out))
+    rules = replace(trial.rules, **picked, twice_in_block=twice, unforced=tuple(sorted(left_out)))
     return replace(trial, treatments=treatments, rules=rules)
 
 

@@ -8,18 +8,20 @@ from typing import Any
 
 from search.foundation.errors import shown
 from search.trial.catalogue import MOST_CELLS, MOST_PLOTS, TRIAL
-from search.trial.drawing import read_ground
+from search.trial.drawing import EMPTY, read_ground
 from search.trial.even import even_ranges
 from search.trial.kinds import Report, Section
 from search.trial.names import Names, plain
 from search.trial.nodes import Node, nodes_of, read_nodes
-from search.trial.reading_rules import read_rules
+from search.trial.reading_rules import EVERY, read_rules
 from search.trial.records import (
     Aim,
     AimKind,
     Amount,
     Block,
     Contrast,
+    Ground,
+    NotBeside,
     PacketSettings,
     Precision,
     Randomise,
@@ -28,7 +30,9 @@ from search.trial.records import (
     SearchSettings,
     Treatment,
     Trial,
+    Wanted,
 )
+from search.trial.wanted import bays, read_wanted
 
 
 def read_trial(path: str | Path) -> Trial:
@@ -77,13 +81,16 @@ class _Reader:
 
     def trial(self) -> Trial | None:
         names = self._treatment_names()
-        ground, blocks = read_ground(self.section.get("ground"), self.report)
-        blocks = self._blocks(blocks)
+        bare = "wanted" in self.section.get("blocks", ())
+        ground, blocks = read_ground(self.section.get("ground"), self.report, bare)
+        wanted = self._wanted(ground) if bare else None
+        blocks = self._bays(wanted, ground) if bare else self._blocks(blocks)
         if names is None or blocks is None or not self._in_reach(len(names), len(blocks)):
             return None
         treatments = Names("treatment", names)
         bays = Names("block", [block.name for block in blocks])
         rules, said = read_rules(self.section.get("rules", Section()), treatments, bays, self.report)
+        self._fits_ground(rules, ground, wanted)
         settings = self.section.get("treatments")
         settings = settings if isinstance(settings, Section) else Section()
         plants = self._treatments(names, settings, blocks, rules)
@@ -98,6 +105,7 @@ class _Reader:
             plots_each=self.plots_each,
             aim=aim,
             ground=ground,
+            wanted=wanted,
             about=tuple(self.section.get("about", {}).items()),
             search=SearchSettings(**self.section.get("search", {})),
             randomise=Randomise(**self.section.get("randomise", {})),
@@ -176,6 +184,65 @@ class _Reader:
                 "leave blocks out",
             )
         return drawn if drawn is not None else blocks
+
+    def _wanted(self, ground: Ground | None) -> Wanted | None:
+        """What the bays to be cut must be like; they need a map to be cut from."""
+        node = self.section.where["blocks"]
+        if ground is None:
+            if "ground" not in self.section.where:
+                self.report.add(
+                    node,
+                    "blocks.wanted",
+                    "no ground",
+                    "a map from which bays can be cut",
+                    "bays are bundles of neighbouring plots",
+                    "ground: rows with one letter for every plot",
+                )
+            return None
+        return read_wanted(self.section["blocks"].get("wanted"), node, _plots(ground), self.report)
+
+    def _bays(self, wanted: Wanted | None, ground: Ground | None) -> tuple[Block, ...] | None:
+        return bays(wanted, _plots(ground)) if wanted is not None and ground is not None else None
+
+    def _fits_ground(self, rules: Rules, ground: Ground | None, wanted: Wanted | None) -> None:
+        """Rules that speak of places need a map that shows them."""
+        section: Section = self.section.get("rules", Section())
+        if rules.not_beside is not None:
+            self._needs_map(rules.not_beside, section.where["not_beside"], ground)
+        if wanted is None:
+            return
+        single: list[str] = [key for key in ("keep_out", "replicates") if key in section.where]
+        if set(section.get("must_hold", ())) - {EVERY}:
+            single.append("must_hold")
+        for key in single:
+            self.report.add(
+                section.where[key],
+                f"rules.{key}",
+                "a rule about single blocks",
+                "rules about every block, while blocks are still to be cut from the map",
+                "nobody knows yet where a bay will lie",
+                "cut the bays first: plan once without the rule, and take the map of its plan.json",
+            )
+
+    def _needs_map(self, rule: NotBeside, node: Node, ground: Ground | None) -> None:
+        if ground is None and "ground" not in self.section.where:
+            self.report.add(
+                node,
+                "rules.not_beside",
+                "no ground",
+                "a map that shows which plots are neighbours",
+                "without it nobody can tell who stands beside whom",
+                "ground: rows, in the place of blocks",
+            )
+        elif rule.distance_m is not None and ground is not None and ground.plot_m is None:
+            self.report.add(
+                node,
+                "rules.not_beside.distance_m",
+                "no plot_m",
+                "ground.plot_m: the width and length of a plot in metres",
+                "without it the map has no metres",
+                "plots_apart, which counts plots",
+            )
 
     def _few_enough(self, plots: int) -> bool:
         if plots > MOST_PLOTS:
@@ -277,6 +344,11 @@ class _Reader:
             known = [(i, c) for i, c in zip(numbers, of.values(), strict=True) if i is not None]
             contrasts.append(Contrast(label, fields.get("weight", 1), tuple(known)))
         return Aim(AimKind.CONTRASTS, tuple(contrasts))
+
+
+def _plots(ground: Ground) -> int:
+    """Plots on a map, whichever way it is given."""
+    return len(ground.spots) or sum(c != EMPTY for row in ground.rows for c in row)
 
 
 def _own_limits(

@@ -8,7 +8,7 @@ from search.foundation.errors import shown
 from search.trial.kinds import Items, Report, Section
 from search.trial.names import Names
 from search.trial.nodes import Node
-from search.trial.records import Meeting, Replicate, Rules, Said
+from search.trial.records import Meeting, NotBeside, Replicate, Rules, Said
 
 EVERY = "every block"
 
@@ -57,6 +57,33 @@ class _RulesReader:
             replicates=replicates,
             per_replicate=tuple(sorted({**inside, **outside}.items())),
             twice_in_block=self.section.get("twice_in_block", False),
+            not_beside=self._not_beside(),
+        )
+
+    def _not_beside(self) -> NotBeside | None:
+        section: Section | None = self.section.get("not_beside")
+        if section is None:
+            return None
+        key, node = "rules.not_beside", self.section.where["not_beside"]
+        pairs: list[tuple[int, int]] = []
+        for number, names in enumerate(section.get("pairs", Items()), start=1):
+            found = self._found(names, f"{key}.pairs[{number}]", self.treatments, self.blocks)
+            pair = sorted({i for i, _ in found})
+            if len(pair) == 2:
+                pairs.append((pair[0], pair[1]))
+        itself = section.get("itself", False)
+        if not itself and "pairs" not in section.where:
+            why = "a rule about nobody would keep nothing"
+            remedy = "pairs: [[A, B]], or itself: true, or both"
+            self.report.add(node, key, "nobody to keep apart", "treatments to keep apart", why, remedy)
+        if "plots_apart" in section.where and "distance_m" in section.where:
+            found_both, remedy = "plots_apart and distance_m", "leave one of them out"
+            self.report.add(node, key, found_both, "one of the two", remedy=remedy)
+        return NotBeside(
+            pairs=tuple(dict.fromkeys(pairs)),
+            itself=itself,
+            plots_apart=section.get("plots_apart", 1),
+            distance_m=section.get("distance_m"),
         )
 
     def _say(self, sort: str, items: tuple[int, ...], key: str, node: Node | None) -> None:

@@ -64,6 +64,21 @@ class Meeting:
 
 
 @dataclass(frozen=True, slots=True)
+class NotBeside:
+    """Treatments that may share a block but not stand near one another on the map.
+
+    `pairs` are kept apart from each other, and every treatment from its own plots where `itself`. Near
+    means within `plots_apart` steps from plot to plot along and across the lines (1: plots that share an
+    edge), or, where `distance_m` is given, nearest edges less than so many metres apart.
+    """
+
+    pairs: tuple[tuple[int, int], ...] = ()
+    itself: bool = False
+    plots_apart: int = 1
+    distance_m: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
 class Rules:
     """The rules of the file, by treatment and block numbers."""
 
@@ -72,12 +87,16 @@ class Rules:
     meet_at_most: tuple[Meeting, ...] = ()
     keep_out: tuple[tuple[int, int], ...] = ()
     """(treatment, block): the treatment may not enter the block."""
+    unforced: tuple[tuple[int, int], ...] = ()
+    """(treatment, block): may stay out however large the block is. Never in a file: a trial with a `keep_out`
+    left out must not ask for more than one that keeps it."""
     must_hold: tuple[tuple[int, int], ...] = ()
     """(treatment, block): the block must contain the treatment."""
     replicates: tuple[Replicate, ...] = ()
     per_replicate: tuple[tuple[int, int], ...] = ()
     """(treatment, times): stands that often in each replicate, instead of once."""
     twice_in_block: bool = False
+    not_beside: NotBeside | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -89,15 +108,35 @@ class Numbering:
 
 
 @dataclass(frozen=True, slots=True)
-class Ground:
-    """The field as a map.
+class Spot:
+    """A plot of a map from a table.
 
-    `rows` has one text per line of plots, the farthest from the reader first, all of one length; a
-    letter is a block, a dot a place without a plot. `letters` gives the block number of each letter.
+    Parameters
+    ----------
+    line, place : both counted from 1 at the corner where numbering starts
+    block : number of its block; None on a bare map
+    x_m, y_m : middle of the plot, to the right of and away from the reader, in metres from any one point
     """
 
-    rows: tuple[str, ...]
-    letters: tuple[tuple[str, int], ...]
+    line: int
+    place: int
+    block: int | None
+    x_m: float | None = None
+    y_m: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Ground:
+    """The field as a map, drawn in `rows` or listed in `spots`; the other of the two is empty.
+
+    `rows` has one text per line of plots, the farthest from the reader first, all of one length; a
+    letter is a block, a dot a place without a plot. `letters` gives the block number of each letter;
+    it is empty on a bare map, from which blocks are still to be cut.
+    """
+
+    rows: tuple[str, ...] = ()
+    letters: tuple[tuple[str, int], ...] = ()
+    spots: tuple[Spot, ...] = ()
     plot_m: tuple[float, float] | None = None
     """Width and length of a sown plot in metres."""
     gap_m: tuple[float, float] = (0.0, 0.0)
@@ -107,6 +146,14 @@ class Ground:
     """Compass bearing, in degrees from north, of the way from the reader to the far edge."""
     corner: tuple[float, float] | None = None
     """Latitude and longitude of the corner where numbering starts."""
+
+
+@dataclass(frozen=True, slots=True)
+class Wanted:
+    """Blocks to be cut from a bare map: so many, or of so many plots (least, most)."""
+
+    count: int | None = None
+    plots: tuple[int, int] | None = None
 
 
 class AimKind(StrEnum):
@@ -177,6 +224,7 @@ class PacketSettings:
     paper: str = "A4"
     spare_bags: int = 0
     labels: str = "sheet"
+    blind: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -211,6 +259,8 @@ class Trial:
     plots_each: tuple[int, int] | None = None
     aim: Aim = Aim()
     ground: Ground | None = None
+    wanted: Wanted | None = None
+    """Set while the blocks are not cut from the map yet; their sizes are known, their plots are not."""
     about: tuple[tuple[str, str], ...] = ()
     search: SearchSettings = SearchSettings()
     randomise: Randomise = Randomise()

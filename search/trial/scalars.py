@@ -30,9 +30,10 @@ class Text:
     most: int = MOST_NAME
 
     def read(self, node: Node, key: str, report: Report) -> str | None:
-        if not isinstance(node, Scalar) or node.nothing or not node.text.strip():
-            remedy = "put it in quotes if it really is called so" if describe(node) == "nothing" else ""
-            remedy = remedy if isinstance(node, Scalar) and node.text else ""
+        if not isinstance(node, Scalar):
+            report.add(node, key, describe(node), "a text")
+        elif node.nothing or not node.text.strip():
+            remedy = "put it in quotes if it really is called so" if node.nothing and node.text else ""
             report.add(node, key, describe(node), "a text", remedy=remedy)
         elif len(node.text) > self.most:
             why = "it has to fit on labels and pages"

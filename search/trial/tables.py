@@ -76,6 +76,7 @@ def tables(trial: Trial) -> Tables:
     held = set(rules.must_hold)
     for i, j in rules.keep_out:
         high[i, j] = 0
+    for i, j in (*rules.keep_out, *rules.unforced):
         if (i, j) not in held:
             low[i, j] = 0
 

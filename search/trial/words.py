@@ -229,7 +229,18 @@ WORDS: dict[str, Words] = {
         DRILL,
         "rows: |  with lines such as  aaabbb  below it",
     ),
-    "ground.file": Words("Map in a file", "A CSV with line, place and block.", DRILL, "file: map.csv"),
+    "ground.file": Words(
+        "Map in a file",
+        "A CSV beside this file: line, place, block of every plot; where measured x_m, y_m of its middle.",
+        DRILL,
+        "file: map.csv",
+    ),
+    "ground.places": Words(
+        "Map as a table",
+        "The same table as in a file, written here; a plan carries its map so.",
+        DRILL,
+        "places: |  with lines such as  line,place,block  and  1,1,bay a  below it",
+    ),
     "ground.names": Words(
         "Names of the blocks",
         "What the letters of the map stand for.",

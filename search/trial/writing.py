@@ -6,7 +6,9 @@ from collections.abc import Iterable
 from fractions import Fraction
 from typing import Any
 
-from search.trial.records import Aim, AimKind, Ground, Meeting, Rules, Treatment, Trial
+from search.trial.listing import table_lines
+from search.trial.reading_rules import EVERY
+from search.trial.records import Aim, AimKind, Ground, Meeting, NotBeside, Rules, Treatment, Trial, Wanted
 
 
 def trial_document(trial: Trial) -> dict[str, Any]:
@@ -18,13 +20,18 @@ def trial_document(trial: Trial) -> dict[str, Any]:
         "about": dict(trial.about),
         "treatments": {treatment.name: _treatment(treatment) for treatment in trial.treatments},
     }
-    if trial.ground is None:
+    if trial.wanted is not None:
+        document["blocks"] = {"wanted": _wanted(trial.wanted)}
+    elif trial.ground is None:
         document["blocks"] = {block.name: block.plots for block in trial.blocks}
     if trial.plots_each is not None:
         document["plots_each"] = list(trial.plots_each)
     document["rules"] = _rules(trial.rules, names, blocks)
+    if trial.wanted is not None and "must_hold" in document["rules"]:
+        # Bays that are not cut yet have no rules of their own, whatever their number will be.
+        document["rules"]["must_hold"] = {EVERY: next(iter(document["rules"]["must_hold"].values()))}
     if trial.ground is not None:
-        document["ground"] = _ground(trial.ground, blocks)
+        document["ground"] = written_ground(trial.ground, blocks)
     document["aim"] = _aim(trial.aim, names)
     for key, part in (
         ("search", trial.search),
@@ -66,6 +73,28 @@ def _rules(rules: Rules, names: list[str], blocks: list[str]) -> dict[str, Any]:
     }
     document = {word: value for word, value in document.items() if value not in ([], {})}
     document["twice_in_block"] = rules.twice_in_block
+    if rules.not_beside is not None:
+        document["not_beside"] = _not_beside(rules.not_beside, names)
+    return document
+
+
+def _not_beside(rule: NotBeside, names: list[str]) -> dict[str, Any]:
+    document: dict[str, Any] = {"itself": rule.itself}
+    if rule.pairs:
+        document["pairs"] = [[names[i], names[j]] for i, j in rule.pairs]
+    if rule.distance_m is None:
+        document["plots_apart"] = rule.plots_apart
+    else:
+        document["distance_m"] = rule.distance_m
+    return document
+
+
+def _wanted(wanted: Wanted) -> dict[str, Any]:
+    document: dict[str, Any] = {}
+    if wanted.count is not None:
+        document["count"] = wanted.count
+    if wanted.plots is not None:
+        document["plots"] = list(wanted.plots)
     return document
 
 
@@ -84,13 +113,18 @@ def _lists(pairs: Iterable[tuple[str, str]]) -> dict[str, list[str]]:
     return lists
 
 
-def _ground(ground: Ground, blocks: list[str]) -> dict[str, Any]:
+def written_ground(ground: Ground, blocks: list[str]) -> dict[str, Any]:
+    """The ground as JSON data; its blocks have the names given."""
     document: dict[str, Any] = {
         "gap_m": list(ground.gap_m),
-        "rows": "\n".join(ground.rows),
-        "names": {letter: blocks[j] for letter, j in ground.letters},
         "numbering": {"start": ground.numbering.start, "way": ground.numbering.way},
     }
+    if ground.spots:
+        document["places"] = "\n".join(table_lines(ground.spots, blocks))
+    else:
+        document["rows"] = "\n".join(ground.rows)
+    if ground.letters:
+        document["names"] = {letter: blocks[j] for letter, j in ground.letters}
     if ground.plot_m is not None:
         document["plot_m"] = list(ground.plot_m)
     if ground.north_deg is not None:

@@ -153,6 +153,24 @@ def test_a_new_file_stays_in_its_folder(tmp_path: Path, monkeypatch: pytest.Monk
     assert [path.name for path in tmp_path.iterdir()] == ["work"]
 
 
+def test_a_packet_stays_in_its_folder(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Whatever trial, treatments and blocks are called, everything is written below the working folder."""
+    work = tmp_path / "a" / "b"
+    work.mkdir(parents=True)
+    monkeypatch.chdir(work)
+    blocks = {"../../up": 3, "=2+2": 3, "<i>b</i>": 3, "c:\\d": 3}
+    document = {
+        "trial": "../../../etc/passwd",
+        "treatments": ["../x", "=1+1", "<b>", "a/b"],
+        "blocks": blocks,
+    }
+    (work / "trial.yaml").write_text(json.dumps(document), encoding="utf-8")
+    assert invoke(["plan", "trial.yaml", "--moves", "500", "--json"]) == 0
+    written = [path for path in tmp_path.rglob("*") if path.is_file()]
+    assert len(written) >= 4
+    assert all(path.is_relative_to(work / "results") for path in written if path.name != "trial.yaml")
+
+
 def status_of(content: str, path: Path, seconds: str = "0.05") -> int:
     """Exit status of `inspect`, which must print one JSON document and nothing else."""
     path.write_bytes(content.encode("utf-8", "surrogatepass"))
@@ -182,8 +200,8 @@ def spoil(seeds: range, path: Path) -> Counter[int]:
 
 
 def test_spoiled_files_never_get_a_traceback(tmp_path: Path) -> None:
-    """Four hundred spoiled files: an answer for each, and every fault in five parts."""
-    found = spoil(range(400), tmp_path / "trial.yaml")
+    """Three hundred spoiled files: an answer for each, and every fault in five parts."""
+    found = spoil(range(300), tmp_path / "trial.yaml")
     assert min(found[0], found[2]) > 20
 
 

@@ -57,3 +57,18 @@ def test_the_schema_is_printed_as_it_is(capsys: pytest.CaptureFixture[str]) -> N
     assert invoke(["schema", "--json"]) == 0
     assert capsys.readouterr().out == plain
     assert '"$schema"' in plain
+
+
+@pytest.mark.parametrize("numbers", [("9", "4", "8"), ("Arlen, No, a: b", "2,2,3", None), ("3", "5", "2")])
+def test_plan_takes_it_as_it_stands(
+    numbers: tuple[str, str, str | None], capsys: pytest.CaptureFixture[str], tmp_path: Path
+) -> None:
+    """What `new` writes is planned, its packet drawn and its plan proved, without a line changed."""
+    treatments, plots, bays = numbers
+    path, out = tmp_path / "first.yaml", tmp_path / "out"
+    words = ["new", str(path), "--treatments", treatments, "--plots", plots]
+    assert answer(capsys, *words, *([] if bays is None else ["--bays", bays]))[0] == 0
+    store = tmp_path / "store.sqlite"
+    status, document = answer(capsys, "plan", path, "--moves", "2000", "--out", out, "--store", store)
+    assert (status, document["status"]) == (0, "planned")
+    assert answer(capsys, "verify", out / "plan.json")[0] == 0

@@ -3,20 +3,28 @@
 from __future__ import annotations
 
 from pathlib import Path
+from typing import Any
 
 import pytest
 
 from search.field.packet import write_packet
 from search.field.planfile import read_plan, write
 from search.foundation.errors import BadInput
+from search.trial.reading import trial_from_document
 from tests.field.made import document_of, trial_with
 
 
 def test_the_folder_holds_the_packet_and_nothing_else(tmp_path: Path) -> None:
-    """Two files in the folder, which is made; nothing beside it, whatever the trial is called."""
+    """Five files in the folder, which is made; nothing beside it, whatever the trial is called."""
     trial = trial_with(trial="../../escape")
     files = write_packet(trial, document_of(trial), tmp_path / "out" / "packet")
-    assert [path.name for path in files] == ["packet.pdf", "plots.csv"]
+    assert [path.name for path in files] == [
+        "packet.pdf",
+        "labels.pdf",
+        "packet.xlsx",
+        "plots.csv",
+        "plan.html",
+    ]
     assert {path for path in tmp_path.rglob("*") if path.is_file()} == set(files)
     assert files[0].read_bytes().startswith(b"%PDF-")
 
@@ -50,3 +58,22 @@ def test_a_folder_that_is_a_file_is_told(tmp_path: Path) -> None:
     trial = trial_with()
     with pytest.raises(BadInput, match="--out"):
         write_packet(trial, document_of(trial), tmp_path / "packet")
+
+
+@pytest.mark.parametrize(
+    ("document", "gap"),
+    [
+        ({"treatments": 4, "blocks": {"count": 2, "plots": 2}, "precision": {"cv_percent": 9}}, None),
+        ({"treatments": 2, "blocks": {"count": 3, "plots": 2}, "precision": {"cv_percent": 9}}, 0.0),
+        ({"treatments": 30, "blocks": {"a": 30}, "packet": {"blind": True, "labels": "single"}}, None),
+    ],
+    ids=["disconnected", "two treatments", "one block, blind"],
+)
+def test_plans_at_the_edge_are_drawn_whole(
+    document: dict[str, Any], gap: float | None, tmp_path: Path
+) -> None:
+    """Without variances, degrees of freedom, bound or contrast nothing of the packet is missing."""
+    trial = trial_from_document({"trial": "edge", **document})
+    files = write_packet(trial, document_of(trial, gap), tmp_path)
+    assert all(path.stat().st_size > 100 for path in files)
+    assert len(files) == (7 if trial.packet.blind else 5)

@@ -101,11 +101,12 @@ def test_the_sheets_follow_the_walk(low_moor: CrewPacket) -> None:
 
 def test_codes_and_amounts_are_explained(low_moor: CrewPacket) -> None:
     """Each code beside its treatment, with what to weigh out."""
-    told = next(text for text in pages_of(low_moor) if text.startswith("Treatments"))
-    for treatment in low_moor.treatments:
-        sign = "! " if treatment.caution else ""
-        assert f"{treatment.code} {sign}{treatment.name}" in told
-    assert f"{low_moor.treatments[4].plots} 0.42 kg {low_moor.treatments[4].total}" in told
+    for title in ("Treatments", "Bag list"):
+        told = next(text for text in pages_of(low_moor) if text.startswith(title))
+        for treatment in low_moor.treatments:
+            sign = "! " if treatment.caution else ""
+            assert f"{treatment.code} {sign}{treatment.name}" in told
+    assert f"{low_moor.treatments[4].plots} 0 0.42 kg {low_moor.treatments[4].total}" in told
 
 
 @pytest.mark.parametrize(

@@ -11,6 +11,9 @@ from search.field.planted import planted_plots
 from search.foundation.errors import BadInput
 from tests.field.made import document_of, trial_with
 
+COMPLETE = {"rows": "aaaaaaaa\nbbbbbbbb\ncccccccc"}
+"""Three complete blocks of eight, each a line."""
+
 
 @pytest.fixture(scope="module")
 def document() -> Document:
@@ -51,3 +54,24 @@ def test_a_plan_that_breaks_a_rule_is_never_printed(document: Document) -> None:
     }
     with pytest.raises(BadInput, match="breaks a rule"):
         planted_plots(trial_with(), {**document, "plots": swapped, "blocks": blocks})
+
+
+def test_neighbours_that_clash_are_never_printed() -> None:
+    """Arlen moved within its block to a plot beside Elder, whom it must not meet, is found."""
+    trial = trial_with(
+        treatments=["Arlen", "Elder", "C", "D", "E", "F", "G", "H"],
+        rules={"not_beside": {"pairs": [["Arlen", "Elder"]]}},
+        ground=COMPLETE,
+        plots_each=None,
+    )
+    document = document_of(trial)
+    assert len(planted_plots(trial, document)) == 24
+    standing = {plot["plot"]: plot["treatment"] for plot in document["plots"]}
+    elder = next(plot for plot, name in standing.items() if name == "Elder")
+    beside = elder + 1 if elder + 1 in standing else elder - 1
+    block = {plot["plot"]: plot["block"] for plot in document["plots"]}
+    arlen = next(p for p, name in standing.items() if name == "Arlen" and block[p] == block[beside])
+    standing[arlen], standing[beside] = standing[beside], "Arlen"
+    plots = [{**plot, "treatment": standing[plot["plot"]]} for plot in document["plots"]]
+    with pytest.raises(BadInput, match="stands beside"):
+        planted_plots(trial, {**document, "plots": plots})

@@ -7,8 +7,8 @@ from dataclasses import replace
 import pytest
 from hypothesis import assume, given, settings
 
-from search.efficiency.records import Bound
 from search.efficiency.evaluator import score
+from search.efficiency.records import Bound
 from search.foundation.errors import Impossible
 from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.conductor import checked, find

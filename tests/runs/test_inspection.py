@@ -20,7 +20,7 @@ from tests.drawn import all_plans, small_trials, tiny_trial
 CONFIGS = Path(__file__).parents[2] / "configs"
 
 
-@settings(max_examples=80, deadline=None)
+@settings(max_examples=50, deadline=None)
 @given(small_trials(most_treatments=4, most_plots=8))
 def test_verdict_pairs_and_connection_agree_with_every_plan(trial: Trial) -> None:
     """Tried against all plans: possible or not, pairs that never meet, "no plan can compare them"."""
@@ -39,7 +39,7 @@ def test_verdict_pairs_and_connection_agree_with_every_plan(trial: Trial) -> Non
             assert connected_components(shared, directed=False)[0] > 1
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=30, deadline=None)
 @given(small_trials(most_treatments=4, most_plots=8))
 def test_no_plan_betters_what_is_promised_at_best(trial: Trial) -> None:
     """The efficiency told as the best possible is at least that of every plan."""

@@ -21,7 +21,7 @@ from search.trial.starting import first_file, quoted
 NAMES = st.text(min_size=1, max_size=12).map(str.strip).filter(bool)
 
 
-@settings(max_examples=100, deadline=None)
+@settings(max_examples=40, deadline=None)
 @given(st.integers(2, 30), st.lists(st.integers(1, 12), min_size=1, max_size=8))
 def test_numbers_give_a_trial_that_can_be_planned(many: int, bays: list[int]) -> None:
     """Any numbers with a plot for each treatment: a file that reads, obeys the schema and has a plan."""
@@ -33,7 +33,7 @@ def test_numbers_give_a_trial_that_can_be_planned(many: int, bays: list[int]) ->
         assert inspect(trial, seconds=5).status == "possible"
 
 
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=100, deadline=None)
 @given(NAMES, st.lists(NAMES, min_size=2, max_size=5, unique=True))
 def test_names_come_back_as_given(name: str, treatments: list[str]) -> None:
     """Whatever a name is called, it is read as typed or refused as a name, never misread."""

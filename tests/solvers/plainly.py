@@ -25,16 +25,17 @@ def told() -> str:
     for weights in (pairs(5), None):
         problem = Problem(table, weights)
         board, random = board_of(problem, start), stream(7, 1)
-        lines.append(repr(kernel().wander(board.plain, random, 40, False)) + repr(contents_on(board)))
-        joined = kernel().wander(board.plain, random, 200, True)
-        lines.append(repr(joined) + repr(contents_on(board)))
+        for tries, join in ((40, False), (200, True)):
+            made, parts = kernel().wander(board.plain, random, tries, join)
+            lines.append(f"{made} {parts} {contents_on(board)}")
         walk = Walk(problem, contents_on(board), random, FOREVER)
         accepted = walk.cool(0.2, 0.01, 300)
         walk.descend(200)
         lines.append(f"{accepted} {walk.moves} {walk.contents} {walk.board.distances.variance.sum():.9f}")
     problem = Problem(plain_tables(4, [3, 3, 2], plots=(1, 3)), pairs(4))
     walk = Walk(problem, in_turn(4, [3, 3, 2]), stream(1, 1), FOREVER)
-    lines.append(repr(walk.best_move(np.inf)))
+    plot, partner = walk.best_move(np.inf) or (-1, -1)
+    lines.append(f"{plot} {partner}")
     return "\n".join(lines)
 
 

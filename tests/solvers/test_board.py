@@ -59,9 +59,9 @@ def test_a_block_is_the_mean_of_its_treatments() -> None:
             for i in range(5):
                 d = mean - np.eye(5)[i]
                 assert table[5 + j, i] == pytest.approx(d @ metric @ d, abs=1e-12)
-            for l, other in enumerate(means):
+            for m, other in enumerate(means):
                 d = mean - other
-                assert table[5 + j, 5 + l] == pytest.approx(d @ metric @ d, abs=1e-12)
+                assert table[5 + j, 5 + m] == pytest.approx(d @ metric @ d, abs=1e-12)
 
 
 @pytest.mark.parametrize("contents", [UNEVEN, ((0, 0, 1, 4), (1, 2, 3), (0, 2, 4), (3, 3))])

@@ -54,7 +54,7 @@ def test_divide_and_conquer_finds_a_smallest_set(n: int, data: st.DataObject) ->
     assert len(asked) - 1 - c <= 2 * c * (1 + math.ceil(math.log2(max(2, n / c)))) + 2 * c
 
 
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=40, deadline=None)
 @given(small_trials(most_treatments=4, most_plots=8))
 def test_a_clash_is_confirmed_by_trying_every_plan(trial: Trial) -> None:
     """On tiny impossible trials no plan obeys the clashing lines, and each line left out gives one."""
@@ -85,14 +85,14 @@ def _answers(ask: Questions) -> list[tuple[dict[str, Any], Verdict]]:
 
 @pytest.mark.parametrize("seed", range(len(SORTS)))
 def test_the_planted_clash_is_found_among_a_hundred_rules(seed: int) -> None:
-    """60 treatments, about 120 lines: the planted lines and no other, in less than 10 s."""
+    """60 treatments, about 120 lines: the planted lines and no other, in less than 10 s of one processor."""
     drawn = impossible(seed)
     trial = trial_from_document(drawn.document)
     assert len(demands(trial)) > 100
-    started = time.monotonic()
+    started = time.process_time()
     (clash,) = find_clashes(trial, questions())
     offered = changes(trial, clash, (), questions())
-    assert time.monotonic() - started < 10
+    assert time.process_time() - started < 10
     assert clash.is_smallest
     assert offered
     found = {said.key for said in clash.lines}

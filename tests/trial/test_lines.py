@@ -66,7 +66,7 @@ def test_lists_on_one_line_are_told_apart_by_key() -> None:
     assert keys == ["rules.keep_out.C[1]", "rules.keep_out.C[2]"]
 
 
-@settings(max_examples=100, deadline=None)
+@settings(max_examples=60, deadline=None)
 @given(small_trials(), st.data())
 def test_fewer_demands_admit_every_plan_that_more_admit(drawn: Trial, data: st.DataObject) -> None:
     """Whatever is left out, no plan of the trial is lost; with all demands it is the trial again."""

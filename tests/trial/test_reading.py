@@ -73,13 +73,9 @@ def test_contrasts_are_exact() -> None:
 
 
 NOT_YET: dict[str, dict[str, Any]] = {
-    "not_beside": {"rules": {"not_beside": {"pairs": [["A", "B"]]}}},
     "planted": {"rules": {"planted": {"101": "A"}}},
     "at_most": {"blocks": {"b": {"at_most": 3}}},
-    "wanted": {"blocks": {"wanted": {"count": 3}}},
     "blocks_random": {"blocks_random": 2},
-    "file": {"ground": {"file": "map.csv"}},
-    "blind": {"packet": {"blind": True}},
     "even meetings": {"aim": "even meetings"},
     "worst pair": {"aim": "worst pair"},
 }

@@ -107,7 +107,7 @@ def test_the_same_file_as_text_reads_alike(document: Any) -> None:
     report, again = Report(""), Report("")
     TRIAL.read(nodes_of(document), "", report)
     TRIAL.read(parse_nodes(yaml.safe_dump(document, sort_keys=False, allow_unicode=True), ""), "", again)
-    assert [(f.key, f.found) for f in again.faults] == [(f.key, f.found) for f in report.faults]
+    assert [(f.key, f.must) for f in again.faults] == [(f.key, f.must) for f in report.faults]
 
 
 @pytest.mark.parametrize("path", sorted(CONFIGS.glob("*.yaml")), ids=lambda path: path.stem)

@@ -148,7 +148,8 @@ def _concerned(caution: Caution, packet: CrewPacket) -> str:
     if len(concerned) > MANY:
         return ", ".join(treatment.code for treatment in concerned)
     names = ", ".join(
-        f"{named(treatment.name, treatment.number)} ({treatment.code})" for treatment in concerned
+        f"{named(treatment.name, treatment.number)} ({treatment.code})" if treatment.name else treatment.code
+        for treatment in concerned
     )
     plots = [str(p.place.plot) for p in packet.plots if p.treatment in caution.about]
     return f"{names}: {'plot' if len(plots) == 1 else 'plots'} {', '.join(plots)}"

@@ -30,12 +30,15 @@ def legend_of(packet: CrewPacket, room: float, tints: Sequence[Colour] = ()) -> 
     """
     parts = [_rule(room), space(5)]
     if any(block.letter and block.name != block.letter for block in packet.blocks):
-        shown = list(zip(packet.blocks, tints or [WHITE] * len(packet.blocks), strict=True))
-        parts += [_grid([_block(block, tint) for block, tint in shown], room), space(6)]
-    if all(entry.code == entry.name and not entry.caution for entry in packet.treatments):
+        tinted = list(zip(packet.blocks, tints or [WHITE] * len(packet.blocks), strict=True))
+        parts += [_grid([_block(block, tint) for block, tint in tinted], room), space(6)]
+    if packet.blind and not any(entry.caution for entry in packet.treatments):
+        parts.append(paragraph("Codes stand for treatments.", MARGIN, room, size=9, ink=QUIET))
+    elif all(entry.code == entry.name and not entry.caution for entry in packet.treatments):
         parts.append(paragraph("Codes are the names of the treatments.", MARGIN, room, size=9, ink=QUIET))
     elif len(packet.treatments) <= MOST_TREATMENTS:
-        parts.append(_grid([_treatment(entry) for entry in packet.treatments], room))
+        shown = [entry for entry in packet.treatments if entry.name or entry.caution]
+        parts.append(_grid([_treatment(entry) for entry in shown], room))
     else:
         told = "Codes and their treatments stand in full on the pages Treatments."
         parts.append(paragraph(told, MARGIN, room, size=9, ink=QUIET))
@@ -79,7 +82,8 @@ def _block(block: BlockEntry, tint: Colour) -> Entry:
 def _treatment(entry: TreatmentEntry) -> Entry:
     def draw(sheet: Sheet, x: float, y: float, room: float) -> None:
         sheet.text(x, y, entry.code, 10, bold=True)
-        name = named(entry.name, entry.number) + (", control" if entry.control else "")
+        name = named(entry.name, entry.number) if entry.name else ""
+        name += ", control" if entry.control else ""
         end = x + 38 + sheet.text(x + 38, y, cut(name, 9.5, room - 52), 9.5)
         if entry.caution:
             sheet.caution_sign(end + 4, y, 9)

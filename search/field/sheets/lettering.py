@@ -65,6 +65,7 @@ def named(name: str, number: int) -> str:
     return isolated(name) if readable(name) else f"{isolated(name)} (treatment {number})"
 
 
+@lru_cache(maxsize=4096)
 def runs(line: str, bold: bool = False) -> tuple[Run, ...]:
     """A line as it is drawn from left to right."""
     found = groupby(visual(joined(line)), key=lambda c: _font_for(c, bold))

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 
+from search.field.positions import is_measured
 from search.field.sheets.palette import ACCENT, INK, QUIET, WHITE
 from search.field.sheets.sheet import MARGIN, Sheet
 from search.field.sheets.tiling import Proportions, Tile, Tiling
@@ -61,6 +62,9 @@ def _remarks(ground: Ground | None, shape: Proportions) -> Iterator[str]:
     gaps = f"gaps {across:g} m between neighbours, {along:g} m between lines"
     gaps = gaps if across or along else "no gaps"
     drawn = "To scale." if shape.true else "Lengths shortened, not to scale."
+    if is_measured(ground):
+        gaps = "gaps as measured in the table of plots"
+        drawn = "To scale." if shape.true else "Drawn on a grid, not to scale."
     yield f"Plots {wide:g} m wide, {long:g} m long; {gaps}. {drawn}"
 
 

@@ -2,18 +2,20 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import partial
 
 from search.field.crew import CrewPacket
 from search.field.randomise import Planted
 from search.field.sheets.legend import legend_of
-from search.field.sheets.lettering import wrapped
+from search.field.sheets.lettering import width, wrapped
 from search.field.sheets.mapcells import BLOCK, Cell, Form, forms_for
 from search.field.sheets.mapheading import HEAD, heading
-from search.field.sheets.palette import ACCENT, INK, QUIET, WHITE, Colour, tints_for
+from search.field.sheets.palette import ACCENT, INK, QUIET, WHITE, Colour
 from search.field.sheets.sheet import FOOT, MARGIN, PAPERS, Page, Sheet
-from search.field.sheets.tiling import Proportions, Tile, Tiling, proportions, tiled
+from search.field.sheets.steps import Steps, steps_of
+from search.field.sheets.tiling import Tile, Tiling, tiled
+from search.field.sheets.tints import block_tints
 from search.field.walk import Pass
 
 SIDE = 40
@@ -36,7 +38,7 @@ class _Plan:
 
     packet: CrewPacket
     size: tuple[float, float]
-    shape: Proportions
+    steps: Steps
     tiling: Tiling
     form: Form
     at: dict[Position, Planted]
@@ -51,7 +53,7 @@ class _Plan:
 def _plan(packet: CrewPacket) -> _Plan:
     at = {(planted.place.row, planted.place.column): planted for planted in packet.plots}
     ground = packet.ground
-    shape = proportions(ground.plot_m, ground.gap_m) if ground else proportions(None, (0, 0))
+    steps = steps_of(packet)
     upright = PAPERS[packet.paper]
     sizes = (upright, upright[::-1])
     beside = 2 * SIDE if ground else NAMES
@@ -62,23 +64,24 @@ def _plan(packet: CrewPacket) -> _Plan:
         )
         for wide, high in sizes
     )
-    rows = len(ground.rows) if ground else 1 + max(row for row, _ in at)
-    columns = len(ground.rows[0]) if ground else 1 + max(column for _, column in at)
+    rows, columns = packet.extent
     forms = forms_for(packet)
-    tiling = tiled(rows, columns, shape, [form.least for form in forms], (rooms[0], rooms[1]))
-    neighbours = [
-        (planted.place.block, at[beyond].place.block)
-        for (row, column), planted in at.items()
-        for beyond in ((row + 1, column), (row, column + 1))
-        if beyond in at and at[beyond].place.block != planted.place.block
-    ]
-    tints = tints_for(len(packet.blocks), neighbours)
-    return _Plan(packet, sizes[tiling.landscape], shape, tiling, forms[tiling.form], at, tints)
+    tiling = tiled(rows, columns, steps.shape, [form.least for form in forms], (rooms[0], rooms[1]))
+    tiling = _within(rooms[tiling.landscape], tiling, steps)
+    tints = block_tints(packet)
+    return _Plan(packet, sizes[tiling.landscape], steps, tiling, forms[tiling.form], at, tints)
+
+
+def _within(room: tuple[float, float], tiling: Tiling, steps: Steps) -> Tiling:
+    """The tiling at a scale that lets the widest part, with whatever gaps it has, stay on its page."""
+    wide = max(steps.width(tile) for tile in tiling.tiles)
+    high = max(steps.height(tile) for tile in tiling.tiles)
+    return replace(tiling, scale=min(tiling.scale, room[0] / wide, room[1] / high))
 
 
 def _draw(plan: _Plan, number: int, sheet: Sheet) -> None:
     tile = plan.tiling.tiles[number]
-    heading(sheet, plan.packet.ground, plan.shape, plan.tiling, number)
+    heading(sheet, plan.packet.ground, plan.steps.shape, plan.tiling, number)
     grid = _Grid(plan, tile)
     for row in tile.rows:
         for column in tile.columns:
@@ -101,19 +104,19 @@ class _Grid:
     """Where rows and columns of the map lie on the page."""
 
     def __init__(self, plan: _Plan, tile: Tile) -> None:
-        scale, shape = plan.tiling.scale, plan.shape
-        self.plan, self.tile = plan, tile
-        self.wide, self.high = scale * shape.wide, scale * shape.long
-        self.across, self.along = scale * shape.gap_across, scale * shape.gap_along
-        whole = len(tile.columns) * (self.wide + self.across) - self.across
+        scale, steps = plan.tiling.scale, plan.steps
+        self.plan, self.tile, self.scale = plan, tile, scale
+        self.wide, self.high = scale * steps.shape.wide, scale * steps.shape.long
+        self.across, self.along = scale * steps.gap_across, scale * steps.gap_along
         first, last = plan.sides
-        self.left = first + (plan.size[0] - first - last - whole) / 2
+        self.left = first + (plan.size[0] - first - last - scale * steps.width(tile)) / 2
 
     def corner(self, row: int, column: int) -> tuple[float, float]:
         """The top left corner of a plot."""
+        columns, rows = self.plan.steps.columns, self.plan.steps.rows
         return (
-            self.left + (column - self.tile.columns.start) * (self.wide + self.across),
-            MARGIN + HEAD + self.along / 2 + (row - self.tile.rows.start) * (self.high + self.along),
+            self.left + self.scale * (columns[column] - columns[self.tile.columns.start]),
+            MARGIN + HEAD + self.along / 2 + self.scale * (rows[row] - rows[self.tile.rows.start]),
         )
 
     @property
@@ -173,8 +176,10 @@ def _tags(grid: _Grid, sheet: Sheet) -> None:
                 tagged.add(planted.place.block)
                 x, y = grid.corner(row, column)
                 x, y = x - grid.across / 2, y - grid.along / 2
-                sheet.box(x - 5, y - 5, 10, 10, fill=INK)
                 letter = grid.plan.packet.blocks[planted.place.block].letter
+                wide = max(10.0, width(letter, BLOCK, True) + 4)
+                x += wide / 2 - 5
+                sheet.box(x - wide / 2, y - 5, wide, 10, fill=INK)
                 sheet.text(x, y + 3, letter, BLOCK, bold=True, ink=WHITE, align=0.5)
 
 

@@ -31,6 +31,11 @@ TINTS = tuple(
 """For blocks, on four steps of grey, so that neighbours can differ on a grey printer too."""
 
 
+def hex_of(colour: Colour) -> str:
+    """The colour as `#rrggbb`, for sheet and page."""
+    return "#" + "".join(f"{round(255 * part):02x}" for part in colour)
+
+
 def luminance(colour: Colour) -> float:
     """Relative luminance of a colour, 0 for black and 1 for white (WCAG 2.1)."""
     linear = [c / 12.92 if c <= 0.04045 else ((c + 0.055) / 1.055) ** 2.4 for c in colour]

@@ -32,7 +32,12 @@ def planting_pages(packet: CrewPacket) -> list[Page]:
 
 
 def _head(packet: CrewPacket, room: float) -> Piece:
-    columns = ((PLOT, "Plot"), (BLOCK, "Block"), (CODE, "Code"), (NAME, "Treatment"))
+    columns = (
+        (PLOT, "Plot"),
+        (BLOCK, "Block"),
+        (CODE, "Code"),
+        (NAME, "Caution" if packet.blind else "Treatment"),
+    )
 
     def draw(sheet: Sheet, top: float) -> None:
         sheet.text(sheet.left, top + 15, "Planting order", 17, bold=True)
@@ -87,8 +92,9 @@ def _skipped(places: int) -> Piece:
 def _plot(stop: Stop, entry: TreatmentEntry, block: str, room: float) -> Piece:
     left, wide = MARGIN + NAME, room - NAME - REMARKS
     parts = [space(4.5)]
-    name = named(entry.name, entry.number) + (", control" if entry.control else "")
-    parts.append(paragraph(name, left, wide, size=10.5, leading=13, most=2))
+    if entry.name:
+        name = named(entry.name, entry.number) + (", control" if entry.control else "")
+        parts.append(paragraph(name, left, wide, size=10.5, leading=13, most=2))
     if entry.caution:
         words = paragraph(entry.caution, left, wide, size=8.5, leading=11, ink=WARNING, most=3, after=1.5)
         parts.append(words)

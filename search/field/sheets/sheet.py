@@ -138,6 +138,15 @@ class Sheet:
         self.canvas.setFillColorRGB(*fill)
         self.canvas.drawPath(path, stroke=0, fill=1)
 
+    def strokes(self, x: float, y: float, step: float, rectangles: Sequence[str], fill: Colour) -> None:
+        """Fill many rectangles, given as PDF operators in squares of `step` up and right of (x, y)."""
+        self.canvas.saveState()
+        self.canvas.translate(x, self.page_height - y)
+        self.canvas.scale(step, step)
+        self.canvas.setFillColorRGB(*fill)
+        self.canvas.addLiteral(" ".join(rectangles) + " f")
+        self.canvas.restoreState()
+
     def caution_sign(self, x: float, y: float, size: float) -> None:
         """Draw a warning triangle that stands on the baseline y, its left corner at x."""
         half = 0.58 * size

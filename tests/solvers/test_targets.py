@@ -1,0 +1,42 @@
+"""How soon the search gets where it should: `pytest -m slow -s tests/solvers/test_targets.py`.
+
+Two workers; the clock starts when the kernel is loaded; eight of ten seeds must keep the time.
+"""
+
+from __future__ import annotations
+
+import pytest
+
+from search.solvers.compiled import warm_up
+from tests.solvers.problems import plain
+from tests.solvers.test_rounds import found, variance_of
+
+BALANCED = [(7, 7, 3), (9, 12, 3), (13, 13, 4), (15, 15, 7), (8, 14, 4)]
+
+
+def balanced_efficiency(t: int, b: int, k: int) -> float:
+    """E = λt/(rk) with λ = r(k−1)/(t−1), Yates 1936."""
+    r = b * k // t
+    return (r * (k - 1) / (t - 1)) * t / (r * k)
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize(
+    ("t", "b", "k", "efficiency", "seconds"),
+    [
+        *((t, b, k, balanced_efficiency(t, b, k), 2.0) for t, b, k in BALANCED),
+        (12, 15, 4, 0.810160, 2.0),
+        (30, 30, 5, 0.81530, 10.0),
+    ],
+)
+def test_the_target_is_reached_in_time(t: int, b: int, k: int, efficiency: float, seconds: float) -> None:
+    """Eight of ten seeds reach the efficiency within the seconds."""
+    warm_up()
+    problem, start = plain(t, b, k)
+    goal = variance_of(efficiency, b * k // t)
+    outcomes = [
+        found(problem, start, seconds=seconds, seed=seed, target=lambda _: goal) for seed in range(10)
+    ]
+    taken = sorted(x.seconds for x in outcomes if x.objective <= goal * (1 + 1e-9))
+    print(f"\n{(t, b, k)} A >= {efficiency:.6f}: {len(taken)} of 10, seconds {[round(x, 3) for x in taken]}")
+    assert len(taken) >= 8
