@@ -13,6 +13,9 @@ from search.efficiency.records import Bound
 from search.trial.limits import Limits
 from search.trial.records import Trial
 
+QUICK = 0.1
+"""Seconds that every caller has."""
+
 
 @dataclass(frozen=True, slots=True)
 class Argument:
@@ -24,12 +27,14 @@ class Argument:
     sentence : the argument for a planner
     applies : whether it holds for a trial at all
     find : its bound, or None where it has none to give
+    seconds : what it takes in a large trial, about
     """
 
     name: str
     sentence: str
     applies: Callable[[Trial], bool]
     find: Callable[[Problem], Bound | None]
+    seconds: float = QUICK
 
 
 @dataclass(frozen=True, slots=True)
@@ -44,25 +49,30 @@ class Tried:
 ARGUMENTS = (
     *(
         Argument(module.NAME, module.SENTENCE, module.applies, module.find)
-        for module in (first_order, replication, trace_root, pairs, meets, normalised, local)
+        for module in (first_order, replication, trace_root, pairs, meets)
     ),
-    Argument(local.FINER, local.FINER_SENTENCE, local.applies, local.find_finer),
+    Argument(normalised.NAME, normalised.SENTENCE, normalised.applies, normalised.find, 1.0),
+    Argument(local.NAME, local.SENTENCE, local.applies, local.find, 1.0),
+    Argument(local.FINER, local.FINER_SENTENCE, local.applies, local.find_finer, 5.0),
 )
 
 
-def tried(trial: Trial, limits: Limits) -> Iterator[Tried]:
+def tried(
+    trial: Trial, limits: Limits, has_time: Callable[[float], bool] = lambda seconds: True
+) -> Iterator[Tried]:
     """Every argument that applies, each tried when it is asked for, the quick ones first.
 
     Parameters
     ----------
     trial : the trial
     limits : the replication that its rules leave, from `search.trial.limits`
+    has_time : whether there are so many seconds left; arguments that take longer are left out
     """
     given = problem(trial, limits)
     if given is None:
         return
     for argument in ARGUMENTS:
-        if argument.applies(trial):
+        if argument.applies(trial) and (argument.seconds <= QUICK or has_time(argument.seconds)):
             start = time.perf_counter()
             bound = argument.find(given)
             # an argument too weak to say anything may end above 1
@@ -71,9 +81,11 @@ def tried(trial: Trial, limits: Limits) -> Iterator[Tried]:
             yield Tried(argument, bound, time.perf_counter() - start)
 
 
-def all_bounds(trial: Trial, limits: Limits) -> Iterator[Bound]:
-    """One bound after another, each computed when it is asked for, the quick ones first."""
-    for one in tried(trial, limits):
+def all_bounds(
+    trial: Trial, limits: Limits, has_time: Callable[[float], bool] = lambda seconds: True
+) -> Iterator[Bound]:
+    """One bound after another, each computed when it is asked for, the quick ones first; see `tried`."""
+    for one in tried(trial, limits, has_time):
         if one.bound is not None:
             yield one.bound
 
