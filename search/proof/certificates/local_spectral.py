@@ -12,6 +12,7 @@ from search.proof.certificates.case import Case
 from search.proof.certificates.claims import Claim, claim_of_determinant, claim_of_variance
 from search.proof.certificates.multipliers import known
 from search.proof.certificates.spectral.cost import inverse_stays_above, logarithm_stays_above
+from search.proof.certificates.spectral.cycles import least_of_all_graphs
 from search.proof.certificates.spectral.entries import diagonals, places, row_sums
 from search.proof.certificates.spectral.numbers import Numbers, Side, numbers_of, pairs_of_sides
 from search.proof.certificates.spectral.walks import LONGEST, SHORTEST, at, coefficients, families
@@ -82,6 +83,9 @@ def _values(
     case: Case, numbers: Numbers, both: tuple[Side, Side], tree: Part, path: list[Split]
 ) -> Iterator[Fraction]:
     """The value of every leaf of a tree of splits."""
+    if tree.has("cycles") and not path and case.aim is AimKind.ALL_PAIRS:
+        yield least_of_all_graphs(numbers, both, tree)
+        return
     if not tree.has("at"):
         yield _value(case, numbers, both, tree, path)
         return

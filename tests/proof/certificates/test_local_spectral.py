@@ -13,6 +13,7 @@ import pytest
 from search.efficiency.bounds.problem import problem
 from search.efficiency.bounds.spectral import local
 from search.proof.certificates.local_spectral import _exponential_above, _side, derive
+from search.proof.certificates.spectral.cycles import _graphs, _inverses
 from search.proof.certificates.spectral.numbers import Numbers, Side, pairs_of_sides
 from search.proof.certificates.spectral.walks import LONGEST, SHORTEST, families
 from search.proof.parts import Part
@@ -149,7 +150,7 @@ def test_balanced_is_reached_and_not_passed() -> None:
     trial = equal_trial(7, 7, 3)
     assert len(FANO) == trial.b
     _, exact = _found(trial)
-    assert 7 / 9 <= exact <= 7 / 9 + 1e-7
+    assert Fraction(7, 9) <= exact <= Fraction(7, 9) + Fraction(1, 10**7)
 
 
 def _places(value: Any, path: tuple[Any, ...] = ()) -> list[tuple[Any, ...]]:
@@ -220,3 +221,56 @@ def test_exponential_from_above(x: Fraction) -> None:
     """e^x for x ≤ 0, rounded up by little."""
     above = _exponential_above(x)
     assert np.exp(float(x)) * (1 - 1e-15) <= float(above) <= np.exp(float(x)) * (1 + 1e-12)
+
+
+LISTED = [(7, 14, 2, 0.544982699), (8, 20, 2, 0.545332438), (14, 7, 4, 0.72184030), (8, 16, 3, 0.755580786)]
+"""(t, b, k, A) of the best plan of long searches where few graphs are possible."""
+
+
+@pytest.mark.parametrize(("t", "b", "k", "reached"), LISTED)
+def test_few_graphs_are_all_looked_at(t: int, b: int, k: int, reached: float) -> None:
+    """Where M, or what it leaves, is a union of cycles the bound is the best plan, and the checker agrees."""
+    trial = equal_trial(t, b, k)
+    multipliers, exact = _found(trial)
+    assert float(exact) == pytest.approx(reached, rel=1e-8)
+    assert "cycles" in multipliers["levels"][0][0]
+    assert derive(case_of(trial), Part("multipliers", multipliers)).supports(exact)
+
+
+@pytest.mark.parametrize("t", [5, 8, 13])
+def test_the_cycle(t: int) -> None:
+    """k = r = 2: only the cycle is connected; its resistances sum to (t³ − t)/12 (Klein & Randić 1993)."""
+    trial = equal_trial(t, t, 2)
+    multipliers, exact = _found(trial)
+    average = 2 * (t**3 - t) / 12 / (t * (t - 1) / 2)
+    assert float(exact) == pytest.approx(1 / average, rel=1e-12)
+    assert derive(case_of(trial), Part("multipliers", multipliers)).supports(exact)
+
+
+@pytest.mark.parametrize(("degree", "shift", "turn"), [(2, 7, 1), (2, 7, -1), (1, 4, -1), (0, 3, 1)])
+def test_listed_graphs_by_their_eigenvalues(degree: int, shift: int, turn: int) -> None:
+    """Σ 1/(shift − turn θ), θ of a graph built as a matrix."""
+    for components in _graphs(12, degree):
+        matrix = np.zeros((12, 12))
+        start = 0
+        for size in components:
+            for i in range(size):
+                if size > 1:
+                    matrix[start + i, start + (i + 1) % size] = matrix[start + (i + 1) % size, start + i] = 1
+            start += size
+        theta = np.sort(np.linalg.eigvalsh(matrix))[:-1]
+        found = _inverses(components, degree, shift, turn)
+        assert found is not None
+        assert float(found) == pytest.approx((1 / (shift - turn * theta)).sum(), rel=1e-12)
+
+
+def test_graphs_are_listed_only_where_they_are_few() -> None:
+    """A listing of graphs of degree 4, or of a level that is not even, is refused."""
+    trial = equal_trial(9, 18, 2)
+    multipliers, _ = _found(trial)
+    for level in (0, 1):
+        for side in ("primal", "dual", "other"):
+            copy = json.loads(json.dumps(multipliers))
+            copy["levels"][level][0] = {"cycles": side, "of": "graph"}
+            with pytest.raises(Refuted):
+                derive(case_of(trial), Part("multipliers", copy))

@@ -7,9 +7,11 @@ from dataclasses import dataclass
 from fractions import Fraction
 from itertools import pairwise
 from math import floor
+from typing import Any
 
 import numpy as np
 
+from search.efficiency.bounds.problem import text
 from search.efficiency.bounds.spectral.below import (
     Piece,
     low_points,
@@ -18,6 +20,7 @@ from search.efficiency.bounds.spectral.below import (
 from search.efficiency.bounds.spectral.model import Model
 from search.efficiency.bounds.spectral.prices import (
     Prices,
+    SidePrices,
     Split,
     polynomial,
     proved,
@@ -63,6 +66,23 @@ class Leaf:
                 at = Fraction(round((end + start) * 500_000), 10**6)
                 farthest, best = broken, Split(at, floor(total), few=True)
         return best
+
+    @property
+    def splits(self) -> tuple[Split, ...]:
+        """On the way to it."""
+        return self.model.splits
+
+    def multipliers(self) -> dict[str, Any]:
+        """Its prices as the checker reads them."""
+        sides = {
+            side.name: _side_multipliers(price)
+            for side, price in zip(self.model.sides, self.prices.sides, strict=True)
+        }
+        return {
+            "constant": text(self.prices.constant),
+            "splits": [text(eta) for eta in self.prices.splits],
+            **sides,
+        }
 
     def made_sure(self) -> bool:
         """Lower the polynomial until exact arithmetic agrees that it lies below the cost, if it soon does."""
@@ -137,3 +157,16 @@ def _lower(model: Model, prices: Prices) -> list[float]:
     margin = MARGIN + ROUNDING * float(np.abs(p).max())
     prices.constant -= Fraction(f"{above + margin:.6e}")
     return [x for x, room in points if room < -MARGIN]
+
+
+def _side_multipliers(price: SidePrices) -> dict[str, Any]:
+    return {
+        "powers": [text(w) for w in price.powers],
+        "diagonal": text(price.diagonal),
+        "excess": text(price.excess),
+        "rows": [[text(u), text(v)] for u, v in price.rows],
+        "walks": {
+            family: {str(length): text(gamma) for length, gamma in lengths.items()}
+            for family, lengths in price.walks.items()
+        },
+    }

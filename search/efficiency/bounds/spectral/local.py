@@ -11,7 +11,8 @@ without turning back. `tr M³ = Σ m_ij c_ij` and `tr M⁴ = Σ c_ij²`, C = M²
 with prices on what rows sum to, each pair costs at least the least over all whole (m, c) that it could have.
 The distance of the meetings from even is a whole number of steps; each of the first levels is bounded for
 itself, with all that is known of M there (a graph, a graph but for one pair), the last for all further ones.
-In a level one may split: at most q of the eigenvalues have x ≤ y, or at least q + 1 have.
+Where the graph of a level, or what it leaves of all pairs, has a degree of at most 2, every graph is looked
+at instead. In a level one may split: at most q of the eigenvalues have x ≤ y, or at least q + 1 have.
 
 Source. Eigenvalues and walk counts: Delsarte 1973 and Biggs 1974 (from memory); levels and prices: this
 project.
@@ -25,10 +26,10 @@ from typing import Any
 
 from search.efficiency.bounds.problem import Problem, bound_on_determinant, bound_on_variance, text
 from search.efficiency.bounds.spectral.below import Cost
+from search.efficiency.bounds.spectral.cycles import Listed, listed
 from search.efficiency.bounds.spectral.leaf import Leaf, solved
 from search.efficiency.bounds.spectral.model import Model
-from search.efficiency.bounds.spectral.prices import SidePrices
-from search.efficiency.bounds.spectral.side import Shape, shape_of, variants
+from search.efficiency.bounds.spectral.side import Shape, shape_of, steps_of, variants
 from search.efficiency.records import Bound
 from search.trial.records import AimKind, Trial
 
@@ -73,6 +74,8 @@ def _bound(given: Problem, argument: str, steps: int) -> Bound | None:
     if not search.leaves or not all(leaf.made_sure() for leaf in search.leaves):
         return None
     least, multipliers = search.value, {"levels": [level.multipliers() for level in search.levels]}
+    if least <= 0:
+        return None
     if given.trial.aim.kind is AimKind.OVERALL:
         greatest = _exponential_above(-least) * shape.r**shape.rank
         return bound_on_determinant(given, argument, greatest, multipliers, kind=NAME)
@@ -102,7 +105,7 @@ class Level:
 
     number: int
     exactly: bool
-    forms: list[list[Leaf]]
+    forms: list[list[Leaf | Listed]]
 
     def multipliers(self) -> list[Any]:
         """For each form its leaves as a tree of splits."""
@@ -118,7 +121,7 @@ class Search:
     levels: list[Level] = field(default_factory=list)
 
     @property
-    def leaves(self) -> list[Leaf]:
+    def leaves(self) -> list[Leaf | Listed]:
         """All of them."""
         return [leaf for level in self.levels for leaves in level.forms for leaf in leaves]
 
@@ -132,8 +135,13 @@ class Search:
         forms = variants(self.shape, number, exactly)
         if forms is None:
             return None
+        if exactly and self.cost is Cost.INVERSE:
+            steps = steps_of(self.shape, number)
+            graphs = None if steps is None else listed(self.shape, steps)
+            if graphs is not None:
+                return Level(number, exactly, [[graphs] for _ in forms])
         leaves = [solved(Model.of(self.shape, sides, self.cost)) for sides in forms]
-        found = [[leaf] for leaf in leaves if leaf is not None]
+        found: list[list[Leaf | Listed]] = [[leaf] for leaf in leaves if leaf is not None]
         return Level(number, exactly, found) if len(found) == len(leaves) else None
 
     def step(self) -> bool:
@@ -160,12 +168,12 @@ class Search:
         self.levels[-1:] = [exact, rest]
         return True
 
-    def _split(self, leaves: list[Leaf], at: int) -> bool:
-        split = leaves[at].split()
-        if split is None:
+    def _split(self, leaves: list[Leaf | Listed], at: int) -> bool:
+        leaf = leaves[at]
+        split = leaf.split()
+        if split is None or isinstance(leaf, Listed):
             return False
-        parts = (split, replace(split, few=False))
-        children = [solved(leaves[at].model.split_at(part)) for part in parts]
+        children = [solved(leaf.model.split_at(part)) for part in (split, replace(split, few=False))]
         found = [leaf for leaf in children if leaf is not None]
         if len(found) < len(children):
             return False
@@ -186,33 +194,11 @@ def begun(shape: Shape, cost: Cost) -> Search | None:
 # -- what the checker needs --------------------------------------------------------------------------
 
 
-def _tree(leaves: list[Leaf], depth: int) -> dict[str, Any]:
-    splits = leaves[0].model.splits
+def _tree(leaves: list[Leaf | Listed], depth: int) -> dict[str, Any]:
+    splits = leaves[0].splits
     if len(splits) == depth:
-        return _leaf(leaves[0])
-    few = [leaf for leaf in leaves if leaf.model.splits[depth].few]
-    many = [leaf for leaf in leaves if not leaf.model.splits[depth].few]
+        return leaves[0].multipliers()
+    few = [leaf for leaf in leaves if leaf.splits[depth].few]
+    many = [leaf for leaf in leaves if not leaf.splits[depth].few]
     at = {"at": text(splits[depth].at), "count": splits[depth].count}
     return {**at, "few": _tree(few, depth + 1), "many": _tree(many, depth + 1)}
-
-
-def _leaf(leaf: Leaf) -> dict[str, Any]:
-    sides = {side.name: _side(price) for side, price in zip(leaf.model.sides, leaf.prices.sides, strict=True)}
-    return {
-        "constant": text(leaf.prices.constant),
-        "splits": [text(eta) for eta in leaf.prices.splits],
-        **sides,
-    }
-
-
-def _side(price: SidePrices) -> dict[str, Any]:
-    return {
-        "powers": [text(w) for w in price.powers],
-        "diagonal": text(price.diagonal),
-        "excess": text(price.excess),
-        "rows": [[text(u), text(v)] for u, v in price.rows],
-        "walks": {
-            family: {str(length): text(gamma) for length, gamma in lengths.items()}
-            for family, lengths in price.walks.items()
-        },
-    }

@@ -331,19 +331,26 @@ def halves(shape: Shape) -> tuple[Half, Half]:
     )
 
 
-def variants(shape: Shape, number: int, exactly: bool) -> list[tuple[Side, Side]] | None:
-    """Both sides at the level with this number, every way they can be; None where no plan has one.
+def steps_of(shape: Shape, number: int) -> tuple[int, int] | None:
+    """Steps from even of treatments and of blocks at the level with this number.
 
     Treatments and blocks have the same eigenvalues, so their levels go together: each step adds 4 to
     `tr (NN')² = tr (N'N)²`, and the first is where one of them is even.
     """
     primal, dual = halves(shape)
-    steps, odd = divmod(primal.least_squares - dual.least_squares, 4)
-    if odd:
+    ahead, odd = divmod(primal.least_squares - dual.least_squares, 4)
+    level = number + max(0, -ahead)
+    return None if odd else (level, level + ahead)
+
+
+def variants(shape: Shape, number: int, exactly: bool) -> list[tuple[Side, Side]] | None:
+    """Both sides at the level with this number, every way they can be; None where no plan has one."""
+    steps = steps_of(shape, number)
+    if steps is None:
         return None
-    level = number + max(0, -steps)
+    primal, dual = halves(shape)
     return [
         (one, other)
-        for one in primal.variants(level, exactly)
-        for other in dual.variants(level + steps, exactly)
+        for one in primal.variants(steps[0], exactly)
+        for other in dual.variants(steps[1], exactly)
     ]
