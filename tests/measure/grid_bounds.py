@@ -1,6 +1,6 @@
 """How tight are the bounds for equal blocks and replications? 804 sets, plans from a stored file.
 
-    nice python -m tests.measure.grid_bounds results/bounds_grid.csv [every]
+    nice python -m tests.measure.grid_bounds results/bounds_grid.csv [first every]
 
 The plans are the best of searches by an earlier prototype (`grid_reached.csv` among the tests of bounds), so
 that the bound is measured and not the search; for k = r = 2 only the cycle is connected.
@@ -64,8 +64,8 @@ def measured(trial: Trial, reached: float) -> tuple[Bound, float, float]:
     return best, seconds, time.process_time() - start
 
 
-def main(out: str, every: str = "1") -> None:
-    """Write one row for each set."""
+def main(out: str, first: str = "0", every: str = "1") -> None:
+    """Write one row for each set, or for every so-manieth from the first on."""
     with open(out, "w", encoding="utf-8", newline="") as file:
         table = csv.writer(file, lineterminator="\n")
         table.writerow(
@@ -81,7 +81,7 @@ def main(out: str, every: str = "1") -> None:
                 "check_seconds",
             ]
         )
-        for t, b, k, reached in list(sets())[:: int(every)]:
+        for t, b, k, reached in list(sets())[int(first) :: int(every)]:
             bound, seconds, check = measured(equal_trial(t, b, k), reached)
             gap = 100 * (1 - reached / bound.value)
             table.writerow(

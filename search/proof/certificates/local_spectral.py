@@ -15,7 +15,7 @@ from search.proof.certificates.spectral.cost import inverse_stays_above, logarit
 from search.proof.certificates.spectral.cycles import least_of_all_graphs
 from search.proof.certificates.spectral.entries import diagonals, places, row_sums
 from search.proof.certificates.spectral.numbers import Numbers, Side, numbers_of, pairs_of_sides
-from search.proof.certificates.spectral.walks import LONGEST, SHORTEST, at, coefficients, families
+from search.proof.certificates.spectral.walks import SHORTEST, at, coefficients, families
 from search.proof.parts import Part, listed, ratio
 from search.proof.records import Refuted
 from search.trial.records import AimKind
@@ -148,14 +148,14 @@ def _side(numbers: Numbers, side: Side, prices: Part, free: int) -> tuple[list[F
             raise Refuted(f"{given.where} prices walks that its level does not have")
         family, lengths = possible[name], given.part(name)
         for length in lengths.content:
-            if length not in {str(n) for n in range(SHORTEST, LONGEST + 1)}:
+            if length not in {str(n) for n in range(SHORTEST, family.longest + 1)}:
                 raise Refuted(f"{lengths.where} prices walks of a length that is not counted")
             price = lengths.ratio(length)
             if price < 0:
                 raise Refuted(f"{lengths.at(length)} is below 0")
             walk = [price * c for c in coefficients(family, int(length))]
             polynomial = _sum(polynomial, _in_x(walk, family.at_zero, family.turn * spread))
-            total += _others(walk, family.at_zero, family.known, side, free)
+            total += price * family.floor + _others(walk, family.at_zero, family.known, side, free)
     return polynomial, total
 
 

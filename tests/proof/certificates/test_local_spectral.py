@@ -15,7 +15,7 @@ from search.efficiency.bounds.spectral import local
 from search.proof.certificates.local_spectral import _exponential_above, _side, derive
 from search.proof.certificates.spectral.cycles import _graphs, _inverses
 from search.proof.certificates.spectral.numbers import Numbers, Side, pairs_of_sides
-from search.proof.certificates.spectral.walks import LONGEST, SHORTEST, families
+from search.proof.certificates.spectral.walks import SHORTEST, families
 from search.proof.parts import Part
 from search.proof.records import Refuted
 from search.trial.records import Contents, Trial
@@ -37,9 +37,11 @@ def _prices(draw: random.Random, side: Side) -> Part:
             "rows": [[price(), price()] for _ in range(1 if side.sets == 1 else 2)],
             "walks": {
                 name: {
-                    str(n): price(positive=True) for n in range(SHORTEST, LONGEST + 1) if draw.random() < 0.3
+                    str(n): price(positive=True)
+                    for n in range(SHORTEST, family.longest + 1)
+                    if draw.random() < 0.3
                 }
-                for name in families(side)
+                for name, family in families(side).items()
                 if draw.random() < 0.5
             },
         },
@@ -89,13 +91,13 @@ def test_no_plan_has_less_than_any_prices_prove(seed: int) -> None:
     "shape", [(4, 6, 2), (5, 10, 2), (6, 9, 2), (5, 5, 3), (6, 4, 3), (6, 10, 3), (7, 7, 3)]
 )
 def test_near_even_plans_keep_to_the_special_forms(shape: tuple[int, int, int]) -> None:
-    """Plans that are even, or one step from it, against what is claimed of a graph or of one odd pair."""
+    """Plans that are even, or a few steps from it, against what is claimed of graphs and of odd pairs."""
     t, b, k = shape
     draw, numbers = random.Random(1), Numbers(t, b, b * k // t, k, 1)
     drawn = [random_plan(draw, t, b, k) for _ in range(400)]
-    near = [contents for contents in drawn if excess(contents, t, blocks=False)[0] <= 1]
+    near = [contents for contents in drawn if excess(contents, t, blocks=False)[0] <= 4]
     assert near or shape == (7, 7, 3)
-    for contents in near[:16]:
+    for contents in near[:24]:
         for side in _sides_of(contents, numbers):
             for _ in range(6):
                 _check_side(draw, contents, numbers, side)

@@ -43,9 +43,9 @@ FINER_SENTENCE = (
     "The same, with plans sorted by how far their meetings are from even and by how many differences "
     "are badly measured, and each sort looked at for itself."
 )
-STEPS = 6
+STEPS = 8
 """Levels and splits that the finer bound adds at most."""
-MOST_LEVELS = 6
+MOST_LEVELS = 8
 
 
 def applies(trial: Trial) -> bool:

@@ -19,7 +19,7 @@ from search.efficiency.bounds.program import Program
 from search.efficiency.bounds.spectral.below import Cost
 from search.efficiency.bounds.spectral.prices import Columns, Prices, SidePrices, Split
 from search.efficiency.bounds.spectral.side import Pairs, Shape, Side, Walks
-from search.efficiency.bounds.spectral.walks import FEWEST, MOST, value, walk_polynomial
+from search.efficiency.bounds.spectral.walks import value, walk_polynomial
 
 Floats = NDArray[np.float64]
 WINDOW = 4
@@ -126,11 +126,13 @@ class Model:
             program.equal((s, p), missing * (side.offset / scale) ** p - fixed)
             entries[s, p] = ((side.offset + wide * self.places) / scale) ** p
         for family in side.walks:
-            for length in range(FEWEST, MOST + 1):
+            for length in family.lengths:
                 walk = walk_polynomial(length, family.lines, family.points)
                 fixed = sum(times * float(value(walk, x)) for x, times in family.fixed)
                 level, row = self._walk_scale(family, length), (s, family.name, length)
-                program.at_most(row, (fixed - missing * float(value(walk, family.offset))) / level)
+                program.at_most(
+                    row, (fixed - missing * float(value(walk, family.offset)) - (family.least or 0)) / level
+                )
                 entries[row] = -self._walks_at(family, length, self.places) / level
         return entries
 
@@ -207,7 +209,7 @@ class Model:
         walks = {
             family.name: {
                 length: _near(price / self._walk_scale(family, length))
-                for length in range(FEWEST, MOST + 1)
+                for length in family.lengths
                 if (price := found[s, family.name, length]) > 1e-12
             }
             for family in side.walks

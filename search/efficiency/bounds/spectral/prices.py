@@ -93,7 +93,8 @@ def proved(
             for length, gamma in price.walks.get(family.name, {}).items():
                 walk = walk_polynomial(length, family.lines, family.points)
                 fixed = sum(times * value(walk, x) for x, times in family.fixed)
-                total += gamma * ((side.zeros(rank) - known) * value(walk, family.offset) - fixed)
+                missing = (side.zeros(rank) - known) * value(walk, family.offset)
+                total += gamma * (missing - fixed + (family.least or 0))
     for split, eta in zip(splits, prices.splits, strict=True):
         total += -eta * (split.count - known) if split.few else eta * (split.count + 1 - known)
     return total, columns

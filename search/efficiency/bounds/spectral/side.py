@@ -10,9 +10,10 @@ of members has the entry −1 or 2. Further away only bounds on the entries are 
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from search.efficiency.bounds.problem import Problem
+from search.efficiency.bounds.spectral.walks import FEWEST, MOST
 
 Fixed = tuple[tuple[int, int], ...]
 """Eigenvalues that every plan has, and how often."""
@@ -66,7 +67,7 @@ class Pairs:
 
 @dataclass(frozen=True, slots=True)
 class Walks:
-    """Closed walks without turning back; none of their numbers is below 0.
+    """Closed walks without turning back; in a graph none of their numbers is below 0.
 
     Parameters
     ----------
@@ -74,6 +75,7 @@ class Walks:
     offset, sign : eigenvalue `offset + sign·rk·x`
     lines, points : lines through a point, points on a line
     fixed : eigenvalues that every plan has
+    least : what those of length 3 are not below, where no longer ones are counted; None where none is below 0
     """
 
     name: str
@@ -82,6 +84,12 @@ class Walks:
     lines: int
     points: int
     fixed: Fixed
+    least: int | None = None
+
+    @property
+    def lengths(self) -> range:
+        """Those that are counted."""
+        return range(FEWEST, (MOST if self.least is None else FEWEST) + 1)
 
 
 @dataclass(frozen=True, slots=True)
@@ -210,10 +218,20 @@ class Half:
         ends = {m: (self._walks_above(m), total**2 - self._shift(m)) for m in entries}
         within = -self._shift_within(), total**2 - self._shift_within()
         most = total * (self.own - 2 * self.base) + self.others * self.base**2
-        # without a base M has no entry below 0, so that it is a graph with several edges between two
-        walks = (self._meetings(), *([self._graph()] if self.base == 0 and self.line > 2 else []))
+        walks = [self._meetings()]
+        if self.base == 0 and self.line > 2:
+            # M has no entry below 0, so that it is a graph with several edges between two
+            walks.append(self._graph())
+        if exactly and self.sets == 1:
+            walks += [
+                replace(family, least=_least_triangles(family.lines, level)) for family in self._both(walks)
+            ]
         relations = self._relations(_possible(ends), within)
-        return self._side(relations, ((size, d, most),), walks, 4 * level, exactly)
+        return self._side(relations, ((size, d, most),), tuple(walks), 4 * level, exactly)
+
+    def _both(self, walks: list[Walks]) -> list[Walks]:
+        """The graph and the one of all other pairs, as far as they are not among the walks."""
+        return [family for family in (self._graph(), self._other()) if family not in walks]
 
     def _side(
         self,
@@ -304,6 +322,15 @@ class Half:
 
     def _graph_within(self) -> tuple[int, int]:
         return max(0, (self.sets - 1) * (2 * self._each(0) - self.set_size)), self.degree
+
+
+def _least_triangles(d: int, steps: int) -> int:
+    """What tr M³ is not below where M is so many steps from a graph of degree d.
+
+    Entries below 0 come to at most `steps` over all pairs. Each takes its weight times an entry of the square
+    of the others, at most `d + 2 steps` by Cauchy and Schwarz, six times; among themselves at most 2 steps².
+    """
+    return -6 * steps * (d + 2 * steps) - 2 * steps**2
 
 
 def _possible(ends: Ends) -> Ends:

@@ -6,7 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from fractions import Fraction
 
-from search.proof.certificates.spectral.numbers import EVEN, Side
+from search.proof.certificates.spectral.numbers import ANY, EVEN, Side
 
 SHORTEST, LONGEST = 3, 8
 
@@ -20,6 +20,7 @@ class Family:
     lines, points : lines through a member, members of a line
     at_zero, turn : eigenvalue `at_zero + turn·rk·x` of the matrix of single steps
     known : eigenvalues of every plan
+    longest, floor : lengths that are counted, and what none of their numbers is below
     """
 
     lines: int
@@ -27,6 +28,8 @@ class Family:
     at_zero: int
     turn: int
     known: list[tuple[int, int]]
+    longest: int = LONGEST
+    floor: int = 0
 
 
 def families(side: Side) -> dict[str, Family]:
@@ -40,7 +43,22 @@ def families(side: Side) -> dict[str, Family]:
     if side.form == EVEN or side.odd == -1:
         at_zero = -side.at_zero if side.sets > 1 else -1 - side.at_zero
         found["other"] = Family(rest, 2, at_zero, -1, side.known(rest))
+    if side.form == ANY and side.exactly and side.sets == 1:
+        if "graph" not in found:
+            triangles = _fewest_triangles(side.d, side.level)
+            found["graph"] = Family(side.d, 2, side.at_zero, 1, side.known(side.d), SHORTEST, triangles)
+        triangles = _fewest_triangles(rest, side.level)
+        found["other"] = Family(rest, 2, -1 - side.at_zero, -1, side.known(rest), SHORTEST, triangles)
     return {name: family for name, family in found.items() if family.lines > 1}
+
+
+def _fewest_triangles(d: int, level: int) -> int:
+    """What tr M³ is not below for row sums d and Σ m(m−1) = 4·level over ordered pairs.
+
+    With M = P − Q, both from 0 on, tr M³ ≥ −3 tr P²Q − tr Q³. Q sums to at most 2·level over ordered pairs,
+    P² has no entry above the greatest Σ_j m_ij² ≤ d + 2·level, and Q² none off its diagonal above the level.
+    """
+    return -6 * level * (d + 2 * level) - 2 * level**2
 
 
 def coefficients(family: Family, length: int) -> list[int]:
