@@ -125,7 +125,8 @@ def balance(trial: Trial) -> tuple[str, Balanced | None]:
         case Existence.EXISTS:
             return f"A balanced design fits: {numbers}. Construction: {known.reason}.", design
     return (
-        f"The counts allow a balanced design ({numbers}); whether one exists is not known here: {known.reason}.",
+        f"The counts allow a balanced design ({numbers}); whether one exists is not known here: "
+        f"{known.reason}.",
         design,
     )
 

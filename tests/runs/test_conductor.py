@@ -19,7 +19,7 @@ from search.trial.records import Trial
 from tests.drawn import all_plans, small_trials, tiny_trial
 
 
-def searched(trial: Trial, moves: int = 3000, **more: object) -> Plan:
+def searched(trial: Trial, moves: int = 60_000, **more: object) -> Plan:
     """A plan after so many moves."""
     return find(trial, limits=Limits(moves=moves), seed=1, workers=1, **more)  # type: ignore[arg-type]
 

@@ -157,7 +157,7 @@ def test_a_balanced_size_is_told_with_its_numbers() -> None:
     sentence, design = balance(trial)
     assert design is not None
     assert (design.r, design.meetings, float(design.efficiency)) == (4, 1, 0.75)
-    assert "4 plots, each pair in 1 block" in sentence
+    assert "4 plots, each pair in one block" in sentence
 
 
 def test_rules_can_bar_a_balanced_size() -> None:
