@@ -153,6 +153,16 @@ def test_certificates_are_complete(drawn: tuple[Trial, Contents]) -> None:
     assert best.exact == min(bound.exact for bound in bounds)
 
 
+def test_a_caller_without_time_gets_the_quick_ones() -> None:
+    """Arguments that take longer are left out, and only those."""
+    trial = equal_trial(6, 8, 3)
+    every = [bound.argument for bound in all_bounds(trial, limits(trial))]
+    quick = [bound.argument for bound in all_bounds(trial, limits(trial), lambda seconds: False)]
+    some = [bound.argument for bound in all_bounds(trial, limits(trial), lambda seconds: seconds < 2)]
+    assert quick == every[:4]
+    assert some == every[:-1]
+
+
 def test_every_argument_is_in_the_registry_once() -> None:
     """Names are those of the certificates; every aim has at least two arguments."""
     names = [argument.name for argument in ARGUMENTS]
