@@ -19,7 +19,18 @@ from search.cli.interrupts import HEARD
 from search.cli.output import failure, report
 from search.foundation.errors import BadInput, EvenfieldError
 
-COMMANDS = ("new", "inspect", "plan", "verify", "exists", "packet", "sweep", "kept", "schema")
+COMMANDS = (
+    "new",
+    "inspect",
+    "bound",
+    "plan",
+    "verify",
+    "exists",
+    "packet",
+    "sweep",
+    "kept",
+    "schema",
+)
 INTERNAL = 70
 INTERRUPTED = 130
 

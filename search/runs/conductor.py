@@ -25,6 +25,10 @@ from search.trial.tables import tables
 
 DECIDE_SECONDS = 20.0
 """Wall time in which the rule solver must find a first plan where the search has no time limit."""
+MET = 1e-9
+"""A plan whose efficiency is within this part of a bound needs no further one."""
+LEAST_SECONDS = 2.0
+"""Bounds may take so long even where the search may not."""
 DECIDE_EFFORT = 20.0
 """Its deterministic work, so that with a limit in moves the clock has no say."""
 
@@ -73,7 +77,7 @@ def find(
     )
     observer.first_plan(score(trial, first).aim, where_from)
     best = _best_known(trial, kept, observer)
-    bounds = _Bounds(trial, implied, observer)
+    bounds = _Bounds(trial, implied, observer, stop)
     _wait_for_kernels(observer, stop)
 
     from search.solvers.records import Problem
@@ -92,7 +96,7 @@ def find(
         known="" if best is None else best.where_from,
         others=further_starts(trial, rules, implied, seed=seed),
     )
-    bounds.finish()
+    bounds.finish(score(trial, outcome.contents).aim)
     broken = broken_rules(trial, outcome.contents)
     if broken:
         raise RuntimeError(f"the search broke a rule: {broken[0]}")
@@ -171,12 +175,13 @@ class _Bounds:
     trial: Trial
     implied: Replication
     observer: Observer
+    stop: Stop
     best: Bound | None = None
     waiting: Iterator[Bound] = field(init=False)
     reference: float = field(init=False)
 
     def __post_init__(self) -> None:
-        self.waiting = iter(all_bounds(self.trial, self.implied))
+        self.waiting = iter(all_bounds(self.trial, self.implied, self._has_time))
         if self.trial.aim.kind is AimKind.OVERALL:
             product = reference_product(self.trial)
             logarithm = math.log(product.numerator) - math.log(product.denominator)
@@ -201,10 +206,15 @@ class _Bounds:
             return math.exp(self.reference - objective)
         return self.reference / objective
 
-    def finish(self) -> None:
-        """Find the bounds that are left."""
-        while self._step():
+    def finish(self, reached: float) -> None:
+        """Find the bounds that are left, unless a plan of the efficiency reached meets one."""
+        while (self.best is None or reached < self.best.value * (1 - MET)) and self._step():
             pass
+
+    def _has_time(self, seconds: float) -> bool:
+        """Whether a bound that takes so long fits into the time of the search; without a limit it does."""
+        given = self.stop.limits.seconds
+        return given is None or self.stop.elapsed + seconds <= max(given, LEAST_SECONDS)
 
     def _step(self) -> bool:
         bound = next(self.waiting, None)

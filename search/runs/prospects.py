@@ -79,13 +79,8 @@ def prospects(trial: Trial, implied: Limits, first: Contents) -> Prospects | Non
 
 def _quick_bound(trial: Trial, implied: Limits) -> Bound | None:
     started = time.monotonic()
-    best: Bound | None = None
-    for bound in all_bounds(trial, implied):
-        if best is None or bound.exact < best.exact:
-            best = bound
-        if time.monotonic() - started > BOUND_SECONDS:
-            break
-    return best
+    bounds = all_bounds(trial, implied, lambda more: time.monotonic() - started + more <= BOUND_SECONDS)
+    return min(bounds, key=lambda bound: bound.exact, default=None)
 
 
 def _plot_deviation(trial: Trial) -> tuple[float, str]:

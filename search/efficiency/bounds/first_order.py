@@ -17,6 +17,10 @@ from search.efficiency.records import Bound
 from search.trial.records import Trial
 
 NAME = "first order"
+SENTENCE = (
+    "Blocks take one degree of freedom each; what is left of the information is at best spread "
+    "evenly over all differences."
+)
 
 
 def applies(trial: Trial) -> bool:

@@ -35,6 +35,7 @@ from search.efficiency.bounds.sums import Sums
 from search.efficiency.records import Bound
 
 NAME = "second moment by block meets"
+SENTENCE = "Two blocks share a whole number of treatments, so blocks cannot overlap perfectly evenly."
 applies = second_moment.applies
 
 

@@ -37,6 +37,7 @@ from search.efficiency.records import Bound
 from search.trial.tables import Ints
 
 NAME = "second moment by pairs"
+SENTENCE = "Two treatments share a whole number of blocks, so meetings cannot be spread perfectly evenly."
 applies = second_moment.applies
 
 

@@ -59,22 +59,30 @@ def problem(trial: Trial, limits: Limits) -> Problem | None:
 
 
 def bound_on_variance(
-    given: Problem, argument: str, least: Fraction, multipliers: Mapping[str, Any]
+    given: Problem, argument: str, least: Fraction, multipliers: Mapping[str, Any], kind: str = ""
 ) -> Bound:
-    """The bound of a trace aim: no plan has a mean variance below `least`."""
-    kind = given.trial.aim.kind
+    """The bound of a trace aim: no plan has a mean variance below `least`.
+
+    Parameters
+    ----------
+    given, argument, least : the trial, the name of the argument, what it shows
+    multipliers : what the checker needs to find it again
+    kind : of the certificate, where that is not the name of the argument
+    """
+    aim = given.trial.aim.kind
     shown = float(rounded_down(least, 10**9))
     return _bound(
-        kind,
+        aim,
         reference_variance(given.trial) / least,
         argument,
-        f"no plan that this trial admits has {VARIANCES[kind]} below {shown:.9f} plot variances",
+        f"no plan that this trial admits has {VARIANCES[aim]} below {shown:.9f} plot variances",
         multipliers,
+        kind or argument,
     )
 
 
 def bound_on_determinant(
-    given: Problem, argument: str, greatest: Fraction, multipliers: Mapping[str, Any]
+    given: Problem, argument: str, greatest: Fraction, multipliers: Mapping[str, Any], kind: str = ""
 ) -> Bound:
     """The bound of the overall aim: no plan has a pseudo-determinant above `greatest`."""
     efficiency = power_root_above(greatest / reference_product(given.trial), given.m)
@@ -85,13 +93,14 @@ def bound_on_determinant(
         "no plan that this trial admits has an overall efficiency above "
         f"{float(rounded_up(efficiency, 10**9)):.9f}",
         multipliers,
+        kind or argument,
     )
 
 
 def _bound(
-    aim: AimKind, exact: Fraction, argument: str, statement: str, multipliers: Mapping[str, Any]
+    aim: AimKind, exact: Fraction, argument: str, statement: str, multipliers: Mapping[str, Any], kind: str
 ) -> Bound:
-    certificate = {"kind": argument, "statement": statement, "multipliers": dict(multipliers)}
+    certificate = {"kind": kind, "statement": statement, "multipliers": dict(multipliers)}
     return Bound(aim, rounded_up(exact), argument, certificate)
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Hashable, Mapping, Sequence
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -10,6 +11,22 @@ from numpy.typing import ArrayLike, NDArray
 
 SECONDS = 10.0
 """More than any program of the size admitted needs; one that takes longer is dropped."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Solution:
+    """An optimum.
+
+    Parameters
+    ----------
+    prices : dual values by row
+    columns : in the order in which they were added
+    cost : of the optimum
+    """
+
+    prices: dict[Hashable, float]
+    columns: NDArray[np.float64]
+    cost: float
 
 
 class Program:
@@ -50,6 +67,11 @@ class Program:
 
         Returns None where the solver does not end with an optimum.
         """
+        found = self.solve()
+        return None if found is None else found.prices
+
+    def solve(self) -> Solution | None:
+        """All of the optimum, or None where the solver does not end with one."""
         from scipy.optimize import linprog
 
         equal = [row for row, (_, is_equal) in self._rows.items() if is_equal]
@@ -63,11 +85,13 @@ class Program:
             method="highs",
             options={"time_limit": SECONDS},
         )
-        if result.status != 0:
+        if result.status != 0 or result.x is None or result.fun is None:
             return None
         prices = dict(zip(equal, result.eqlin.marginals.tolist(), strict=True))
         prices.update(zip(at_most, (-result.ineqlin.marginals).tolist(), strict=True))
-        return prices if np.isfinite(list(prices.values())).all() else None
+        if not np.isfinite(list(prices.values())).all():
+            return None
+        return Solution(prices, result.x, float(result.fun))
 
     def _matrix(self, rows: list[Hashable]) -> Any:
         from scipy.sparse import csr_matrix

@@ -27,6 +27,10 @@ from search.foundation.exact import near
 from search.trial.records import Trial
 
 NAME = "replication"
+SENTENCE = (
+    "No plan is better than its own replication would be on ground without blocks, and the rules "
+    "limit replication."
+)
 Prices = tuple[Fraction, list[Fraction]]
 """The price of a plot, and that of each type of sum limit."""
 

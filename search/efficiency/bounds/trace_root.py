@@ -26,6 +26,10 @@ from search.foundation.exact import root_above, root_below
 from search.trial.records import AimKind, Trial
 
 NAME = "trace root"
+SENTENCE = (
+    "The information that blocks leave is limited, and the comparisons that the aim asks for need it"
+    " in fixed shares."
+)
 MOST_CONTRASTS = 40
 """Beyond this the exact check of the Gram matrix takes too long."""
 

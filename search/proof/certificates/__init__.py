@@ -8,7 +8,15 @@ from __future__ import annotations
 
 from types import ModuleType
 
-from search.proof.certificates import by_meets, by_pairs, first_order, replication, trace_root
+from search.proof.certificates import (
+    by_meets,
+    by_pairs,
+    first_order,
+    local_spectral,
+    normalised,
+    replication,
+    trace_root,
+)
 
 KINDS: dict[str, ModuleType] = {
     "first order": first_order,
@@ -16,5 +24,7 @@ KINDS: dict[str, ModuleType] = {
     "trace root": trace_root,
     "second moment by pairs": by_pairs,
     "second moment by block meets": by_meets,
+    "local spectral": local_spectral,
+    "normalised moment": normalised,
 }
 """What a certificate's "kind" may say."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import random
+from collections.abc import Callable
 from fractions import Fraction
 from typing import Any
 
@@ -104,7 +105,32 @@ def any_multipliers(kind: str, case: Case, draw: random.Random) -> dict[str, Any
                 "plots": [{"size": s, "group": g, "price": price()} for s, g in kinds],
                 "sums": sums,
             }
+        case "normalised moment":
+            place = Fraction(draw.randint(0, 12), 20)
+            return {"place": str(place), "parts": _parts(case, draw, sizes, price), "sums": sums}
     return {}
+
+
+def _parts(
+    case: Case, draw: random.Random, sizes: list[int], price: Callable[[], str]
+) -> list[dict[str, Any]]:
+    """All treatments in one part, or some pairs that never meet in one of their own."""
+    pairs: list[list[int]] = []
+    for i, j in zip(*np.nonzero(np.triu(case.rules.apart, 1)), strict=True):
+        if not any({int(i), int(j)} & set(pair) for pair in pairs) and draw.random() < 0.7:
+            pairs.append([int(i), int(j)])
+    parts = []
+    for apart in ([], pairs) if pairs else ([],):
+        own = {i for pair in apart for i in pair} if apart else {*range(case.trial.t)} - set().union(*pairs)
+        plots = {str(r) for i in own for r in range(max(1, case.least[i]), case.most[i] + 1)}
+        parts.append(
+            {
+                "apart": [{"treatments": pair} for pair in apart],
+                "plots": {r: price() for r in plots},
+                "meets": {str(size): {r: price() for r in plots} for size in sizes},
+            }
+        )
+    return parts
 
 
 def contrast_root(case: Case, draw: random.Random) -> dict[str, Any]:

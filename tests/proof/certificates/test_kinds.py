@@ -29,6 +29,8 @@ from tests.proof.certificates.brute import (
 from tests.proof.plans import fano_trial, information, weight_matrix
 
 CLIMB = 12
+LOCAL = "local spectral"
+"""Its multipliers must fit a polynomial below a curve: see test_local_spectral.py."""
 SECOND_MOMENT = {"second moment by pairs": by_pairs, "second moment by block meets": by_meets}
 
 
@@ -42,7 +44,11 @@ def check_every_kind(trial: Trial, seed: int, steps: int) -> None:
     if best is None:
         return
     for name, kind in KINDS.items():
-        if trial.aim.kind in kind.AIMS and (case.nothing_twice or name not in SECOND_MOMENT):
+        if (
+            name != LOCAL
+            and trial.aim.kind in kind.AIMS
+            and (case.nothing_twice or name not in SECOND_MOMENT)
+        ):
             claim = sharpened(name, case, random.Random(seed), steps)
             assert efficiency_of(claim) >= best * (1 - 1e-9), name
 

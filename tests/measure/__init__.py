@@ -1,0 +1,1 @@
+"""Measurements that fill tables in `results/`; run by hand."""
