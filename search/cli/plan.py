@@ -66,7 +66,8 @@ def command(
                     f"{folder} holds plan {found.document['mark']}, issued for another trial; "
                     "choose another folder with --out, or ask for a new plan beside it with --anew"
                 )
-            return _tell_issued(found, keeping.better_than(found.document["score"]["aim"]), as_json)
+            better = keeping.better_than(found.document["score"]["aim"])
+            return _tell_issued(found, better, found.trial != record, layout_seed is not None, as_json)
         folder = free_folder(folder)
         make_ready(folder)
 
@@ -144,7 +145,7 @@ def _document(issued: Issued) -> dict[str, Any]:
     }
 
 
-def _tell_issued(found: Issued, better: float | None, as_json: bool) -> int:
+def _tell_issued(found: Issued, better: float | None, edited: bool, reseeded: bool, as_json: bool) -> int:
     if as_json:
         emit("plan", "issued already", {**_document(found), "better_kept": better})
         return 0
@@ -152,6 +153,10 @@ def _tell_issued(found: Issued, better: float | None, as_json: bool) -> int:
 
     console = page()
     console.print(f"Plan {found.document['mark']} is issued already and stays as it is.")
+    if edited:
+        console.print("Texts or settings of the file have changed since: that changes nothing in it.")
+    if reseeded:
+        console.print("For another layout of the same plan: evenfield packet with --layout-seed.")
     if better is None:
         console.print("The store holds no better one. To search for another: --anew")
     else:

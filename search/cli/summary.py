@@ -84,11 +84,11 @@ def _expected(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
     precision = trial.precision
     rows = [
         (
-            "standard error of a difference",
+            "standard error, two treatments",
             f"{average_pair.standard_error:.3g} {unit} on average, {worst_pair.standard_error:.3g} at worst",
         ),
         (
-            "detectable difference",
+            "detectable, two treatments",
             f"{average_pair.detectable:.3g} {unit} on average, {worst_pair.detectable:.3g} at worst "
             f"({precision.level_percent:g} % level, {precision.power_percent:g} % power)",
         ),

@@ -13,15 +13,16 @@ from search.efficiency.bounds import all_bounds
 from search.efficiency.evaluator import score
 from search.efficiency.records import Bound
 from search.efficiency.reference import reference_product, reference_variance
-from search.foundation.stopping import Limits, Observer, Stop
+from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.plan import Plan
+from search.solvers.records import Outcome, Problem
 from search.solvers.start import feasible_start, further_starts
 from search.trial.canonical import canonical
 from search.trial.checker import broken_rules
 from search.trial.limits import Limits as Replication
 from search.trial.limits import limits as implied_limits
 from search.trial.records import AimKind, Contents, Trial
-from search.trial.tables import tables
+from search.trial.tables import Tables, tables
 
 DECIDE_SECONDS = 20.0
 """Wall time in which the rule solver must find a first plan where the search has no time limit."""
@@ -76,26 +77,17 @@ def find(
         stop=stop,
     )
     observer.first_plan(score(trial, first).aim, where_from)
-    best = _best_known(trial, kept, observer)
     bounds = _Bounds(trial, implied, observer, stop)
-    _wait_for_kernels(observer, stop)
-
-    from search.solvers.records import Problem
-    from search.solvers.rounds import search
-
-    stop.restart()
-    outcome = search(
-        Problem(rules, weights(trial)),
-        first,
-        kept=None if best is None else best.contents,
-        target=bounds.target,
-        stop=stop,
-        seed=seed,
-        workers=workers,
-        watch=lambda value, moves, seconds: observer.progress(bounds.efficiency(value), moves, seconds),
-        known="" if best is None else best.where_from,
-        others=further_starts(trial, rules, implied, seed=seed),
-    )
+    best: Start | None = None
+    try:
+        best = _best_known(trial, kept, observer)
+        _wait_for_kernels(observer, stop)
+    except KeyboardInterrupt:
+        # Before the search could begin: the plans that are there already count.
+        start = best or Start(first, where_from)
+        outcome = Outcome(start.contents, math.nan, 0, 0.0, Ended.INTERRUPTED, -1, start.where_from)
+    else:
+        outcome = _searched(trial, rules, implied, first, best, bounds, stop, seed, workers)
     bounds.finish(score(trial, outcome.contents).aim)
     broken = broken_rules(trial, outcome.contents)
     if broken:
@@ -113,6 +105,36 @@ def find(
             start=outcome.start,
             digest=digest or canonical(trial).digest,
         )
+    )
+
+
+def _searched(
+    trial: Trial,
+    rules: Tables,
+    implied: Replication,
+    first: Contents,
+    best: Start | None,
+    bounds: _Bounds,
+    stop: Stop,
+    seed: int,
+    workers: int,
+) -> Outcome:
+    from search.solvers.rounds import search
+
+    stop.restart()
+    return search(
+        Problem(rules, weights(trial)),
+        first,
+        kept=None if best is None else best.contents,
+        target=bounds.target,
+        stop=stop,
+        seed=seed,
+        workers=workers,
+        watch=lambda value, moves, seconds: bounds.observer.progress(
+            bounds.efficiency(value), moves, seconds
+        ),
+        known="" if best is None else best.where_from,
+        others=further_starts(trial, rules, implied, seed=seed),
     )
 
 

@@ -56,7 +56,7 @@ class BlocksKind:
         Either(
             "a number of plots",
             scalar=COUNT,
-            mapping=NotYet("a block that may stay partly empty"),
+            mapping=Fields({"at_most": NotYet("a block that may stay partly empty")}),
         ),
         1,
         MOST_BLOCKS,
