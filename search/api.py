@@ -75,6 +75,7 @@ def plan(
     ------
     Impossible : no plan obeys the rules
     Undecided : not known in the time
+    BadInput : the store cannot be used
     """
     if seconds is None and moves is None:
         seconds = USUAL_SECONDS
@@ -82,7 +83,10 @@ def plan(
     if store is None:
         return find(trial, limits=limits, seed=seed, workers=workers)
     with Keeping(trial, Path(store)) as keeping:
-        return keeping.plan(limits=limits, seed=seed, workers=workers, observer=Observer())
+        found = keeping.plan(limits=limits, seed=seed, workers=workers, observer=Observer())
+        if keeping.failure is not None:
+            raise keeping.failure
+        return found
 
 
 def evaluate(trial: records.Trial, blocks: Mapping[str, Sequence[str]]) -> Score:

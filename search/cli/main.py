@@ -62,6 +62,9 @@ def invoke(arguments: Sequence[str]) -> int:
         status = evenfield.main(list(arguments), prog_name="evenfield", standalone_mode=False)
         sys.stdout.flush()
         return int(status or 0)
+    except SystemExit as ended:
+        # click leaves by this door where nobody reads on; that is no failure of ours.
+        return 0 if isinstance(ended.__context__, OSError) else int(ended.code or 0)
     except (KeyboardInterrupt, click.Abort):
         return failure(command, "interrupted", "interrupted", INTERRUPTED, as_json)
     except click.ClickException as error:

@@ -68,8 +68,7 @@ def command(
                 )
             better = keeping.better_than(found.document["score"]["aim"])
             return _tell_issued(found, better, found.trial != record, layout_seed is not None, as_json)
-        folder = free_folder(folder)
-        make_ready(folder)
+        make_ready(free_folder(folder))
 
         from search.cli.watching import Watching, interruptible
 
@@ -91,6 +90,10 @@ def command(
         chosen = record.randomise.seed if layout_seed is None else layout_seed
         issued = issue(plan, folder, chosen)
         keeping.issued(plan, issued.document["mark"])
+        if keeping.failure is not None:
+            raise BadInput(
+                f"plan {issued.document['mark']} is written to {issued.folder}, but {keeping.failure}"
+            )
     status = INTERRUPTED if plan.ended_by is Ended.INTERRUPTED else 0
     if as_json:
         emit("plan", "planned", _document(issued), status)

@@ -6,11 +6,12 @@ import numpy as np
 
 from search.designs.records import Blocks
 from search.foundation.cpsat import Answer, solve
+from search.foundation.stopping import Stop
 from search.trial.records import Contents
 from search.trial.tables import Ints, Tables, contents_of
 
 
-def adapted(blocks: Blocks, rules: Tables, *, effort: float) -> Contents | None:
+def adapted(blocks: Blocks, rules: Tables, *, effort: float, stop: Stop | None = None) -> Contents | None:
     """The plan that obeys the rules and moves the fewest plots of a design, as far as the effort goes.
 
     Points beyond the trial's treatments, and blocks beyond its own, are left out; what the design lacks is
@@ -20,6 +21,7 @@ def adapted(blocks: Blocks, rules: Tables, *, effort: float) -> Contents | None:
     ----------
     blocks : of the design
     rules : tables of the trial
+    stop : ends the solver from outside
     effort : deterministic work of CP-SAT
     """
     from ortools.sat.python import cp_model
@@ -42,7 +44,7 @@ def adapted(blocks: Blocks, rules: Tables, *, effort: float) -> Contents | None:
             model.add(plots[one][j] + plots[other][j] <= 1)
     model.maximize(sum(plots[i][j] for i, j in zip(*np.nonzero(wanted), strict=True)))
     cells = [plot for line in plots for plot in line]
-    solved = solve(model, cells, seconds=30 * effort, effort=effort)
+    solved = solve(model, cells, seconds=300 * effort, effort=effort, stop=stop)
     if solved.answer is not Answer.SOLUTION:
         return None
     return contents_of(np.array(solved.values, dtype=np.int64).reshape(rules.t, rules.b))

@@ -13,6 +13,7 @@ import numpy as np
 
 from search.designs.records import Blocks
 from search.foundation.cpsat import Answer, solve
+from search.foundation.stopping import Stop
 from search.trial.records import Contents
 from search.trial.tables import Bools, Tables
 
@@ -40,13 +41,16 @@ class Template:
     balanced: bool = False
 
 
-def labelled(template: Template, rules: Tables, *, effort: float) -> Contents | None:
+def labelled(
+    template: Template, rules: Tables, *, effort: float, stop: Stop | None = None
+) -> Contents | None:
     """Contents of the trial's blocks under a labelling that obeys its rules on single treatments and blocks.
 
     Parameters
     ----------
     template : as many points as treatments, as many blocks as blocks, and of the same sizes
     rules : tables of the trial
+    stop : ends the solver from outside
     effort : deterministic work of CP-SAT
 
     Returns
@@ -55,7 +59,7 @@ def labelled(template: Template, rules: Tables, *, effort: float) -> Contents | 
     """
     if not rules.low.any() and rules.high.all() and not rules.share.size:
         return _as_it_stands(template, rules)
-    return _by_solver(template, rules, effort)
+    return _by_solver(template, rules, effort, stop)
 
 
 def _as_it_stands(template: Template, rules: Tables) -> Contents:
@@ -68,7 +72,7 @@ def _as_it_stands(template: Template, rules: Tables) -> Contents:
     return tuple(contents)
 
 
-def _by_solver(template: Template, rules: Tables, effort: float) -> Contents | None:
+def _by_solver(template: Template, rules: Tables, effort: float, stop: Stop | None = None) -> Contents | None:
     from ortools.sat.python import cp_model
 
     t, b = rules.t, rules.b
@@ -96,7 +100,7 @@ def _by_solver(template: Template, rules: Tables, effort: float) -> Contents | N
     if rules.share.size and not _match_replicates(model, template, rules, block):
         return None
     wanted = [x for line in (*point, *block) for x in line]
-    solved = solve(model, wanted, seconds=30 * effort, effort=effort)
+    solved = solve(model, wanted, seconds=300 * effort, effort=effort, stop=stop)
     if solved.answer is not Answer.SOLUTION:
         return None
     values = np.array(solved.values, dtype=np.bool_)

@@ -87,7 +87,7 @@ def dealt(blocks: Blocks, sizes: Balanced, *, effort: float) -> Replicates:
     for g, j in enumerate(holding[0]):  # the blocks of one treatment all stand in different replicates
         model.add(takes[g][j] == 1)
     wanted = [take for row in takes for take in row]
-    solved = solve(model, wanted, seconds=30 * effort, effort=effort)
+    solved = solve(model, wanted, seconds=300 * effort, effort=effort)
     if solved.answer is not Answer.SOLUTION:
         return ()
     b = len(blocks)

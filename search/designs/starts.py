@@ -17,6 +17,7 @@ from search.designs.labelling import Template, labelled
 from search.designs.lattices import lattice
 from search.designs.records import Blocks
 from search.designs.resolution import resolved
+from search.foundation.stopping import Stop
 from search.trial.checker import broken_rules
 from search.trial.records import Contents, Trial
 from search.trial.tables import Tables, tables
@@ -47,23 +48,24 @@ class Start:
     balanced: bool = False
 
 
-def starts(trial: Trial, *, effort: float = EFFORT) -> Iterator[Start]:
+def starts(trial: Trial, *, effort: float = EFFORT, stop: Stop | None = None) -> Iterator[Start]:
     """Plans to start from, those that fit exactly first; each obeys every rule.
 
     Parameters
     ----------
     trial : the trial
     effort : deterministic work of CP-SAT for one of them
+    stop : ends the solver from outside
     """
     rules = tables(trial)
     exact = False
     for template in _fitting(rules):
-        contents = labelled(template, rules, effort=effort)
+        contents = labelled(template, rules, effort=effort, stop=stop)
         if contents is not None and not broken_rules(trial, contents):
             exact = True
             yield Start(contents, template.where_from, template.balanced)
     if not exact and rules.t * rules.b <= MOST_CELLS:
-        found = (_adapted(trial, rules, near, effort) for near in _near(rules))
+        found = (_adapted(trial, rules, near, effort, stop) for near in _near(rules))
         yield from islice((start for start in found if start is not None), NEAREST)
 
 
@@ -108,7 +110,7 @@ def _linked(rules: Tables, r: int) -> Iterator[Template]:
 
 
 def _lattice(rules: Tables, k: int, r: int) -> Iterator[Template]:
-    found = lattice(rules.t, k, r)
+    found = lattice(rules.t, k, r) if r > 1 else None
     if found is None:
         return
     name, parts = found
@@ -187,12 +189,12 @@ def _around(t: int, k: int, plots: int) -> Iterator[Balanced]:
                 yield sizes
 
 
-def _adapted(trial: Trial, rules: Tables, near: _Near, effort: float) -> Start | None:
+def _adapted(trial: Trial, rules: Tables, near: _Near, effort: float, stop: Stop | None) -> Start | None:
     built = near.blocks()
     if built is None:
         return None
     blocks, how = built
-    contents = adapted(blocks, rules, effort=effort)
+    contents = adapted(blocks, rules, effort=effort, stop=stop)
     if contents is None or broken_rules(trial, contents):
         return None
     return Start(contents, f"nearest {near.told(rules)}: {how}")

@@ -46,17 +46,17 @@ def issued_in(folder: Path) -> Issued | None:
     if not path.exists():
         return None
     trial, document = read_plan(path)
-    files = [path, *write_packet(trial, document, folder)]
+    files = [path, *write_packet(trial, document, folder, only_missing=True)]
     for number in range(2, trial.randomise.sites + 1):
         site = _site(folder, number)
         if (site / PLAN).exists():
-            files += [site / PLAN, *write_packet(*read_plan(site / PLAN), site)]
+            files += [site / PLAN, *write_packet(*read_plan(site / PLAN), site, only_missing=True)]
     return Issued(folder, trial, document, tuple(files))
 
 
 def free_folder(folder: Path) -> Path:
     """The folder itself, or the first one beside it (`-2`, `-3`, …) that holds no plan."""
-    return next(path for path in _beside(folder) if not (path / PLAN).exists())
+    return next(path for path in _beside(folder) if not _holds_a_plan(path))
 
 
 def make_ready(folder: Path) -> None:
@@ -77,7 +77,8 @@ def issue(plan: Plan, folder: Path, layout_seed: int | None = None) -> Issued:
     Parameters
     ----------
     plan : the plan
-    folder : where site 1 goes; further sites go into folders of their own inside it
+    folder : where site 1 goes, or beside it where a plan is there already; further sites go into folders
+        of their own inside it
     layout_seed : seed of the layout; None draws a fresh one, recorded in the plan file
 
     Raises
@@ -87,16 +88,32 @@ def issue(plan: Plan, folder: Path, layout_seed: int | None = None) -> Issued:
     trial = plan.trial
     now = datetime.now(UTC)
     seed = fresh_seed() if layout_seed is None else layout_seed
+    seeds = site_seeds(seed, trial.randomise.sites)
+    documents = [plan_document(plan, lay_out(trial, plan.contents, site_seed), now) for site_seed in seeds]
+    # The plan file goes first: from it the packet can always be drawn again.
+    folder = _claimed(folder, documents[0])
     files: list[Path] = []
-    documents: list[Document] = []
-    for number, site_seed in enumerate(site_seeds(seed, trial.randomise.sites), start=1):
+    for number, document in enumerate(documents, start=1):
         site = folder if number == 1 else _site(folder, number)
-        document = plan_document(plan, lay_out(trial, plan.contents, site_seed), now)
-        # The plan file goes first: from it the packet can always be drawn again.
-        write(document, site / PLAN)
+        if number > 1:
+            write(document, site / PLAN)
         files += [site / PLAN, *write_packet(trial, document, site)]
-        documents.append(document)
     return Issued(folder, trial, documents[0], tuple(files))
+
+
+def _claimed(folder: Path, document: Document) -> Path:
+    """The first free folder, with the plan file in it; another run may have claimed one meanwhile."""
+    while True:
+        free = free_folder(folder)
+        try:
+            write(document, free / PLAN, new=True)
+        except FileExistsError:
+            continue
+        return free
+
+
+def _holds_a_plan(folder: Path) -> bool:
+    return (folder / PLAN).exists() or any(folder.glob(f"site-*/{PLAN}"))
 
 
 def _without_settings(trial: Trial) -> Trial:

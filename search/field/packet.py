@@ -22,7 +22,9 @@ SEALED = "sealed"
 """Folder for what the crew of a blind trial must not see."""
 
 
-def write_packet(trial: Trial, document: dict[str, Any], folder: Path) -> list[Path]:
+def write_packet(
+    trial: Trial, document: dict[str, Any], folder: Path, *, only_missing: bool = False
+) -> list[Path]:
     """Write the crew's documents; the same plan gives the same bytes.
 
     Parameters
@@ -30,6 +32,7 @@ def write_packet(trial: Trial, document: dict[str, Any], folder: Path) -> list[P
     trial : the trial
     document : its plan as in plan.json
     folder : where they go; made if it is not there
+    only_missing : leave alone what is there: somebody may have written into the workbook
 
     Returns
     -------
@@ -41,7 +44,8 @@ def write_packet(trial: Trial, document: dict[str, Any], folder: Path) -> list[P
     """
     contents = dict(_contents(trial, document))
     for name, content in contents.items():
-        write_whole(folder / name, content)
+        if not (only_missing and (folder / name).exists()):
+            write_whole(folder / name, content)
     return [folder / name for name in contents]
 
 

@@ -120,14 +120,16 @@ def _sealed(document: Document) -> Document:
     return {**document, "seal": seal_of(document)}
 
 
-def write(document: Document, path: Path) -> None:
+def write(document: Document, path: Path, *, new: bool = False) -> None:
     """Write a plan, whole or not at all.
 
     Raises
     ------
     BadInput : the file cannot be written
+    FileExistsError : it must be `new`, and a plan is there
     """
-    write_whole(path, json.dumps(document, ensure_ascii=False, indent=1, allow_nan=False) + "\n")
+    text = json.dumps(document, ensure_ascii=False, indent=1, allow_nan=False) + "\n"
+    write_whole(path, text, new=new)
 
 
 def read_plan(path: Path) -> tuple[Trial, Document]:

@@ -54,8 +54,8 @@ def _write(trial: Trial, document: Document, folder: Path, with_plan: bool) -> l
                 f"{folder} holds the packet of plan {there['mark']}, which crews may carry already; "
                 f"choose another folder for plan {document['mark']} with --out"
             )
-    files = []
+    files, there_already = [], issued.exists()
     if with_plan:
         write(document, issued)
         files.append(issued)
-    return files + write_packet(trial, document, folder)
+    return files + write_packet(trial, document, folder, only_missing=there_already)

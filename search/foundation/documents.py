@@ -18,12 +18,18 @@ def canonical_json(document: Any) -> str:
     return json.dumps(document, sort_keys=True, separators=(",", ":"), ensure_ascii=False, allow_nan=False)
 
 
-def write_whole(path: Path, content: str | bytes) -> None:
+def write_whole(path: Path, content: str | bytes, *, new: bool = False) -> None:
     """Write a file so that a reader sees the old one or the new one, never a part.
+
+    Parameters
+    ----------
+    path, content : what goes where
+    new : the file must not be there yet; of two who write it at once, one is told
 
     Raises
     ------
     BadInput : the folder cannot be written to, or the disk is full
+    FileExistsError : it must be new, and is there
     """
     data = content.encode("utf-8") if isinstance(content, str) else content
     try:
@@ -35,10 +41,20 @@ def write_whole(path: Path, content: str | bytes) -> None:
                 stream.flush()
                 os.fsync(stream.fileno())
             os.chmod(temporary, 0o644)
-            os.replace(temporary, path)
+            if new:
+                os.link(temporary, path)
+                os.unlink(temporary)
+            else:
+                os.replace(temporary, path)
         except BaseException:
             Path(temporary).unlink(missing_ok=True)
             raise
+    except FileExistsError:
+        if new and path.exists():
+            raise
+        raise BadInput(
+            f"cannot write {path}: a file is in the way; choose another folder with --out"
+        ) from None
     except OSError as error:
         raise BadInput(
             f"cannot write {path}: {error.strerror or error}; choose another folder with --out"

@@ -24,14 +24,15 @@ from search.trial.limits import limits as implied_limits
 from search.trial.records import AimKind, Contents, Trial
 from search.trial.tables import Tables, tables
 
-DECIDE_SECONDS = 20.0
-"""Wall time in which the rule solver must find a first plan where the search has no time limit."""
+DECIDE_SECONDS, DECIDE_EFFORT = 600.0, 6.0
+"""Where only moves are limited: deterministic work in which the rule solver must find a first plan (about
+20 s), and wall time that is never the limit that counts."""
 MET = 1e-9
 """A plan whose efficiency is within this part of a bound needs no further one."""
 LEAST_SECONDS = 2.0
 """Bounds may take so long even where the search may not."""
-DECIDE_EFFORT = 20.0
-"""Its deterministic work, so that with a limit in moves the clock has no say."""
+STARTS_SHARE = 0.25
+"""Part of a limit in seconds after which no further design is adapted as a start."""
 
 
 def find(
@@ -80,7 +81,7 @@ def find(
     bounds = _Bounds(trial, implied, observer, stop)
     best: Start | None = None
     try:
-        best = _best_known(trial, kept, observer)
+        best = _best_known(trial, kept, observer, stop)
         _wait_for_kernels(observer, stop)
     except KeyboardInterrupt:
         # Before the search could begin: the plans that are there already count.
@@ -138,9 +139,16 @@ def _searched(
     )
 
 
-def _best_known(trial: Trial, kept: Contents | None, observer: Observer) -> Start | None:
+def _best_known(trial: Trial, kept: Contents | None, observer: Observer, stop: Stop) -> Start | None:
     """The best of the kept plan and of designs that fit the trial or nearly do, before any search."""
-    candidates = list(starts(trial))
+    # With a limit in seconds the clock may cut in here too; with one in moves it has no say.
+    stop.restart()
+    share = None if stop.limits.seconds is None else max(1.0, STARTS_SHARE * stop.limits.seconds)
+    candidates = []
+    for start in starts(trial, stop=stop):
+        candidates.append(start)
+        if share is not None and stop.elapsed > share:
+            break
     if kept is not None and not broken_rules(trial, kept):
         # Checked, for anybody may have written into the store.
         candidates.insert(0, Start(kept, "kept plan"))

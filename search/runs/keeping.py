@@ -8,6 +8,7 @@ from types import TracebackType
 
 from search.efficiency.evaluator import score
 from search.efficiency.records import Bound
+from search.foundation.errors import BadInput
 from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.conductor import find
 from search.runs.kept import SAME_SCORE, KeptBound, KeptPlan, Run, problem_of
@@ -47,8 +48,8 @@ def recall(store: Store, trial: Trial, numbering: Canonical) -> Recalled:
         return Recalled()
     contents = plan = bound = None
     if kept.plan is not None:
-        plan, contents = kept.plan, from_canonical(numbering).contents(kept.plan.contents)
-        if not _is_true(trial, contents, plan):
+        plan, contents = kept.plan, _carried(numbering, kept.plan.contents)
+        if contents is None or not _is_true(trial, contents, plan):
             store.forget_plan(numbering.digest, aim)
             contents = plan = None
     if kept.bound is not None:
@@ -57,6 +58,13 @@ def recall(store: Store, trial: Trial, numbering: Canonical) -> Recalled:
             store.forget_bound(numbering.digest, aim)
             bound = None
     return Recalled(contents, plan, bound)
+
+
+def _carried(numbering: Canonical, contents: Contents) -> Contents | None:
+    try:
+        return from_canonical(numbering).contents(contents)
+    except (IndexError, TypeError):
+        return None
 
 
 def _is_true(trial: Trial, contents: Contents, plan: KeptPlan) -> bool:
@@ -124,6 +132,8 @@ def covers(run: Run, limits: Limits) -> bool:
         return False
     if run.ended_by == Ended.BOUND_MET:
         return True
+    if run.ended_by == Ended.MOVES and run.limit_moves is None:
+        return True  # no move was there to be made
     seconds = run.limit_seconds if run.ended_by == Ended.SECONDS else run.seconds
     moves = run.limit_moves if run.ended_by == Ended.MOVES else run.moves
     far = limits.seconds is not None and (seconds or 0.0) >= limits.seconds
@@ -147,6 +157,8 @@ class Keeping:
         self.trial = trial
         self.numbering = canonical(trial)
         self.store = Store(path or DEFAULT_PATH)
+        self.failure: BadInput | None = None
+        """Why the last plan could not be kept, where that went wrong."""
 
     def __enter__(self) -> Keeping:
         return self
@@ -177,7 +189,10 @@ class Keeping:
             observer=observer,
             stop=stop,
         )
-        remember(self.store, self.numbering, plan, run_of(plan, limits, workers))
+        try:
+            remember(self.store, self.numbering, plan, run_of(plan, limits, workers))
+        except BadInput as failure:
+            self.failure = failure  # the plan itself must not be lost with it
         return plan
 
     def issued(self, plan: Plan, mark: str) -> None:
@@ -189,16 +204,3 @@ class Keeping:
         """The efficiency of the kept plan where it is above the one given by more than rounding."""
         kept = recall(self.store, self.trial, self.numbering).plan
         return kept.score if kept is not None and kept.score > efficiency + SAME_SCORE else None
-
-    def is_of_same_problem(self, digest: str, other: Trial) -> bool:
-        """Whether another trial asks for the same, of treatments and blocks of the same names."""
-        return (
-            digest == self.numbering.digest
-            and other.aim == self.trial.aim
-            and _names(other) == _names(self.trial)
-            and other.ground == self.trial.ground
-        )
-
-
-def _names(trial: Trial) -> tuple[list[str], list[str]]:
-    return [x.name for x in trial.treatments], [x.name for x in trial.blocks]

@@ -375,6 +375,8 @@ def _search(task: _Task, stop: Stop) -> _Found:
         return _Found(number, RowStatus.IMPOSSIBLE, reason="; ".join(error.causes))
     except Undecided as error:
         return _Found(number, RowStatus.OPEN if stop.interrupted else RowStatus.UNDECIDED, reason=str(error))
+    except KeyboardInterrupt:
+        return _Found(number, RowStatus.OPEN, reason="interrupted")
     except Exception as error:
         return _Found(number, RowStatus.FAILED, reason=f"internal error: {type(error).__name__}: {error}")
     interrupted = plan.ended_by is Ended.INTERRUPTED

@@ -142,15 +142,10 @@ def test_a_run_covers_no_larger_budget(ended: Ended, limits: Limits, covered: bo
     assert covers(ran, limits) == covered
 
 
-def test_a_trial_of_the_same_names_is_known_again(tmp_path: Path) -> None:
-    """A plan counts as issued for a trial only where problem, aim and names are the same."""
+def test_a_better_kept_plan_is_told(tmp_path: Path) -> None:
+    """The kept efficiency is told where it is above the one given by more than rounding."""
     trial = tiny_trial()
     with Keeping(trial, tmp_path / "store.sqlite") as keeping:
-        digest = keeping.numbering.digest
-        assert keeping.is_of_same_problem(digest, tiny_trial(search={"seconds": 3}))
-        assert not keeping.is_of_same_problem("0" * 64, trial)
-        assert not keeping.is_of_same_problem(digest, tiny_trial(aim="overall"))
-        assert not keeping.is_of_same_problem(digest, tiny_trial(treatments=["A", "B", "D"]))
         found = made_plan(trial, GOOD)
         remember(keeping.store, keeping.numbering, found, run_of(found, Limits(moves=5), 1))
         assert keeping.better_than(found.score.aim) is None
