@@ -43,10 +43,6 @@ class Listed:
     def split(self) -> None:
         """There is nothing to make finer."""
 
-    def made_sure(self) -> bool:
-        """It is exact."""
-        return True
-
     def multipliers(self) -> dict[str, Any]:
         """What was listed."""
         return {"cycles": self.side, "of": self.of}
