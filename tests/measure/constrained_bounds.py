@@ -11,10 +11,12 @@ import csv
 import random
 import sys
 import time
+from itertools import count
 from typing import Any
 
 from search.api import plan
 from search.efficiency.bounds import all_bounds
+from search.foundation.errors import Impossible
 from search.trial.limits import limits
 from search.trial.reading import trial_from_document
 from search.trial.records import Trial
@@ -58,9 +60,15 @@ def main(out: str, seconds: str = "5") -> None:
         table.writerow(
             ["seed", "treatments", "blocks", "reached", "bound", "gap_percent", "argument", "seconds"]
         )
-        for seed in range(NUMBER):
+        seeds, written = count(), 0
+        while written < NUMBER:
+            seed = next(seeds)
             trial = drawn(seed)
-            reached = plan(trial, seconds=float(seconds), workers=1).score.aim
+            try:
+                reached = plan(trial, seconds=float(seconds), workers=1).score.aim
+            except Impossible:
+                continue
+            written += 1
             start = time.process_time()
             best = min(all_bounds(trial, limits(trial)), key=lambda bound: bound.exact)
             spent = time.process_time() - start

@@ -84,7 +84,7 @@ def _values(
 ) -> Iterator[Fraction]:
     """The value of every leaf of a tree of splits."""
     if tree.has("cycles") and not path and case.aim is AimKind.ALL_PAIRS:
-        yield least_of_all_graphs(numbers, both, tree)
+        yield from least_of_all_graphs(numbers, both, tree)
         return
     if not tree.has("at"):
         yield _value(case, numbers, both, tree, path)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import random
 from fractions import Fraction
+from math import isqrt
 from typing import Any
 
 import numpy as np
@@ -13,7 +14,7 @@ import pytest
 from search.efficiency.bounds.problem import problem
 from search.efficiency.bounds.spectral import local
 from search.proof.certificates.local_spectral import _exponential_above, _side, derive
-from search.proof.certificates.spectral.cycles import _graphs, _inverses
+from search.proof.certificates.spectral.cycles import _determinant, _graphs, _inverses
 from search.proof.certificates.spectral.numbers import Numbers, Side, pairs_of_sides
 from search.proof.certificates.spectral.walks import SHORTEST, families
 from search.proof.parts import Part
@@ -276,3 +277,25 @@ def test_graphs_are_listed_only_where_they_are_few() -> None:
             copy["levels"][level][0] = {"cycles": side, "of": "graph"}
             with pytest.raises(Refuted):
                 derive(case_of(trial), Part("multipliers", copy))
+
+
+@pytest.mark.parametrize(("t", "k"), [(22, 7), (46, 10)])
+def test_a_symmetric_design_that_cannot_be(t: int, k: int) -> None:
+    """(22, 7, 2) and (46, 10, 2): even t needs k − λ to be a square (Schützenberger 1949)."""
+    trial = equal_trial(t, t, k)
+    multipliers, exact = _found(trial)
+    meetings = k * (k - 1) // (t - 1)
+    balanced = Fraction(meetings * t, k * k)
+    assert isqrt(k - meetings) ** 2 != k - meetings
+    assert exact < balanced
+    assert derive(case_of(trial), Part("multipliers", multipliers)).supports(exact)
+
+
+@pytest.mark.parametrize(("size", "shift", "turn"), [(1, 3, 1), (2, 4, -1), (5, 3, -1), (6, 1, 1), (7, 0, 1)])
+def test_determinants_of_components(size: int, shift: int, turn: int) -> None:
+    """Against floating point."""
+    matrix = np.zeros((size, size))
+    for i in range(size if size > 1 else 0):
+        matrix[i, (i + 1) % size] = matrix[(i + 1) % size, i] = 1
+    expected = np.linalg.det(shift * np.eye(size) - turn * matrix)
+    assert float(_determinant(size, shift, turn)) == pytest.approx(expected, abs=1e-9)

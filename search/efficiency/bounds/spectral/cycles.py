@@ -4,6 +4,9 @@ They are single members, pairs, or cycles whose lengths add up to the members: t
 that the best of them is found by looking at each. With `L_c(z) = z L_{c−1} − L_{c−2}`, L₀ = 2, L₁ = z, a
 cycle of length c has the characteristic polynomial L_c − 2, whose derivative is c S_{c−1}, S₀ = 1, S₁ = z, S
 by the same recurrence (Chebyshev polynomials).
+
+Where there are as many blocks as treatments, N is square, so that `det NN' = (det N)²` must be a square: that
+rules graphs out, as it does for symmetric balanced designs (Schützenberger 1949).
 """
 
 from __future__ import annotations
@@ -12,12 +15,15 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from fractions import Fraction
 from functools import lru_cache
+from math import isqrt, prod
 from typing import Any
 
 from search.efficiency.bounds.spectral.prices import Split
 from search.efficiency.bounds.spectral.side import Half, Shape, halves
 
 MOST_PARTITIONS = 20_000
+NO_PLAN = Fraction(10**9)
+"""Value of a level whose graphs are all ruled out."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -42,10 +48,6 @@ class Listed:
 
     def split(self) -> None:
         """There is nothing to make finer."""
-
-    def made_sure(self) -> bool:
-        """It is exact."""
-        return True
 
     def multipliers(self) -> dict[str, Any]:
         """What was listed."""
@@ -76,9 +78,33 @@ def _least(shape: Shape, half: Half, of: str, degree: int) -> Fraction | None:
             return None
         total = _sum(parts, degree, z)
         if total is not None:
-            value = sign * wide * total + zeros
+            possible = shape.t != shape.b or _may_be_square(half, of, parts, degree)
+            value = sign * wide * total + zeros if possible else NO_PLAN
             best = value if best is None else min(best, value)
     return best
+
+
+def _may_be_square(half: Half, of: str, parts: tuple[int, ...], degree: int) -> bool:
+    """Whether det NN' is a square: rk times all `own − base + θ`, θ of M but that of the ones."""
+    y = half.own - half.base
+    # θ itself is listed, or −1 − θ
+    z, sign = (-y, (-1) ** half.size) if of == "graph" else (y - 1, 1)
+    ones = y + degree if of == "graph" else y - 1 - degree
+    if ones == 0:
+        return True
+    determinant = half.own * half.line * sign * prod(_characteristic(c, z) for c in parts) // ones
+    return determinant >= 0 and isqrt(determinant) ** 2 == determinant
+
+
+@lru_cache(maxsize=1024)
+def _characteristic(c: int, z: int) -> int:
+    """Π (z − θ) for a single member, a pair, or a cycle."""
+    if c <= 2:
+        return z if c == 1 else z * z - 1
+    lucas = 2, z
+    for _ in range(c - 1):
+        lucas = lucas[1], z * lucas[1] - lucas[0]
+    return lucas[1] - 2
 
 
 def _sum(parts: tuple[int, ...], degree: int, z: int) -> Fraction | None:

@@ -130,7 +130,7 @@ def pieces(splits: Sequence[Split], prices: Prices) -> list[Piece]:
 
 
 def solved(model: Model) -> Leaf | None:
-    """The best value that the rounds reach; None where the solver fails in the first."""
+    """The best value that the rounds reach; None where the solver fails, or exact arithmetic disagrees."""
     best: Leaf | None = None
     for _ in range(ROUNDS):
         found = model.solve()
@@ -146,7 +146,7 @@ def solved(model: Model) -> Leaf | None:
         places += [middle for start, end, _, middle in grouped(atoms) if start < end]
         if not model.grow(places, columns):
             break
-    return best
+    return best if best is not None and best.made_sure() else None
 
 
 def _lower(model: Model, prices: Prices) -> list[float]:

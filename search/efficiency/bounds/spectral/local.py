@@ -29,7 +29,7 @@ from search.efficiency.bounds.spectral.below import Cost
 from search.efficiency.bounds.spectral.cycles import Listed, listed
 from search.efficiency.bounds.spectral.leaf import Leaf, solved
 from search.efficiency.bounds.spectral.model import Model
-from search.efficiency.bounds.spectral.side import Shape, shape_of, steps_of, variants
+from search.efficiency.bounds.spectral.side import Shape, Side, shape_of, steps_of, variants
 from search.efficiency.records import Bound
 from search.trial.records import AimKind, Trial
 
@@ -46,6 +46,7 @@ FINER_SENTENCE = (
 STEPS = 8
 """Levels and splits that the finer bound adds at most."""
 MOST_LEVELS = 8
+LOW_PENALTY = 0.3
 
 
 def applies(trial: Trial) -> bool:
@@ -71,7 +72,7 @@ def _bound(given: Problem, argument: str, steps: int) -> Bound | None:
     for _ in range(steps):
         if not search.step():
             break
-    if not search.leaves or not all(leaf.made_sure() for leaf in search.leaves):
+    if not search.leaves:
         return None
     least, multipliers = search.value, {"levels": [level.multipliers() for level in search.levels]}
     if least <= 0:
@@ -135,14 +136,21 @@ class Search:
         forms = variants(self.shape, number, exactly)
         if forms is None:
             return None
-        if exactly and self.cost is Cost.INVERSE:
+        found = [self._leaf(sides, number if exactly else None) for sides in forms]
+        leaves = [[leaf] for leaf in found if leaf is not None]
+        return Level(number, exactly, leaves) if len(leaves) == len(found) else None
+
+    def _leaf(self, sides: tuple[Side, Side], number: int | None) -> Leaf | Listed | None:
+        """One form of a level, by its program or by looking at every graph, whichever proves more."""
+        found: list[Leaf | Listed | None] = [
+            solved(Model.of(self.shape, sides, self.cost))
+            # where all eigenvalues are fixed, prices without much of a limit get out of hand
+            or solved(Model.of(self.shape, sides, self.cost, LOW_PENALTY))
+        ]
+        if number is not None and self.cost is Cost.INVERSE:
             steps = steps_of(self.shape, number)
-            graphs = None if steps is None else listed(self.shape, steps)
-            if graphs is not None:
-                return Level(number, exactly, [[graphs] for _ in forms])
-        leaves = [solved(Model.of(self.shape, sides, self.cost)) for sides in forms]
-        found: list[list[Leaf | Listed]] = [[leaf] for leaf in leaves if leaf is not None]
-        return Level(number, exactly, found) if len(found) == len(leaves) else None
+            found.append(None if steps is None else listed(self.shape, steps))
+        return max((leaf for leaf in found if leaf is not None), key=lambda leaf: leaf.value, default=None)
 
     def step(self) -> bool:
         """One more level, or one more split; False where nothing can be made finer."""

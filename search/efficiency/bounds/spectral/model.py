@@ -38,6 +38,7 @@ class Model:
     places : x of the eigenvalues
     columns : for each side and relation, pairs of an entry of M and one of M²
     kappas : for each side, diagonal entries of M²
+    penalty : cost of traces that do not agree
     """
 
     shape: Shape
@@ -47,14 +48,15 @@ class Model:
     places: Floats
     columns: list[list[set[tuple[int, int]]]]
     kappas: list[list[set[int]]]
+    penalty: float = PENALTY
 
     @classmethod
-    def of(cls, shape: Shape, sides: tuple[Side, ...], cost: Cost) -> Model:
+    def of(cls, shape: Shape, sides: tuple[Side, ...], cost: Cost, penalty: float = PENALTY) -> Model:
         """A program to begin with."""
         columns = [[_window(side, relation) for relation in side.pairs] for side in sides]
         kappas = [[_usual(side, *ends) for _, *ends in side.diagonals] for side in sides]
         places = np.concatenate([1 - np.geomspace(1, 0.01, 100), np.linspace(0.01, 0.9, 80)])
-        return cls(shape, sides, (), cost, places, columns, kappas)
+        return cls(shape, sides, (), cost, places, columns, kappas, penalty)
 
     def split_at(self, split: Split) -> Model:
         """The same with one more split, grown so far as this one is."""
@@ -184,11 +186,11 @@ class Model:
             }
             program.add(np.zeros(len(kappa)), entries)
         for p in range(1, 5):
-            program.add([PENALTY] * 2, {(s, p): [1, -1]})
+            program.add([self.penalty] * 2, {(s, p): [1, -1]})
         slack = [(s, "excess"), *((s, name, n) for n in range(len(side.rows)) for name in ("row", "square"))]
         slack += [(s, "count", number) for number in range(len(side.pairs))]
         for row in slack:
-            program.add([PENALTY * size] * 2, {row: [1, -1]})
+            program.add([self.penalty * size] * 2, {row: [1, -1]})
 
     def _prices(self, found: dict[Any, float]) -> Prices:
         sides = tuple(self._side_prices(found, s, side) for s, side in enumerate(self.sides))

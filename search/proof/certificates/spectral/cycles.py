@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from fractions import Fraction
 from functools import lru_cache
+from math import isqrt
 
 from search.proof.certificates.spectral.numbers import EVEN, Numbers, Side
 from search.proof.parts import Part
@@ -13,11 +14,12 @@ from search.proof.records import Refuted
 MOST_GRAPHS = 20_000
 
 
-def least_of_all_graphs(numbers: Numbers, both: tuple[Side, Side], leaf: Part) -> Fraction:
-    """The least Σ 1/(1 − x) over the t − 1 eigenvalues, by listing the graphs that a level can have.
+def least_of_all_graphs(numbers: Numbers, both: tuple[Side, Side], leaf: Part) -> list[Fraction]:
+    """Σ 1/(1 − x) over the t − 1 eigenvalues of every graph that a level can have.
 
     Where meetings of treatments (or of blocks) are even, M is a graph with row sums d, and so is what it
     leaves of all pairs. If either has a degree of at most 2, its components are points, edges or cycles.
+    With as many blocks as treatments det NN' = (det N)² must be a square, which some graphs cannot be.
     """
     names = {"primal": both[0], "dual": both[1]}
     side = names.get(leaf.text("cycles"))
@@ -34,14 +36,52 @@ def least_of_all_graphs(numbers: Numbers, both: tuple[Side, Side], leaf: Part) -
     # eigenvalue at_zero + spread·x of M; −1 less that of M for what it leaves
     shift = spread + side.at_zero if itself else spread + side.at_zero + 1
     turn = 1 if itself else -1
-    values = [
+    return [
         spread * total + (numbers.t - side.members)
         for components in _graphs(side.members, degree)
         if (total := _inverses(components, degree, shift, turn)) is not None
+        and (numbers.t != numbers.b or _may_be_square(side, components, degree, itself))
     ]
-    if not values:
-        raise Refuted(f"{leaf.where} lists no graph of a connected plan")
-    return min(values)
+
+
+def _may_be_square(side: Side, components: list[int], degree: int, itself: bool) -> bool:
+    """det NN' is lines·points times det((lines − base)I + M), without the eigenvalue of the ones."""
+    own = side.lines - side.base
+    shift, turn = (own, -1) if itself else (own - 1, 1)
+    ones = shift - turn * degree
+    if ones == 0:
+        return True
+    product = Fraction(side.lines * side.points, ones)
+    for size in components:
+        product *= _determinant(size, shift, turn)
+    whole = product.numerator
+    return whole >= 0 and isqrt(whole) ** 2 == whole
+
+
+@lru_cache(maxsize=256)
+def _determinant(size: int, shift: int, turn: int) -> Fraction:
+    """Of shift·I − turn·A, A of a point, an edge or a cycle."""
+    rows, product = _matrix(size, shift, turn, Fraction(0)), Fraction(1)
+    for column in range(size):
+        pivot = next((i for i in range(column, size) if rows[i][column]), None)
+        if pivot is None:
+            return Fraction(0)
+        if pivot != column:
+            rows[column], rows[pivot], product = rows[pivot], rows[column], -product
+        product *= rows[column][column]
+        for i in range(column + 1, size):
+            factor = rows[i][column] / rows[column][column]
+            if factor:
+                rows[i] = [a - factor * b for a, b in zip(rows[i], rows[column], strict=True)]
+    return product
+
+
+def _matrix(size: int, shift: int, turn: int, mean: Fraction) -> list[list[Fraction]]:
+    rows = [[mean + (shift if i == j else 0) for j in range(size)] for i in range(size)]
+    for i in range(size):
+        for j in {(i + 1) % size, (i - 1) % size} - {i}:
+            rows[i][j] -= turn
+    return rows
 
 
 def _graphs(members: int, degree: int) -> Iterator[list[int]]:
@@ -80,10 +120,7 @@ def _trace_of_inverse(size: int, shift: int, turn: int, with_mean: bool) -> Frac
     All rows are alike, so that the trace is `size` times the first entry of the inverse.
     """
     mean = Fraction(1, size) if with_mean else Fraction(0)
-    rows = [[mean + (shift if i == j else 0) for j in range(size)] for i in range(size)]
-    for i in range(size):
-        for j in {(i + 1) % size, (i - 1) % size} - {i}:
-            rows[i][j] -= turn
+    rows = _matrix(size, shift, turn, mean)
     right = [Fraction(int(i == 0)) for i in range(size)]
     for column in range(size):
         pivot = next((i for i in range(column, size) if rows[i][column]), None)
