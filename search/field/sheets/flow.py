@@ -23,17 +23,19 @@ class Piece:
     draw : draws it below a given height
     clings : stands on one page with the piece after it
     context : stands above the piece once more where that comes first on a page
+    blank : nothing to see: where the page is full it is dropped, and never opens another
     """
 
     height: float
     draw: Draw
     clings: bool = False
     context: Piece | None = None
+    blank: bool = False
 
 
 def space(height: float) -> Piece:
     """White space."""
-    return Piece(height, lambda sheet, top: None)
+    return Piece(height, lambda sheet, top: None, blank=True)
 
 
 def paragraph(
@@ -95,6 +97,8 @@ def pages_of(pieces: Sequence[Piece], size: tuple[float, float], head: Piece | N
     for group in _clinging(pieces):
         height = sum(piece.height for piece in group)
         if stacks[-1] and used + height > room:
+            if all(piece.blank for piece in group):
+                continue
             context = group[0].context
             stacks.append([context] if context else [])
             used = context.height if context else 0.0

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from search.field.sheets.flow import Piece, pages_of
+from search.field.sheets.flow import Piece, pages_of, space
 from search.field.sheets.sheet import Sheet
 
 SIZE = (500.0, 400.0)
@@ -55,3 +55,10 @@ def test_a_piece_higher_than_a_page_stands_alone() -> None:
     written = Written()
     pieces = [written.piece("a", 10), written.piece("high", 900), written.piece("b", 10)]
     assert written.pages(pieces) == [["a"], ["high"], ["b"]]
+
+
+def test_white_space_never_opens_a_page() -> None:
+    """Space after the last piece of a full page is dropped: nobody is handed an empty sheet."""
+    written = Written()
+    pieces = [written.piece(name, 120) for name in "ab"]
+    assert written.pages([*pieces, space(200)]) == [["a", "b"]]
