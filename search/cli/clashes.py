@@ -11,8 +11,14 @@ SHOWN_BY = {"count": "counting", "clique": "counting plots of treatments that ne
 MOST_CHANGES = 8
 
 
-def clash_lines(clash: Clash) -> Iterator[str]:
-    """The paragraphs of one clash: its lines, why they clash, what to relax."""
+def clash_lines(clash: Clash, alone: bool = True) -> Iterator[str]:
+    """The paragraphs of one clash: its lines, why they clash, what to relax.
+
+    Parameters
+    ----------
+    clash : the clash
+    alone : whether the trial has no other one
+    """
     if clash.lines:
         yield _head(clash)
         yield from _listed(clash.lines)
@@ -24,7 +30,8 @@ def clash_lines(clash: Clash) -> Iterator[str]:
     yield f"Shown by: {SHOWN_BY.get(clash.shown_by, clash.shown_by)}."
     if clash.changes:
         which = "Any one of these changes" if len(clash.changes) > 1 else "This change"
-        yield f"{which} serves (each tried, smallest first):"
+        serves = "serves" if alone else "serves here, while the other clashes must be mended too"
+        yield f"{which} {serves} (each tried, smallest first):"
         yield from (f"  - {change}" for change in clash.changes[:MOST_CHANGES])
     else:
         yield "No change to a single line was found in the time that leaves a plan."

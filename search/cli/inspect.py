@@ -164,7 +164,7 @@ def _show_verdict(console: Console, found: Inspection) -> None:
     indented(console, "No plan obeys them.")
     for clash in found.clashes:
         console.print()
-        for sentence in clash_lines(clash):
+        for sentence in clash_lines(clash, len(found.clashes) == 1):
             indented(console, sentence.strip(" -"), "-" if sentence.startswith(" ") else "")
 
 

@@ -123,7 +123,8 @@ def _in_words(error: EvenfieldError) -> str:
     if isinstance(error, Impossible):
         head = "no plan obeys the rules of this trial"
         if error.clashes:
-            return "\n\n".join([head, *("\n".join(clash_lines(clash)) for clash in error.clashes)])
+            alone = len(error.clashes) == 1
+            return "\n\n".join([head, *("\n".join(clash_lines(clash, alone)) for clash in error.clashes)])
         causes = "\n".join(f"  - {cause}" for cause in error.causes)
         return f"{head} (shown by: {error.shown_by})\n{causes}"
     return str(error)
