@@ -171,6 +171,8 @@ class _Reader:
             blocks = tuple(Block(f"block {j}", section["plots"]) for j in range(1, section["count"] + 1))
         else:
             self._unlike(list(section.key_at), list(section.key_at.values()), "blocks")
+            if not all(isinstance(plots, int) for plots in section.values()):
+                return None  # a block with settings has left its fault behind
             blocks = tuple(Block(name, plots) for name, plots in section.items())
             if not self._few_enough(sum(section.values())):
                 return None
