@@ -36,10 +36,12 @@ def derive(case: Case, multipliers: Part) -> Claim:
     levels = multipliers.items("levels")
     if not 1 <= len(levels) <= MOST_LEVELS:
         raise Refuted(f"{multipliers.at('levels')} must list the levels, {MOST_LEVELS} at most")
+    # With two plots a block and two a treatment, a pair that meets twice is cut off from the others.
+    only_even = numbers.r == numbers.k == 2 and len(levels) == 1
     values: list[Fraction] = []
     for number, level in enumerate(levels):
         where = f"{multipliers.at('levels')}[{number + 1}]"
-        sides = pairs_of_sides(numbers, number, number < len(levels) - 1)
+        sides = pairs_of_sides(numbers, number, only_even or number < len(levels) - 1)
         cases = listed(where, level)
         if len(cases) != len(sides):
             raise Refuted(f"{where} must have a proof for each of the {len(sides)} forms of the level")

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import random
+from contextlib import suppress
 from pathlib import Path
 
 import numpy as np
@@ -16,11 +17,13 @@ from search.efficiency.evaluator import score
 from search.proof.certificates import KINDS
 from search.proof.certificates.case import Case
 from search.proof.parts import Part
+from search.proof.records import Refuted
 from search.trial.limits import limits
 from search.trial.reading import read_trial
 from search.trial.records import Contents, Trial
 from search.trial.tables import tables
 from tests.efficiency.plans import equal_trial, improved, planted
+from tests.proof.test_fuzz import mutated
 
 CONFIGS = Path(__file__).parents[3] / "configs"
 
@@ -81,3 +84,17 @@ def test_an_odd_field() -> None:
     bound = _bound(read_trial(CONFIGS / "odd_bays.yaml"))
     assert bound is not None
     assert 0.9133084 <= bound <= 0.9133084 * 1.005
+
+
+def test_no_mutation_gives_a_traceback() -> None:
+    """Whatever stands in the multipliers, the answer is a claim or a refusal."""
+    trial = read_trial(CONFIGS / "odd_bays.yaml")
+    start = problem(trial, limits(trial))
+    assert start is not None
+    bound = normalised.find(start)
+    assert bound is not None
+    case, draw = Case(trial, tables(trial), limits(trial)), random.Random(3)
+    for _ in range(100):
+        with suppress(Refuted):
+            spoiled = mutated(bound.certificate["multipliers"], draw)
+            KINDS[normalised.NAME].derive(case, Part("multipliers", spoiled))

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import random
+from contextlib import suppress
 from fractions import Fraction
 from math import isqrt
 from typing import Any
@@ -23,6 +24,7 @@ from search.trial.records import Contents, Trial
 from tests.efficiency.plans import ALL_PAIRS, FANO, OVERALL, equal_trial, square_lattice, trial_of
 from tests.equal_plans import SETS, SHAPES, eigenvalues, excess, random_plan, random_sets
 from tests.proof.certificates.brute import case_of, efficiency_of
+from tests.proof.test_fuzz import mutated
 
 
 def _prices(draw: random.Random, side: Side) -> Part:
@@ -240,7 +242,7 @@ def test_few_graphs_are_all_looked_at(t: int, b: int, k: int, reached: float) ->
     assert derive(case_of(trial), Part("multipliers", multipliers)).supports(exact)
 
 
-@pytest.mark.parametrize("t", [5, 8, 13])
+@pytest.mark.parametrize("t", [5, 8, 13, 30])
 def test_the_cycle(t: int) -> None:
     """k = r = 2: only the cycle is connected; its resistances sum to (t³ − t)/12 (Klein & Randić 1993)."""
     trial = equal_trial(t, t, 2)
@@ -299,3 +301,14 @@ def test_determinants_of_components(size: int, shift: int, turn: int) -> None:
         matrix[i, (i + 1) % size] = matrix[(i + 1) % size, i] = 1
     expected = np.linalg.det(shift * np.eye(size) - turn * matrix)
     assert float(_determinant(size, shift, turn)) == pytest.approx(expected, abs=1e-9)
+
+
+@pytest.mark.parametrize("finer", [False, True])
+def test_no_mutation_gives_a_traceback(finer: bool) -> None:
+    """Whatever stands in the multipliers, the answer is a claim or a refusal."""
+    trial = equal_trial(10, 20, 3)
+    multipliers, _ = _found(trial, finer)
+    case, draw = case_of(trial), random.Random(int(finer))
+    for _ in range(150):
+        with suppress(Refuted):
+            derive(case, Part("multipliers", mutated(multipliers, draw)))

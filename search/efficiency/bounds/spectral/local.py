@@ -192,10 +192,12 @@ class Search:
 def begun(shape: Shape, cost: Cost) -> Search | None:
     """The first level, and all further ones together."""
     search = Search(shape, cost)
-    first, rest = search.level(0, True), search.level(1, False)
-    if first is None or rest is None:
+    first = search.level(0, True)
+    # two treatments in both of their blocks would have no connection to the others
+    rest = None if shape.r == shape.k == 2 else search.level(1, False)
+    if first is None or (rest is None and not shape.r == shape.k == 2):
         return None
-    search.levels = [first, rest]
+    search.levels = [first] if rest is None else [first, rest]
     return search
 
 
