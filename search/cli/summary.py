@@ -73,7 +73,7 @@ def _figures(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
 
 def _expected(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
     """Standard error and detectable difference, where the file says what the field is like."""
-    from search.efficiency.precision import expected_of
+    from search.efficiency.precision import expected_for_aim, expected_of
 
     score = document["score"]
     average, largest = score["average_pair_variance"], score["largest_pair_variance"]
@@ -100,6 +100,10 @@ def _expected(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
                 f"{average_pair.power_percent:.0f} % on average, {worst_pair.power_percent:.0f} % at worst",
             )
         )
+    aimed = expected_for_aim(trial, score["aim"], score["residual_df"])
+    if aimed is not None:
+        told = f"standard error {aimed.standard_error:.3g} {unit}, detectable {aimed.detectable:.3g} {unit}"
+        rows.insert(0, (f"{trial.aim.kind.value}, on average", told))
     return rows
 
 

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from math import exp, pi, sqrt
 
 from search.efficiency.records import Score
+from search.efficiency.reference import reference_variance
 from search.trial.records import Precision, Trial
 
 FAR = 9.5
@@ -146,6 +147,22 @@ def expected_of(asked: Precision, average: float | None, largest: float | None, 
         average_pair=_detectable(standard_error(average, deviation), df, asked),
         worst_pair=_detectable(standard_error(largest, deviation), df, asked),
     )
+
+
+def expected_for_aim(trial: Trial, efficiency: float, df: int) -> Detectable | None:
+    """The same for the differences that the aim speaks of, where it does not treat all pairs alike.
+
+    Parameters
+    ----------
+    trial : the trial
+    efficiency : of the plan, for the trial's aim: its mean variance is the reference's over it
+    df : residual degrees of freedom
+    """
+    if trial.aim.kind.treats_pairs_alike or efficiency <= 0:
+        return None
+    variance = float(reference_variance(trial)) / efficiency
+    found = expected_of(trial.precision, variance, variance, df)
+    return None if found is None else found.average_pair
 
 
 def _detectable(error: float, df: int, asked: Precision) -> Detectable:

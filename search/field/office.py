@@ -123,7 +123,7 @@ def _losses(trial: Trial, score: dict[str, Any]) -> Iterator[Figure]:
 
 
 def _precision(trial: Trial, document: dict[str, Any]) -> Iterator[Figure]:
-    from search.efficiency.precision import expected_of
+    from search.efficiency.precision import expected_for_aim, expected_of
 
     score = document["score"]
     df = score["residual_df"]
@@ -142,6 +142,14 @@ def _precision(trial: Trial, document: dict[str, Any]) -> Iterator[Figure]:
         return
     asked, unit = trial.precision, clean(found.unit)
     mean, worst = found.average_pair, found.worst_pair
+    aimed = expected_for_aim(trial, score["aim"], df)
+    if aimed is not None:
+        yield Figure(
+            f"Standard error, {trial.aim.kind.value}",
+            f"{aimed.standard_error:.3g} {unit}",
+            f"On average over what the aim compares; a true difference of {aimed.detectable:.3g} {unit} can be "
+            "detected. The figures below speak of any two treatments.",
+        )
     yield Figure(
         "Standard error of a difference",
         f"{mean.standard_error:.3g} {unit}",

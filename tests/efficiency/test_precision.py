@@ -8,14 +8,16 @@ from math import sqrt
 import pytest
 from statsmodels.stats.power import TTestPower
 
-from search.efficiency.evaluator import score
+from search.efficiency.evaluator import pair_variances, score
 from search.efficiency.precision import (
     break_even,
     detectable_multiple,
     expected,
+    expected_for_aim,
     least_significant_multiple,
     power,
 )
+from search.trial.reading import trial_from_document
 from search.trial.records import Precision
 from tests.efficiency.plans import FANO, equal_trial
 
@@ -94,3 +96,26 @@ def test_break_even_is_the_loss_to_blocks() -> None:
     told = break_even(trial, score(trial, FANO))
     assert told.variance_cut_percent == pytest.approx(100 * 2 / 9)
     assert (told.residual_df, told.residual_df_without_blocks) == (8, 14)
+
+
+def test_an_aim_of_its_own_has_an_error_of_its_own() -> None:
+    """Against the control the mean variance of the aim counts, not that of all pairs."""
+    document = {
+        "trial": "x",
+        "treatments": {name: {"control": name == "A"} for name in "ABCD"},
+        "plots_each": [2, 6],
+        "blocks": {"count": 4, "plots": 3},
+        "aim": "against control",
+        "precision": {"cv_percent": 10, "mean": 5},
+    }
+    trial = trial_from_document(document)
+    contents = ((0, 1, 2), (0, 1, 3), (0, 2, 3), (0, 1, 2))
+    found = score(trial, contents)
+    aimed = expected_for_aim(trial, found.aim, found.residual_df)
+    assert aimed is not None
+    variances = pair_variances(contents, 4)
+    assert variances is not None
+    mean = float(variances[0, 1:].mean())
+    assert aimed.standard_error == pytest.approx(0.5 * mean**0.5)
+    alike = trial_from_document({**document, "aim": "all pairs"})
+    assert expected_for_aim(alike, found.aim, found.residual_df) is None
