@@ -147,8 +147,8 @@ def _precision(trial: Trial, document: dict[str, Any]) -> Iterator[Figure]:
         yield Figure(
             f"Standard error, {trial.aim.kind.value}",
             f"{aimed.standard_error:.3g} {unit}",
-            f"On average over what the aim compares; a true difference of {aimed.detectable:.3g} {unit} can be "
-            "detected. The figures below speak of any two treatments.",
+            f"On average over what the aim compares; a true difference of {aimed.detectable:.3g} {unit} "
+            "can be detected. The figures below speak of any two treatments.",
         )
     yield Figure(
         "Standard error of a difference",
