@@ -7,6 +7,7 @@ from collections.abc import Iterator
 from typing import Any
 
 from search.field.wording import clean, counted, listed
+from search.runs.cautions import ENOUGH_DF, MANY_PLOTS
 from search.trial.limits import limits
 from search.trial.records import AimKind, Trial
 
@@ -33,8 +34,6 @@ USUAL = (
     ),
 )
 
-ENOUGH_DF = 12
-MANY_PLOTS = 20
 WIDE_GAP_PERCENT = 1.0
 
 

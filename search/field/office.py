@@ -10,11 +10,11 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from search.field.cautions import ENOUGH_DF
 from search.field.codes import treatment_codes
 from search.field.pictures import Picture, picture
 from search.field.standing import standing_in_words
 from search.field.wording import clean
+from search.runs.cautions import ENOUGH_DF
 from search.trial.records import Contents, Trial
 from search.trial.tables import incidence
 

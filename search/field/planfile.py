@@ -5,12 +5,12 @@ from __future__ import annotations
 import json
 from datetime import UTC, datetime
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 from search.field.planmark import mark_of, seal_of
 from search.field.planshape import Document, misfit
 from search.field.randomise import PlotMap
-from search.foundation.documents import canonical_json, write_whole
+from search.foundation.documents import canonical_json, read_json, write_whole
 from search.foundation.errors import BadInput, shown
 from search.foundation.versions import versions
 from search.trial.reading import trial_from_document
@@ -162,35 +162,14 @@ def read_plan(path: Path) -> tuple[Trial, Document]:
 
 
 def _parsed(path: Path) -> Document:
+    parsed = read_json(path, MOST_BYTES)
     try:
-        with path.open("rb") as stream:
-            data = stream.read(MOST_BYTES + 1)
-    except OSError as error:
-        raise BadInput(f"cannot read {path}: {error.strerror or error}") from error
-    if len(data) > MOST_BYTES:
-        raise BadInput(f"{path} is larger than {MOST_BYTES >> 20} MiB, more than any plan needs")
-    try:
-        parsed = json.loads(
-            data.decode("utf-8"), parse_constant=_refuse_constant, object_pairs_hook=_once_each
-        )
         canonical_json(parsed).encode()  # a lone surrogate or an endless number has no canonical text
     except (ValueError, RecursionError) as error:
         raise BadInput(f"{path} is not a JSON document in UTF-8: {error}") from error
     if not isinstance(parsed, dict):
         raise BadInput(f"{path} is JSON, but not a plan: a plan is an object with keys")
     return parsed
-
-
-def _refuse_constant(word: str) -> float:
-    raise ValueError(f"{word} is no number")
-
-
-def _once_each(pairs: list[tuple[str, Any]]) -> Document:
-    """An object whose keys differ; a reader that takes the last of two would see another plan."""
-    found = dict(pairs)
-    if len(found) < len(pairs):
-        raise ValueError("a key stands twice in one object")
-    return found
 
 
 def _score(score: Score) -> Document:

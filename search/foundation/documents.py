@@ -61,6 +61,38 @@ def write_whole(path: Path, content: str | bytes, *, new: bool = False) -> None:
         ) from error
 
 
+def read_json(path: Path, most_bytes: int) -> Any:
+    """The JSON of a file that anybody may have written, as Python data.
+
+    Raises
+    ------
+    BadInput : it cannot be read, is too large, or is no JSON that every reader understands alike
+    """
+    try:
+        with path.open("rb") as stream:
+            data = stream.read(most_bytes + 1)
+    except OSError as error:
+        raise BadInput(f"cannot read {path}: {error.strerror or error}") from error
+    if len(data) > most_bytes:
+        raise BadInput(f"{path} is larger than {most_bytes >> 20} MiB, more than any plan needs")
+    try:
+        return json.loads(data.decode("utf-8"), parse_constant=_no_number, object_pairs_hook=_keys_once)
+    except (ValueError, RecursionError) as error:
+        raise BadInput(f"{path} is not a JSON document in UTF-8: {error}") from error
+
+
+def _no_number(word: str) -> float:
+    raise ValueError(f"{word} is no number")
+
+
+def _keys_once(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
+    # Of two equal keys one reader takes the first and another the last: they would see two plans.
+    found = dict(pairs)
+    if len(found) < len(pairs):
+        raise ValueError("a key stands twice in one object")
+    return found
+
+
 def safe_name(name: str) -> str:
     """A trial's name as a folder name: lower case letters and digits joined by single dashes."""
     plain = unicodedata.normalize("NFKD", name).encode("ascii", "ignore").decode()

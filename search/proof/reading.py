@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-import json
 from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
-from search.foundation.errors import BadInput, EvenfieldError, shown
+from search.foundation.documents import read_json
+from search.foundation.errors import BadInput, EvenfieldError
 from search.proof.parts import Part, listed, quoted
 from search.proof.records import Refuted
 from search.trial.reading import trial_from_document
@@ -36,31 +36,7 @@ def document_of(path: Path) -> Any:
     ------
     BadInput : the file cannot be read, or is no JSON that every reader understands alike
     """
-    try:
-        with path.open("rb") as stream:
-            data = stream.read(MOST_BYTES + 1)
-    except OSError as error:
-        raise BadInput(f"cannot read {path}: {error.strerror or error}") from error
-    if len(data) > MOST_BYTES:
-        raise BadInput(f"{path} is larger than {MOST_BYTES >> 20} MiB, more than any plan needs")
-    try:
-        return json.loads(data.decode("utf-8"), object_pairs_hook=_keys_once, parse_constant=_no_number)
-    except ValueError as error:
-        raise BadInput(f"{path} is no JSON in UTF-8: {error}") from error
-    except RecursionError as error:
-        raise BadInput(f"{path} nests its parts beyond reading") from error
-
-
-def _keys_once(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
-    # Of two equal keys one reader takes the first and another the last: they would see two plans.
-    found = dict(pairs)
-    if len(found) < len(pairs):
-        raise ValueError("a key stands twice in one object")
-    return found
-
-
-def _no_number(word: str) -> float:
-    raise ValueError(f"{shown(word)} is no number")
+    return read_json(path, MOST_BYTES)
 
 
 def opened(document: Any) -> Part:

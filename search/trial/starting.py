@@ -11,7 +11,6 @@ from search.trial.nodes import NOTHING
 
 READ_AS_OTHER = {"yes", "no", "on", "off", "true", "false", "y", "n", *map(str.casefold, NOTHING)}
 """Plain words that other readers of YAML take for truth or nothing."""
-WIDTH = 96
 
 
 def first_file(name: str, treatments: int | Sequence[str], bays: Sequence[int]) -> str:

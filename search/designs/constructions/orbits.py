@@ -41,7 +41,6 @@ class Effort:
 
 LIGHT = Effort(3_000, 2_000, 30_000, 0.03)
 MEDIUM = Effort(40_000, 10_000, 1_000_000, 0.5)
-HEAVY = Effort(300_000, 60_000, 30_000_000, 15.0)
 SEARCHED_TREATMENTS = 100
 SEARCHED_REPLICATION = 20
 """Up to here every set was searched once for longer than a user would wait; what was found is stored."""
