@@ -96,6 +96,30 @@ def exact_diagonal(trial: Trial) -> tuple[Fraction, ...]:
     raise ValueError("the overall aim has no weights")
 
 
+def exact_weights(trial: Trial) -> tuple[tuple[Fraction, ...], ...]:
+    """W of the aim exactly, row by row.
+
+    Raises
+    ------
+    ValueError : the aim is `overall`, which has no W
+    """
+    t, diagonal = trial.t, exact_diagonal(trial)
+    shares, coefficients = contrast_shares(trial), contrast_rows(trial)
+
+    def between(i: int, j: int) -> Fraction:
+        match trial.aim.kind:
+            case AimKind.ALL_PAIRS:
+                return Fraction(-2, t * (t - 1))
+            case AimKind.AGAINST_CONTROL:
+                edges = (i in trial.controls) + (j in trial.controls)
+                return Fraction(-edges, len(trial.controls) * (t - 1))
+            case _:
+                pairs = zip(shares, coefficients, strict=True)
+                return sum((share * row[i] * row[j] for share, row in pairs), Fraction(0))
+
+    return tuple(tuple(diagonal[i] if i == j else between(i, j) for j in range(t)) for i in range(t))
+
+
 def contrast_shares(trial: Trial) -> tuple[Fraction, ...]:
     """The weight of each contrast over the sum of all weights."""
     total = sum((contrast.weight for contrast in trial.aim.contrasts), Fraction(0))

@@ -42,7 +42,7 @@ applies = second_moment.applies
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class _Rows:
+class Rows:
     """Treatments with the same possibilities, all the m they may have, and the sum limits they stand in."""
 
     treatments: Ints
@@ -51,7 +51,7 @@ class _Rows:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class _Pairs:
+class Pairs:
     """Pairs with the same possibilities, from two row classes, and all the a they may have."""
 
     first: int
@@ -61,14 +61,14 @@ class _Pairs:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class _Columns:
+class Columns:
     """Everything that the program chooses from."""
 
     sizes: Ints
     blocks: Ints
     sums: Sums
-    rows: list[_Rows]
-    pairs: list[_Pairs]
+    rows: list[Rows]
+    pairs: list[Pairs]
 
 
 @dataclass(frozen=True, slots=True)
@@ -82,7 +82,7 @@ class _Prices:
 
 def find(given: Problem) -> Bound | None:
     """The bound, or None where the program is too large or is not solved."""
-    columns = _columns(given)
+    columns = columns_of(given, np.zeros(given.trial.t, dtype=np.int64))
     if columns is None:
         return None
     prices = _prices(columns)
@@ -95,12 +95,18 @@ def find(given: Problem) -> Bound | None:
 # -- what a treatment and a pair can have -------------------------------------------------------
 
 
-def _columns(given: Problem) -> _Columns | None:
-    """By fine row classes, by coarse ones where those make too many columns, or None."""
-    return _columns_by(given, fine=True) or _columns_by(given, fine=False)
+def columns_of(given: Problem, labels: Ints) -> Columns | None:
+    """By fine row classes, by coarse ones where those make too many columns, or None.
+
+    Parameters
+    ----------
+    given : the trial
+    labels : (t,) treatments with unlike ones are never in one class
+    """
+    return _columns_by(given, labels, fine=True) or _columns_by(given, labels, fine=False)
 
 
-def _columns_by(given: Problem, *, fine: bool) -> _Columns | None:
+def _columns_by(given: Problem, labels: Ints, *, fine: bool) -> Columns | None:
     """None where there are too many, or where something cannot be had at all."""
     rules, limits = given.rules, given.limits
     sizes, blocks = np.unique(rules.sizes, return_counts=True)
@@ -111,7 +117,7 @@ def _columns_by(given: Problem, *, fine: bool) -> _Columns | None:
     room = MOST_COLUMNS
 
     kinds = alike(pair_ranges)
-    own = np.column_stack([row_ranges, sums.memberships])
+    own = np.column_stack([labels, row_ranges, sums.memberships])
     classes = _row_classes(own, kinds if fine else np.zeros_like(kinds))
     rows = []
     for members in classes:
@@ -119,7 +125,7 @@ def _columns_by(given: Problem, *, fine: bool) -> _Columns | None:
         if vectors is None:
             return None
         room -= len(vectors)
-        rows.append(_Rows(members, vectors, sums.memberships[members[0]].tolist()))
+        rows.append(Rows(members, vectors, sums.memberships[members[0]].tolist()))
     pairs = []
     for first, second, count, (i, j) in _pair_classes(classes, kinds):
         if pair_ranges[i, j, 1] == 0:
@@ -128,8 +134,8 @@ def _columns_by(given: Problem, *, fine: bool) -> _Columns | None:
         if vectors is None:
             return None
         room -= len(vectors)
-        pairs.append(_Pairs(first, second, count, vectors))
-    return _Columns(sizes, blocks, sums, rows, pairs)
+        pairs.append(Pairs(first, second, count, vectors))
+    return Columns(sizes, blocks, sums, rows, pairs)
 
 
 def _listed(ranges: Ints, room: int) -> Ints | None:
@@ -179,7 +185,7 @@ def _pair_classes(classes: list[Ints], kinds: Ints) -> list[tuple[int, int, int,
 # -- prices -------------------------------------------------------------------------------------
 
 
-def _prices(columns: _Columns) -> _Prices | None:
+def _prices(columns: Columns) -> _Prices | None:
     sizes = columns.sizes
     program = Program()
     columns.sums.add_rows(program)
@@ -217,7 +223,7 @@ def _prices(columns: _Columns) -> _Prices | None:
 # -- the exact value ----------------------------------------------------------------------------
 
 
-def _least_squares(given: Problem, columns: _Columns, prices: _Prices) -> Fraction:
+def _least_squares(given: Problem, columns: Columns, prices: _Prices) -> Fraction:
     """S2 at the prices, in whole numbers over one denominator."""
     sizes = columns.sizes
     grid = Grid(sizes)
@@ -252,7 +258,7 @@ def _least_squares(given: Problem, columns: _Columns, prices: _Prices) -> Fracti
     return Fraction(total, grid.scale) + constant - columns.sums.constant(prices.sums)
 
 
-def _multipliers(columns: _Columns, prices: _Prices) -> dict[str, Any]:
+def _multipliers(columns: Columns, prices: _Prices) -> dict[str, Any]:
     sizes = [str(s) for s in columns.sizes.tolist()]
     return {
         "rows": [

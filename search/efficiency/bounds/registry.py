@@ -6,7 +6,16 @@ import time
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
-from search.efficiency.bounds import first_order, meets, normalised, pairs, replication, trace_root
+from search.efficiency.bounds import (
+    averaged,
+    control_meets,
+    first_order,
+    meets,
+    normalised,
+    pairs,
+    replication,
+    trace_root,
+)
 from search.efficiency.bounds.problem import Problem, problem
 from search.efficiency.bounds.spectral import local
 from search.efficiency.records import Bound
@@ -51,6 +60,8 @@ ARGUMENTS = (
         Argument(module.NAME, module.SENTENCE, module.applies, module.find)
         for module in (first_order, replication, trace_root, pairs, meets)
     ),
+    Argument(averaged.NAME, averaged.SENTENCE, averaged.applies, averaged.find, 1.0),
+    Argument(control_meets.NAME, control_meets.SENTENCE, control_meets.applies, control_meets.find, 1.0),
     Argument(normalised.NAME, normalised.SENTENCE, normalised.applies, normalised.find, 1.0),
     Argument(local.NAME, local.SENTENCE, local.applies, local.find, 1.0),
     Argument(local.FINER, local.FINER_SENTENCE, local.applies, local.find_finer, 5.0),

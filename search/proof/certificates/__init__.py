@@ -9,8 +9,10 @@ from __future__ import annotations
 from types import ModuleType
 
 from search.proof.certificates import (
+    averaged,
     by_meets,
     by_pairs,
+    control_meets,
     first_order,
     local_spectral,
     normalised,
@@ -26,5 +28,7 @@ KINDS: dict[str, ModuleType] = {
     "second moment by block meets": by_meets,
     "local spectral": local_spectral,
     "normalised moment": normalised,
+    "averaged information": averaged,
+    "second moment against controls": control_meets,
 }
 """What a certificate's "kind" may say."""

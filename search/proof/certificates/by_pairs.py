@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Iterator
-from dataclasses import dataclass
 from fractions import Fraction
 
 import numpy as np
@@ -13,17 +12,16 @@ from search.proof.certificates.case import Case
 from search.proof.certificates.claims import Claim, claim_of_spectrum
 from search.proof.certificates.lattice import Coordinate, least_cost
 from search.proof.certificates.multipliers import (
+    Partners,
     known,
+    partner_prices,
     prices_by_size,
-    rows_of,
     sum_prices,
-    treatments_of,
 )
 from search.proof.certificates.spectrum import second_moment_spectrum
 from search.proof.parts import Part
 from search.proof.records import Refuted
 from search.trial.records import AimKind
-from search.trial.tables import Ints
 
 AIMS = (AimKind.ALL_PAIRS, AimKind.OVERALL)
 
@@ -45,35 +43,14 @@ def least_squares(case: Case, multipliers: Part) -> Fraction:
     """A number that tr C² is not below in any plan of the trial."""
     number_of_blocks = Counter(int(size) for size in case.rules.sizes)
     plots = prices_by_size(multipliers, "plots", case)
-    partners = _partner_prices(case, multipliers)
+    partners = partner_prices(multipliers, case)
     each, total = sum_prices(multipliers, case)
     squares = sum((plots[s] * s * b for s, b in number_of_blocks.items()), -total)
     return squares + sum(_treatments(case, plots, partners, each)) + sum(_pairs(case, partners))
 
 
-@dataclass(frozen=True, slots=True, eq=False)
-class _Partners:
-    """Prices of partners by block size, one row for treatments alike, and the row of each treatment."""
-
-    rows: list[dict[int, Fraction]]
-    row_of: Ints
-
-
-def _partner_prices(case: Case, multipliers: Part) -> _Partners:
-    """The prices of partners; row 0 is for treatments that no row of the certificate names."""
-    rows = [{int(size): Fraction(0) for size in case.rules.sizes}]
-    row_of = np.zeros(case.trial.t, dtype=np.int64)
-    for row in rows_of(multipliers, "rows"):
-        members = treatments_of(row, case)
-        if row_of[members].any():
-            raise Refuted(f"{row.where} names a treatment that another row has already")
-        row_of[members] = len(rows)
-        rows.append(prices_by_size(row, "partners", case))
-    return _Partners(rows, row_of)
-
-
 def _treatments(
-    case: Case, plots: dict[int, Fraction], partners: _Partners, each: list[Fraction]
+    case: Case, plots: dict[int, Fraction], partners: Partners, each: list[Fraction]
 ) -> Iterator[Fraction]:
     """For each treatment the least of D² plus the prices of its blocks."""
     for i, row in enumerate(partners.row_of):
@@ -89,7 +66,7 @@ def _treatments(
         yield _found(least_cost(blocks, 1, *case.plots_of(i)))
 
 
-def _pairs(case: Case, partners: _Partners) -> Iterator[Fraction]:
+def _pairs(case: Case, partners: Partners) -> Iterator[Fraction]:
     """Over pairs that may meet the least of 2 c² less the prices of their meetings, alike pairs together."""
     rules, sizes = case.rules, list(partners.rows[0])
     i, j = np.nonzero(np.triu(~rules.apart, 1))

@@ -29,7 +29,9 @@ class Coordinate:
     high: int
 
 
-def least_cost(coordinates: Sequence[Coordinate], squared: int, fewest: int, most: int) -> Fraction | None:
+def least_cost(
+    coordinates: Sequence[Coordinate], squared: int | Fraction, fewest: int, most: int
+) -> Fraction | None:
     """The least of squared·(Σ value·x)² + Σ cost·x over whole vectors x in range.
 
     Of all vectors with the same count Σx and the same Σ value·x only the cheapest is followed.
@@ -37,7 +39,7 @@ def least_cost(coordinates: Sequence[Coordinate], squared: int, fewest: int, mos
     Parameters
     ----------
     coordinates : the entries
-    squared : weight of the square, at least 0
+    squared : weight of the square
     fewest, most : range of Σx
 
     Returns

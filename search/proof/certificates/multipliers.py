@@ -3,11 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
+from dataclasses import dataclass
 from fractions import Fraction
+
+import numpy as np
 
 from search.proof.certificates.case import Case
 from search.proof.parts import Part, listed, ratio, whole
 from search.proof.records import Refuted
+from search.trial.tables import Ints
 
 MOST_DIGITS_IN_ALL = 100_000
 """Digits of all multipliers together; sums of rationals grow with them."""
@@ -62,6 +66,27 @@ def prices_by_size(row: Part, key: str, case: Case) -> dict[int, Fraction]:
                 raise Refuted(f"{given.where} prices a block size that the trial has not")
             prices[sizes[name]] = given.ratio(name)
     return prices
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Partners:
+    """Prices of partners by block size, one row for treatments alike, and the row of each treatment."""
+
+    rows: list[dict[int, Fraction]]
+    row_of: Ints
+
+
+def partner_prices(multipliers: Part, case: Case) -> Partners:
+    """The prices of partners; row 0 is for treatments that no row of the certificate names."""
+    rows = [{int(size): Fraction(0) for size in case.rules.sizes}]
+    row_of = np.zeros(case.trial.t, dtype=np.int64)
+    for row in rows_of(multipliers, "rows"):
+        members = treatments_of(row, case)
+        if row_of[members].any():
+            raise Refuted(f"{row.where} names a treatment that another row has already")
+        row_of[members] = len(rows)
+        rows.append(prices_by_size(row, "partners", case))
+    return Partners(rows, row_of)
 
 
 def sum_prices(multipliers: Part, case: Case) -> tuple[list[Fraction], Fraction]:

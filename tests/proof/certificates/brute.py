@@ -108,7 +108,60 @@ def any_multipliers(kind: str, case: Case, draw: random.Random) -> dict[str, Any
         case "normalised moment":
             place = Fraction(draw.randint(0, 12), 20)
             return {"place": str(place), "parts": _parts(case, draw, sizes, price), "sums": sums}
+        case "averaged information":
+            return _any_tangent(case, draw, price)
+        case "second moment against controls":
+            return {"cases": _any_cases(case, draw, sizes, sums, price)}
     return {}
+
+
+def _any_tangent(case: Case, draw: random.Random, price: Callable[..., str]) -> dict[str, Any]:
+    """A matrix alike on each part, near that of treatments without blocks or anywhere."""
+    parts: dict[Any, int] = {}
+    for i in range(case.trial.t):
+        key: Any = i in case.trial.controls
+        if case.aim is AimKind.CONTRASTS:
+            key = tuple(dict(contrast.of).get(i, 0) for contrast in case.trial.aim.contrasts)
+        parts[key] = parts.get(key, 0) + 1
+    size = range(len(parts))
+    scale = draw.choice((0, 0, 1, 20))
+    entries = [[f"{scale * draw.randint(-9, 9)}/100" for _ in size] for _ in size]
+    return {
+        "entries": [[entries[max(p, q)][min(p, q)] for q in size] for p in size],
+        "more": [f"{draw.randint(10, 120)}/100" for _ in size],
+        "plots": {str(g): [price() for _ in size] for g in sorted({int(g) for g in case.rules.group})},
+        "sums": [
+            {"treatments": list(limit.treatments), "price": price(positive=True)}
+            for limit in case.implied.sums
+        ],
+    }
+
+
+def _any_cases(
+    case: Case, draw: random.Random, sizes: list[int], sums: list[Any], price: Callable[..., str]
+) -> list[dict[str, Any]]:
+    """One case for all plots of controls, or for a single control one for each number."""
+    controls = case.trial.controls
+    low, high = min(case.least[c] for c in controls), max(case.most[c] for c in controls)
+    each = len(controls) == 1 and draw.random() < 0.5
+    ranges = [[r, r] for r in range(low, high + 1)] if each else [[low, high]]
+    order = draw.sample(range(case.trial.t), case.trial.t)
+    cut = draw.randint(0, case.trial.t)
+    return [
+        {
+            "control_plots": ends,
+            "control": f"{draw.randint(8, 40)}/10",
+            "other": f"{draw.randint(8, 40)}/10",
+            "places": [f"{draw.randint(0, 30)}/10", f"{draw.randint(0, 30)}/10"],
+            "rows": [
+                {"treatments": part, "partners": {str(s): price() for s in sizes}}
+                for part in (order[:cut], order[cut:])
+            ],
+            "plots": {str(s): price() for s in sizes},
+            "sums": sums,
+        }
+        for ends in ranges
+    ]
 
 
 def _parts(
@@ -155,15 +208,28 @@ def changed(multipliers: Any, draw: random.Random) -> Any:
     """The multipliers with some prices moved a little; prices of sums stay from 0 on."""
     if isinstance(multipliers, dict):
         return {
-            key: value if key in ("treatments", "sums") else changed(value, draw)
+            key: value if key in ("treatments", "sums", "control_plots") else changed(value, draw)
             for key, value in multipliers.items()
         }
+    if _is_symmetric(multipliers):
+        moved = [[changed(item, draw) for item in row] for row in multipliers]
+        size = range(len(moved))
+        return [[moved[max(p, q)][min(p, q)] for q in size] for p in size]
     if isinstance(multipliers, list):
         return [changed(item, draw) for item in multipliers]
     if isinstance(multipliers, str) and draw.random() < 0.5:
         step = draw.choice((Fraction(1, 1000), Fraction(1, 50), Fraction(1, 4), Fraction(2)))
         return str(Fraction(multipliers) + draw.choice((-1, 1)) * step)
     return multipliers
+
+
+def _is_symmetric(value: Any) -> bool:
+    return (
+        isinstance(value, list)
+        and bool(value)
+        and all(isinstance(row, list) and len(row) == len(value) for row in value)
+        and all(value[p][q] == value[q][p] for p in range(len(value)) for q in range(p))
+    )
 
 
 def sharpened(kind: str, case: Case, draw: random.Random, steps: int) -> Claim:
