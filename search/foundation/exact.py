@@ -58,3 +58,15 @@ def power_root_above(x: Fraction, power: int, scale: int = 10**15) -> Fraction:
 def near(x: float, denominator: int = 10**9) -> Fraction:
     """The float as a rational with a denominator of at most the one given."""
     return Fraction(x).limit_denominator(denominator)
+
+
+def exponential_above(x: Fraction) -> Fraction:
+    """A rational little above e^x for x ≤ 0, by 1/e^−x with the series cut off from below."""
+    grain = 10**36
+    size = Fraction(int(-x * grain), grain)
+    total, term, n = Fraction(1), Fraction(1), 0
+    while term > Fraction(1, 10**24) or n < size:
+        n += 1
+        term = Fraction(int(term * size / n * grain), grain)
+        total += term
+    return 1 / total

@@ -14,6 +14,11 @@ the number of treatments with c plots; with prices θ and α on these the sum fa
 by pair and treatment by treatment. Treatments that never meet are counted apart from the others: of each
 such set a block holds at most one.
 
+Overall, `pdet C = (t/n) Π r_i Π (1 − x)` over the other eigenvalues x of M, since the principal minors of
+I − M add up to `pdet(C) n / (t Π r_i)`. With p₀ + p₁x + p₂x² below −log(1−x) on [0, 1),
+`−Σ log(1 − x) ≥ p₀(t−1) + p₁(tr M − 1) + p₂(tr M² − 1)`, where `tr M = Σ_B h_B/k_B` and
+`tr M² = Σ_B h_B²/k_B² + 2 Σ_{B<B'} X²/(k k')`: a sum over treatments, blocks and pairs of the same form.
+
 Source. This project; the moments go back to Paterson 1983 for equal replications (from memory).
 """
 
@@ -30,11 +35,12 @@ import numpy as np
 from numpy.typing import NDArray
 
 from search.efficiency.bounds.lattice import lattice
-from search.efficiency.bounds.problem import Problem, bound_on_variance, text
+from search.efficiency.bounds.problem import Problem, bound_on_determinant, bound_on_variance, text
 from search.efficiency.bounds.program import Program
+from search.efficiency.bounds.spectral.below import Cost, stays_below
 from search.efficiency.bounds.sums import Sums
 from search.efficiency.records import Bound
-from search.foundation.exact import near
+from search.foundation.exact import exponential_above, near
 from search.trial.limits import cliques
 from search.trial.records import AimKind, Trial
 from search.trial.tables import Ints
@@ -54,8 +60,11 @@ PLACES = 9
 
 def applies(trial: Trial) -> bool:
     """Whether all pairs count alike and nothing may stand twice in a block."""
-    return trial.aim.kind is AimKind.ALL_PAIRS and not trial.rules.twice_in_block
+    return trial.aim.kind.treats_pairs_alike and not trial.rules.twice_in_block
 
+
+HAIR = Fraction(1, 10**9)
+"""By how much a parabola stays below the curve that it touches."""
 
 Class = tuple[int, int]
 """Part that a treatment plays (0, or the number of a kind of apart sets), and how many plots it has."""
@@ -108,8 +117,104 @@ class _Prices:
     sums: list[Fraction]
 
 
+@dataclass(frozen=True, slots=True)
+class Variance:
+    """What treatments, blocks and pairs of blocks add to tr C⁺, at x₀ = `place`.
+
+    Parameters
+    ----------
+    place : x₀
+    t : treatments
+    """
+
+    place: Fraction
+    t: int
+
+    constant = Fraction(0)
+
+    @property
+    def coefficients(self) -> tuple[Fraction, Fraction, Fraction]:
+        """c₁, c₂ and κ."""
+        q = 1 / (1 - self.place) ** 2
+        return q * (1 - 2 * self.place), q, 2 / (1 - self.place)
+
+    def of_treatment(self, r: int) -> Fraction:
+        """A treatment with r plots."""
+        return (1 - Fraction(1, self.t)) / r
+
+    def of_block(self, h: Any, g: Any, size: int) -> Any:
+        """A block, by its sums of 1/r and of 1/r²."""
+        c1, c2, kappa = self.coefficients
+        one, two, lost = c1 / size, c2 / size**2, kappa / (self.t * size)
+        return _times(one, g) + _times(two, h) * g - _times(lost, h) * h
+
+    def of_pair(self, h: Any, g: Any, one: int, other: int) -> Any:
+        """Two blocks, by the sums over what they share."""
+        return _times(2 * self.coefficients[1] / (one * other), h) * g
+
+    def multipliers(self) -> dict[str, Any]:
+        """As they stand in a certificate."""
+        return {"place": text(self.place)}
+
+
+@dataclass(frozen=True, slots=True)
+class Logarithm:
+    """What treatments, blocks and pairs of blocks add to `−log pdet C + log(t/n) + t log(most)`.
+
+    Parameters
+    ----------
+    polynomial : p₀, p₁, p₂, below −log(1 − x)
+    t, most : treatments, and the most plots that any of them can have
+    """
+
+    polynomial: tuple[Fraction, Fraction, Fraction]
+    t: int
+    most: int
+
+    @classmethod
+    def at(cls, place: float, t: int, most: int) -> Logarithm:
+        """The parabola through 0 that touches at the place, a hair lower."""
+        place = max(place, 0.01)
+        height, slope = -np.log1p(-place), 1 / (1 - place)
+        p2 = (slope - height / place) / place
+        p1 = height / place - p2 * place
+        return cls((-HAIR, near(float(p1)) - HAIR, near(float(p2)) - HAIR), t, most)
+
+    @property
+    def constant(self) -> Fraction:
+        """What is left of the eigenvalue 1."""
+        p0, p1, p2 = self.polynomial
+        return p0 * (self.t - 1) - p1 - p2
+
+    def of_treatment(self, r: int) -> Fraction:
+        """log(most/r) from below, by the first terms of 2 artanh z, z = (most − r)/(most + r)."""
+        z = Fraction(self.most - r, self.most + r)
+        total = 2 * sum((z**n / n for n in range(1, 42, 2)), Fraction(0))
+        return Fraction(int(total * 10**24), 10**24)
+
+    def of_block(self, h: Any, g: Any, size: int) -> Any:
+        """A block, by its sum of 1/r."""
+        return _times(self.polynomial[1] / size, h) + _times(self.polynomial[2] / size**2, h) * h
+
+    def of_pair(self, h: Any, g: Any, one: int, other: int) -> Any:
+        """Two blocks, by the sum over what they share."""
+        return _times(2 * self.polynomial[2] / (one * other), h) * h
+
+    def multipliers(self) -> dict[str, Any]:
+        """As they stand in a certificate."""
+        return {"polynomial": [text(c) for c in self.polynomial]}
+
+
+def _times(c: Fraction, x: Any) -> Any:
+    """A product, in floats where x is an array of them."""
+    return (float(c) if isinstance(x, np.ndarray) else c) * x
+
+
+Form = Variance | Logarithm
+
+
 def find(given: Problem) -> Bound | None:
-    """The bound at the best x₀ that is found; None where there is too much to choose from."""
+    """The bound at the best place that is found; None where there is too much to choose from."""
     layout = _layout(given)
     if layout is None:
         return None
@@ -117,26 +222,38 @@ def find(given: Problem) -> Bound | None:
     low, high = 0.0, 0.9
     for _ in range(2):
         for place in np.linspace(low, high, PLACES).tolist():
-            found = _prices(layout, place)
+            found = _prices(layout, _form(given, place))
             if found is not None and found[0] > best[0]:
                 best = found[0], place, found[1]
         step = (high - low) / (PLACES - 1)
         low, high = max(0.0, best[1] - step), min(0.95, best[1] + step)
     if best[2] is None:
         return None
-    place, prices = near(best[1], 10**6), best[2]
-    least = _least(layout, place, prices)
-    if least <= 0:
-        return None
+    form, prices = _form(given, best[1]), best[2]
+    least = _least(layout, form, prices)
     multipliers = {
-        "place": text(place),
+        **form.multipliers(),
         "parts": [
             {"apart": [{"treatments": list(members)} for members in sets], **_by_plots(layout, part, prices)}
             for part, sets in enumerate(layout.parts)
         ],
         "sums": layout.sums.multipliers(prices.sums),
     }
-    return bound_on_variance(given, NAME, 2 * least / given.m, multipliers)
+    if least <= 0:
+        return None
+    if isinstance(form, Variance):
+        return bound_on_variance(given, NAME, 2 * least / given.m, multipliers)
+    piece = Fraction(0), Fraction(1), Fraction(0)
+    if not stays_below(form.polynomial, Cost.LOGARITHM, [piece]):
+        return None
+    greatest = exponential_above(-least) * Fraction(given.trial.t, given.trial.n) * form.most**form.t
+    return bound_on_determinant(given, NAME, greatest, multipliers)
+
+
+def _form(given: Problem, place: float) -> Form:
+    if given.trial.aim.kind is AimKind.OVERALL:
+        return Logarithm.at(place, given.trial.t, given.cap)
+    return Variance(near(place, 10**6), given.trial.t)
 
 
 def _by_plots(layout: _Layout, part: int, prices: _Prices) -> dict[str, Any]:
@@ -199,15 +316,8 @@ def _parts(apart: Any, ranges: list[tuple[int, int]]) -> list[list[tuple[int, ..
     return [[], *kinds.values()]
 
 
-def _coefficients(place: Fraction) -> tuple[Fraction, Fraction, Fraction]:
-    """c₁, c₂ and κ at x₀."""
-    q = 1 / (1 - place) ** 2
-    return q * (1 - 2 * place), q, 2 / (1 - place)
-
-
-def _prices(layout: _Layout, place: float) -> tuple[float, _Prices] | None:
-    """The value of the linear program at x₀, and its prices."""
-    c1, c2, kappa = (float(c) for c in _coefficients(Fraction(place)))
+def _prices(layout: _Layout, form: Form) -> tuple[float, _Prices] | None:
+    """The value of the linear program, and its prices."""
     classes = layout.plots
     program = Program()
     layout.sums.add_rows(program)
@@ -220,7 +330,7 @@ def _prices(layout: _Layout, place: float) -> tuple[float, _Prices] | None:
         program.equal(("kind", kind), number)
         for r in range(least, most + 1):
             entries = {("kind", kind): 1, ("plots", (part, r)): -r, **layout.sums.entries(memberships, r)}
-            program.add([(1 - 1 / layout.t) / r], entries)
+            program.add([float(form.of_treatment(r))], entries)
     for size, number in layout.sizes.items():
         y = layout.held[size].astype(float)
         h, g = y @ (1 / classes), y @ (1 / classes**2)
@@ -229,7 +339,7 @@ def _prices(layout: _Layout, place: float) -> tuple[float, _Prices] | None:
         for at, c in enumerate(layout.classes):
             rows["plots", c] = y[:, at]
             rows["meets", size, c] = -(c[1] - 1) * y[:, at]
-        program.add(c1 * g / size + c2 * h * g / size**2 - kappa * h * h / layout.t / size, rows)
+        program.add(form.of_block(h, g, size), rows)
     for one, other, count in layout.block_pairs():
         x = layout.shared[one, other].astype(float)
         program.equal(("pair", one, other), count)
@@ -238,33 +348,31 @@ def _prices(layout: _Layout, place: float) -> tuple[float, _Prices] | None:
             rows["meets", one, c] = x[:, at] * (2 if one == other else 1)
             if one != other:
                 rows["meets", other, c] = x[:, at]
-        cost = 2 * c2 * (x @ (1 / classes)) * (x @ (1 / classes**2)) / (one * other)
-        program.add(cost, rows)
+        program.add(form.of_pair(x @ (1 / classes), x @ (1 / classes**2), one, other), rows)
     found = program.solve()
     if found is None:
         return None
-    return found.cost, _Prices(
+    return found.cost + float(form.constant), _Prices(
         {size: [near(-found.prices["meets", size, c]) for c in layout.classes] for size in layout.sizes},
         [near(-found.prices["plots", c]) for c in layout.classes],
         [near(pi) for pi in layout.sums.values(found.prices)],
     )
 
 
-def _least(layout: _Layout, place: Fraction, prices: _Prices) -> Fraction:
+def _least(layout: _Layout, form: Form, prices: _Prices) -> Fraction:
     """The Lagrangian at the prices, exactly."""
-    c1, c2, kappa = _coefficients(place)
     plots = dict(zip(layout.classes, prices.plots, strict=True))
-    total = -layout.sums.constant(prices.sums)
+    total = form.constant - layout.sums.constant(prices.sums)
     for (part, least, most, memberships), number in layout.kinds.items():
         each = layout.sums.each(memberships, prices.sums)
         total += number * min(
-            (1 - Fraction(1, layout.t)) / r + (each - plots[part, r]) * r for r in range(least, most + 1)
+            form.of_treatment(r) + (each - plots[part, r]) * r for r in range(least, most + 1)
         )
     for size, number in layout.sizes.items():
         theta = prices.meets[size]
         costs = []
         for y, h, g in _weighed(layout, layout.held[size]):
-            cost = c1 * g / size + c2 * h * g / size**2 - kappa * h * h / (layout.t * size)
+            cost = form.of_block(h, g, size)
             for (_, r), many, alpha, price in zip(layout.classes, y, prices.plots, theta, strict=True):
                 cost += many * (alpha - (r - 1) * price)
             costs.append(cost)
@@ -272,7 +380,7 @@ def _least(layout: _Layout, place: Fraction, prices: _Prices) -> Fraction:
     for one, other, count in layout.block_pairs():
         theta = [a + b for a, b in zip(prices.meets[one], prices.meets[other], strict=True)]
         total += count * min(
-            2 * c2 * h * g / (one * other) + sum((p * m for p, m in zip(theta, x, strict=True)), Fraction(0))
+            form.of_pair(h, g, one, other) + sum((p * m for p, m in zip(theta, x, strict=True)), Fraction(0))
             for x, h, g in _weighed(layout, layout.shared[one, other])
         )
     return total

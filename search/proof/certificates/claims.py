@@ -44,3 +44,16 @@ def claim_of_spectrum(case: Case, best: Spectrum) -> Claim:
     if case.aim is AimKind.OVERALL:
         return claim_of_determinant(case, best.product)
     return claim_of_variance(case, 2 * best.sum_of_inverses / case.rank)
+
+
+def exponential_above(x: Fraction) -> Fraction:
+    """A number not below e^x; for x < 0 by the series of e^−x, all of whose terms are above 0."""
+    if x > 0:
+        return Fraction(3) ** (int(x) + 1)
+    grain = 10**40
+    power = Fraction(int(-x * grain), grain)
+    term = total = Fraction(1)
+    for n in range(1, 40 + 4 * int(power)):
+        term = Fraction(int(term * power / n * grain), grain)
+        total += term
+    return 1 / total

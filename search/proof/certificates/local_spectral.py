@@ -9,7 +9,12 @@ from itertools import pairwise
 from math import comb
 
 from search.proof.certificates.case import Case
-from search.proof.certificates.claims import Claim, claim_of_determinant, claim_of_variance
+from search.proof.certificates.claims import (
+    Claim,
+    claim_of_determinant,
+    claim_of_variance,
+    exponential_above,
+)
 from search.proof.certificates.multipliers import known
 from search.proof.certificates.spectral.cost import inverse_stays_above, logarithm_stays_above
 from search.proof.certificates.spectral.cycles import least_of_all_graphs
@@ -55,21 +60,8 @@ def derive(case: Case, multipliers: Part) -> Claim:
 
 def _claim(case: Case, numbers: Numbers, least: Fraction) -> Claim:
     if case.aim is AimKind.OVERALL:
-        return claim_of_determinant(case, _exponential_above(-least) * numbers.r**case.rank)
+        return claim_of_determinant(case, exponential_above(-least) * numbers.r**case.rank)
     return claim_of_variance(case, 2 * least / numbers.r / case.rank)
-
-
-def _exponential_above(x: Fraction) -> Fraction:
-    """A number not below e^x; for x < 0 by the series of e^−x, all of whose terms are above 0."""
-    if x > 0:
-        return Fraction(3) ** (int(x) + 1)
-    grain = 10**40
-    power = Fraction(int(-x * grain), grain)
-    term = total = Fraction(1)
-    for n in range(1, 40 + 4 * int(power)):
-        term = Fraction(int(term * power / n * grain), grain)
-        total += term
-    return 1 / total
 
 
 @dataclass(frozen=True, slots=True)

@@ -9,50 +9,118 @@ from fractions import Fraction
 from itertools import combinations_with_replacement
 
 from search.proof.certificates.case import Case
-from search.proof.certificates.claims import Claim, claim_of_variance
+from search.proof.certificates.claims import (
+    Claim,
+    claim_of_determinant,
+    claim_of_variance,
+    exponential_above,
+)
 from search.proof.certificates.multipliers import known, rows_of, sum_prices, treatments_of
-from search.proof.parts import Part
+from search.proof.certificates.spectral.cost import logarithm_stays_above
+from search.proof.parts import Part, ratio
 from search.proof.records import Refuted
 from search.trial.records import AimKind
 
-AIMS = (AimKind.ALL_PAIRS,)
+AIMS = (AimKind.ALL_PAIRS, AimKind.OVERALL)
 MOST_VECTORS = 20_000
+FINE = 10**40
 
 
 def derive(case: Case, multipliers: Part) -> Claim:
-    """tr C⁺ through p(x) = 1 + q(1−2x₀)x + qx², which 1/(1−x) exceeds by qx(x−x₀)²/(1−x).
+    """A function of M = R^−½ N K⁻¹ N' R^−½ from below by a parabola p of it.
 
-    With M = R^−½ N K⁻¹ N' R^−½: tr C⁺ ≥ tr R⁻¹p(M) − w'p(M)w/t, w = R^−½1, and p(M) ≼ I + κM there,
-    κ = p(1) − 1. All of it is a sum over treatments, blocks and pairs of blocks; prices on the numbers of
-    treatments by replication that blocks hold and share let each of them be as cheap as it can.
+    All of it is then a sum over treatments, blocks and pairs of blocks; prices on the numbers of treatments
+    by replication that blocks hold and share let each of them be as cheap as it can.
     """
     if not case.nothing_twice:
         raise Refuted("this kind of certificate is for trials in which nothing stands twice in a block")
+    if case.aim is AimKind.OVERALL:
+        return _overall(case, multipliers)
     known(multipliers, ("place", "parts", "sums"))
     place = multipliers.ratio("place")
     if not 0 <= place < 1:
         raise Refuted(f"{multipliers.at('place')} must lie from 0 to below 1")
-    return claim_of_variance(case, 2 * _trace_of_inverse(case, multipliers, place) / case.rank)
+    least = _least(case, multipliers, _Variance(case.trial.t, place))
+    return claim_of_variance(case, 2 * least / case.rank)
 
 
-def _trace_of_inverse(case: Case, multipliers: Part, place: Fraction) -> Fraction:
+def _overall(case: Case, multipliers: Part) -> Claim:
+    """pdet C = (t/n) Π r Π (1 − x), for the principal minors of I − M of t − 1 rows add up to Π (1 − x)."""
+    known(multipliers, ("polynomial", "parts", "sums"))
+    p = [ratio(multipliers.at("polynomial"), x) for x in multipliers.items("polynomial")]
+    if len(p) != 3 or not logarithm_stays_above(p, Fraction(0), Fraction(1), Fraction(0)):
+        raise Refuted(f"{multipliers.at('polynomial')} must have three numbers and stay below −log(1 − x)")
+    form = _Logarithm(max(case.most), p[1], p[2])
+    least = _least(case, multipliers, form) + p[0] * case.rank - p[1] - p[2]
+    greatest = exponential_above(-least) * form.most**case.trial.t
+    return claim_of_determinant(case, greatest * Fraction(case.trial.t, case.trial.n))
+
+
+@dataclass(frozen=True, slots=True)
+class _Variance:
+    """tr C⁺ through p(x) = 1 + q(1−2x₀)x + qx², which 1/(1−x) exceeds by qx(x−x₀)²/(1−x).
+
+    tr C⁺ ≥ tr R⁻¹p(M) − w'p(M)w/t, w = R^−½1, and p(M) ≼ I + κM there, κ = p(1) − 1.
+    """
+
+    t: int
+    place: Fraction
+
+    @property
+    def square(self) -> Fraction:
+        return 1 / (1 - self.place) ** 2
+
+    def treatment(self, r: int) -> Fraction:
+        return Fraction(self.t - 1, self.t * r)
+
+    def block(self, first: Fraction, second: Fraction, size: int) -> Fraction:
+        linear, over = self.square * (1 - 2 * self.place), 2 / (1 - self.place)
+        cost = linear * second / size + self.square * first * second / size**2
+        return cost - over * first**2 / (self.t * size)
+
+    def pair(self, first: Fraction, second: Fraction, one: int, other: int) -> Fraction:
+        return 2 * self.square * first * second / (one * other)
+
+
+@dataclass(frozen=True, slots=True)
+class _Logarithm:
+    """log(most/r) over treatments, and p₁ tr M + p₂ tr M²."""
+
+    most: int
+    linear: Fraction
+    square: Fraction
+
+    def treatment(self, r: int) -> Fraction:
+        # −log(1 − y) = y + y²/2 + ..., y = 1 − r/most, cut off from below
+        y, power, total = 1 - Fraction(r, self.most), Fraction(1), Fraction(0)
+        for n in range(1, 400):
+            power = Fraction(int(power * y * FINE), FINE)
+            total += power / n
+            if power == 0:
+                break
+        return Fraction(int(total * FINE), FINE)
+
+    def block(self, first: Fraction, second: Fraction, size: int) -> Fraction:
+        return self.linear * first / size + self.square * first**2 / size**2
+
+    def pair(self, first: Fraction, second: Fraction, one: int, other: int) -> Fraction:
+        return 2 * self.square * first**2 / (one * other)
+
+
+def _least(case: Case, multipliers: Part, form: _Variance | _Logarithm) -> Fraction:
     parts = _Parts.of(case, multipliers)
-    square = 1 / (1 - place) ** 2
-    linear, over = square * (1 - 2 * place), 2 / (1 - place)
-    t, numbers = case.trial.t, Counter(int(size) for size in case.rules.sizes)
+    numbers = Counter(int(size) for size in case.rules.sizes)
     each, total = sum_prices(multipliers, case)
     least = -total
     for i, part in enumerate(parts.of_treatment):
         low, high = max(1, case.least[i]), case.most[i]
         if low > high:
             raise Refuted("the rules leave a treatment no number of plots")
-        least += min(
-            Fraction(t - 1, t * r) + (each[i] - parts.plots[part, r]) * r for r in range(low, high + 1)
-        )
+        least += min(form.treatment(r) + (each[i] - parts.plots[part, r]) * r for r in range(low, high + 1))
     for size, number in numbers.items():
         costs = []
         for held, first, second in parts.vectors(size, size):
-            cost = linear * second / size + square * first * second / size**2 - over * first**2 / (t * size)
+            cost = form.block(first, second, size)
             for c, many in held.items():
                 cost += many * (parts.plots[c] - (c[1] - 1) * parts.meets[size][c])
             costs.append(cost)
@@ -62,7 +130,7 @@ def _trace_of_inverse(case: Case, multipliers: Part, place: Fraction) -> Fractio
         if pairs:
             costs = []
             for shared, first, second in parts.vectors(0, min(one, other)):
-                cost = 2 * square * first * second / (one * other)
+                cost = form.pair(first, second, one, other)
                 for c, many in shared.items():
                     cost += many * (parts.meets[one][c] + parts.meets[other][c])
                 costs.append(cost)

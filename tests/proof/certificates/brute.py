@@ -61,6 +61,10 @@ def efficiency_of(claim: Claim) -> float:
     return float(claim.ratio) ** (1 / claim.power)
 
 
+BELOW_THE_LOGARITHM = [["0", "9/10", "1/2"], ["0", "1", "1/2"], ["-1/50", "11/10", "1/2"], ["-1", "1", "1"]]
+"""Coefficients of parabolas below −log(1 − x), from its series or near it."""
+
+
 def any_multipliers(kind: str, case: Case, draw: random.Random) -> dict[str, Any]:
     """Multipliers of the right form and of any value, some missing."""
 
@@ -107,7 +111,10 @@ def any_multipliers(kind: str, case: Case, draw: random.Random) -> dict[str, Any
             }
         case "normalised moment":
             place = Fraction(draw.randint(0, 12), 20)
-            return {"place": str(place), "parts": _parts(case, draw, sizes, price), "sums": sums}
+            found = {"parts": _parts(case, draw, sizes, price), "sums": sums}
+            if case.aim is AimKind.OVERALL:
+                return found | {"polynomial": draw.choice(BELOW_THE_LOGARITHM)}
+            return found | {"place": str(place)}
         case "averaged information":
             return _any_tangent(case, draw, price)
         case "second moment against controls":

@@ -14,7 +14,8 @@ import pytest
 
 from search.efficiency.bounds.problem import problem
 from search.efficiency.bounds.spectral import local
-from search.proof.certificates.local_spectral import _exponential_above, _side, derive
+from search.proof.certificates.claims import exponential_above
+from search.proof.certificates.local_spectral import _side, derive
 from search.proof.certificates.spectral.cycles import _determinant, _graphs, _inverses
 from search.proof.certificates.spectral.numbers import Numbers, Side, pairs_of_sides
 from search.proof.certificates.spectral.walks import SHORTEST, families
@@ -224,7 +225,7 @@ def test_a_trial_of_another_kind_is_refused() -> None:
 @pytest.mark.parametrize("x", [Fraction(0), Fraction(-1, 3), Fraction(-7), Fraction(-29)])
 def test_exponential_from_above(x: Fraction) -> None:
     """e^x for x ≤ 0, rounded up by little."""
-    above = _exponential_above(x)
+    above = exponential_above(x)
     assert np.exp(float(x)) * (1 - 1e-15) <= float(above) <= np.exp(float(x)) * (1 + 1e-12)
 
 

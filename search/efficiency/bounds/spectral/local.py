@@ -31,6 +31,7 @@ from search.efficiency.bounds.spectral.leaf import Leaf, solved
 from search.efficiency.bounds.spectral.model import Model
 from search.efficiency.bounds.spectral.side import Shape, Side, shape_of, steps_of, variants
 from search.efficiency.records import Bound
+from search.foundation.exact import exponential_above
 from search.trial.records import AimKind, Trial
 
 NAME = "local spectral"
@@ -78,7 +79,7 @@ def _bound(given: Problem, argument: str, steps: int) -> Bound | None:
     if least <= 0:
         return None
     if given.trial.aim.kind is AimKind.OVERALL:
-        greatest = _exponential_above(-least) * shape.r**shape.rank
+        greatest = exponential_above(-least) * shape.r**shape.rank
         return bound_on_determinant(given, argument, greatest, multipliers, kind=NAME)
     variance = 2 * least / shape.r / shape.rank
     return bound_on_variance(given, argument, variance, multipliers, kind=NAME)
@@ -86,18 +87,6 @@ def _bound(given: Problem, argument: str, steps: int) -> Bound | None:
 
 def _cost(given: Problem) -> Cost:
     return Cost.LOGARITHM if given.trial.aim.kind is AimKind.OVERALL else Cost.INVERSE
-
-
-def _exponential_above(x: Fraction) -> Fraction:
-    """A rational little above e^x for x ≤ 0, by 1/e^−x with the series cut off from below."""
-    grain = 10**36
-    size = Fraction(int(-x * grain), grain)
-    total, term, n = Fraction(1), Fraction(1), 0
-    while term > Fraction(1, 10**24) or n < size:
-        n += 1
-        term = Fraction(int(term * size / n * grain), grain)
-        total += term
-    return 1 / total
 
 
 @dataclass(slots=True)
