@@ -124,7 +124,7 @@ def test_no_number_can_be_tampered_with(kind: AimKind) -> None:
                 assert float(claim.ratio) ** (1 / claim.power) > bound.value * (1 - 1e-3)
                 told += not claim.supports(bound.exact)
             holder[path[-1]] = held
-    assert told > 4
+    assert told > 2
 
 
 @pytest.mark.parametrize("kind", [AimKind.ALL_PAIRS, AimKind.OVERALL])

@@ -10,6 +10,7 @@ of members has the entry −1 or 2. Further away only bounds on the entries are 
 
 from __future__ import annotations
 
+from collections import Counter
 from dataclasses import dataclass, replace
 
 from search.efficiency.bounds.problem import Problem
@@ -30,6 +31,7 @@ class Shape:
     ----------
     t, b, r, k : treatments, blocks, plots of a treatment, plots of a block
     sets : replicates into which all blocks fall, 1 where they need not
+    apart : with how many others each treatment never shares a block; empty where all may meet
     """
 
     t: int
@@ -37,6 +39,7 @@ class Shape:
     r: int
     k: int
     sets: int
+    apart: tuple[int, ...] = ()
 
     @property
     def rank(self) -> int:
@@ -137,6 +140,7 @@ class Half:
     own : entry on the diagonal of NN' or N'N (lines through a member)
     line : members of a line
     sets : sets of members that never meet, all of one size; 1 where there are none
+    apart : with how many others each member never meets besides, empty where that is not told
     """
 
     name: str
@@ -144,6 +148,7 @@ class Half:
     own: int
     line: int
     sets: int
+    apart: tuple[int, ...] = ()
 
     @property
     def set_size(self) -> int:
@@ -182,12 +187,24 @@ class Half:
         # where sets never meet, taking the base out changes nothing but differences between sets
         return -self.own if self.sets > 1 else self.base - self.own
 
+    @property
+    def far(self) -> int:
+        """Ordered pairs that never meet though pairs would if meetings were even."""
+        return sum(self.apart) if self.base else 0
+
+    @property
+    def least_steps(self) -> int:
+        """Steps from even that those pairs take: each has the entry m = −base, and m (m − 1) twice over."""
+        return self.far * self.base * (self.base + 1) // 4
+
     def variants(self, level: int, exactly: bool) -> list[Side]:
         """The side where the meetings are `level` steps from even, exactly or at least."""
         if exactly and level == 0:
             return [self._even()]
         if exactly and level == 1 and self.sets == 1:
-            return [self._odd(m) for m in ODD_ENTRIES if 0 <= self.base + m <= self.own]
+            # a pair that never meets is the odd one
+            odd = ODD_ENTRIES[:1] if self.far else ODD_ENTRIES
+            return [self._odd(m) for m in odd if 0 <= self.base + m <= self.own]
         return [self._any(level, exactly)]
 
     def _even(self) -> Side:
@@ -213,7 +230,7 @@ class Half:
         return self._side(pairs, diagonals, walks, 4)
 
     def _any(self, level: int, exactly: bool) -> Side:
-        d, total, size = self.degree, self.total, self.size
+        total, size = self.total, self.size
         entries = range(-self.base, self.own - self.base + 1)
         ends = {m: (self._walks_above(m), total**2 - self._shift(m)) for m in entries}
         within = -self._shift_within(), total**2 - self._shift_within()
@@ -223,11 +240,33 @@ class Half:
             # M has no entry below 0, so that it is a graph with several edges between two
             walks.append(self._graph())
         if exactly and self.sets == 1:
-            walks += [
-                replace(family, least=_least_triangles(family.lines, level)) for family in self._both(walks)
-            ]
+            walks += [self._bounded(family, level) for family in self._both(walks)]
         relations = self._relations(_possible(ends), within)
-        return self._side(relations, ((size, d, most),), tuple(walks), 4 * level, exactly)
+        if self.far:
+            never = _possible({-self.base: ends[-self.base]})
+            relations = Pairs(self.far, never), Pairs(size * self.others - self.far, _possible(ends))
+        return self._side(relations, self._diagonals(most), tuple(walks), 4 * level, exactly)
+
+    def _diagonals(self, most: int) -> tuple[tuple[int, int, int], ...]:
+        """By the partners that a member never meets: each adds base (base + 1) to what Σ m² is at least."""
+        if not self.far:
+            return ((self.size, self.degree, most),)
+        each = self.base * (self.base + 1)
+        numbers = sorted(Counter(self.apart).items())
+        return tuple((count, self.degree + partners * each, most) for partners, count in numbers)
+
+    def _bounded(self, family: Walks, level: int) -> Walks:
+        """A family of walks of which no more than the least number of triangles is known."""
+        spare, most = level - self.least_steps, max(self.apart, default=0) if self.far else 0
+        if family.name == "graph":
+            known = self.far * self.base, self.base * most, self.base**2 * most
+        elif self.far and spare == 0:
+            # pairs that never meet stand more than once in what M leaves out, and nothing else is odd
+            return family
+        else:
+            known = 0, self.base * (self.base + 1) * most, 0
+        least = max(_least_triangles(family.lines, level), _least_near(family.lines, spare, *known))
+        return replace(family, least=least)
 
     def _both(self, walks: list[Walks]) -> list[Walks]:
         """The graph and the one of all other pairs, as far as they are not among the walks."""
@@ -333,6 +372,20 @@ def _least_triangles(d: int, steps: int) -> int:
     return -6 * steps * (d + 2 * steps) - 2 * steps**2
 
 
+def _least_near(d: int, steps: int, known: int, more: int, squares: int) -> int:
+    """The same where entries below 0 come to `known` in pairs that are told, and else to `steps`.
+
+    Parameters
+    ----------
+    d, steps : degree, and steps that are left for all other pairs
+    known : the sum of what the told entries are below 0, over ordered pairs
+    more : what those pairs add to the squares of the other entries in a row, at most
+    squares : what they add to the squares of the entries below 0 in a row, at most
+    """
+    below = known + 2 * steps
+    return -3 * below * (d + more + 2 * steps) - below * (squares + 2 * steps)
+
+
 def _possible(ends: Ends) -> Ends:
     return {m: (low, high) for m, (low, high) in ends.items() if low <= high}
 
@@ -347,13 +400,14 @@ def shape_of(given: Problem) -> Shape | None:
     whole = bool((rules.group >= 0).all() and rules.share.size and (rules.share == 1).all())
     if r < 2 or not 2 <= k < rules.t:
         return None
-    return Shape(rules.t, rules.b, r, k, rules.share.shape[1] if whole else 1)
+    apart = tuple(sorted(rules.apart.sum(axis=1).tolist())) if rules.apart.any() else ()
+    return Shape(rules.t, rules.b, r, k, rules.share.shape[1] if whole else 1, apart)
 
 
 def halves(shape: Shape) -> tuple[Half, Half]:
     """Treatments and blocks."""
     return (
-        Half("primal", shape.t, shape.r, shape.k, 1),
+        Half("primal", shape.t, shape.r, shape.k, 1, shape.apart),
         Half("dual", shape.b, shape.k, shape.r, shape.sets),
     )
 
@@ -362,11 +416,11 @@ def steps_of(shape: Shape, number: int) -> tuple[int, int] | None:
     """Steps from even of treatments and of blocks at the level with this number.
 
     Treatments and blocks have the same eigenvalues, so their levels go together: each step adds 4 to
-    `tr (NN')² = tr (N'N)²`, and the first is where one of them is even.
+    `tr (NN')² = tr (N'N)²`, and the first is where one of them is even, or pairs that never meet let it be.
     """
     primal, dual = halves(shape)
     ahead, odd = divmod(primal.least_squares - dual.least_squares, 4)
-    level = number + max(0, -ahead)
+    level = number + max(primal.least_steps, -ahead)
     return None if odd else (level, level + ahead)
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Iterator
 from dataclasses import dataclass
 
@@ -30,7 +31,10 @@ def places(side: Side) -> Iterator[Places]:
     if side.form == ODD:
         yield from _places_around_odd(side)
     elif side.sets == 1:
-        yield Places(v * (v - 1), _ranges(side), 0)
+        never, ranges = sum(side.apart), _ranges(side)
+        if never:
+            yield Places(never, {m: ends for m, ends in ranges.items() if m == -side.base}, 0)
+        yield Places(v * (v - 1) - never, ranges, 0)
     else:
         yield Places(v * (side.alone - 1), {0: _range_in_set(side)}, 0)
         yield Places(v * (v - side.alone), _ranges(side), 1)
@@ -58,6 +62,13 @@ def diagonals(side: Side) -> list[tuple[int, int, int]]:
         return [(v - 2, d, d), (2, d + 2, d + 2)]
     # Σ m² = Σ a² − 2 base Σ a + base² others, and a ≤ lines
     others = v - side.alone
+    if side.apart:
+        # Σ m = d, and Σ m(m−1) is at least base(base + 1) for each partner that is never met
+        most = side.lines * side.meets - 2 * side.base * side.meets + others * side.base**2
+        each = side.base * (side.base + 1)
+        return [
+            (number, d + partners * each, most) for partners, number in sorted(Counter(side.apart).items())
+        ]
     return [(v, d, side.lines * side.meets - 2 * side.base * side.meets + others * side.base**2)]
 
 

@@ -7,7 +7,7 @@ a member may meet. The level is `Σ m(m−1)/4` over ordered pairs, the steps fr
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from search.proof.certificates.case import Case
 from search.proof.records import Refuted
@@ -17,13 +17,17 @@ EVEN, ODD, ANY = "even", "odd", "any"
 
 @dataclass(frozen=True, slots=True)
 class Numbers:
-    """t treatments and b blocks, r plots of each treatment and k of each block, in `sets` replicates."""
+    """t treatments and b blocks, r plots of each treatment and k of each block, in `sets` replicates.
+
+    `apart` says of each treatment with how many others it never shares a block; empty where all may meet.
+    """
 
     t: int
     b: int
     r: int
     k: int
     sets: int
+    apart: tuple[int, ...] = ()
 
     @property
     def kernel(self) -> int:
@@ -41,7 +45,9 @@ def numbers_of(case: Case) -> Numbers:
     if r < 2 or not 2 <= k < case.trial.t:
         raise Refuted("this kind of certificate is for incomplete blocks of two plots or more")
     in_replicates = (rules.group >= 0).all() and (rules.share == 1).all() and rules.share.shape[1] > 0
-    return Numbers(case.trial.t, rules.b, r, k, rules.share.shape[1] if in_replicates else 1)
+    partners = [sum(bool(x) for x in row) for row in rules.apart]
+    apart = tuple(partners) if any(partners) else ()
+    return Numbers(case.trial.t, rules.b, r, k, rules.share.shape[1] if in_replicates else 1, apart)
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,6 +61,7 @@ class Side:
     level : steps from even, exactly or at least
     exactly : which of them
     odd : at level 1 exactly and without sets, the one entry of M that is not 0 or 1; else None
+    apart : of each member, with how many others it has the entry −base below 0; empty where that is not told
     """
 
     members: int
@@ -64,6 +71,7 @@ class Side:
     level: int
     exactly: bool
     odd: int | None = None
+    apart: tuple[int, ...] = ()
 
     @property
     def form(self) -> str:
@@ -71,6 +79,11 @@ class Side:
         if self.exactly and self.level == 0:
             return EVEN
         return ANY if self.odd is None else ODD
+
+    @property
+    def taken(self) -> int:
+        """Steps from even that the pairs which never meet take for themselves."""
+        return sum(self.apart) * self.base * (self.base + 1) // 4
 
     @property
     def alone(self) -> int:
@@ -125,14 +138,19 @@ class Side:
 def pairs_of_sides(numbers: Numbers, number: int, exactly: bool) -> list[tuple[Side, Side]]:
     """Both sides at the level with this number, in every form, in the order of the certificate.
 
-    tr(NN')² = tr(N'N)² ties the levels: each step is worth 4 on either side.
+    tr(NN')² = tr(N'N)² ties the levels: each step is worth 4 on either side. Where pairs would meet `base`
+    times at the evenest, a pair that never meets adds 2·base(base + 1) to Σ m(m−1), base(base + 1)/2 steps.
     """
     primal = Side(numbers.t, numbers.r, numbers.k, 1, 0, True)
+    pairs, base = sum(numbers.apart) // 2, primal.base
+    below = pairs * base * (base + 1) // 2
+    if below:
+        primal = replace(primal, apart=numbers.apart)
     dual = Side(numbers.b, numbers.k, numbers.r, numbers.sets, 0, True)
     ahead = primal.least_squares - dual.least_squares
     if ahead % 4:
         raise Refuted("no plan of the trial has equal traces on both sides")
-    level = max(number, number - ahead // 4)
+    level = number + max(0, below, -(ahead // 4))
     return [
         (one, other)
         for one in _forms(primal, level, exactly)
@@ -143,6 +161,7 @@ def pairs_of_sides(numbers: Numbers, number: int, exactly: bool) -> list[tuple[S
 def _forms(side: Side, level: int, exactly: bool) -> list[Side]:
     make = (side.members, side.lines, side.points, side.sets, level, exactly)
     if exactly and level == 1 and side.sets == 1:
-        # Σ m(m−1) = 4 over ordered pairs: one pair has the entry −1 or 2.
-        return [Side(*make, odd) for odd in (-1, 2) if 0 <= side.base + odd <= side.lines]
-    return [Side(*make)]
+        # Σ m(m−1) = 4 over ordered pairs: one pair has the entry −1 or 2; −1 if it is one that never meets.
+        possible = (-1,) if side.apart else (-1, 2)
+        return [Side(*make, odd) for odd in possible if 0 <= side.base + odd <= side.lines]
+    return [Side(*make, apart=side.apart)]

@@ -44,11 +44,22 @@ def families(side: Side) -> dict[str, Family]:
         at_zero = -side.at_zero if side.sets > 1 else -1 - side.at_zero
         found["other"] = Family(rest, 2, at_zero, -1, side.known(rest))
     if side.form == ANY and side.exactly and side.sets == 1:
+        far, base, spare = sum(side.apart), side.base, side.level - side.taken
+        partners = max(side.apart, default=0)
         if "graph" not in found:
-            triangles = _fewest_triangles(side.d, side.level)
+            triangles = max(
+                _fewest_triangles(side.d, side.level),
+                # −base stands at the pairs that never meet; other entries of such a row square to base more
+                _fewest_beside(side.d + base * partners, base * far, base**2 * partners, spare),
+            )
             found["graph"] = Family(side.d, 2, side.at_zero, 1, side.known(side.d), SHORTEST, triangles)
-        triangles = _fewest_triangles(rest, side.level)
-        found["other"] = Family(rest, 2, -1 - side.at_zero, -1, side.known(rest), SHORTEST, triangles)
+        triangles = max(
+            _fewest_triangles(rest, side.level),
+            # here they have the entry 1 + base above 0, and only what is spare can be below
+            _fewest_beside(rest + base * (base + 1) * partners, 0, 0, spare),
+        )
+        longest = LONGEST if far and spare == 0 else SHORTEST
+        found["other"] = Family(rest, 2, -1 - side.at_zero, -1, side.known(rest), longest, triangles)
     return {name: family for name, family in found.items() if family.lines > 1}
 
 
@@ -59,6 +70,16 @@ def _fewest_triangles(d: int, level: int) -> int:
     P² has no entry above the greatest Σ_j m_ij² ≤ d + 2·level, and Q² none off its diagonal above the level.
     """
     return -6 * level * (d + 2 * level) - 2 * level**2
+
+
+def _fewest_beside(squares: int, told: int, told_squares: int, spare: int) -> int:
+    """The same where entries below 0 are those of told pairs, and no more than `spare` steps' besides.
+
+    With M = P − Q as before: Q sums to told + 2·spare, a row of P squares to at most squares + 2·spare, one of
+    Q to at most told_squares + 2·spare; and (Q²)_ij is not above the greatest of those of Q.
+    """
+    below = told + 2 * spare
+    return -3 * below * (squares + 2 * spare) - below * (told_squares + 2 * spare)
 
 
 def coefficients(family: Family, length: int) -> list[int]:
