@@ -4,20 +4,23 @@ from __future__ import annotations
 
 import csv
 import random
+from dataclasses import replace
 from fractions import Fraction
 from pathlib import Path
 
 import numpy as np
 import pytest
 
+from search.api import plan
+from search.efficiency.bounds import all_bounds
 from search.efficiency.bounds.problem import problem
 from search.efficiency.bounds.spectral import local
 from search.efficiency.bounds.spectral.below import Cost, stays_below
-from search.efficiency.bounds.spectral.side import Shape, shape_of, variants
+from search.efficiency.bounds.spectral.side import Shape, halves, shape_of, variants
 from search.efficiency.bounds.spectral.walks import walk_polynomial
 from search.efficiency.evaluator import score
 from search.trial.limits import limits
-from search.trial.records import Trial
+from search.trial.records import Rules, Trial
 from search.trial.tables import incidence
 from tests.efficiency.plans import (
     FANO,
@@ -107,6 +110,26 @@ def test_forms_of_a_level() -> None:
     dual_of_plane = Shape(9, 12, 4, 3, 1)
     assert variants(dual_of_plane, 0, True) is not None
     assert len(affine_plane(3)) == 12
+
+
+@pytest.mark.parametrize(
+    ("t", "b", "k", "pairs", "steps"), [(7, 14, 3, 2, 6), (9, 15, 3, 3, 3), (8, 10, 4, 1, 3)]
+)
+def test_credit_for_pairs_that_never_meet(t: int, b: int, k: int, pairs: int, steps: int) -> None:
+    """Pairs that never meet where meetings would be 2, 1 and 2 at the evenest take steps: 3 or 1 each."""
+    free = equal_trial(t, b, k)
+    never = tuple((2 * n, 2 * n + 1) for n in range(pairs))
+    tied = replace(free, rules=Rules(never_share_block=never))
+    start = problem(tied, limits(tied))
+    assert start is not None
+    shape = shape_of(start)
+    assert shape is not None
+    assert halves(shape)[0].least_steps == steps
+    bound = _bound(tied)
+    assert bound < _bound(free) * (1 - 1e-4)
+    others = [one.value for one in all_bounds(tied, limits(tied), lambda seconds: seconds < 0.5)]
+    assert bound <= min(others) * (1 + 1e-3)
+    assert plan(tied, moves=20_000, workers=1).score.aim <= bound + 1e-12
 
 
 @pytest.mark.parametrize("cost", list(Cost))

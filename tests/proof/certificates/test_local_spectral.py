@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import random
 from contextlib import suppress
+from dataclasses import replace
 from fractions import Fraction
 from math import isqrt
 from typing import Any
@@ -22,10 +23,14 @@ from search.proof.certificates.spectral.walks import SHORTEST, families
 from search.proof.parts import Part
 from search.proof.records import Refuted
 from search.trial.records import Contents, Trial
+from search.trial.tables import incidence
 from tests.efficiency.plans import ALL_PAIRS, FANO, OVERALL, equal_trial, square_lattice, trial_of
 from tests.equal_plans import SETS, SHAPES, eigenvalues, excess, random_plan, random_sets
 from tests.proof.certificates.brute import case_of, efficiency_of
 from tests.proof.test_fuzz import mutated
+
+MEETING = [(5, 10, 2), (6, 10, 3), (7, 14, 3), (6, 18, 2), (8, 10, 4), (9, 15, 3)]
+"""Shapes in which every pair would meet at least once, were meetings even."""
 
 
 def _prices(draw: random.Random, side: Side) -> Part:
@@ -104,6 +109,36 @@ def test_near_even_plans_keep_to_the_special_forms(shape: tuple[int, int, int]) 
     for contents in near[:24]:
         for side in _sides_of(contents, numbers):
             for _ in range(6):
+                _check_side(draw, contents, numbers, side)
+
+
+@pytest.mark.parametrize("seed", range(24))
+def test_pairs_that_never_meet_are_told_rightly(seed: int) -> None:
+    """Random plans in which some pairs happen not to meet, as if the rules said so, against random prices."""
+    draw = random.Random(seed)
+    while True:
+        t, b, k = draw.choice(MEETING)
+        contents, numbers = random_plan(draw, t, b, k), Numbers(t, b, b * k // t, k, 1)
+        counts = incidence(contents, t)
+        shared = counts @ counts.T
+        pairs = [(i, j) for i in range(t) for j in range(i) if not shared[i, j]]
+        if pairs:
+            break
+    told = draw.sample(pairs, draw.randint(1, len(pairs)))
+    apart = tuple(sum(i in pair for pair in told) for i in range(t))
+    numbers = replace(numbers, apart=apart)
+    primal, dual = excess(contents, t, False)[0], excess(contents, t, True)[0]
+    for exactly in (True, False):
+        fitting = [
+            one
+            for number in range(primal + 1)
+            for one, other in pairs_of_sides(numbers, number, exactly)
+            if (one.level, other.level) == (primal, dual) and one.odd in (None, -1)
+        ]
+        assert fitting
+        for side in fitting:
+            assert side.apart == apart or side.odd == -1
+            for _ in range(8):
                 _check_side(draw, contents, numbers, side)
 
 

@@ -73,7 +73,7 @@ def _fewest_triangles(d: int, level: int) -> int:
 
 
 def _fewest_beside(squares: int, told: int, told_squares: int, spare: int) -> int:
-    """The same where entries below 0 are those of told pairs, and no more than `spare` steps' besides.
+    """The same where entries below 0 are those of told pairs, and those of `spare` steps besides.
 
     With M = P − Q as before: Q sums to told + 2·spare, a row of P squares to at most squares + 2·spare, one of
     Q to at most told_squares + 2·spare; and (Q²)_ij is not above the greatest of those of Q.
