@@ -75,8 +75,8 @@ def _fewest_triangles(d: int, level: int) -> int:
 def _fewest_beside(squares: int, told: int, told_squares: int, spare: int) -> int:
     """The same where entries below 0 are those of told pairs, and those of `spare` steps besides.
 
-    With M = P − Q as before: Q sums to told + 2·spare, a row of P squares to at most squares + 2·spare, one of
-    Q to at most told_squares + 2·spare; and (Q²)_ij is not above the greatest of those of Q.
+    With M = P − Q as before: Q sums to told + 2·spare, a row of P squares to at most squares + 2·spare,
+    one of Q to at most told_squares + 2·spare; and (Q²)_ij is not above the greatest of those of Q.
     """
     below = told + 2 * spare
     return -3 * below * (squares + 2 * spare) - below * (told_squares + 2 * spare)
