@@ -1,8 +1,9 @@
 """How tight are the bounds under rules? 30 seeded trials: odd blocks, 3 to 4 plots, pairs apart, replicates.
 
-    nice python -m tests.measure.constrained_bounds results/bounds_constrained.csv [seconds]
+    nice python -m tests.measure.constrained_bounds results/bounds_constrained.csv [seconds [aim]]
 
-Plans are searched for here, so that a gap is that of plan and bound together.
+Plans are searched for here, so that a gap is that of plan and bound together. The aim is "all pairs", "overall",
+"against control" (of which the first treatment is one) or "contrasts" (five among the first six).
 """
 
 from __future__ import annotations
@@ -24,7 +25,7 @@ from search.trial.records import Trial
 NUMBER = 30
 
 
-def drawn(seed: int) -> Trial:
+def drawn(seed: int, aim: str = "all pairs") -> Trial:
     """A trial with rules; every third one is resolvable."""
     draw = random.Random(seed)
     names = [f"V{i:02d}" for i in range(draw.randint(10, 30))]
@@ -49,11 +50,21 @@ def drawn(seed: int) -> Trial:
         document["plots_each"] = [3, 4]
     if not pairs:
         del document["rules"]["never_share_block"]
-    document["treatments"] = names
+    document["treatments"] = {name: {} for name in names}
+    document["treatments"][names[0]]["control"] = True
+    a, b, c, d, e, f = names[:6]
+    contrasts: dict[str, Any] = {
+        "one": {"of": {a: 1, b: -1}},
+        "two": {"of": {c: 1, d: -1}, "weight": 2},
+        "three": {"of": {a: 1, b: 1, c: -1, d: -1}},
+        "four": {"of": {e: 2, a: -1, b: -1}},
+        "five": {"of": {f: 1, e: -1}},
+    }
+    document["aim"] = {"contrasts": contrasts} if aim == "contrasts" else aim
     return trial_from_document(document)
 
 
-def main(out: str, seconds: str = "5") -> None:
+def main(out: str, seconds: str = "5", aim: str = "all pairs") -> None:
     """Write one row for each trial."""
     with open(out, "w", encoding="utf-8", newline="") as file:
         table = csv.writer(file, lineterminator="\n")
@@ -63,7 +74,7 @@ def main(out: str, seconds: str = "5") -> None:
         seeds, written = count(), 0
         while written < NUMBER:
             seed = next(seeds)
-            trial = drawn(seed)
+            trial = drawn(seed, aim)
             try:
                 reached = plan(trial, seconds=float(seconds), workers=1).score.aim
             except Impossible:
