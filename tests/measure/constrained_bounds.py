@@ -2,8 +2,8 @@
 
     nice python -m tests.measure.constrained_bounds results/bounds_constrained.csv [seconds [aim]]
 
-Plans are searched for here, so that a gap is that of plan and bound together. The aim is "all pairs", "overall",
-"against control" (of which the first treatment is one) or "contrasts" (five among the first six).
+Plans are searched for here, so that a gap is that of plan and bound together. The aim is "all pairs",
+"overall", "against control" (the first treatment is the one) or "contrasts" (five among the first six).
 """
 
 from __future__ import annotations
@@ -50,8 +50,9 @@ def drawn(seed: int, aim: str = "all pairs") -> Trial:
         document["plots_each"] = [3, 4]
     if not pairs:
         del document["rules"]["never_share_block"]
-    document["treatments"] = {name: {} for name in names}
-    document["treatments"][names[0]]["control"] = True
+    document["treatments"] = {
+        name: {"control": aim == "against control" and name == names[0]} for name in names
+    }
     a, b, c, d, e, f = names[:6]
     contrasts: dict[str, Any] = {
         "one": {"of": {a: 1, b: -1}},
