@@ -72,6 +72,15 @@ def concurrences(contents: Contents, t: int) -> Ints:
     return counts @ counts.T
 
 
+def squared_meetings(contents: Contents, t: int) -> int:
+    """`Σ_{i<j} λ_ij²`, what the aim even meetings makes least.
+
+    A plot of i and a plot of j in one block are one meeting, so a block that holds i twice and j once
+    gives two; two plots of one treatment do not meet.
+    """
+    return int((np.triu(concurrences(contents, t), 1) ** 2).sum())
+
+
 def near_balance(trial: Trial, contents: Contents) -> NearBalance:
     """Whether the plan has the least `Σ_{i<j} λ_ij²` of all plans that the trial admits.
 
@@ -80,8 +89,7 @@ def near_balance(trial: Trial, contents: Contents) -> NearBalance:
     """
     rules = tables(trial)
     least = least_concurrence_squares(rules)
-    achieved = int((np.triu(concurrences(contents, trial.t), 1) ** 2).sum())
-    return NearBalance.YES if achieved == least else NearBalance.UNKNOWN
+    return NearBalance.YES if squared_meetings(contents, trial.t) == least else NearBalance.UNKNOWN
 
 
 def least_concurrence_squares(rules: Tables) -> int | None:
