@@ -49,7 +49,7 @@ class Plan:
 
     @property
     def gap_percent(self) -> float | None:
-        """How far the plan is from the bound; 0 for a balanced one, 100 where a disconnected one is worthless."""
+        """How far the plan is from the bound; 0 for a balanced one, 100 where its efficiency is 0."""
         if self.bound is None:
             return None
         if self.standing is Standing.BALANCED:

@@ -865,9 +865,9 @@ def _stays_near(copies, table, i, block):
 def _stays_connected(beds, admitted, planting, table, plot, partner, u, v, a, c):
     """Whether a legal move of a connected plan leaves it connected: O(1), where that is not plain O(n)."""
     copies = planting.copies
-    if _stays_near(copies, table, u, a) and copies[a, v] == 0:
-        if c < 0 or (copies[c, u] == 0 and _stays_near(copies, table, v, c)):
-            return True
+    near = _stays_near(copies, table, u, a) and copies[a, v] == 0
+    if near and (c < 0 or (copies[c, u] == 0 and _stays_near(copies, table, v, c))):
+        return True
     _plant(admitted, planting, plot, partner, u, v, a, c)
     parts = _parts(beds, planting, len(planting.plots))
     _plant(admitted, planting, plot, partner, v, u, a, c)
@@ -936,9 +936,9 @@ def anneal_ties(board, table, random, temperature, cooling, moves, tries, most_a
             listed += 1
         if ratio < LEAST_RATIO or (more == 0 and not rise <= allowed):
             continue
-        if more == 0 and abs(rise) < NOTHING:
-            if _products(beds.share, distances.variance, t, u, v, a, c)[2] < NOTHING:
-                continue  # two blocks would only swap their names
+        same = more == 0 and abs(rise) < NOTHING
+        if same and _products(beds.share, distances.variance, t, u, v, a, c)[2] < NOTHING:
+            continue  # two blocks would only swap their names
         if _meets(beds, admitted, planting, u, v, a, c):
             _move_points(beds, planted, distances, t, u, v, a, c)
             _record_concurrences(beds, planting, table, u, v, a, c)
