@@ -95,8 +95,8 @@ def _print(console: Any, one: Shown) -> None:
     console.print(f"  {problem.t} treatments on {problem.n} plots in {problem.b} blocks")
     if plan is not None:
         issued = f", issued as {plan.mark}" if plan.mark else ""
-        reached, run = in_figures(one.aim, plan.score), f"seed {plan.seed}, {plan.moves:,} moves"
-        console.print(f"  best plan  {reached}  {run}, {plan.start}{issued}")
+        reached = in_figures(one.aim, plan.score)
+        console.print(f"  best plan  {reached}  seed {plan.seed}, {plan.moves:,} moves, {plan.start}{issued}")
     if bound is not None:
         console.print(f"  bound      {in_figures(one.aim, float(bound.exact))}  {bound.argument}")
     if (gap := one.kept.gap_percent(one.aim)) is not None:

@@ -110,7 +110,7 @@ def objective(contents: Contents, trial: Trial) -> float:
 
 
 def meetings_and_ties(squares: int, average_variance: float) -> float:
-    """`Σλ² + 1 − 1/(1 + v)`: a number that orders plans by their meetings, equally even ones by the average v."""
+    """`Σλ² + 1 − 1/(1 + v)`: a number that orders plans by their meetings, equally even ones by their v."""
     return squares + 1 - 1 / (1 + average_variance)
 
 
