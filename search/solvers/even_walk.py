@@ -26,7 +26,6 @@ from search.solvers.walk import (
     ROUNDING,
     Walk,
 )
-from search.trial.tables import incidence
 
 CALL_MOVES = 100_000
 """Accepted moves in one call of the kernel, without distances."""
@@ -164,10 +163,8 @@ class EvenWalk(Walk):
 
     def _count(self) -> None:
         """Count all meetings afresh."""
-        t = self.problem.tables.t
-        contents = self.contents
-        counts = incidence(contents, t)
+        counts = self.board.planting.copies.T.astype(np.float64)  # whole numbers, but multiplied faster
         pairs = counts @ counts.T
         parts = (pairs, counts.T @ pairs, counts.T @ counts)
         self._table = tuple(np.ascontiguousarray(part, dtype=np.int32) for part in parts)
-        self.squares = squared_meetings(contents, t)
+        self.squares = squared_meetings(self.contents, self.problem.tables.t)

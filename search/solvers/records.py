@@ -43,6 +43,11 @@ class Problem:
     goal: Goal = Goal.SPREAD
 
 
+def goal_of(aim: AimKind) -> Goal:
+    """What the search makes small for an aim."""
+    return {AimKind.EVEN_MEETINGS: Goal.MEETINGS, AimKind.WORST_PAIR: Goal.WORST}.get(aim, Goal.SPREAD)
+
+
 def problem_of(trial: Trial, rules: Tables) -> Problem:
     """The problem of a trial.
 
@@ -51,12 +56,8 @@ def problem_of(trial: Trial, rules: Tables) -> Problem:
     trial : gives the aim
     rules : its tables, with the implied replication
     """
-    match trial.aim.kind:
-        case AimKind.EVEN_MEETINGS:
-            return Problem(rules, pair_weights(trial.t), Goal.MEETINGS)
-        case AimKind.WORST_PAIR:
-            return Problem(rules, pair_weights(trial.t), Goal.WORST)
-    return Problem(rules, weights(trial))
+    goal = goal_of(trial.aim.kind)
+    return Problem(rules, weights(trial) if goal is Goal.SPREAD else pair_weights(trial.t), goal)
 
 
 @dataclass(frozen=True, slots=True)
