@@ -91,7 +91,8 @@ def _aims(names: list[str]) -> st.SearchStrategy[Any]:
     contrasts: dict[str, Any] = {"first": contrast}
     if len(names) > 2:
         contrasts["second"] = weighted
-    return st.sampled_from(["all pairs", "all pairs", "overall", "against control", {"contrasts": contrasts}])
+    words = ["all pairs", "all pairs", "overall", "against control", "even meetings", "worst pair"]
+    return st.sampled_from([*words, {"contrasts": contrasts}])
 
 
 def _complete_set(sizes: list[int], t: int) -> list[int]:

@@ -8,10 +8,14 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from search.cli.output import emit, indented, page
+from search.efficiency.comparing import in_figures, measure
 from search.trial.records import Trial
 
 if TYPE_CHECKING:
     from search.efficiency.bounds.registry import Tried
+
+
+PASSED = "efficiencies that no plan can pass"
 
 
 @click.command("bound")
@@ -33,7 +37,11 @@ def command(trial: Path, as_json: bool) -> int:
 
 
 def _best(found: list[Tried]) -> Tried | None:
-    return min((one for one in found if one.bound), key=lambda one: one.bound.exact, default=None)  # type: ignore[union-attr]
+    best: Tried | None = None
+    for one in found:
+        if one.bound is not None and one.bound.beats(None if best is None else best.bound):
+            best = one
+    return best
 
 
 def document(trial: Trial, found: list[Tried]) -> dict[str, Any]:
@@ -63,14 +71,14 @@ def show(trial: Trial, found: list[Tried]) -> None:
     """The bounds as a page that a planner reads."""
     console = page()
     console.print(trial.name, style="bold")
-    indented(
-        console, f"aim: {trial.aim.kind.value}; efficiencies that no plan can pass, each with its reason"
-    )
+    aim = trial.aim.kind
+    what = "sums of squared meetings that no plan is below" if aim.counts_meetings else PASSED
+    indented(console, f"aim: {aim.value}; {what}, each with its reason")
     best = _best(found)
     for one in found:
         if one.bound is None:
             continue
-        value = f"{one.bound.value:.6f}"
+        value = in_figures(aim, one.bound.value)
         mark = "*" if one is best else ""
         console.print(
             f"\n{mark:1} {value}  {one.argument.name}  ({one.seconds:.2f} s)", style="bold" if mark else ""
@@ -78,7 +86,8 @@ def show(trial: Trial, found: list[Tried]) -> None:
         indented(console, one.argument.sentence)
     console.print()
     if best is None or best.bound is None:
-        indented(console, "Nothing bounds the efficiency of this trial.")
+        indented(console, f"Nothing bounds the {measure(aim)} of this trial.")
     else:
         statement = best.bound.certificate["statement"]
-        indented(console, f"The lowest of them (*) counts: {statement}.")
+        which = "highest" if aim.counts_meetings else "lowest"
+        indented(console, f"The {which} of them (*) counts: {statement}.")

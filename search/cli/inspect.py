@@ -14,6 +14,7 @@ from search.cli.clashes import clash_lines
 from search.cli.output import emit, indented, page
 from search.designs.conditions import Balanced
 from search.runs.inspection import Inspection
+from search.runs.prospects import Prospects
 from search.trial.records import Trial
 
 if TYPE_CHECKING:
@@ -173,8 +174,11 @@ def _expected(trial: Trial, found: Inspection) -> Iterator[str]:
     hoped = found.prospects
     if hoped is None:
         return
-    first = f"the first plan found has {hoped.first:.4f}" if hoped.first else "the first plan is disconnected"
-    if hoped.bound is not None:
+    if hoped.aim.counts_meetings:
+        yield _expected_meetings(hoped)
+    elif hoped.bound is not None:
+        first = f"the first plan found has {hoped.first:.4f}"
+        first = first if hoped.first else "the first plan is disconnected"
         yield f"efficiency: at best {hoped.bound:.4f} ({hoped.argument}); {first}, a search will better it"
     if hoped.at_best is None and hoped.with_first is None:
         yield "no difference can be tested: no residual degrees of freedom, or no connected plan"
@@ -188,6 +192,11 @@ def _expected(trial: Trial, found: Inspection) -> Iterator[str]:
     )
     if asked.cv_percent is None:
         yield "with precision: {cv_percent: …, mean: …} in the file it is told in the unit of the trial"
+
+
+def _expected_meetings(hoped: Prospects) -> str:
+    least = "" if hoped.bound is None else f"{hoped.bound:.0f} at best ({hoped.argument}); "
+    return f"sum of squared meetings: {least}the first plan found has {hoped.first:.0f}"
 
 
 def _in_words(design: Balanced) -> str:

@@ -8,6 +8,8 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from search.cli.output import emit, page
+from search.efficiency.comparing import in_figures
+from search.trial.records import AimKind
 
 if TYPE_CHECKING:
     from search.runs.kept import Entry, Run, Shown
@@ -45,13 +47,20 @@ def list_(store: Path | None, most: int, as_json: bool) -> int:
     table.add_column("t", justify="right", no_wrap=True)
     table.add_column("plots", justify="right", no_wrap=True)
     table.add_column("aim", no_wrap=True, overflow="ellipsis")
-    table.add_column("efficiency", justify="right", no_wrap=True, min_width=10)
+    table.add_column("best", justify="right", no_wrap=True, min_width=10)
     table.add_column("gap %", justify="right", no_wrap=True, min_width=5)
     table.add_column("issued", no_wrap=True, min_width=5)
     table.add_column("runs", justify="right", no_wrap=True)
     for entry in entries:
         gap = entry.gap_percent
-        cells = [entry.digest[:8], entry.name, str(entry.t), str(entry.n), entry.aim, f"{entry.score:.6f}"]
+        cells = [
+            entry.digest[:8],
+            entry.name,
+            str(entry.t),
+            str(entry.n),
+            entry.aim,
+            in_figures(entry.aim, entry.score),
+        ]
         cells += ["" if gap is None else f"{gap:.3f}", entry.mark, str(entry.runs)]
         table.add_row(*map(Text, cells))
     console = page()
@@ -86,17 +95,16 @@ def _print(console: Any, one: Shown) -> None:
     console.print(f"  {problem.t} treatments on {problem.n} plots in {problem.b} blocks")
     if plan is not None:
         issued = f", issued as {plan.mark}" if plan.mark else ""
-        console.print(
-            f"  best plan  {plan.score:.6f}  seed {plan.seed}, {plan.moves:,} moves, {plan.start}{issued}"
-        )
+        reached = in_figures(one.aim, plan.score)
+        console.print(f"  best plan  {reached}  seed {plan.seed}, {plan.moves:,} moves, {plan.start}{issued}")
     if bound is not None:
-        console.print(f"  bound      {float(bound.exact):.6f}  {bound.argument}")
-    if one.kept.gap_percent is not None:
-        console.print(f"  gap        {one.kept.gap_percent:.4f} %")
+        console.print(f"  bound      {in_figures(one.aim, float(bound.exact))}  {bound.argument}")
+    if (gap := one.kept.gap_percent(one.aim)) is not None:
+        console.print(f"  gap        {gap:.4f} %")
     for run in one.runs:
         console.print(
             f"  {run.made}  seed {run.seed}, {run.moves:,} moves in {run.seconds:.1f} s: "
-            f"{run.score:.6f}, ended by {run.ended_by}"
+            f"{in_figures(one.aim, run.score)}, ended by {run.ended_by}"
         )
 
 
@@ -108,7 +116,8 @@ def _entry(entry: Entry) -> dict[str, Any]:
         "blocks": entry.b,
         "plots": entry.n,
         "aim": entry.aim,
-        "efficiency": entry.score,
+        "score": entry.score,
+        "efficiency": _efficiency(entry.aim, entry.score),
         "bound": entry.bound,
         "gap_percent": entry.gap_percent,
         "mark": entry.mark,
@@ -130,7 +139,8 @@ def _shown(one: Shown) -> dict[str, Any]:
         "plan": None
         if plan is None
         else {
-            "efficiency": plan.score,
+            "score": plan.score,
+            "efficiency": _efficiency(one.aim, plan.score),
             "contents": [list(block) for block in plan.contents],
             "seed": plan.seed,
             "moves": plan.moves,
@@ -148,12 +158,12 @@ def _shown(one: Shown) -> dict[str, Any]:
             "argument": bound.argument,
             "certificate": bound.certificate,
         },
-        "gap_percent": one.kept.gap_percent,
-        "runs": [_run(run) for run in one.runs],
+        "gap_percent": one.kept.gap_percent(one.aim),
+        "runs": [_run(run, one.aim) for run in one.runs],
     }
 
 
-def _run(run: Run) -> dict[str, Any]:
+def _run(run: Run, aim: str) -> dict[str, Any]:
     return {
         "made": run.made,
         "seed": run.seed,
@@ -161,6 +171,12 @@ def _run(run: Run) -> dict[str, Any]:
         "moves": run.moves,
         "seconds": run.seconds,
         "ended_by": run.ended_by,
-        "efficiency": run.score,
+        "score": run.score,
+        "efficiency": _efficiency(aim, run.score),
         "start": run.start,
     }
+
+
+def _efficiency(aim: str, score: float) -> float | None:
+    """The score of an aim that has an efficiency."""
+    return None if aim == AimKind.EVEN_MEETINGS else score

@@ -66,7 +66,8 @@ def command(
                     f"{folder} holds plan {found.document['mark']}, issued for another trial; "
                     "choose another folder with --out, or ask for a new plan beside it with --anew"
                 )
-            better = keeping.better_than(found.document["score"]["aim"])
+            issued_score = found.document["score"]
+            better = keeping.better_than(issued_score["aim"], issued_score.get("average_pair_variance"))
             return _tell_issued(found, better, found.trial != record, layout_seed is not None, as_json)
         make_ready(free_folder(folder))
 
@@ -153,6 +154,7 @@ def _tell_issued(found: Issued, better: float | None, edited: bool, reseeded: bo
         emit("plan", "issued already", {**_document(found), "better_kept": better})
         return 0
     from search.cli.summary import show_plan
+    from search.efficiency.comparing import in_figures, measure
 
     console = page()
     console.print(f"Plan {found.document['mark']} is issued already and stays as it is.")
@@ -163,6 +165,8 @@ def _tell_issued(found: Issued, better: float | None, edited: bool, reseeded: bo
     if better is None:
         console.print("The store holds no better one. To search for another: --anew")
     else:
-        console.print(f"The store holds a better one, efficiency {better:.6f}. To issue it: --anew")
+        aim = found.trial.aim.kind
+        told = f"{measure(aim)} {in_figures(aim, better)}"
+        console.print(f"The store holds a better one, {told}. To issue it: --anew")
     show_plan(console, found)
     return 0

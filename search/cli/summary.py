@@ -6,6 +6,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from search.cli.output import indented, shortened
+from search.efficiency.comparing import in_figures
 from search.field.cautions import office_notes
 from search.field.standing import standing_in_words
 from search.trial.records import Trial
@@ -48,9 +49,15 @@ def show_plan(console: Console, issued: Issued) -> None:
 
 def _figures(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
     score, bound, run = document["score"], document["bound"], document["provenance"]
-    rows = [(f"efficiency, {trial.aim.kind.value}", f"{score['aim']:.6f}")]
+    aim = trial.aim.kind
+    rows = [
+        ("sum of squared meetings", in_figures(aim, score["aim"]))
+        if aim.counts_meetings
+        else (f"efficiency, {aim.value}", in_figures(aim, score["aim"]))
+    ]
     if bound is not None:
-        rows.append(("best possible, at most", f"{bound['value']:.6f} ({bound['argument']})"))
+        limit = "at least" if aim.counts_meetings else "at most"
+        rows.append((f"best possible, {limit}", f"{in_figures(aim, bound['value'])} ({bound['argument']})"))
     if document["gap_percent"] is not None:
         rows.append(("gap", f"{document['gap_percent']:.4f} %, {document['standing']}"))
     if score["connected"]:

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Any
 import click
 
 from search.cli.output import aside, emit, indented, page
+from search.efficiency.comparing import in_figures
 from search.runs.sweep import Progress, RowResult, SweepObserver, SweepResult, WhereFrom
 
 if TYPE_CHECKING:
@@ -109,10 +110,11 @@ def _cells(row: RowResult) -> list[str]:
     plan = row.plan
     if plan is None:
         return [plots, "", "", "", str(row.status), ""]
-    bound = "" if plan.bound is None else f"{plan.bound.value:.5f}"
+    aim = plan.trial.aim.kind
+    bound = "" if plan.bound is None else in_figures(aim, plan.bound.value, 5)
     gap = "" if plan.gap_percent is None else f"{plan.gap_percent:.3f}"
     kept = "kept" if row.where_from is WhereFrom.KEPT else ""
-    return [plots, f"{plan.score.aim:.5f}", bound, gap, plan.standing.value, kept]
+    return [plots, in_figures(aim, plan.score.aim, 5), bound, gap, plan.standing.value, kept]
 
 
 class LiveTable(SweepObserver):

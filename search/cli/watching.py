@@ -11,7 +11,9 @@ from types import FrameType
 from typing import TYPE_CHECKING
 
 from search.cli.output import shortened
+from search.efficiency.comparing import beats, gap_percent, in_figures, measure, merit
 from search.foundation.stopping import Observer, Stop
+from search.trial.records import AimKind
 
 if TYPE_CHECKING:
     from rich.console import Console
@@ -55,7 +57,8 @@ class Watching(Observer):
         self.console = console
         self.quiet = quiet
         self.status: Status | None = None
-        self.best = 0.0
+        self.aim = AimKind.ALL_PAIRS
+        self.best: float | None = None
         self.limit: float | None = None
         self.last = time.monotonic()
 
@@ -71,6 +74,7 @@ class Watching(Observer):
 
     def begin(self, trial: Trial) -> None:
         """Say what is planned."""
+        self.aim = trial.aim.kind
         self._say(f"{trial.name}: {trial.t} treatments on {trial.n} plots in {trial.b} blocks")
 
     def note(self, text: str) -> None:
@@ -78,20 +82,22 @@ class Watching(Observer):
 
     def first_plan(self, efficiency: float, where_from: str) -> None:
         name = "a better one" if self.best else "first plan"
-        if efficiency > self.best:
+        if self.best is None or beats(merit(self.aim, efficiency, 0.0), merit(self.aim, self.best, 0.0)):
             self.best = efficiency
-            self._say(f"{name}: efficiency {efficiency:.4f} ({shortened(where_from)})")
+            told = f"{measure(self.aim)} {in_figures(self.aim, efficiency, 4)}"
+            self._say(f"{name}: {told} ({shortened(where_from)})")
 
     def bound(self, efficiency: float, argument: str) -> None:
         self.limit = efficiency
-        self._say(f"no plan can exceed {efficiency:.4f} ({argument})")
+        may = "go below" if self.aim.counts_meetings else "exceed"
+        self._say(f"no plan can {may} {in_figures(self.aim, efficiency, 4)} ({argument})")
 
     def progress(self, efficiency: float, moves: int, seconds: float) -> None:
         self.best = efficiency
-        line = f"{seconds:5.1f} s   best {efficiency:.6f}"
+        line = f"{seconds:5.1f} s   best {in_figures(self.aim, efficiency)}"
         if self.limit is not None and self.limit > 0:
-            gap = max(0.0, 100.0 * (1.0 - efficiency / self.limit))
-            line += f"   bound {self.limit:.6f}   gap {gap:.3f} %"
+            gap = max(0.0, gap_percent(self.aim, efficiency, self.limit))
+            line += f"   bound {in_figures(self.aim, self.limit)}   gap {gap:.3f} %"
         if seconds > 0:
             line += f"   {moves / seconds / 1e6:.1f} M moves/s"
         if self.status is not None:

@@ -1,8 +1,10 @@
 """What each aim asks for: its sentence, its weights on the variances, and their exact diagonal.
 
-Every aim but `overall` is a trace: the mean variance that it speaks of is `tr(W C⁺)` for one fixed
-positive semidefinite W with `W 1 = 0`. Without blocks C⁺ may be replaced by `R⁻¹`, so there the mean
-variance is `Σ W_ii / r_i` and the diagonal of W is all that a reference needs.
+Most aims are a trace: the mean variance that they speak of is `tr(W C⁺)` for one fixed positive
+semidefinite W with `W 1 = 0`. Without blocks C⁺ may be replaced by `R⁻¹`, so there the mean variance is
+`Σ W_ii / r_i` and the diagonal of W is all that a reference needs. Even meetings are ranked by a sum of
+whole numbers first and by the trace of all pairs among equals, so that trace is theirs too. `overall` has
+a determinant and `worst pair` a maximum instead.
 """
 
 from __future__ import annotations
@@ -22,6 +24,15 @@ SENTENCES: dict[AimKind, str] = {
     AimKind.OVERALL: (
         "All treatment differences taken together: the joint confidence region is made as small as it can be."
     ),
+    AimKind.EVEN_MEETINGS: (
+        "All pairs of treatments meet as equally often as they can: the sum over pairs of their squared "
+        "meetings is made as small as it can be, and among equally even plans the average variance of a "
+        "difference."
+    ),
+    AimKind.WORST_PAIR: (
+        "The difference that is estimated worst: the largest variance of a difference between two "
+        "treatments is made as small as it can be."
+    ),
     AimKind.AGAINST_CONTROL: (
         "Every treatment against the controls: the average variance of a difference from a "
         "control is made as small as it can be."
@@ -35,12 +46,12 @@ SENTENCES: dict[AimKind, str] = {
 
 
 def is_trace(trial: Trial) -> bool:
-    """Whether the aim is a mean variance; only `overall` is not."""
-    return trial.aim.kind is not AimKind.OVERALL
+    """Whether a mean variance belongs to the aim: not to `overall`, and not to `worst pair`."""
+    return trial.aim.kind not in (AimKind.OVERALL, AimKind.WORST_PAIR)
 
 
 def weights(trial: Trial) -> NDArray[np.float64] | None:
-    """The matrix W of the aim's mean variance `tr(W C⁺)`, or None for `overall`.
+    """The matrix W of the aim's mean variance `tr(W C⁺)`, or None for an aim that has none.
 
     Parameters
     ----------
@@ -55,8 +66,8 @@ def weights(trial: Trial) -> NDArray[np.float64] | None:
     if not is_trace(trial):
         return None
     t = trial.t
-    if trial.aim.kind is AimKind.ALL_PAIRS:
-        return np.asarray(2 * (np.eye(t) - 1 / t) / (t - 1))
+    if trial.aim.kind in (AimKind.ALL_PAIRS, AimKind.EVEN_MEETINGS):
+        return pair_weights(t)
     if trial.aim.kind is AimKind.AGAINST_CONTROL:
         return _against_controls(t, trial.controls)
     matrix = np.zeros((t, t))
@@ -64,6 +75,11 @@ def weights(trial: Trial) -> NDArray[np.float64] | None:
         row = np.array([float(c) for c in coefficients])
         matrix += float(share) * np.outer(row, row)
     return matrix
+
+
+def pair_weights(t: int) -> NDArray[np.float64]:
+    """W of all pairs, `2(I − J/t)/(t−1)`: the average pair variance."""
+    return np.asarray(2 * (np.eye(t) - 1 / t) / (t - 1))
 
 
 def _against_controls(t: int, controls: tuple[int, ...]) -> NDArray[np.float64]:
@@ -81,10 +97,10 @@ def exact_diagonal(trial: Trial) -> tuple[Fraction, ...]:
 
     Raises
     ------
-    ValueError : the aim is `overall`, which has no W
+    ValueError : the aim has no W
     """
     t, kind = trial.t, trial.aim.kind
-    if kind is AimKind.ALL_PAIRS:
+    if kind in (AimKind.ALL_PAIRS, AimKind.EVEN_MEETINGS):
         return (Fraction(2, t),) * t
     if kind is AimKind.AGAINST_CONTROL:
         q = len(trial.controls)
@@ -93,7 +109,7 @@ def exact_diagonal(trial: Trial) -> tuple[Fraction, ...]:
     if kind is AimKind.CONTRASTS:
         pairs = list(zip(contrast_shares(trial), contrast_rows(trial), strict=True))
         return tuple(sum((share * row[i] ** 2 for share, row in pairs), Fraction(0)) for i in range(t))
-    raise ValueError("the overall aim has no weights")
+    raise ValueError(f"the aim {kind} has no weights")
 
 
 def exact_weights(trial: Trial) -> tuple[tuple[Fraction, ...], ...]:

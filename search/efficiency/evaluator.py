@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from search.efficiency.aims import exact_diagonal, is_trace, weights
-from search.efficiency.balance import is_balanced, near_balance
+from search.efficiency.balance import is_balanced, near_balance, squared_meetings
 from search.efficiency.one_thread import one_thread
 from search.efficiency.records import Score
 from search.efficiency.reference import (
@@ -25,6 +25,7 @@ from search.efficiency.reference import (
     reference_product,
     reference_replication,
     reference_variance,
+    worst_pair,
 )
 from search.trial.records import AimKind, Contents, Trial
 from search.trial.tables import incidence
@@ -90,15 +91,27 @@ def objective(contents: Contents, trial: Trial) -> float:
 
     Returns
     -------
-    value : the aim's mean variance `tr(W C⁺)`; for overall `−log pdet(C) / (t − 1)`
+    value : the aim's mean variance `tr(W C⁺)`; for overall `−log pdet(C) / (t − 1)`; for the worst pair the
+        largest pair variance; for even meetings see `meetings_and_ties`
     """
     if components(contents, trial.t) > 1:
         return float("inf")
     information = information_matrix(contents, trial.t)
+    if trial.aim.kind is AimKind.OVERALL:
+        return -log_pseudo_determinant(information) / (trial.t - 1)
+    inverse = pseudo_inverse(information)
     matrix = weights(trial)
     if matrix is None:
-        return -log_pseudo_determinant(information) / (trial.t - 1)
-    return float((matrix * pseudo_inverse(information)).sum())
+        return float(_differences(inverse).max())
+    mean = float((matrix * inverse).sum())
+    if trial.aim.kind is AimKind.EVEN_MEETINGS:
+        return meetings_and_ties(squared_meetings(contents, trial.t), mean)
+    return mean
+
+
+def meetings_and_ties(squares: int, average_variance: float) -> float:
+    """`Σλ² + 1 − 1/(1 + v)`: a number that orders plans by their meetings, equally even ones by their v."""
+    return squares + 1 - 1 / (1 + average_variance)
 
 
 def score(trial: Trial, contents: Contents) -> Score:
@@ -121,7 +134,7 @@ def score(trial: Trial, contents: Contents) -> Score:
     reached = _reached(trial, contents) if parts == 1 else _Reached()
     blocks_alone = reached.aim / replication_alone if replication_alone else 0.0
     return Score(
-        aim=reached.aim,
+        aim=squared_meetings(contents, t) if trial.aim.kind.counts_meetings else reached.aim,
         A=reached.A,
         D=reached.D,
         worst_pair_efficiency=reached.worst_pair,
@@ -164,36 +177,40 @@ def _reached(trial: Trial, contents: Contents) -> _Reached:
 
     a = _at_most_one(float(best_average) / average)
     d = _at_most_one(exp(log_ratio / (t - 1)))
+    worst = _at_most_one(float(least_worst_pair(trial)) / largest)
     aim: float = a
     aim_variance: float | None = average
-    if trial.aim.kind is not AimKind.ALL_PAIRS:
-        aim, aim_variance = _for_other_aims(trial, inverse, d)
+    matrix = weights(trial)
+    if trial.aim.kind is AimKind.OVERALL:
+        aim, aim_variance = d, None
+    elif matrix is None:
+        aim, aim_variance = worst, largest
+    elif not trial.aim.kind.treats_pairs_alike:
+        aim_variance = float((matrix * inverse).sum())
+        aim = _at_most_one(float(reference_variance(trial)) / aim_variance)
     return _Reached(
         aim=aim,
         A=a,
         D=d,
-        worst_pair=_at_most_one(float(least_worst_pair(trial)) / largest),
+        worst_pair=worst,
         average_variance=average,
         largest_variance=largest,
         aim_variance=aim_variance,
     )
 
 
-def _for_other_aims(trial: Trial, inverse: Matrix, d: float) -> tuple[float, float | None]:
-    matrix = weights(trial)
-    if matrix is None:
-        return d, None
-    variance = float((matrix * inverse).sum())
-    return _at_most_one(float(reference_variance(trial)) / variance), variance
-
-
 def _efficiency_without_blocks(trial: Trial, replication: list[int]) -> float:
-    """Efficiency for the aim of a replication without blocks: what blocks have no part in."""
+    """Efficiency for the aim of a replication without blocks: what blocks have no part in.
+
+    Even meetings, which mean nothing without blocks, are told the average of all pairs.
+    """
     if min(replication) == 0:
         return 0.0
     if is_trace(trial):
         own = mean_variance(exact_diagonal(trial), replication)
         return float(reference_variance(trial) / own)
+    if trial.aim.kind is AimKind.WORST_PAIR:
+        return float(reference_variance(trial) / worst_pair(replication))
     log_ratio = _log(product(replication)) - _log(reference_product(trial))
     return exp(log_ratio / (trial.t - 1))
 

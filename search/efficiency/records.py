@@ -7,6 +7,7 @@ from enum import StrEnum
 from fractions import Fraction
 from typing import Any
 
+from search.efficiency.comparing import is_tighter
 from search.trial.records import AimKind
 
 
@@ -26,13 +27,14 @@ class Score:
     """
 
     aim: float
+    """The efficiency for the aim; for even meetings the whole number `Σ_{i<j} λ_ij²`."""
     A: float
     D: float
     worst_pair_efficiency: float
     average_pair_variance: float | None
     largest_pair_variance: float | None
     aim_variance: float | None
-    """The mean variance that the aim speaks of; for the overall aim None."""
+    """The mean variance that the aim speaks of, for the worst pair the largest; for the overall aim None."""
     loss_to_replication_percent: float
     loss_to_blocks_percent: float
     residual_df: int
@@ -48,6 +50,7 @@ class Score:
 class Bound:
     """No plan that the trial admits has an efficiency for the aim above `exact`.
 
+    For even meetings: none has a sum of squared meetings below `exact`, which is a whole number.
     `certificate` is JSON data, `{"kind", "statement", "multipliers"}`, rationals written "p/q",
     from which `search.proof` derives the bound again.
     """
@@ -59,5 +62,9 @@ class Bound:
 
     @property
     def value(self) -> float:
-        """The bound as a float."""
-        return float(self.exact)
+        """The bound as a float, or as a whole number where the aim counts."""
+        return int(self.exact) if self.aim.counts_meetings else float(self.exact)
+
+    def beats(self, other: Bound | None) -> bool:
+        """Whether it says more than another bound for the same aim."""
+        return other is None or is_tighter(self.aim, self.exact, other.exact)

@@ -13,7 +13,7 @@ from fractions import Fraction
 from heapq import heapify, heappop, heapreplace
 from math import prod
 
-from search.efficiency.aims import exact_diagonal, is_trace
+from search.efficiency.aims import exact_diagonal
 from search.trial.records import AimKind, Trial
 
 Gain = Callable[[int, int], Fraction]
@@ -80,10 +80,13 @@ def reference_replication(trial: Trial, aim: AimKind | None = None) -> tuple[int
     aim : all pairs or overall to ask for that aim's reference in place of the trial's own
     """
     least, most = _stated(trial)
-    if aim is AimKind.OVERALL or (aim is None and not is_trace(trial)):
+    aim = aim or trial.aim.kind
+    if aim is AimKind.OVERALL:
         return best_for_product(least, most, trial.n)
     if aim is AimKind.ALL_PAIRS:
         return best_for_trace([Fraction(2, trial.t)] * trial.t, least, most, trial.n)
+    if aim is AimKind.WORST_PAIR:
+        raise ValueError("many replications may share the least largest 1/r_i + 1/r_j")
     return best_for_trace(exact_diagonal(trial), least, most, trial.n)
 
 
@@ -98,7 +101,9 @@ def product(replication: Sequence[int]) -> Fraction:
 
 
 def reference_variance(trial: Trial) -> Fraction:
-    """The trial's aim at its reference: the least mean variance without blocks (trace aims)."""
+    """The trial's aim at its reference: the least mean or largest variance without blocks (not overall)."""
+    if trial.aim.kind is AimKind.WORST_PAIR:
+        return least_worst_pair(trial)
     return mean_variance(exact_diagonal(trial), reference_replication(trial))
 
 
@@ -125,6 +130,12 @@ def least_worst_pair(trial: Trial) -> Fraction:
     if not candidates:
         raise ValueError("the ranges of replication leave a treatment without a plot")
     return min(candidates)
+
+
+def worst_pair(replication: Sequence[int]) -> Fraction:
+    """The largest `1/r_i + 1/r_j` of a replication: that of the two treatments with the fewest plots."""
+    fewest, next_fewest = sorted(replication)[:2]
+    return Fraction(1, fewest) + Fraction(1, next_fewest)
 
 
 def _affordable(least: Sequence[int], most: Sequence[int], plots: int, p: int, q: int) -> bool:

@@ -13,7 +13,7 @@ from search.field.positions import positions
 from search.foundation.errors import FaultyTrial, Impossible, Undecided
 from search.trial.limits import limits
 from search.trial.reading import trial_from_document
-from search.trial.records import Ground, Spot, Trial
+from search.trial.records import Aim, Ground, Spot, Trial
 from search.trial.wanted import counts
 from search.trial.writing import trial_document, written_ground
 
@@ -31,7 +31,8 @@ class Way:
     ----------
     trial : the trial with its bays drawn
     how : how they were cut, in words
-    bound : no plan in bays of these sizes has an efficiency above this; None where that is not known
+    bound : no plan in bays of these sizes has an efficiency above this, that of all pairs where the aim has
+        none; None where it is not known
     spread_m : mean distance between two plots of one bay, in metres (in plots without a size of plots)
     """
 
@@ -142,6 +143,8 @@ def _bound(trial: Trial) -> float | bool | None:
     from search.efficiency.bounds import all_bounds
 
     try:
+        if trial.aim.kind.counts_meetings:  # meetings in bays of other sizes do not compare
+            trial = replace(trial, aim=Aim())
         first = next(iter(all_bounds(trial, limits(trial))), None)
     except (Impossible, Undecided):
         return False

@@ -90,6 +90,10 @@ def office_sheet(trial: Trial, document: dict[str, Any], notes: tuple[str, ...])
 def _efficiency(trial: Trial, document: dict[str, Any]) -> Iterator[Figure]:
     score, bound, gap = document["score"], document["bound"], document["gap_percent"]
     aim = trial.aim.kind.value
+    if trial.aim.kind.counts_meetings:
+        yield from _evenness(document)
+        yield from _losses(trial, score)
+        return
     yield Figure(
         f"Efficiency, {aim}",
         f"{100 * score['aim']:.2f} %",
@@ -107,6 +111,32 @@ def _efficiency(trial: Trial, document: dict[str, Any]) -> Iterator[Figure]:
             f"At most {trial.n - worth:.1f} of {trial.n} plots are wasted against the best possible plan.",
         )
     yield from _losses(trial, score)
+
+
+def _evenness(document: dict[str, Any]) -> Iterator[Figure]:
+    """How even the meetings are: whole numbers, no efficiencies and nothing in plots."""
+    score, bound, gap = document["score"], document["bound"], document["gap_percent"]
+    yield Figure(
+        "Sum of squared meetings",
+        f"{score['aim']:.0f}",
+        "For each pair the blocks that it shares (plot by plot where one stands twice), squared and summed: "
+        "the lower, the more even.",
+    )
+    if bound is not None:
+        argument = clean(str(bound.get("argument", "")))
+        value = bound.get("value")
+        told = f"{value:.0f}" if isinstance(value, int | float) else ""
+        yield Figure("Best possible, at least", told, f"Proved by: {argument}.")
+    if gap is not None:
+        yield Figure("Gap", f"{gap:.2f} %", "By so much at most the sum is above the best possible one.")
+    efficiency = score.get("A")
+    if score["connected"] and isinstance(efficiency, int | float):
+        yield Figure(
+            "Efficiency, all pairs",
+            f"{100 * efficiency:.2f} %",
+            "It ranks plans with equal sums. Against the same plots without blocks in the best replication "
+            "that the file allows.",
+        )
 
 
 def _losses(trial: Trial, score: dict[str, Any]) -> Iterator[Figure]:

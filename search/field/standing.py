@@ -5,6 +5,8 @@ from __future__ import annotations
 from math import ceil, floor
 from typing import Any
 
+EVEN_MEETINGS = "even meetings"
+
 
 def standing_in_words(document: dict[str, Any], plots: int) -> tuple[str, ...]:
     """What is known of a plan, each sentence true as it stands.
@@ -20,6 +22,8 @@ def standing_in_words(document: dict[str, Any], plots: int) -> tuple[str, ...]:
             "This plan falls into parts that share no block: treatments of one part cannot be "
             "compared with those of another.",
         )
+    if document["trial"].get("aim") == EVEN_MEETINGS:
+        return _in_meetings(document)
     obeys = f"The plan obeys every rule of the trial. Its efficiency is {100 * score['aim']:.1f} %."
     if standing == "balanced":
         return (
@@ -32,6 +36,25 @@ def standing_in_words(document: dict[str, Any], plots: int) -> tuple[str, ...]:
     if standing == "bounded" and gap is not None and 0 <= gap < 100:
         return (obeys, *_within(gap, plots))
     return (obeys, "How much better another plan could be is not known.")
+
+
+def _in_meetings(document: dict[str, Any]) -> tuple[str, ...]:
+    """The same where meetings are counted: the gap is no share of the plots, so none is told in plots."""
+    score, gap, standing = document["score"], document["gap_percent"], document["standing"]
+    told = f"Its meetings, squared and summed over all pairs of treatments, come to {score['aim']}"
+    obeys = f"The plan obeys every rule of the trial. {told}; a lower sum is more even."
+    if standing == "balanced":
+        return (
+            obeys,
+            "It is balanced: every two treatments meet equally often and are compared equally well, and no "
+            "plan under these rules is better.",
+        )
+    if standing == "proven optimal":
+        return (obeys, "No plan under these rules has a lower sum; that is proved.")
+    if standing == "bounded" and gap is not None:
+        least = document["bound"]["value"]
+        return (obeys, f"No plan under these rules has a sum below {least}; that is proved.")
+    return (obeys, "How much more even another plan could be is not known.")
 
 
 def _within(gap_percent: float, plots: int) -> tuple[str, str]:

@@ -74,7 +74,10 @@ class Stop:
 
 
 class Observer:
-    """Watches a search; every method does nothing by default."""
+    """Watches a search; every method does nothing by default.
+
+    For the aim even meetings, sums of squared meetings stand in place of efficiencies.
+    """
 
     def note(self, text: str) -> None:
         """A stage begins, said in a short sentence."""
@@ -83,7 +86,7 @@ class Observer:
         """A first plan is there."""
 
     def bound(self, efficiency: float, argument: str) -> None:
-        """No plan can have an efficiency above this."""
+        """No plan can be better than this."""
 
     def progress(self, efficiency: float, moves: int, seconds: float) -> None:
         """The search goes on; its best efficiency so far."""

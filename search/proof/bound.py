@@ -2,16 +2,21 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from fractions import Fraction
+from types import ModuleType
 from typing import Any
 
+from search.proof.aims import pair_weights
 from search.proof.certificates import KINDS
 from search.proof.certificates.case import Case
-from search.proof.certificates.claims import Claim
+from search.proof.certificates.claims import Claim, LeastSum
 from search.proof.intervals import Interval
 from search.proof.parts import Part, quoted, told
 from search.proof.records import Finding, Refuted
+from search.proof.reference import least_mean_variance, least_worst_pair
 from search.proof.score import RELATIVE
+from search.trial.records import Aim, AimKind
 
 
 def bounded(value: Any, case: Case) -> tuple[Finding, Fraction | None]:
@@ -37,24 +42,34 @@ def bounded(value: Any, case: Case) -> tuple[Finding, Fraction | None]:
     certificate = claims.part("certificate")
     certificate.text("statement")
     claim = _derived(certificate, case)
-    derived = Interval.exactly(claim.ratio).root(claim.power).high
     if not claim.supports(exact):
-        raise Refuted(f"the certificate proves no more than {told(derived)}, not {told(exact)}")
-    if not Interval.exactly(exact).agrees(value, RELATIVE):
+        raise Refuted(f"the certificate proves no more than {told(claim.derived)}, not {told(exact)}")
+    counts = case.aim.counts_meetings
+    if value != exact if counts else not Interval.exactly(exact).agrees(value, RELATIVE):
         raise Refuted(f"its value {told(value)} is not the exact {told(exact)}")
+    what = "a sum of squared meetings below" if counts else "an efficiency above"
     sentence = (
-        f"no plan that this trial admits has an efficiency above {told(exact)}; "
-        f"derived again: {told(derived)}"
+        f"no plan that this trial admits has {what} {told(exact)}; derived again: {told(claim.derived)}"
     )
     return Finding("bound", True, sentence), exact
 
 
-def _derived(certificate: Part, case: Case) -> Claim:
+def _derived(certificate: Part, case: Case) -> Claim | LeastSum:
     word = certificate.text("kind")
     kind = KINDS.get(word)
     if kind is None:
         raise Refuted(f"a certificate of a kind that this version cannot check: {quoted(word)}")
+    if case.aim is AimKind.WORST_PAIR and AimKind.ALL_PAIRS in kind.AIMS:
+        return _by_average(kind, certificate, case)
     if case.aim not in kind.AIMS:
         raise Refuted(f"a certificate of the kind {word} says nothing about the aim {case.aim.value}")
-    claim: Claim = kind.derive(case, certificate.part("multipliers"))
+    claim: Claim | LeastSum = kind.derive(case, certificate.part("multipliers"))
     return claim
+
+
+def _by_average(kind: ModuleType, certificate: Part, case: Case) -> Claim:
+    """What a certificate for the average pair variance says of the largest, which is not below it."""
+    trial = replace(case.trial, aim=Aim(AimKind.ALL_PAIRS))
+    average: Claim = kind.derive(replace(case, trial=trial), certificate.part("multipliers"))
+    yardsticks = least_worst_pair(trial) / least_mean_variance(trial, pair_weights(trial.t))
+    return Claim(average.ratio * yardsticks)

@@ -19,7 +19,7 @@ def blocks_shared(plan: Information) -> tuple[int, int]:
 
 
 def sum_of_squares(plan: Information) -> int:
-    """Σ λ² over pairs, λ the concurrence Σ_B n_iB n_jB of a pair."""
+    """Σ λ² over pairs, λ the concurrence Σ_B n_iB n_jB of a pair; two plots of one treatment do not meet."""
     concurrence = plan.counts @ plan.counts.T
     return int((np.triu(concurrence, 1) ** 2).sum())
 

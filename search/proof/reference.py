@@ -102,6 +102,13 @@ def least_worst_pair(trial: Trial) -> Fraction:
     return min(found)
 
 
+def worst_pair_without_blocks(replication: Sequence[int]) -> Fraction:
+    """The largest 1/r_i + 1/r_j."""
+    plots = list(replication)
+    fewest = plots.index(min(plots))
+    return Fraction(1, plots[fewest]) + Fraction(1, min(plots[:fewest] + plots[fewest + 1 :]))
+
+
 def _check(least: Sequence[int], most: Sequence[int], plots: int) -> None:
     crossed = any(low > high for low, high in zip(least, most, strict=True))
     if crossed or not sum(least) <= plots <= sum(most):

@@ -11,6 +11,7 @@ from search.proof.information import Information
 from search.proof.parts import Part, quoted, told
 from search.proof.records import Finding, Refuted
 from search.proof.truth import Truth
+from search.trial.records import AimKind
 
 RELATIVE = Fraction(1, 10**9)
 """Efficiencies and variances of the file may differ from the truth by this part of their size."""
@@ -18,9 +19,9 @@ PERCENT = Fraction(1, 10**7)
 """Percentages of the file may differ from the truth by so many points."""
 
 
-def compared(claims: Part, real: Truth) -> Iterator[Finding]:
+def compared(claims: Part, real: Truth, aim: AimKind) -> Iterator[Finding]:
     """The numbers of the score against the truth: a finding for each that is wrong, or one for all."""
-    faults = list(_mismatches(claims, real))
+    faults = list(_mismatches(claims, real, aim))
     for fault in faults:
         yield Finding("score", False, fault)
     if not faults:
@@ -29,13 +30,21 @@ def compared(claims: Part, real: Truth) -> Iterator[Finding]:
             "score",
             True,
             f"every number derived again {how} and found true to one part in 10^9; "
-            f"efficiency for the aim {told(real.aim.low)}",
+            f"{_measure(aim)} {told(real.aim.low)}",
         )
 
 
-def _mismatches(claims: Part, real: Truth) -> Iterator[str]:
+def _measure(aim: AimKind) -> str:
+    return "sum of squared meetings" if aim.counts_meetings else "efficiency for the aim"
+
+
+def _mismatches(claims: Part, real: Truth, aim: AimKind) -> Iterator[str]:
+    if aim.counts_meetings:
+        if (counted := claims.whole("aim")) != real.aim.low:
+            yield f"the sum of squared meetings is claimed to be {counted}, but is {told(real.aim.low)}"
+    elif not real.aim.agrees(claimed := claims.number("aim"), RELATIVE):
+        yield f"aim is claimed to be {told(claimed)}, but is {told(real.aim.low)}"
     for key, exact in (
-        ("aim", real.aim),
         ("A", real.A),
         ("D", real.D),
         ("worst_pair_efficiency", real.worst_pair_efficiency),

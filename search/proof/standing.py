@@ -17,20 +17,21 @@ PROVEN = Fraction(1, 10**6)
 """A gap of at most this part counts as proven optimal."""
 
 
-def gap_told(file: Part, real: Truth, bound: Fraction | None) -> Finding:
-    """gap_percent = 100 (1 − efficiency/bound), null without a bound.
+def gap_told(file: Part, case: Case, real: Truth, bound: Fraction | None) -> Finding:
+    """gap_percent = 100 (1 − efficiency/bound), or 100 (sum/bound − 1) of meetings; null without a bound.
 
     Parameters
     ----------
     file : the plan file
+    case : the trial that it speaks of
     real : the score as it is
     bound : what was proved, None without a bound
     """
     if not bound:
         if file.value("gap_percent") is not None:
-            raise Refuted("gap_percent must be null where nothing bounds the efficiency")
+            raise Refuted("gap_percent must be null where there is no bound")
         return Finding("gap", True, "none is told, for there is no bound")
-    percent = _gap(real, bound).times(Fraction(100))
+    percent = _gap(case, real, bound).times(Fraction(100))
     claimed = file.number("gap_percent")
     if not percent.near(claimed, PERCENT):
         raise Refuted(f"gap_percent is claimed to be {told(claimed)}, but is {told(percent.high)}")
@@ -56,8 +57,12 @@ _MEANING = {
 
 
 def is_balanced(case: Case, plan: Information) -> bool:
-    """Whether C is completely symmetric with the greatest trace, for an aim that treats pairs alike."""
-    alike = case.aim in (AimKind.ALL_PAIRS, AimKind.OVERALL)
+    """Whether C is completely symmetric with the greatest trace, for an aim that treats pairs alike.
+
+    No plan has then a smaller average variance, and none a smaller largest one. Meetings of blocks of unlike
+    sizes need not be even for that: whether they are is asked of the bound.
+    """
+    alike = case.aim not in (AimKind.AGAINST_CONTROL, AimKind.CONTRASTS)
     trace = Fraction(plan.trace_scaled, plan.scale)
     return alike and plan.completely_symmetric and trace == greatest_trace(case.rules)
 
@@ -66,12 +71,14 @@ def _standings(case: Case, plan: Information, real: Truth, bound: Fraction | Non
     """The words that hold; two only where an enclosure cannot tell a gap from one in a million."""
     if not bound or not real.connected:
         return ("feasible",)
-    if is_balanced(case, plan):
+    gap = _gap(case, real, bound)
+    if is_balanced(case, plan) and (gap.high <= 0 or not case.aim.counts_meetings):
         return ("balanced",)
-    gap = _gap(real, bound)
     proven = ("proven optimal",) if gap.low <= PROVEN else ()
     return proven + (("bounded",) if gap.high > PROVEN else ())
 
 
-def _gap(real: Truth, bound: Fraction) -> Interval:
+def _gap(case: Case, real: Truth, bound: Fraction) -> Interval:
+    if case.aim.counts_meetings:
+        return Interval.exactly(real.aim.low / bound - 1)
     return real.aim.times(1 / bound).less_than_one_by()

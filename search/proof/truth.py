@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 from math import prod
 
-from search.proof import aims, reference
+from search.proof import aims, meetings, reference
 from search.proof.information import Information
 from search.proof.intervals import Interval
 from search.proof.variances import Variances, variances
@@ -15,7 +15,10 @@ from search.trial.records import AimKind, Trial
 
 @dataclass(frozen=True, slots=True)
 class Truth:
-    """The score of a plan as it is; variances are None where the plan is disconnected."""
+    """The score of a plan as it is; variances are None where the plan is disconnected.
+
+    `aim` is the efficiency for the aim, and for even meetings the sum of squared meetings, a whole number.
+    """
 
     aim: Interval
     A: Interval
@@ -37,7 +40,8 @@ def truth(trial: Trial, plan: Information) -> Truth:
         nothing = Interval.exactly(0)
         lost = _replication_kept(trial, plan).less_than_one_by()
         all_ = Interval.exactly(1)
-        return Truth(nothing, nothing, nothing, nothing, None, None, lost, all_, degrees, False, True)
+        aim = _squares(plan) if trial.aim.kind.counts_meetings else nothing
+        return Truth(aim, nothing, nothing, nothing, None, None, lost, all_, degrees, False, True)
 
     found = variances(plan)
     average, largest = aims.average_pair_variance(found), aims.largest_pair_variance(found)
@@ -49,6 +53,10 @@ def truth(trial: Trial, plan: Information) -> Truth:
             aim = A
         case AimKind.OVERALL:
             aim = D
+        case AimKind.WORST_PAIR:
+            aim = worst
+        case AimKind.EVEN_MEETINGS:
+            aim = _squares(plan)
         case _:
             aim = aims.mean_variance(trial, found).under(
                 reference.least_mean_variance(trial, aims.weights(trial))
@@ -68,11 +76,21 @@ def truth(trial: Trial, plan: Information) -> Truth:
     )
 
 
+def _squares(plan: Information) -> Interval:
+    return Interval.exactly(meetings.sum_of_squares(plan))
+
+
 def _replication_kept(trial: Trial, plan: Information) -> Interval:
-    """Efficiency of the plan's own replication without blocks, for the trial's aim."""
+    """Efficiency of the plan's own replication without blocks, for the trial's aim.
+
+    For even meetings, which mean nothing without blocks, that of all pairs.
+    """
     if trial.aim.kind is AimKind.OVERALL:
         own = Fraction(prod(plan.replication) * trial.t, trial.n)
         return Interval.exactly(own / reference.best_determinant(trial)).root(trial.t - 1)
+    if trial.aim.kind is AimKind.WORST_PAIR:
+        own = reference.worst_pair_without_blocks(plan.replication)
+        return Interval.exactly(reference.least_worst_pair(trial) / own)
     weights = aims.weights(trial)
     own = reference.mean_variance_without_blocks(plan.replication, weights)
     return Interval.exactly(reference.least_mean_variance(trial, weights) / own)
@@ -83,5 +101,7 @@ def _blocks_kept(trial: Trial, plan: Information, found: Variances) -> Interval:
     if trial.aim.kind is AimKind.OVERALL:
         own = Fraction(prod(plan.replication) * trial.t, trial.n)
         return found.determinant.times(1 / own).root(trial.t - 1)
+    if trial.aim.kind is AimKind.WORST_PAIR:
+        return aims.largest_pair_variance(found).under(reference.worst_pair_without_blocks(plan.replication))
     own = reference.mean_variance_without_blocks(plan.replication, aims.weights(trial))
     return aims.mean_variance(trial, found).under(own)

@@ -96,7 +96,7 @@ def _claims(file: Part, trial: Trial, contents: Contents, proof: _Proof) -> None
     plan = information(contents, trial.t)
     real = truth(trial, plan)
     claims = file.part("score")
-    proof.findings.extend(score.compared(claims, real))
+    proof.findings.extend(score.compared(claims, real, case.aim))
     proof.step("meetings", lambda: score.met(claims.part("meetings"), case, plan))
 
     exact: Fraction | None = None
@@ -107,5 +107,5 @@ def _claims(file: Part, trial: Trial, contents: Contents, proof: _Proof) -> None
         return finding
 
     if proof.step("bound", prove_bound):
-        proof.step("gap", lambda: standing.gap_told(file, real, exact))
+        proof.step("gap", lambda: standing.gap_told(file, case, real, exact))
         proof.step("standing", lambda: standing.standing_told(file, case, plan, real, exact))

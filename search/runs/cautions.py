@@ -23,7 +23,7 @@ def cautions(trial: Trial, implied: Limits | None) -> tuple[str, ...]:
     trial : the trial
     implied : what its rules leave of the replication; None where counts clash
     """
-    found = [*_of_connection(trial), *_of_sizes(trial)]
+    found = [*_of_connection(trial), *_of_sizes(trial), *_of_meetings(trial)]
     if implied is not None:
         found += [*_of_replication(trial, implied), *_of_control(trial, implied)]
     return tuple(found)
@@ -77,6 +77,14 @@ def _of_sizes(trial: Trial) -> Iterator[str]:
     large = [block.name for block in trial.blocks if block.plots > MANY_PLOTS]
     if large:
         yield f"blocks of over {MANY_PLOTS} plots are seldom even: {_listed(large)}"
+
+
+def _of_meetings(trial: Trial) -> Iterator[str]:
+    if trial.aim.kind.counts_meetings and trial.rules.twice_in_block:
+        yield (
+            "with twice_in_block plots of one treatment in a block do not meet, so even meetings favour "
+            "repeats, and no bound is told; all pairs may be the aim that is meant"
+        )
 
 
 def _of_replication(trial: Trial, implied: Limits) -> Iterator[str]:

@@ -8,21 +8,21 @@ from collections.abc import Iterator
 from dataclasses import dataclass, field, replace
 
 from search.designs.starts import Start, starts
-from search.efficiency.aims import weights
 from search.efficiency.bounds import all_bounds
-from search.efficiency.evaluator import score
+from search.efficiency.comparing import gap_percent, merit
+from search.efficiency.evaluator import meetings_and_ties, score
 from search.efficiency.records import Bound
 from search.efficiency.reference import reference_product, reference_variance
 from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.plan import Plan
-from search.solvers.records import Outcome, Problem
+from search.solvers.records import Goal, Outcome, Problem, problem_of
 from search.solvers.start import feasible_start, further_starts
 from search.trial.canonical import canonical
 from search.trial.checker import broken_rules
 from search.trial.limits import Limits as Replication
 from search.trial.limits import limits as implied_limits
-from search.trial.records import AimKind, Contents, Trial
-from search.trial.tables import Tables, tables
+from search.trial.records import Aim, AimKind, Contents, Trial
+from search.trial.tables import tables
 
 DECIDE_SECONDS, DECIDE_EFFORT = 600.0, 6.0
 """Where only moves are limited: deterministic work in which the rule solver must find a first plan (about
@@ -31,6 +31,9 @@ MET = 1e-9
 """A plan whose efficiency is within this part of a bound needs no further one."""
 LEAST_SECONDS = 2.0
 """Bounds may take so long even where the search may not."""
+ROUNDS_FOR_TIES = 4
+"""Where a plan is proved to be as even as can be, so many rounds still look for the best average among
+equally even ones."""
 STARTS_SHARE = 0.25
 """Part of a limit in seconds after which no further design is adapted as a start."""
 
@@ -68,6 +71,7 @@ def find(
     stop = stop or Stop(limits)
     implied = implied_limits(trial)
     rules = replace(tables(trial), least=implied.least, most=implied.most)
+    problem = problem_of(trial, rules)
     first, where_from = feasible_start(
         trial,
         rules,
@@ -82,13 +86,13 @@ def find(
     best: Start | None = None
     try:
         best = _best_known(trial, kept, observer, stop)
-        _wait_for_kernels(observer, stop)
+        _wait_for_kernels(problem.goal, observer, stop)
     except KeyboardInterrupt:
         # Before the search could begin: the plans that are there already count.
         start = best or Start(first, where_from)
         outcome = Outcome(start.contents, math.nan, 0, 0.0, Ended.INTERRUPTED, -1, start.where_from)
     else:
-        outcome = _searched(trial, rules, implied, first, best, bounds, stop, seed, workers)
+        outcome = _searched(trial, problem, implied, first, best, bounds, stop, seed, workers)
     bounds.finish(score(trial, outcome.contents).aim)
     broken = broken_rules(trial, outcome.contents)
     if broken:
@@ -111,7 +115,7 @@ def find(
 
 def _searched(
     trial: Trial,
-    rules: Tables,
+    problem: Problem,
     implied: Replication,
     first: Contents,
     best: Start | None,
@@ -124,7 +128,7 @@ def _searched(
 
     stop.restart()
     return search(
-        Problem(rules, weights(trial)),
+        problem,
         first,
         kept=None if best is None else best.contents,
         target=bounds.target,
@@ -135,7 +139,7 @@ def _searched(
             bounds.efficiency(value), moves, seconds
         ),
         known="" if best is None else best.where_from,
-        others=further_starts(trial, rules, implied, seed=seed),
+        others=further_starts(trial, problem.tables, implied, seed=seed),
     )
 
 
@@ -154,9 +158,10 @@ def _best_known(trial: Trial, kept: Contents | None, observer: Observer, stop: S
         candidates.insert(0, Start(kept, "kept plan"))
     if not candidates:
         return None
-    efficiencies = [score(trial, start.contents).aim for start in candidates]
-    best = max(range(len(candidates)), key=lambda i: (efficiencies[i], -i))
-    observer.first_plan(efficiencies[best], candidates[best].where_from)
+    scores = [score(trial, start.contents) for start in candidates]
+    merits = [merit(trial.aim.kind, one.aim, one.aim_variance) for one in scores]
+    best = max(range(len(candidates)), key=lambda i: (merits[i], -i))
+    observer.first_plan(scores[best].aim, candidates[best].where_from)
     return candidates[best]
 
 
@@ -167,24 +172,24 @@ def checked(plan: Plan) -> Plan:
     ------
     RuntimeError : a bound below an achieved plan
     """
-    if plan.bound is not None and plan.score.aim > plan.bound.value * (1 + 1e-9):
+    if plan.bound is not None and plan.is_better_than(plan.bound):
         raise RuntimeError(
             f"bound {plan.bound.value!r} ({plan.bound.argument}) below an achieved plan {plan.score.aim!r}"
         )
     return plan
 
 
-def _wait_for_kernels(observer: Observer, stop: Stop) -> None:
+def _wait_for_kernels(goal: Goal, observer: Observer, stop: Stop) -> None:
     """Load the kernels in a thread of their own, so that an interrupt is heard while they compile."""
     from search.solvers.compiled import are_cached, warm_up
 
-    if not are_cached():
+    if not are_cached(goal):
         observer.note("the search kernels are compiled once on this machine, about 20 s")
     failure: list[BaseException] = []
 
     def load() -> None:
         try:
-            warm_up()
+            warm_up(goal)
         except BaseException as error:
             failure.append(error)
 
@@ -212,34 +217,58 @@ class _Bounds:
 
     def __post_init__(self) -> None:
         self.waiting = iter(all_bounds(self.trial, self.implied, self._has_time))
-        if self.trial.aim.kind is AimKind.OVERALL:
-            product = reference_product(self.trial)
-            logarithm = math.log(product.numerator) - math.log(product.denominator)
-            self.reference = -logarithm / (self.trial.t - 1)
-        else:
-            self.reference = float(reference_variance(self.trial))
+        match self.aim:
+            case AimKind.OVERALL:
+                product = reference_product(self.trial)
+                logarithm = math.log(product.numerator) - math.log(product.denominator)
+                self.reference = -logarithm / (self.trial.t - 1)
+            case AimKind.EVEN_MEETINGS:
+                self.reference = self._least_average()
+            case _:
+                self.reference = float(reference_variance(self.trial))
+
+    @property
+    def aim(self) -> AimKind:
+        """The aim of the trial."""
+        return self.trial.aim.kind
 
     def target(self, round_: int) -> float:
         """One more bound, then the objective at which a plan meets the best of them."""
         self._step()
         if self.best is None:
             return -math.inf
-        if self.trial.aim.kind is AimKind.OVERALL:
-            return self.reference - math.log(self.best.value)
+        match self.aim:
+            case AimKind.OVERALL:
+                return self.reference - math.log(self.best.value)
+            case AimKind.EVEN_MEETINGS:
+                average = self.reference if round_ < ROUNDS_FOR_TIES else math.inf
+                return meetings_and_ties(int(self.best.exact), average)
         return self.reference / self.best.value
 
     def efficiency(self, objective: float) -> float:
-        """The efficiency for the trial's aim of a plan with this objective."""
+        """The score for the trial's aim of a plan with this objective: mostly an efficiency."""
+        if self.aim.counts_meetings:
+            return math.floor(objective) if math.isfinite(objective) else math.inf
         if not math.isfinite(objective):
             return 0.0
-        if self.trial.aim.kind is AimKind.OVERALL:
+        if self.aim is AimKind.OVERALL:
             return math.exp(self.reference - objective)
         return self.reference / objective
 
     def finish(self, reached: float) -> None:
-        """Find the bounds that are left, unless a plan of the efficiency reached meets one."""
-        while (self.best is None or reached < self.best.value * (1 - MET)) and self._step():
+        """Find the bounds that are left, unless a plan with the score reached meets one."""
+        while not self._is_met(reached) and self._step():
             pass
+
+    def _is_met(self, reached: float) -> bool:
+        return self.best is not None and gap_percent(self.aim, reached, self.best.value) <= 100 * MET
+
+    def _least_average(self) -> float:
+        """A number that quick arguments show the average pair variance of no plan to be below."""
+        alike = replace(self.trial, aim=Aim())
+        quick = all_bounds(alike, self.implied, lambda seconds: False)
+        best = min((bound.exact for bound in quick), default=None)
+        return 0.0 if best is None else float(reference_variance(alike) / best)
 
     def _has_time(self, seconds: float) -> bool:
         """Whether a bound that takes so long fits into the time of the search; without a limit it does."""
@@ -250,7 +279,7 @@ class _Bounds:
         bound = next(self.waiting, None)
         if bound is None:
             return False
-        if self.best is None or bound.exact < self.best.exact:
+        if bound.beats(self.best):
             self.best = bound
             self.observer.bound(bound.value, bound.argument)
         return True

@@ -6,13 +6,14 @@ from dataclasses import dataclass
 from pathlib import Path
 from types import TracebackType
 
+from search.efficiency.comparing import beats, gap_percent, merit
 from search.efficiency.evaluator import score
 from search.efficiency.records import Bound
 from search.foundation.errors import BadInput
 from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.conductor import find
-from search.runs.kept import SAME_SCORE, KeptBound, KeptPlan, Run, problem_of
-from search.runs.plan import Plan
+from search.runs.kept import KeptBound, KeptPlan, Run, problem_of
+from search.runs.plan import WRONG, Plan
 from search.runs.store import DEFAULT_PATH, Store
 from search.trial.canonical import Canonical, canonical
 from search.trial.carrying import from_canonical, to_canonical
@@ -54,7 +55,7 @@ def recall(store: Store, trial: Trial, numbering: Canonical) -> Recalled:
             contents = plan = None
     if kept.bound is not None:
         bound = _bound(trial, numbering, kept.bound)
-        if bound is None or (plan is not None and plan.score > bound.value * (1 + 1e-9)):
+        if bound is None or (plan is not None and gap_percent(aim, plan.score, bound.value) < -100 * WRONG):
             store.forget_bound(numbering.digest, aim)
             bound = None
     return Recalled(contents, plan, bound)
@@ -200,7 +201,16 @@ class Keeping:
         contents = to_canonical(self.numbering).contents(plan.contents)
         self.store.issued(self.numbering.digest, self.trial.aim.kind.value, contents, mark)
 
-    def better_than(self, efficiency: float) -> float | None:
-        """The efficiency of the kept plan where it is above the one given by more than rounding."""
+    def better_than(self, score: float, average_variance: float | None) -> float | None:
+        """The score of the kept plan where that is better than a plan by more than rounding.
+
+        Parameters
+        ----------
+        score : of the plan, for the aim
+        average_variance : its average pair variance, which ranks equally even plans
+        """
+        aim = self.trial.aim.kind
         kept = recall(self.store, self.trial, self.numbering).plan
-        return kept.score if kept is not None and kept.score > efficiency + SAME_SCORE else None
+        if kept is None or not beats(kept.merit(aim), merit(aim, score, average_variance)):
+            return None
+        return kept.score

@@ -9,12 +9,10 @@ from fractions import Fraction
 from typing import Any
 from uuid import uuid4
 
+from search.efficiency.comparing import Merit, beats, gap_percent, is_tighter, merit
 from search.foundation.versions import versions
 from search.trial.canonical import Canonical
 from search.trial.records import Contents, Trial
-
-SAME_SCORE = 1e-12
-"""Efficiencies closer than this differ by rounding alone."""
 
 
 def now() -> str:
@@ -50,8 +48,8 @@ class KeptPlan:
     Parameters
     ----------
     contents : block contents
-    score : efficiency for the aim
-    objective : the aim's mean variance, None where the aim has none
+    score : efficiency for the aim; for even meetings the sum of squared meetings
+    objective : the aim's mean variance, None where the aim has none or the plan is disconnected
     seed, moves, seconds : of the run that found it
     start : what that run started from
     mark : mark of the packet in which it was issued, or empty
@@ -70,9 +68,13 @@ class KeptPlan:
     versions: Mapping[str, str] = field(default_factory=versions)
     made: str = field(default_factory=now)
 
-    def beats(self, other: KeptPlan | None) -> bool:
-        """Whether it is better by more than rounding."""
-        return other is None or self.score > other.score + SAME_SCORE
+    def beats(self, other: KeptPlan | None, aim: str) -> bool:
+        """Whether it is better for an aim by more than rounding."""
+        return other is None or beats(self.merit(aim), other.merit(aim))
+
+    def merit(self, aim: str) -> Merit:
+        """What it is judged by for an aim."""
+        return merit(aim, self.score, self.objective)
 
 
 @dataclass(frozen=True, slots=True)
@@ -85,9 +87,9 @@ class KeptBound:
     versions: Mapping[str, str] = field(default_factory=versions)
     made: str = field(default_factory=now)
 
-    def beats(self, other: KeptBound | None) -> bool:
-        """Whether it is tighter."""
-        return other is None or self.exact < other.exact
+    def beats(self, other: KeptBound | None, aim: str) -> bool:
+        """Whether it is tighter for an aim."""
+        return other is None or is_tighter(aim, self.exact, other.exact)
 
 
 @dataclass(frozen=True, slots=True)
@@ -100,7 +102,7 @@ class Run:
     limit_seconds, limit_moves : the limits it was given
     moves, seconds : what it took
     ended_by : what brought it to its end
-    score : efficiency of its plan
+    score : of its plan
     start : what its plan started from
     uid : tells the run from every other one, also when stores are merged
     """
@@ -126,12 +128,11 @@ class Kept:
     plan: KeptPlan | None
     bound: KeptBound | None
 
-    @property
-    def gap_percent(self) -> float | None:
-        """How much better the best possible plan could be at most, where both sides are known."""
+    def gap_percent(self, aim: str) -> float | None:
+        """How far the plan is from the bound, where both are known."""
         if self.plan is None or self.bound is None or self.plan.score <= 0:
             return None
-        return max(0.0, 100 * (1 - self.plan.score / float(self.bound.exact)))
+        return max(0.0, gap_percent(aim, self.plan.score, float(self.bound.exact)))
 
 
 @dataclass(frozen=True, slots=True)
@@ -153,10 +154,10 @@ class Entry:
 
     @property
     def gap_percent(self) -> float | None:
-        """How much better the best possible plan could be at most, where a bound is kept."""
+        """How far the plan is from the bound, where one is kept."""
         if self.bound is None or self.score <= 0:
             return None
-        return max(0.0, 100 * (1 - self.score / self.bound))
+        return max(0.0, gap_percent(self.aim, self.score, self.bound))
 
 
 @dataclass(frozen=True, slots=True)

@@ -7,6 +7,7 @@ from enum import StrEnum
 from html import escape
 from typing import TYPE_CHECKING
 
+from search.efficiency.comparing import gap_percent, in_figures, measure
 from search.efficiency.records import Bound, Score
 from search.foundation.stopping import Ended
 from search.trial.records import Contents, Trial
@@ -16,6 +17,10 @@ if TYPE_CHECKING:
 
 PROVEN_PERCENT = 1e-4
 """A gap of at most one part in a million counts as proven optimal: certificates never sit on the optimum."""
+
+
+WRONG = 1e-9
+"""A plan that beats a bound by more than this part of it cannot be."""
 
 
 class Standing(StrEnum):
@@ -44,21 +49,31 @@ class Plan:
 
     @property
     def gap_percent(self) -> float | None:
-        """How far the plan lies below the bound; 0 for a balanced one, 100 for a disconnected one."""
+        """How far the plan is from the bound; 0 for a balanced one, 100 where its efficiency is 0."""
         if self.bound is None:
             return None
         if self.standing is Standing.BALANCED:
             return 0.0
-        return max(0.0, 100.0 * (1.0 - self.score.aim / self.bound.value))
+        return max(0.0, self._distance(self.bound))
+
+    def is_better_than(self, bound: Bound) -> bool:
+        """Whether it beats a bound by more than rounding: then one of the two is wrong."""
+        return self._distance(bound) < -100 * WRONG
+
+    def _distance(self, bound: Bound) -> float:
+        return gap_percent(self.trial.aim.kind, self.score.aim, bound.value)
 
     @property
     def standing(self) -> Standing:
         """Balanced, proven optimal, bounded or feasible."""
         if self.bound is None or not self.score.connected:
             return Standing.FEASIBLE
-        if self.score.balanced and self.trial.aim.kind.treats_pairs_alike:
+        aim, gap = self.trial.aim.kind, self._distance(self.bound)
+        # Balanced with unequal blocks need not be as even as can be: only a met bound tells.
+        best = aim.treats_pairs_alike and (gap <= 0 or not aim.counts_meetings)
+        if self.score.balanced and best:
             return Standing.BALANCED
-        if 100.0 * (1.0 - self.score.aim / self.bound.value) <= PROVEN_PERCENT:
+        if gap <= PROVEN_PERCENT:
             return Standing.PROVEN_OPTIMAL
         return Standing.BOUNDED
 
@@ -84,8 +99,9 @@ class Plan:
             for j, block in enumerate(self.contents)
         )
         gap = self.gap_percent
-        known = "no bound" if gap is None else f"at most {gap:.3g}% below the best possible"
+        aim = trial.aim.kind
+        known = "no bound" if gap is None else f"at most {gap:.3g}% from the best possible"
         return (
-            f"<p><b>{escape(trial.name)}</b>: efficiency {self.score.aim:.4f} "
+            f"<p><b>{escape(trial.name)}</b>: {measure(aim)} {in_figures(aim, self.score.aim, 4)} "
             f"({escape(trial.aim.kind.value)}), {known}, {self.standing.value}</p><table>{rows}</table>"
         )

@@ -27,15 +27,18 @@ class Prospects:
     Parameters
     ----------
     compared : which differences the figures speak of
-    bound : no plan has an efficiency above it, as far as quick arguments tell; None where none applies
+    aim : the aim that `bound` and `first` are for
+    bound : no plan has an efficiency above it (for even meetings: a sum of squared meetings below it), as
+        far as quick arguments tell; None where none applies
     argument : the argument behind it
-    first : efficiency of the first plan found; 0 where it is disconnected
+    first : the same of the first plan found; an efficiency is 0 where it is disconnected
     unit : of the differences
     at_best, with_first : difference that is detected with the power asked for, at best and with the first
         plan, on average over what is compared; None where nothing can be tested
     """
 
     compared: str
+    aim: AimKind
     bound: float | None
     argument: str
     first: float
@@ -57,20 +60,26 @@ def prospects(trial: Trial, implied: Limits, first: Contents) -> Prospects | Non
     """
     if trial.t > MOST_TREATMENTS:
         return None
-    compared = "differences of this aim"
-    if trial.aim.kind in (AimKind.ALL_PAIRS, AimKind.OVERALL):
-        # The overall aim speaks of no single difference: its pairs are told.
+    asked, compared = trial, "differences of this aim"
+    if trial.aim.kind in (AimKind.ALL_PAIRS, AimKind.OVERALL, AimKind.EVEN_MEETINGS):
+        # The overall aim and even meetings speak of no single difference: all pairs are told.
         trial, compared = replace(trial, aim=Aim(AimKind.ALL_PAIRS)), "pairs, on average"
+    elif trial.aim.kind is AimKind.WORST_PAIR:
+        compared = "the worst pair"
     bound = _quick_bound(trial, implied)
     plan = score(trial, first)
     df = trial.n - trial.b - trial.t + 1
     best = None if bound is None else float(reference_variance(trial)) / bound.value
+    counted = asked.aim.kind.counts_meetings
+    if counted:
+        bound = _quick_bound(asked, implied)
     deviation, unit = _plot_deviation(trial)
     return Prospects(
         compared=compared,
+        aim=asked.aim.kind if counted else trial.aim.kind,
         bound=None if bound is None else bound.value,
         argument="" if bound is None else bound.argument,
-        first=plan.aim,
+        first=score(asked, first).aim if counted else plan.aim,
         unit=unit,
         at_best=_detectable(trial, best, df, deviation),
         with_first=_detectable(trial, plan.aim_variance, plan.residual_df, deviation),
@@ -80,7 +89,10 @@ def prospects(trial: Trial, implied: Limits, first: Contents) -> Prospects | Non
 def _quick_bound(trial: Trial, implied: Limits) -> Bound | None:
     started = time.monotonic()
     bounds = all_bounds(trial, implied, lambda more: time.monotonic() - started + more <= BOUND_SECONDS)
-    return min(bounds, key=lambda bound: bound.exact, default=None)
+    best: Bound | None = None
+    for bound in bounds:
+        best = bound if bound.beats(best) else best
+    return best
 
 
 def _plot_deviation(trial: Trial) -> tuple[float, str]:

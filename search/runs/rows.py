@@ -12,7 +12,7 @@ from typing import Any
 
 from search.foundation.documents import canonical_json
 from search.runs.kept import Entry, KeptBound, KeptPlan, Problem, Run
-from search.trial.records import Contents
+from search.trial.records import AimKind, Contents
 
 Row = tuple[Any, ...]
 Types = Mapping[str, type | tuple[type, ...]]
@@ -95,7 +95,7 @@ def problem_from(row: Row) -> Problem:
     return Problem(**values | {"sizes": sizes})
 
 
-def plan_from(row: Row, problem: Problem) -> KeptPlan:
+def plan_from(row: Row, problem: Problem, aim: str) -> KeptPlan:
     """A plan of a problem, its shape and sizes checked; whether it obeys the rules is for others to ask.
 
     Raises
@@ -103,7 +103,7 @@ def plan_from(row: Row, problem: Problem) -> KeptPlan:
     Damaged : the row is none
     """
     values = _typed(row, PLAN)
-    _check_efficiency(values["score"])
+    _check_score(values["score"], aim)
     contents = _contents(values["contents"], problem)
     return KeptPlan(**values | {"contents": contents, "versions": _versions(values["versions"])})
 
@@ -145,7 +145,7 @@ def entry_from(row: Row) -> Entry:
     Damaged : the row is none
     """
     values = _typed(row, ENTRY)
-    _check_efficiency(values["score"])
+    _check_score(values["score"], values["aim"])
     return Entry(**values | {"sizes": _sizes(values["sizes"])})
 
 
@@ -158,8 +158,9 @@ def _typed(row: Row, types: Types) -> dict[str, Any]:
     return values
 
 
-def _check_efficiency(value: float) -> None:
-    if not 0 <= value <= 1 + 1e-9:
+def _check_score(value: float, aim: str) -> None:
+    sensible = value >= 0 and value.is_integer() if aim == AimKind.EVEN_MEETINGS else 0 <= value <= 1 + 1e-9
+    if not sensible:
         raise Damaged("score")
 
 

@@ -88,9 +88,9 @@ class Store:
         with self._database.writing() as connection:
             self._write_problem(problem)
             kept = self._kept(problem, aim)
-            if plan is not None and plan.beats(kept.plan):
+            if plan is not None and plan.beats(kept.plan, aim):
                 connection.execute(_insert("plan", rows.PLAN, "digest", "aim"), (*written(plan), *key))
-            if bound is not None and bound.beats(kept.bound):
+            if bound is not None and bound.beats(kept.bound, aim):
                 row = *written(bound), float(bound.exact), *key
                 connection.execute(_insert("bound", rows.BOUND, "value", "digest", "aim"), row)
             if run is not None:
@@ -223,7 +223,7 @@ class Store:
             query = f"SELECT {_names(types)} FROM {table} WHERE digest = ? AND aim = ?"
             return self._database.connection.execute(query, (problem.digest, aim)).fetchall()
 
-        plans = _whole(lambda row: rows.plan_from(row, problem), one("plan", rows.PLAN))
+        plans = _whole(lambda row: rows.plan_from(row, problem, aim), one("plan", rows.PLAN))
         bounds = _whole(rows.bound_from, one("bound", rows.BOUND))
         return Kept(next(plans, None), next(bounds, None))
 

@@ -24,6 +24,7 @@ from search.runs.keeping import covers, recall, remember, run_of
 from search.runs.plan import Plan
 from search.runs.store import Store
 from search.runs.sweep_file import Sweep, SweepRow
+from search.solvers.records import Goal, goal_of
 from search.trial.canonical import Canonical, canonical
 from search.trial.records import Contents, Trial
 
@@ -244,7 +245,7 @@ class _Sweeping:
 
     def search(self, tasks: list[_Task]) -> None:
         """Make the searches, `workers` of them at a time, and take each as it ends."""
-        self.make_kernels_ready()
+        self.make_kernels_ready({goal_of(task.trial.aim.kind) for task in tasks})
         self.started = time.monotonic()
         self.observer.progress(self.progress())
         by_number = {task.rows[0].number: task for task in tasks}
@@ -254,13 +255,14 @@ class _Sweeping:
             for found in all_found:
                 self.take(by_number[found.number], found)
 
-    def make_kernels_ready(self) -> None:
+    def make_kernels_ready(self, goals: set[Goal]) -> None:
         """Compile once, here: children that start cold would each compile for themselves."""
         from search.solvers.compiled import are_cached, warm_up
 
-        if not are_cached():
+        if not all(are_cached(goal) for goal in goals):
             self.observer.note("the search kernels are compiled once on this machine, about 20 s")
-        warm_up()
+        for goal in sorted(goals):
+            warm_up(goal)
 
     def take(self, task: _Task, found: _Found) -> None:
         """Keep what a search found, and end the rows that it answers.

@@ -18,9 +18,10 @@ WHOLE = ("row", "t", "b", "n", "residual_df", "seed", "moves")
 def sweep_frame(result: SweepResult) -> pd.DataFrame:
     """A sweep as a table.
 
-    Columns: row; what varies; t, b, n, aim; status; best_found and bound (efficiencies for the aim);
-    gap_percent; standing; losses in percent; residual_df; reason where there is no plan; seed, moves,
-    seconds and start of the search that found the plan; where_from; digest of the problem.
+    Columns: row; what varies; t, b, n, aim; status; best_found and bound (efficiencies for the aim, for
+    even meetings sums of squared meetings); gap_percent; standing; losses in percent; residual_df; reason
+    where there is no plan; seed, moves, seconds and start of the search that found the plan; where_from;
+    digest of the problem.
     """
     import pandas as pd
 

@@ -11,7 +11,8 @@ from search.foundation.stopping import Stop
 from search.solvers.board import board_of, contents_on, objective, unit_of
 from search.solvers.compiled import kernel
 from search.solvers.records import Problem
-from search.solvers.walk import ROUNDING, Report, Walk, quiet
+from search.solvers.walk import ROUNDING, Report, quiet
+from search.solvers.walks import walk_from
 from search.trial.records import Contents
 
 Stream = NDArray[np.uint64]
@@ -27,8 +28,6 @@ HEATING = 1.25
 """Step from one temperature tried to the next."""
 SPAN = 10.0
 """A run cools from its first temperature to this part of it."""
-DESCENT = 5
-"""One move in so many of a run is left for its descent."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,9 +73,10 @@ def anneal(
     stop : cuts the run short: then it makes moves that do not worsen its plan for a tenth of a second
     report : told of moves scored, call by call
     """
-    walk = Walk(problem, start, random, stop, report)
-    walk.cool(cooling.hot, cooling.cold, moves - moves // DESCENT)
-    walk.descend(moves // DESCENT)
+    walk = walk_from(problem, start, random, stop, report)
+    descent = moves // walk.descent
+    walk.cool(cooling.hot, cooling.cold, moves - descent)
+    walk.descend(descent)
     return Found(walk.contents, objective(problem, walk.contents), walk.moves)
 
 
@@ -116,7 +116,7 @@ def connected(problem: Problem, contents: Contents, random: Stream, stop: Stop) 
 
 def movable(problem: Problem, contents: Contents, random: Stream, stop: Stop) -> bool:
     """Whether any legal move starts from a connected plan, one that disconnects it included."""
-    if Walk(problem, contents, random, stop).best_move(np.inf) is not None:
+    if walk_from(problem, contents, random, stop).best_move(np.inf) is not None:
         return True
     made, _ = kernel().wander(board_of(problem, contents).plain, random, CONNECTING_WORK, False)
     return bool(made)
@@ -136,7 +136,7 @@ def calibrated(problem: Problem, start: Contents, random: Stream, stop: Stop) ->
     random : a random stream
     stop : ends the attempt
     """
-    walk = Walk(problem, scrambled(problem, start, random, stop), random, stop)
+    walk = walk_from(problem, scrambled(problem, start, random, stop), random, stop)
     points = problem.tables.t + problem.tables.b
     probed = max(PROBED, PROBED_PER_POINT * points)
     rises = walk.rises(probed)

@@ -7,9 +7,16 @@ from typing import TYPE_CHECKING, Any, NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from search.efficiency.evaluator import components, information_matrix, log_pseudo_determinant, pseudo_inverse
+from search.efficiency.balance import squared_meetings
+from search.efficiency.evaluator import (
+    components,
+    information_matrix,
+    log_pseudo_determinant,
+    meetings_and_ties,
+    pseudo_inverse,
+)
 from search.solvers.compiled import kernel
-from search.solvers.records import Floats, Problem
+from search.solvers.records import Floats, Goal, Problem
 from search.trial.records import Contents
 from search.trial.tables import Tables, contents_of, incidence
 
@@ -32,19 +39,29 @@ class Board(NamedTuple):
 
 
 def objective(problem: Problem, contents: Contents) -> float:
-    """The aim's objective from scratch: `tr(W C⁺)`, or `−log pdet(C)/(t−1)`; inf if disconnected."""
+    """The aim's objective from scratch, see `search.efficiency.evaluator.objective`; inf if disconnected."""
     t = problem.tables.t
     if components(contents, t) > 1:
         return float("inf")
     information = information_matrix(contents, t)
     if problem.weights is None:
         return -log_pseudo_determinant(information) / (t - 1)
-    return float((problem.weights * pseudo_inverse(information)).sum())
+    inverse = pseudo_inverse(information)
+    if problem.goal is Goal.WORST:
+        own = np.diag(inverse)
+        return float((own[:, None] + own[None, :] - 2 * inverse).max())
+    mean = float((problem.weights * inverse).sum())
+    if problem.goal is Goal.MEETINGS:
+        return meetings_and_ties(squared_meetings(contents, t), mean)
+    return mean
 
 
 def unit_of(problem: Problem, value: float) -> float:
-    """What tolerances of an objective are parts of: a trace is measured by its own size, a logarithm by 1."""
-    return 1.0 if problem.weights is None else abs(value)
+    """What tolerances of an objective are parts of.
+
+    A variance is measured by its own size, a logarithm by 1, and so is what ranks equally even plans.
+    """
+    return 1.0 if problem.weights is None or problem.goal is Goal.MEETINGS else abs(value)
 
 
 def board_of(problem: Problem, contents: Contents) -> Board:

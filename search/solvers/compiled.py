@@ -9,8 +9,16 @@ from functools import cache
 from pathlib import Path
 from types import ModuleType
 
+from search.solvers.records import Goal
+
 ENTRIES = ("wander", "make_move", "anneal", "best_move")
 """The functions of the kernel that are compiled and kept."""
+MORE_ENTRIES = {
+    Goal.SPREAD: (),
+    Goal.MEETINGS: ("anneal_meetings", "anneal_ties", "best_even_move", "make_even_move"),
+    Goal.WORST: ("list_worst", "anneal_worst", "best_worst_move"),
+}
+"""Those that only one goal needs."""
 
 
 def cache_folder() -> Path:
@@ -35,20 +43,22 @@ def _writable(folder: Path) -> bool:
         return False
 
 
-def are_cached() -> bool:
+def are_cached(goal: Goal = Goal.SPREAD) -> bool:
     """Whether the kernel of this version was compiled before on this machine, as far as can be seen."""
     folder = Path(os.environ.get("NUMBA_CACHE_DIR") or cache_folder())
     written = Path(__file__).with_name("kernel.py").stat().st_mtime
     python = f"py{sys.version_info.major}{sys.version_info.minor}"
     return all(
         any(index.stat().st_mtime >= written for index in folder.glob(f"**/kernel.{entry}-*.{python}*.nbi"))
-        for entry in ENTRIES
+        for entry in (*ENTRIES, *MORE_ENTRIES[goal])
     )
 
 
-def warm_up() -> None:
+def warm_up(goal: Goal = Goal.SPREAD) -> None:
     """Load the compiled kernels, or compile them; where none is kept this takes about 10 seconds."""
-    kernel()
+    module = kernel()
+    for entry in MORE_ENTRIES[goal]:
+        getattr(module, entry).warm_up()
 
 
 @cache

@@ -34,6 +34,7 @@ Everything here also runs as plain Python, with NUMBA_DISABLE_JIT=1.
 
 from __future__ import annotations
 
+from functools import cache, wraps
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -140,6 +141,22 @@ _inner = njit(no_cpython_wrapper=True, no_cfunc_wrapper=True, **_plainly)
 
 def _entry(signature):
     return njit([signature], cache=True, **_plainly)
+
+
+def _late(signature):
+    """An entry point of an aim that few trials have: compiled, or loaded, when it is called or warmed up."""
+
+    def entry(function):
+        compiled = cache(lambda: _entry(signature)(function))
+
+        @wraps(function)
+        def call(*arguments):
+            return compiled()(*arguments)
+
+        call.warm_up = compiled
+        return call
+
+    return entry
 
 
 @_hot
@@ -709,3 +726,446 @@ def best_move(board, begin, end, below):
         if plot >= 0:
             best_plot, best_partner, below = plot, partner, rise
     return scored, best_plot, best_partner, below
+
+
+# --- even meetings --------------------------------------------------------------------------------
+#
+# With the concurrences M = NN', T = N'M and X = N'N every move changes N by d f', d = e_u − e_v and
+# f = e_c − e_a (f = −e_a to replace). With q = Nf and s = f'f, M grows by d w' + w d', w = q + ½ s d, so
+#
+#     the sum of all M² grows by  4 d'Mq + 2s d'Md + 4 q'q + 4s d'q + 2s² + 2(d'q + s)²
+#
+# of which d'Mq is four entries of T and q'q three of X. Off the diagonal, and each pair once, it is half
+# of that less what the two entries M_uu and M_vv that change bring. An accepted move costs O(t + b + rk).
+
+
+class Concurrences(NamedTuple):
+    """How often treatments meet, in whole numbers."""
+
+    pairs: Any
+    """(t, t) M = NN'"""
+    sums: Any
+    """(b, t) T = N'M: the meetings of a treatment with all that stands in a block"""
+    common: Any
+    """(b, b) X = N'N"""
+
+
+_MEETINGS = types.Tuple((_I2, _I2, _I2))
+
+
+@_hot
+def _more_squares(copies, table, u, v, a, c):
+    """How much a move raises the sum of squared concurrences over pairs of treatments."""
+    pairs, sums, common = table.pairs, table.sums, table.common
+    q_u, q_v = -np.int64(copies[a, u]), -np.int64(copies[a, v])
+    in_m, qq, s = np.int64(sums[a, v]) - np.int64(sums[a, u]), np.int64(common[a, a]), np.int64(1)
+    if c >= 0:
+        q_u += np.int64(copies[c, u])
+        q_v += np.int64(copies[c, v])
+        in_m += np.int64(sums[c, u]) - np.int64(sums[c, v])
+        qq += np.int64(common[c, c]) - 2 * np.int64(common[a, c])
+        s = np.int64(2)
+    m_u, m_v, dq = np.int64(pairs[u, u]), np.int64(pairs[v, v]), q_u - q_v
+    dmd = m_u + m_v - 2 * np.int64(pairs[u, v])
+    whole = 4 * in_m + 2 * s * dmd + 4 * qq + 4 * s * dq + 2 * s * s + 2 * (dq + s) * (dq + s)
+    more_u, more_v = 2 * q_u + s, s - 2 * q_v
+    own = more_u * (2 * m_u + more_u) + more_v * (2 * m_v + more_v)
+    return (whole - own) // 2
+
+
+@_inner
+def _meet_in(beds, planted, pairs, u, v, block, by):
+    """Enter that u shares a block with its plots so much more often, and v less."""
+    begin, end = _span(beds, block)
+    for plot in range(begin, end):
+        i = np.int64(planted[plot])
+        if i != u and i != v:
+            pairs[u, i] += by
+            pairs[i, u] += by
+            pairs[v, i] -= by
+            pairs[i, v] -= by
+
+
+@_inner
+def _spread_in(beds, planted, sums, row, u, v, block, by):
+    """Add to the sums of one block a number for each plot of another, u and v left out."""
+    begin, end = _span(beds, block)
+    for plot in range(begin, end):
+        i = np.int64(planted[plot])
+        if i != u and i != v:
+            sums[row, i] += by
+
+
+@_inner
+def _record_concurrences(beds, planting, table, u, v, a, c):
+    """Bring the concurrences up to date with a move that is about to be made."""
+    planted, copies = planting.planted, planting.copies
+    pairs, sums, common = table.pairs, table.sums, table.common
+    t, b = len(planting.plots), len(beds.blocks)
+    q_u, q_v, s = -int(copies[a, u]), -int(copies[a, v]), 1
+    if c >= 0:
+        q_u, q_v, s = q_u + int(copies[c, u]), q_v + int(copies[c, v]), 2
+    for i in range(t):  # the blocks that change hold other treatments now, which meet as before
+        d = pairs[u, i] - pairs[v, i]
+        sums[a, i] -= d
+        if c >= 0:
+            sums[c, i] += d
+    more_uu, more_vv, more_uv = 2 * q_u + s, s - 2 * q_v, q_v - q_u - s
+    for block in range(b):  # and in all blocks meet otherwise than before
+        n_u, n_v = int(copies[block, u]), int(copies[block, v])
+        others = -int(common[block, a]) - n_u * q_u - n_v * q_v
+        if c >= 0:
+            others += int(common[block, c])
+        if block == a:
+            n_u, n_v = n_u - 1, n_v + 1
+        elif block == c:
+            n_u, n_v = n_u + 1, n_v - 1
+        sums[block, u] += n_u * more_uu + n_v * more_uv + others
+        sums[block, v] += n_v * more_vv + n_u * more_uv - others
+        if n_u != n_v:
+            _spread_in(beds, planted, sums, block, u, v, a, n_v - n_u)
+            if c >= 0:
+                _spread_in(beds, planted, sums, block, u, v, c, n_u - n_v)
+    _meet_in(beds, planted, pairs, u, v, a, -1)
+    if c >= 0:
+        _meet_in(beds, planted, pairs, u, v, c, 1)
+    pairs[u, u] += more_uu
+    pairs[v, v] += more_vv
+    pairs[u, v] += more_uv
+    pairs[v, u] += more_uv
+    _record_common(planting.copies, common, u, v, a, c)
+
+
+@_inner
+def _record_common(copies, common, u, v, a, c):
+    """Bring the products of blocks up to date: X grows by f y' + y f' + 2 f f' with y = N'd."""
+    for block in range(len(common)):
+        y = int(copies[block, u]) - int(copies[block, v])
+        common[a, block] -= y
+        common[block, a] -= y
+        if c >= 0:
+            common[c, block] += y
+            common[block, c] += y
+    common[a, a] += 2
+    if c >= 0:
+        common[c, c] += 2
+        common[a, c] -= 2
+        common[c, a] -= 2
+
+
+@_hot
+def _stays_near(copies, table, i, block):
+    """Whether i shares another block with somebody of this one, so that leaving it parts nothing."""
+    mine, own = np.int64(copies[block, i]), np.int64(table.pairs[i, i])
+    here = mine * np.int64(table.common[block, block]) + mine * (own - mine * mine)
+    return np.int64(table.sums[block, i]) > here
+
+
+@_inner
+def _stays_connected(beds, admitted, planting, table, plot, partner, u, v, a, c):
+    """Whether a legal move of a connected plan leaves it connected: O(1), where that is not plain O(n)."""
+    copies = planting.copies
+    near = _stays_near(copies, table, u, a) and copies[a, v] == 0
+    if near and (c < 0 or (copies[c, u] == 0 and _stays_near(copies, table, v, c))):
+        return True
+    _plant(admitted, planting, plot, partner, u, v, a, c)
+    parts = _parts(beds, planting, len(planting.plots))
+    _plant(admitted, planting, plot, partner, v, u, a, c)
+    return parts == 1
+
+
+@_late(types.UniTuple(_INT, 5)(_BOARD, _MEETINGS, _RANDOM, _FLOAT, _FLOAT, _INT, _INT, _INT, _F1))
+def anneal_meetings(board, table, random, temperature, cooling, moves, tries, most_accepted, rises):
+    """The same as `anneal` for the sum of squared concurrences; the distances are left behind.
+
+    Returns the moves scored, drawn, accepted, and accepted though they raise the sum, and its change.
+    """
+    beds, admitted, planting, _ = _named(board)
+    table = Concurrences(*table)
+    scored, drawn, accepted, climbed, change = 0, 0, 0, 0, 0
+    while scored < moves and drawn < tries and accepted < most_accepted:
+        drawn += 1
+        plot, partner, place = _draw(beds, random)
+        u, v, a, c = _read(beds, planting.planted, plot, partner)
+        if not _may(admitted, planting, u, v, a, c):
+            continue
+        rise = _more_squares(planting.copies, table, u, v, a, c)
+        if scored < len(rises):
+            rises[scored] = rise
+        scored += 1
+        allowed = temperature * DRAWS[place]
+        temperature *= cooling
+        if not rise <= allowed or not _meets(beds, admitted, planting, u, v, a, c):
+            continue
+        if not _stays_connected(beds, admitted, planting, table, plot, partner, u, v, a, c):
+            continue
+        _record_concurrences(beds, planting, table, u, v, a, c)
+        _plant(admitted, planting, plot, partner, u, v, a, c)
+        accepted += 1
+        climbed += int(rise > 0)
+        change += rise
+    return scored, drawn, accepted, climbed, change
+
+
+@_late(types.UniTuple(_INT, 5)(_BOARD, _MEETINGS, _RANDOM, _FLOAT, _FLOAT, _INT, _INT, _INT, _F1))
+def anneal_ties(board, table, random, temperature, cooling, moves, tries, most_accepted, rises):
+    """The same as `anneal`, within the moves that do not raise the sum of squared concurrences.
+
+    Moves that lower it are made whatever they cost. Returns the moves scored, drawn, accepted, and
+    accepted though they raise the objective, and the change of the sum.
+    """
+    beds, admitted, planting, distances = _named(board)
+    table = Concurrences(*table)
+    planted, t = planting.planted, _treatments(planting)
+    scored, drawn, accepted, climbed, change, listed = 0, 0, 0, 0, 0, 0
+    while scored < moves and drawn < tries and accepted < most_accepted:
+        drawn += 1
+        plot, partner, place = _draw(beds, random)
+        u, v, a, c = _read(beds, planted, plot, partner)
+        if not _may(admitted, planting, u, v, a, c):
+            continue
+        more = _more_squares(planting.copies, table, u, v, a, c)
+        scored += 1
+        allowed = temperature * DRAWS[place]
+        temperature *= cooling
+        if more > 0:
+            continue
+        rise, ratio = _score(beds.share, distances, t, u, v, a, c)
+        if listed < len(rises):
+            rises[listed] = rise
+            listed += 1
+        if ratio < LEAST_RATIO or (more == 0 and not rise <= allowed):
+            continue
+        same = more == 0 and abs(rise) < NOTHING
+        if same and _products(beds.share, distances.variance, t, u, v, a, c)[2] < NOTHING:
+            continue  # two blocks would only swap their names
+        if _meets(beds, admitted, planting, u, v, a, c):
+            _move_points(beds, planted, distances, t, u, v, a, c)
+            _record_concurrences(beds, planting, table, u, v, a, c)
+            _plant(admitted, planting, plot, partner, u, v, a, c)
+            accepted += 1
+            climbed += int(rise > NOTHING)
+            change += more
+    return scored, drawn, accepted, climbed, change
+
+
+@_late(types.Tuple((_INT, _INT, _INT, _INT, _FLOAT))(_BOARD, _MEETINGS, _INT, _INT, _INT, _FLOAT))
+def best_even_move(board, table, begin, end, squares, below):
+    """The best legal move of the blocks from begin to before end: by its squares first, then by its rise.
+
+    Only moves that raise the sum of squared concurrences by less than `squares`, or by as much and the
+    objective by less than `below`. Returns the moves scored, the move (plot −1 for none) and both rises.
+    """
+    beds, admitted, planting, distances = _named(board)
+    table = Concurrences(*table)
+    planted, t = planting.planted, _treatments(planting)
+    scored, best_plot, best_partner, plots = np.int64(0), np.int64(-1), np.int64(-1), len(planted)
+    for a in range(begin, end):
+        first, last = _span(beds, a)
+        pool = np.int64(beds.blocks[a, POOL_FIRST]) + np.int64(beds.blocks[a, POOL_PLOTS])
+        loose = np.int64(beds.blocks[a, REACH]) - np.int64(beds.blocks[a, POOL_PLOTS])
+        for plot in range(first, last):
+            for choice in range(last, pool + loose):
+                partner = choice if choice < pool else plots + np.int64(beds.loose[choice - pool])
+                u, v, _, c = _read(beds, planted, plot, partner)
+                if not _may(admitted, planting, u, v, a, c):
+                    continue
+                scored += 1
+                more = _more_squares(planting.copies, table, u, v, a, c)
+                if more > squares:
+                    continue
+                rise, ratio = _score(beds.share, distances, t, u, v, a, c)
+                if ratio < LEAST_RATIO or (more == squares and not rise < below):
+                    continue
+                if _meets(beds, admitted, planting, u, v, a, c):
+                    squares, below, best_plot, best_partner = more, rise, plot, partner
+    return scored, best_plot, best_partner, squares, below
+
+
+@_late(_INT(_BOARD, _MEETINGS, _INT, _INT))
+def make_even_move(board, table, plot, partner):
+    """Make a legal move of a connected plan; returns how much the sum of squared concurrences rises."""
+    beds, admitted, planting, distances = _named(board)
+    table = Concurrences(*table)
+    t = _treatments(planting)
+    u, v, a, c = _read(beds, planting.planted, plot, partner)
+    more = _more_squares(planting.copies, table, u, v, a, c)
+    _move_points(beds, planting.planted, distances, t, u, v, a, c)
+    _record_concurrences(beds, planting, table, u, v, a, c)
+    _plant(admitted, planting, plot, partner, u, v, a, c)
+    return more
+
+
+# --- worst pair -----------------------------------------------------------------------------------
+#
+# A move changes the variance of the pair x, y by (γ p² − 2(1 + β) p q + α q²)/ratio with
+# p = d'G(e_x − e_y) and q = w'G(e_x − e_y), a few entries of `variance`. So pairs are tested in falling
+# order of their variance, and a move is refused at the first one above the limit; one that passes
+# is tested on all pairs.
+
+
+class Worst(NamedTuple):
+    """The pairs with the largest variances, in falling order."""
+
+    first: Any
+    second: Any
+    """(most,) the two treatments of each pair"""
+    variance: Any
+    """(most,) as it was when the list was made"""
+    state: Any
+    """(3,) the number of pairs listed, the largest variance, and how far below it pairs are listed"""
+
+
+LISTED, LARGEST, DEPTH = range(3)
+"""Places in `Worst.state`."""
+
+_WORST = types.Tuple((_U1, _U1, _F1, _F1))
+EQUAL = 1e-11
+"""Largest variances that differ by less are equal but for rounding."""
+
+
+@_inner
+def _list_worst(variance, t, worst):
+    """List the pairs with the largest variances afresh: O(t²)."""
+    largest, most = 0.0, len(worst.first)
+    for x in range(t):
+        for y in range(x):
+            largest = max(largest, variance[x, y])
+    depth, found, over = worst.state[DEPTH], 0, False
+    least = largest - depth
+    for x in range(t):
+        for y in range(x):
+            value = variance[x, y]
+            if value < least:
+                continue
+            if found == most:  # the least of the list gives way
+                over = True
+                if value <= worst.variance[most - 1]:
+                    continue
+                found -= 1
+            place = found
+            while place > 0 and worst.variance[place - 1] < value:
+                worst.variance[place] = worst.variance[place - 1]
+                worst.first[place] = worst.first[place - 1]
+                worst.second[place] = worst.second[place - 1]
+                place -= 1
+            worst.variance[place], worst.first[place], worst.second[place] = value, x, y
+            found += 1
+    if over:
+        worst.state[DEPTH] = 0.7 * depth
+    elif found < most // 2:
+        worst.state[DEPTH] = 1.3 * depth + 1e-9 * largest
+    worst.state[LISTED], worst.state[LARGEST] = found, largest
+
+
+@_hot
+def _image_at(share, variance, t, u, v, a, c, i):
+    """The images of d and w at one treatment, up to a constant."""
+    of_d = 0.5 * (variance[v, i] - variance[u, i])
+    if c >= 0:
+        of_w = 0.5 * (variance[t + c, i] - variance[t + a, i])
+        return of_d, of_w - 0.5 * (share[a] + share[c]) * of_d
+    of_w = 0.25 * (variance[u, i] + variance[v, i]) - 0.5 * variance[t + a, i]
+    return of_d, of_w - 0.5 * share[a] * of_d
+
+
+@_inner
+def _largest_after(share, distances, worst, t, u, v, a, c, limit):
+    """The largest variance after a move, or any number above the limit where that is passed."""
+    variance, work = distances.variance, distances.work
+    alpha, beta, gamma = _products(share, variance, t, u, v, a, c)
+    one = 1.0 + beta
+    ratio = one * one - alpha * gamma
+    alpha, twice, gamma = alpha / ratio, 2.0 * one / ratio, gamma / ratio
+    for place in range(np.int64(worst.state[LISTED])):
+        x, y = np.int64(worst.first[place]), np.int64(worst.second[place])
+        p_x, q_x = _image_at(share, variance, t, u, v, a, c, x)
+        p_y, q_y = _image_at(share, variance, t, u, v, a, c, y)
+        p, q = p_x - p_y, q_x - q_y
+        after = variance[x, y] + gamma * p * p - twice * p * q + alpha * q * q
+        if after > limit:
+            return after
+    of_d, of_w, largest = work[0], work[1], 0.0
+    for x in range(t):
+        of_d[x], of_w[x] = _image_at(share, variance, t, u, v, a, c, x)
+        for y in range(x):
+            p, q = of_d[x] - of_d[y], of_w[x] - of_w[y]
+            largest = max(largest, variance[x, y] + gamma * p * p - twice * p * q + alpha * q * q)
+        if largest > limit:
+            return largest
+    return largest
+
+
+@_late(_FLOAT(_BOARD, _WORST))
+def list_worst(board, worst):
+    """List the worst pairs of a plan whose distances are up to date; returns the largest variance."""
+    _, _, planting, distances = _named(board)
+    worst = Worst(*worst)
+    _list_worst(distances.variance, _treatments(planting), worst)
+    return worst.state[LARGEST]
+
+
+@_late(types.UniTuple(_INT, 4)(_BOARD, _WORST, _RANDOM, _FLOAT, _FLOAT, _FLOAT, _INT, _INT, _INT))
+def anneal_worst(board, worst, random, temperature, cooling, pull, moves, tries, most_accepted):
+    """The same as `anneal` for the largest variance and `pull` times the objective."""
+    beds, admitted, planting, distances = _named(board)
+    worst = Worst(*worst)
+    planted, t = planting.planted, _treatments(planting)
+    scored, drawn, accepted, climbed = 0, 0, 0, 0
+    while scored < moves and drawn < tries and accepted < most_accepted:
+        drawn += 1
+        plot, partner, place = _draw(beds, random)
+        u, v, a, c = _read(beds, planted, plot, partner)
+        if not _may(admitted, planting, u, v, a, c):
+            continue
+        rise, ratio = _score(beds.share, distances, t, u, v, a, c)
+        scored += 1
+        allowed = temperature * DRAWS[place]
+        temperature *= cooling
+        if ratio < LEAST_RATIO or not rise < 1e300:
+            continue
+        if abs(rise) < NOTHING and _products(beds.share, distances.variance, t, u, v, a, c)[2] < NOTHING:
+            continue  # two blocks would only swap their names
+        limit = worst.state[LARGEST] + allowed - pull * rise + EQUAL
+        if _largest_after(beds.share, distances, worst, t, u, v, a, c, limit) > limit:
+            continue
+        if _meets(beds, admitted, planting, u, v, a, c):
+            before = worst.state[LARGEST]
+            _move_points(beds, planted, distances, t, u, v, a, c)
+            _plant(admitted, planting, plot, partner, u, v, a, c)
+            _list_worst(distances.variance, t, worst)
+            accepted += 1
+            climbed += int(worst.state[LARGEST] - before + pull * rise > EQUAL)
+    return scored, drawn, accepted, climbed
+
+
+@_late(types.Tuple((_INT, _INT, _INT, _FLOAT, _FLOAT))(_BOARD, _WORST, _INT, _INT, _FLOAT, _FLOAT))
+def best_worst_move(board, worst, begin, end, largest, below):
+    """The best legal move of the blocks from begin to before end: by the largest variance it leaves.
+
+    Only moves that leave less than `largest`, or as much and raise the objective by less than `below`.
+    Returns the moves scored, the move (plot −1 for none), the largest variance it leaves and its rise.
+    """
+    beds, admitted, planting, distances = _named(board)
+    worst = Worst(*worst)
+    planted, t = planting.planted, _treatments(planting)
+    scored, best_plot, best_partner, plots = np.int64(0), np.int64(-1), np.int64(-1), len(planted)
+    for a in range(begin, end):
+        first, last = _span(beds, a)
+        pool = np.int64(beds.blocks[a, POOL_FIRST]) + np.int64(beds.blocks[a, POOL_PLOTS])
+        loose = np.int64(beds.blocks[a, REACH]) - np.int64(beds.blocks[a, POOL_PLOTS])
+        for plot in range(first, last):
+            for choice in range(last, pool + loose):
+                partner = choice if choice < pool else plots + np.int64(beds.loose[choice - pool])
+                u, v, _, c = _read(beds, planted, plot, partner)
+                if not _may(admitted, planting, u, v, a, c):
+                    continue
+                scored += 1
+                rise, ratio = _score(beds.share, distances, t, u, v, a, c)
+                if ratio < LEAST_RATIO:
+                    continue
+                limit = largest + EQUAL if rise < below else largest - EQUAL
+                after = _largest_after(beds.share, distances, worst, t, u, v, a, c, limit)
+                if after <= limit and _meets(beds, admitted, planting, u, v, a, c):
+                    largest, below, best_plot, best_partner = after, rise, plot, partner
+    return scored, best_plot, best_partner, largest, below

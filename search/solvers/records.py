@@ -3,15 +3,28 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from enum import StrEnum
 
 import numpy as np
 from numpy.typing import NDArray
 
+from search.efficiency.aims import pair_weights, weights
 from search.foundation.stopping import Ended
-from search.trial.records import Contents
+from search.trial.records import AimKind, Contents, Trial
 from search.trial.tables import Tables
 
 Floats = NDArray[np.float64]
+
+
+class Goal(StrEnum):
+    """What the search makes small."""
+
+    SPREAD = "spread"
+    """The mean variance `tr(W C⁺)` of the weights, or `−log pdet(C)/(t−1)` where there are none."""
+    MEETINGS = "meetings"
+    """The sum of squared meetings, and among equals the mean variance of the weights."""
+    WORST = "worst"
+    """The largest pair variance; the mean variance of the weights leads the way there."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -21,11 +34,30 @@ class Problem:
     Parameters
     ----------
     tables : the rules; `least` and `most` are what all the rules leave of the stated ranges
-    weights : (t, t) W of a trace aim `tr(W C⁺)`, or None for the overall aim `−log pdet(C)/(t−1)`
+    weights : (t, t) W of a mean variance `tr(W C⁺)`, or None for the overall aim `−log pdet(C)/(t−1)`
+    goal : what is made small
     """
 
     tables: Tables
     weights: Floats | None
+    goal: Goal = Goal.SPREAD
+
+
+def goal_of(aim: AimKind) -> Goal:
+    """What the search makes small for an aim."""
+    return {AimKind.EVEN_MEETINGS: Goal.MEETINGS, AimKind.WORST_PAIR: Goal.WORST}.get(aim, Goal.SPREAD)
+
+
+def problem_of(trial: Trial, rules: Tables) -> Problem:
+    """The problem of a trial.
+
+    Parameters
+    ----------
+    trial : gives the aim
+    rules : its tables, with the implied replication
+    """
+    goal = goal_of(trial.aim.kind)
+    return Problem(rules, weights(trial) if goal is Goal.SPREAD else pair_weights(trial.t), goal)
 
 
 @dataclass(frozen=True, slots=True)

@@ -109,7 +109,7 @@ def search(
     Outcome : of equal plans that of the lowest run; with an infinite objective where the start is
         disconnected and no way of legal moves to a connected plan was found
     """
-    warm_up()
+    warm_up(problem.goal)
     with one_thread(), Crew(workers, stop, watch) as crew:
         origins, best, cooling = crew.one(lambda: prepared(problem, start, kept, seed, stop, known, others))
         number = moves = 0

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
-from typing import Any
+from typing import Any, ClassVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -48,6 +48,9 @@ class Walk:
     stop : when an end is due, every walk ends after its call of the kernel
     report : told of moves scored, call by call
     """
+
+    descent: ClassVar[int] = 5
+    """One move in so many of a run is left for its descent."""
 
     problem: Problem
     start: Contents

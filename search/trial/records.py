@@ -161,13 +161,25 @@ class AimKind(StrEnum):
 
     ALL_PAIRS = "all pairs"
     OVERALL = "overall"
+    EVEN_MEETINGS = "even meetings"
+    WORST_PAIR = "worst pair"
     AGAINST_CONTROL = "against control"
     CONTRASTS = "contrasts"
 
     @property
     def treats_pairs_alike(self) -> bool:
         """Whether every pair of treatments counts the same, so that a balanced plan is best."""
+        return self not in (AimKind.AGAINST_CONTROL, AimKind.CONTRASTS)
+
+    @property
+    def depends_on_eigenvalues(self) -> bool:
+        """Whether the eigenvalues of the information matrix tell how good a plan is."""
         return self in (AimKind.ALL_PAIRS, AimKind.OVERALL)
+
+    @property
+    def counts_meetings(self) -> bool:
+        """Whether a plan is judged by a whole number, the less the better, and not by an efficiency."""
+        return self is AimKind.EVEN_MEETINGS
 
 
 @dataclass(frozen=True, slots=True)

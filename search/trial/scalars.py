@@ -170,20 +170,16 @@ class Flag:
 
 @dataclass(frozen=True, slots=True)
 class Choice:
-    """One of a few words; `not_yet` are words of the design that this version does not do."""
+    """One of a few words."""
 
     words: tuple[str, ...]
-    not_yet: tuple[str, ...] = ()
 
     def read(self, node: Node, key: str, report: Report) -> str | None:
         text = node.text if isinstance(node, Scalar) else ""
         if text in self.words:
             return text
         must = "one of: " + ", ".join(self.words)
-        if text.casefold() in self.not_yet:
-            report.add(node, key, shown(text), must, remedy="not yet in this version: choose another")
-        else:
-            report.add(node, key, describe(node), must, remedy=did_you_mean(text, self.words))
+        report.add(node, key, describe(node), must, remedy=did_you_mean(text, self.words))
         return None
 
     def schema(self) -> Schema:

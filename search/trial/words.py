@@ -270,8 +270,10 @@ WORDS: dict[str, Words] = {
     "aim": Words(
         "Aim",
         "What the plan is best for. `all pairs`: every difference equally. `overall`: the smallest joint "
-        "confidence region. `even meetings`: pairs meet equally often. `worst pair`: the worst difference. "
-        "`against control`: all against the controls. `contrasts`: the comparisons you name.",
+        "confidence region. `even meetings`: pairs meet as equally often as they can, by the least sum of "
+        "squared meetings and then the best average. `worst pair`: the least precise difference is made as "
+        "precise as it can be. `against control`: all against the controls. `contrasts`: the comparisons "
+        "you name.",
         "the plan that is best for one question is not the best for another",
         "aim: all pairs",
     ),

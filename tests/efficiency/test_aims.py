@@ -9,7 +9,7 @@ import pytest
 from hypothesis import given, settings
 
 from search.efficiency.aims import SENTENCES, exact_diagonal, is_trace, weights
-from search.trial.records import AimKind, Contents, Trial
+from search.trial.records import Aim, AimKind, Contents, Trial
 from tests.efficiency.plans import AGAINST_CONTROL, OVERALL, equal_trial, planted
 
 
@@ -60,3 +60,11 @@ def test_overall_has_no_weights() -> None:
     assert weights(trial) is None
     with pytest.raises(ValueError, match="no weights"):
         exact_diagonal(trial)
+
+
+def test_even_meetings_break_ties_by_all_pairs_and_the_worst_pair_has_no_weights() -> None:
+    """Even meetings share W with all pairs; the worst pair is a maximum, no mean."""
+    even, worst = (equal_trial(4, 4, 3, Aim(kind)) for kind in (AimKind.EVEN_MEETINGS, AimKind.WORST_PAIR))
+    np.testing.assert_array_equal(weights(even), weights(equal_trial(4, 4, 3)))
+    assert weights(worst) is None
+    assert not is_trace(worst)

@@ -15,6 +15,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from search.efficiency.aims import weights
+from search.efficiency.balance import squared_meetings
 from search.efficiency.evaluator import (
     components,
     information_matrix,
@@ -159,7 +160,11 @@ def test_pair_variances_are_those_of_least_squares(drawn: tuple[Trial, Contents]
 @given(planted())
 def test_efficiencies_lie_between_0_and_1_and_losses_multiply(drawn: tuple[Trial, Contents]) -> None:
     """No efficiency is above 1; what replication and blocks leave multiplies to that for the aim."""
-    found = score(*drawn)
+    trial, contents = drawn
+    found = score(trial, contents)
+    if trial.aim.kind.counts_meetings:  # no efficiency of its own: the losses are those of all pairs
+        assert found.aim == squared_meetings(contents, trial.t)
+        found = replace(found, aim=found.A)
     efficiencies = (found.aim, found.A, found.D, found.worst_pair_efficiency)
     if not found.connected:
         assert efficiencies == (0, 0, 0, 0)
@@ -211,12 +216,22 @@ def test_the_objective_is_the_aim(drawn: tuple[Trial, Contents]) -> None:
         return
     values, vectors = np.linalg.eigh(information_matrix(contents, trial.t))
     matrix = weights(trial)
-    if matrix is None:
+    if trial.aim.kind is AimKind.OVERALL:
         assert value == pytest.approx(-np.log(values[1:]).sum() / (trial.t - 1), abs=1e-9)
         return
     inverse = (vectors[:, 1:] / values[1:]) @ vectors[:, 1:].T
-    assert value == pytest.approx(np.trace(matrix @ inverse), rel=1e-9)
-    assert score(trial, contents).aim_variance == pytest.approx(value, rel=1e-12)
+    told = score(trial, contents).aim_variance
+    if trial.aim.kind is AimKind.WORST_PAIR:
+        own = np.diag(inverse)
+        assert value == pytest.approx((own[:, None] + own - 2 * inverse).max(), rel=1e-9)
+        assert told == pytest.approx(value, rel=1e-12)
+        return
+    mean = np.trace(matrix @ inverse)
+    assert told == pytest.approx(mean, rel=1e-9)
+    if trial.aim.kind is AimKind.EVEN_MEETINGS:  # whole meetings, and the average below one more
+        assert value == pytest.approx(squared_meetings(contents, trial.t) + mean / (1 + mean), rel=1e-9)
+    else:
+        assert value == pytest.approx(mean, rel=1e-9)
 
 
 def test_each_aim_has_its_own_efficiency() -> None:

@@ -70,6 +70,14 @@ def weight_matrix(trial: Trial) -> np.ndarray:
     return found
 
 
+def squared_meetings(contents: Contents, t: int) -> int:
+    """Σ λ² over pairs, counted plot by plot."""
+    total = 0
+    for i, j in combinations(range(t), 2):
+        total += sum(block.count(i) * block.count(j) for block in contents) ** 2
+    return total
+
+
 def efficiency(trial: Trial, contents: Contents) -> float:
     """Efficiency for the trial's aim, the reference found by trying every replication."""
     t, C = trial.t, information(contents, trial.t)
@@ -79,6 +87,10 @@ def efficiency(trial: Trial, contents: Contents) -> float:
     if trial.aim.kind is AimKind.OVERALL:
         best = max(np.prod(np.array(r, dtype=float)) for r in replications(trial)) * t / trial.n
         return float((np.prod(x) / best) ** (1 / (t - 1)))
+    if trial.aim.kind is AimKind.WORST_PAIR:
+        inverse = np.linalg.pinv(C)
+        largest = max(inverse[i, i] + inverse[j, j] - 2 * inverse[i, j] for i, j in combinations(range(t), 2))
+        return float(min(sum(1 / x for x in sorted(r)[:2]) for r in replications(trial)) / largest)
     W = weight_matrix(trial)
     best = min(float(np.sum(W.diagonal() / np.array(r))) for r in replications(trial))
     return best / float(np.trace(W @ np.linalg.pinv(C)))
@@ -97,13 +109,15 @@ def score(trial: Trial, contents: Contents, near_balanced: str = "unknown") -> d
     aim = efficiency(trial, contents)
     if trial.aim.kind is AimKind.OVERALL:
         kept = float((np.prod(own) / max(np.prod(r) for r in all_r)) ** (1 / (t - 1)))
+    elif trial.aim.kind is AimKind.WORST_PAIR:
+        kept = min(sum(1 / x for x in sorted(r)[:2]) for r in all_r) / sum(1 / x for x in sorted(own)[:2])
     else:
         kept = float(min(np.sum(W / r) for r in all_r) / np.sum(W / own))
     present = [{j for j, block in enumerate(contents) if i in block} for i in range(t)]
     shared = [len(present[i] & present[j]) for i, j in combinations(range(t), 2)]
     worst = min(sum(1 / r for r in sorted(r)[:2]) for r in all_r)
     return {
-        "aim": aim,
+        "aim": squared_meetings(contents, t) if trial.aim.kind.counts_meetings else aim,
         "A": float(min(np.sum(2 / t / r) for r in all_r) / np.mean(pairs)),
         "D": D,
         "worst_pair_efficiency": float(worst / max(pairs)),
@@ -161,7 +175,7 @@ def plan_file(
         "layout": {"seed": 8123, "scheme": "not randomised"},
         "score": told,
         "bound": bounded,
-        "gap_percent": None if bounded is None else 100 * (1 - told["aim"] / bounded["value"]),
+        "gap_percent": None if bounded is None else gap_percent(trial, told["aim"], bounded["value"]),
         "standing": standing,
         "ended_by": "bound met",
         "provenance": {
@@ -174,6 +188,13 @@ def plan_file(
         },
     }
     return sealed(document)
+
+
+def gap_percent(trial: Trial, reached: float, limit: float) -> float:
+    """How far a score is from a bound, in percent of the bound."""
+    if trial.aim.kind.counts_meetings:
+        return 100 * (reached / limit - 1)
+    return 100 * (1 - reached / limit)
 
 
 def balanced_file() -> dict[str, Any]:

@@ -19,6 +19,7 @@ from search.foundation.stopping import Ended, Limits
 from search.proof.bound import bounded
 from search.proof.certificates.case import Case
 from search.runs.keeping import Keeping, covers, recall, remember, run_of
+from search.runs.kept import problem_of
 from search.runs.store import Store
 from search.trial.canonical import canonical
 from search.trial.carrying import from_canonical, to_canonical
@@ -142,13 +143,40 @@ def test_a_run_covers_no_larger_budget(ended: Ended, limits: Limits, covered: bo
     assert covers(ran, limits) == covered
 
 
+def test_of_equally_even_plans_the_more_precise_is_kept(tmp_path: Path) -> None:
+    """For even meetings the lower sum is better, then the smaller average variance, told and kept alike."""
+    trial, key = tiny_trial(aim="even meetings"), "even meetings"
+    with Keeping(trial, tmp_path / "store.sqlite") as keeping:
+        found = made_plan(trial, GOOD)
+        remember(keeping.store, keeping.numbering, found, run_of(found, Limits(moves=5), 1))
+        reached, average = found.score.aim, found.score.average_pair_variance
+        assert reached == 3
+        assert average is not None
+        assert average == pytest.approx(4 / 3)
+        assert keeping.better_than(reached, average) is None
+        assert keeping.better_than(reached, average + 0.1) == reached
+        assert keeping.better_than(reached, None) == reached
+        assert keeping.better_than(reached + 1, average) == reached
+        assert keeping.better_than(reached - 1, average) is None
+        problem = problem_of(trial, keeping.numbering)
+        for more, better in ((0.1, False), (-0.1, True)):
+            kept = keeping.store.best(problem.digest, key)
+            assert kept is not None
+            assert kept.plan is not None
+            other = replace(kept.plan, objective=average + more, seed=99)
+            keeping.store.keep(problem, key, plan=other)
+            now = keeping.store.best(problem.digest, key)
+            assert now is not None
+            assert (now.plan == other) is better
+
+
 def test_a_better_kept_plan_is_told(tmp_path: Path) -> None:
     """The kept efficiency is told where it is above the one given by more than rounding."""
     trial = tiny_trial()
     with Keeping(trial, tmp_path / "store.sqlite") as keeping:
         found = made_plan(trial, GOOD)
         remember(keeping.store, keeping.numbering, found, run_of(found, Limits(moves=5), 1))
-        assert keeping.better_than(found.score.aim) is None
-        assert keeping.better_than(0.5) == found.score.aim
+        assert keeping.better_than(found.score.aim, None) is None
+        assert keeping.better_than(0.5, None) == found.score.aim
         keeping.issued(found, "K7-QX")
         assert keeping.store.show("K7-QX")[0].problem.name == "tiny"

@@ -8,9 +8,10 @@ import numpy as np
 
 from search.solvers.board import board_of, contents_on
 from search.solvers.compiled import kernel
-from search.solvers.records import Problem
+from search.solvers.records import Goal, Problem
 from search.solvers.streams import stream
 from search.solvers.walk import Walk
+from search.solvers.walks import walk_from
 from tests.solvers.problems import FOREVER, in_turn, pairs, plain_tables
 
 
@@ -32,6 +33,14 @@ def told() -> str:
         accepted = walk.cool(0.2, 0.01, 300)
         walk.descend(200)
         lines.append(f"{accepted} {walk.moves} {walk.contents} {walk.board.distances.variance.sum():.9f}")
+    for goal in (Goal.MEETINGS, Goal.WORST):
+        problem = Problem(table, pairs(5), goal)
+        board, random = board_of(problem, start), stream(7, 2)
+        kernel().wander(board.plain, random, 200, True)
+        walk = walk_from(problem, contents_on(board), random, FOREVER)
+        accepted = walk.cool(2.0, 0.2, 200)
+        walk.descend(200)
+        lines.append(f"{accepted} {walk.moves} {walk.contents}")
     problem = Problem(plain_tables(4, [3, 3, 2], plots=(1, 3)), pairs(4))
     walk = Walk(problem, in_turn(4, [3, 3, 2]), stream(1, 1), FOREVER)
     plot, partner = walk.best_move(np.inf) or (-1, -1)

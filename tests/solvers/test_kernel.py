@@ -16,7 +16,7 @@ from hypothesis import strategies as st
 from search.foundation.errors import Impossible
 from search.solvers.anneal import connected
 from search.solvers.board import board_of, contents_on, objective, refresh
-from search.solvers.compiled import ENTRIES, kernel
+from search.solvers.compiled import ENTRIES, MORE_ENTRIES, kernel
 from search.solvers.records import Floats, Problem
 from search.solvers.start import feasible_start
 from search.solvers.streams import stream
@@ -230,3 +230,6 @@ def test_random_numbers_are_those_of_the_published_generator() -> None:
 def test_the_compiled_functions_are_the_listed_ones() -> None:
     """What the cache is asked for is what the kernel keeps in it."""
     assert all(getattr(kernel(), name).signatures for name in ENTRIES)
+    late = [name for names in MORE_ENTRIES.values() for name in names]
+    assert late
+    assert all(getattr(kernel(), name).warm_up().signatures for name in late)

@@ -53,6 +53,7 @@ MISTAKES = {
     "unknown_rule": Mistake(6, ('did you mean "never_share_block"',), "blocks: [[", "block: [["),
     "unknown_setting_of_a_treatment": Mistake(4, ('the key "colour"',), "colour: red", "control: true"),
     "unknown_aim": Mistake(5, ('did you mean "all pairs"',), "pears", "pairs"),
+    "aim_in_the_plural": Mistake(5, ('did you mean "worst pair"',), "pairs", "pair"),
     "aim_in_capitals": Mistake(5, ('did you mean "all pairs"',), "All Pairs", "all pairs"),
     "unknown_paper": Mistake(
         5,

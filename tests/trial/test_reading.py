@@ -76,8 +76,6 @@ NOT_YET: dict[str, dict[str, Any]] = {
     "planted": {"rules": {"planted": {"101": "A"}}},
     "at_most": {"blocks": {"b": {"at_most": 3}}},
     "blocks_random": {"blocks_random": 2},
-    "even meetings": {"aim": "even meetings"},
-    "worst pair": {"aim": "worst pair"},
 }
 
 

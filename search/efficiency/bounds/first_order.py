@@ -25,7 +25,7 @@ SENTENCE = (
 
 def applies(trial: Trial) -> bool:
     """Whether the aim depends on the eigenvalues alone."""
-    return trial.aim.kind.treats_pairs_alike
+    return trial.aim.kind.depends_on_eigenvalues
 
 
 def find(given: Problem) -> Bound | None:

@@ -14,6 +14,9 @@ In every plan `Σ_{B'∈g, B'≠B} x_BB' = Σ_{i∈B} (ρ_ig − [g_B = g])`, `�
 blocks of P that must and that may hold i, with `Σ_{P in g} m_iP = ρ_ig`, which the rules fix in a
 replicate; `0 ≤ x ≤ min(s, s')`.
 
+Even meetings. `2 Σ_{i<j} λ_ij² = Σ_B k_B² + 2 Σ_{B<B'} x_BB'² − Σ_i r_i²` in the same way, since N'N has the
+eigenvalues of NN': the same program with other costs (`Form`) bounds the sum of squared meetings.
+
 Source. Equal blocks and replications: the dual of the argument by pairs (Paterson 1983; from memory).
 """
 
@@ -26,17 +29,56 @@ from typing import Any
 
 import numpy as np
 
-from search.efficiency.bounds import second_moment
+from search.efficiency.bounds import evenness, second_moment
 from search.efficiency.bounds.lattice import alike
 from search.efficiency.bounds.problem import Problem, text
 from search.efficiency.bounds.program import Program
 from search.efficiency.bounds.second_moment import MOST_COLUMNS, Grid
 from search.efficiency.bounds.sums import Sums
 from search.efficiency.records import Bound
+from search.trial.tables import Ints
 
 NAME = "second moment by block meets"
+EVEN = "even meetings by block meets"
 SENTENCE = "Two blocks share a whole number of treatments, so blocks cannot overlap perfectly evenly."
 applies = second_moment.applies
+applies_to_meetings = evenness.applies
+
+
+@dataclass(frozen=True, slots=True)
+class Form:
+    """What the sum over plots, blocks and pairs of blocks is made of.
+
+    Parameters
+    ----------
+    own : weight of r² of each treatment
+    loss : over the block size, weight of −r of each of its plots
+    meet : weight of x² of each pair of blocks, over both sizes where `shared`
+    shared : whether blocks count by their sizes
+    """
+
+    own: int
+    loss: int
+    meet: int
+    shared: bool
+
+    def of_plot(self, r: int, size: int) -> Fraction:
+        """What a plot of a treatment with r plots costs in a block of that size."""
+        return Fraction(-self.loss * r, size)
+
+    def of_meet(self, one: int, other: int) -> Fraction:
+        """What x² costs for two blocks of these sizes."""
+        return Fraction(self.meet, one * other if self.shared else 1)
+
+    def constant(self, sizes: Ints) -> int:
+        """What the blocks cost by themselves."""
+        return len(sizes) if self.shared else int((sizes**2).sum())
+
+
+INFORMATION = Form(own=1, loss=2, meet=2, shared=True)
+"""`tr C²`"""
+MEETINGS = Form(own=-1, loss=0, meet=2, shared=False)
+"""Twice the sum of squared meetings."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -117,12 +159,24 @@ class _Prices:
 
 def find(given: Problem) -> Bound | None:
     """The bound, or None where the program is too large or is not solved."""
+    found = _solved(given, INFORMATION)
+    return None if found is None else second_moment.bound_from(given, NAME, *found)
+
+
+def find_for_meetings(given: Problem) -> Bound | None:
+    """The bound of even meetings, or None where the program is too large, is not solved, or says nothing."""
+    found = _solved(given, MEETINGS)
+    return None if found is None else evenness.bound_on_meetings(given, EVEN, found[0] / 2, found[1])
+
+
+def _solved(given: Problem, form: Form) -> tuple[Fraction, dict[str, Any]] | None:
+    """A number that the sum of the form is not below in any plan, and the multipliers that show it."""
     layout = _layout(given)
-    prices = _prices(given, layout) if layout.columns <= MOST_COLUMNS else None
-    squares = None if prices is None else _least_squares(given, layout, prices)
+    prices = _prices(given, layout, form) if layout.columns <= MOST_COLUMNS else None
+    squares = None if prices is None else _least_squares(given, layout, prices, form)
     if prices is None or squares is None:
         return None
-    return second_moment.bound_from(given, NAME, squares, _multipliers(layout, prices))
+    return squares, _multipliers(layout, prices)
 
 
 # -- what a treatment and two blocks can have -----------------------------------------------------------
@@ -161,7 +215,7 @@ def _kinds(given: Problem, classes: list[_Class], sums: Sums) -> list[_Kind]:
 # -- prices ---------------------------------------------------------------------------------------------
 
 
-def _prices(given: Problem, layout: _Layout) -> _Prices | None:
+def _prices(given: Problem, layout: _Layout, form: Form) -> _Prices | None:
     """From the linear program; given r the cost is linear in m, so m need not be listed."""
     classes = layout.classes
     program = Program()
@@ -173,7 +227,7 @@ def _prices(given: Problem, layout: _Layout) -> _Prices | None:
     for number, kind in enumerate(layout.kinds):
         program.equal(("kind", number), kind.count)
         for r in range(kind.least, kind.most + 1):
-            _add_treatments(program, layout, number, r)
+            _add_treatments(program, layout, number, r, form)
     for p, q, count, most in layout.block_pairs:
         x = np.arange(most + 1)
         program.equal(("pair", p, q), count)
@@ -183,7 +237,7 @@ def _prices(given: Problem, layout: _Layout) -> _Prices | None:
         else:
             entries["meets", p, classes[q].group] = x
             entries["meets", q, classes[p].group] = x
-        program.add(2 * x**2 / (classes[p].size * classes[q].size), entries)
+        program.add(float(form.of_meet(classes[p].size, classes[q].size)) * x**2, entries)
     found = program.prices()
     if found is None:
         return None
@@ -196,7 +250,7 @@ def _prices(given: Problem, layout: _Layout) -> _Prices | None:
     )
 
 
-def _add_treatments(program: Program, layout: _Layout, number: int, r: int) -> None:
+def _add_treatments(program: Program, layout: _Layout, number: int, r: int, form: Form) -> None:
     """A column for the treatments of a kind that have r plots, and for their plots in each class."""
     kind, whole = layout.kinds[number], ("with", number, r)
     entries = {("kind", number): 1, **layout.sums.entries(kind.memberships, r)}
@@ -208,7 +262,7 @@ def _add_treatments(program: Program, layout: _Layout, number: int, r: int) -> N
         program.at_most((*whole, "high", p), 0)
         entries[(*whole, "low", p)] = kind.low[p]
         entries[(*whole, "high", p)] = -kind.high[p]
-    program.add([float(r * r)], entries)
+    program.add([float(form.own * r * r)], entries)
     for p, c in enumerate(layout.classes):
         in_class: dict[Any, Any] = {
             ("plots", p): 1,
@@ -218,17 +272,17 @@ def _add_treatments(program: Program, layout: _Layout, number: int, r: int) -> N
         }
         for group in layout.groups:
             in_class["meets", p, group] = (group == c.group) - kind.in_group(r, group)
-        program.add([-2 * r / c.size], in_class)
+        program.add([float(form.of_plot(r, c.size))], in_class)
 
 
 # -- the exact value ------------------------------------------------------------------------------------
 
 
-def _least_squares(given: Problem, layout: _Layout, prices: _Prices) -> Fraction | None:
+def _least_squares(given: Problem, layout: _Layout, prices: _Prices, form: Form) -> Fraction | None:
     """S2 at the prices; None where a treatment cannot be placed, so that no plan exists."""
-    total = Fraction(given.trial.b) - layout.sums.constant(prices.sums)
+    total = form.constant(given.rules.sizes) - layout.sums.constant(prices.sums)
     for kind in layout.kinds:
-        costs = [_least_of_treatment(layout, kind, prices, r) for r in range(kind.least, kind.most + 1)]
+        costs = [_least_of_treatment(layout, kind, prices, r, form) for r in range(kind.least, kind.most + 1)]
         possible = [cost for cost in costs if cost is not None]
         if not possible:
             return None
@@ -238,20 +292,22 @@ def _least_squares(given: Problem, layout: _Layout, prices: _Prices) -> Fraction
     for p, q, count, most in layout.block_pairs:
         first, second = layout.classes[p], layout.classes[q]
         price = prices.meets[p, second.group] + prices.meets[q, first.group]
-        product = first.size * second.size
-        total += count * min(Fraction(2 * x * x, product) - price * x for x in range(most + 1))
+        square = form.of_meet(first.size, second.size)
+        total += count * min(square * x * x - price * x for x in range(most + 1))
     return total
 
 
-def _least_of_treatment(layout: _Layout, kind: _Kind, prices: _Prices, r: int) -> Fraction | None:
+def _least_of_treatment(layout: _Layout, kind: _Kind, prices: _Prices, r: int, form: Form) -> Fraction | None:
     """The least cost of a treatment with r plots: in each replicate the cheapest classes first."""
-    total = r * r + r * layout.sums.each(kind.memberships, prices.sums)
+    total = form.own * r * r + r * layout.sums.each(kind.memberships, prices.sums)
     for group in layout.groups:
         inside = [p for p, c in enumerate(layout.classes) if c.group == group]
         left = kind.in_group(r, group) - sum(kind.low[p] for p in inside)
         if left < 0:
             return None
-        costs = {p: _cost(layout, kind, prices, r, p) for p in inside}
+        costs = {
+            p: _cost(layout, kind, prices, r, p) + form.of_plot(r, layout.classes[p].size) for p in inside
+        }
         total += sum((kind.low[p] * costs[p] for p in inside), Fraction(0))
         for p in sorted(inside, key=costs.__getitem__):
             more = min(left, kind.high[p] - kind.low[p])
@@ -263,9 +319,9 @@ def _least_of_treatment(layout: _Layout, kind: _Kind, prices: _Prices, r: int) -
 
 
 def _cost(layout: _Layout, kind: _Kind, prices: _Prices, r: int, p: int) -> Fraction:
-    """What one plot in a block of class p costs a treatment with r plots."""
+    """What the prices make one plot in a block of class p cost a treatment with r plots."""
     own = layout.classes[p]
-    cost = Fraction(-2 * r, own.size) - prices.plots[p]
+    cost = -prices.plots[p]
     for group in layout.groups:
         cost += prices.meets[p, group] * (kind.in_group(r, group) - (group == own.group))
     return cost

@@ -17,6 +17,7 @@ from search.trial.tables import Tables, tables
 
 VARIANCES = {
     AimKind.ALL_PAIRS: "an average pair variance",
+    AimKind.WORST_PAIR: "a largest pair variance",
     AimKind.AGAINST_CONTROL: "an average variance of differences from the controls",
     AimKind.CONTRASTS: "a weighted average variance of the contrasts",
 }

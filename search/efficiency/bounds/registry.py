@@ -4,23 +4,25 @@ from __future__ import annotations
 
 import time
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from search.efficiency.bounds import (
     averaged,
     control_meets,
+    even_pairs,
     first_order,
     meets,
     normalised,
     pairs,
     replication,
     trace_root,
+    worst_pair,
 )
 from search.efficiency.bounds.problem import Problem, problem
 from search.efficiency.bounds.spectral import local
 from search.efficiency.records import Bound
 from search.trial.limits import Limits
-from search.trial.records import Trial
+from search.trial.records import AimKind, Trial
 
 QUICK = 0.1
 """Seconds that every caller has."""
@@ -58,10 +60,11 @@ class Tried:
 ARGUMENTS = (
     *(
         Argument(module.NAME, module.SENTENCE, module.applies, module.find)
-        for module in (first_order, replication, trace_root, pairs, meets)
+        for module in (first_order, replication, trace_root, even_pairs, worst_pair, pairs, meets)
     ),
     Argument(averaged.NAME, averaged.SENTENCE, averaged.applies, averaged.find, 1.0),
     Argument(control_meets.NAME, control_meets.SENTENCE, control_meets.applies, control_meets.find, 1.0),
+    Argument(meets.EVEN, meets.SENTENCE, meets.applies_to_meetings, meets.find_for_meetings),
     Argument(normalised.NAME, normalised.SENTENCE, normalised.applies, normalised.find, 1.0),
     Argument(local.NAME, local.SENTENCE, local.applies, local.find, 1.0),
     Argument(local.FINER, local.FINER_SENTENCE, local.applies, local.find_finer, 5.0),
@@ -82,12 +85,18 @@ def tried(
     given = problem(trial, limits)
     if given is None:
         return
+    alike = given
+    if trial.aim.kind is AimKind.WORST_PAIR:  # which is not below the average
+        alike = replace(given, trial=worst_pair.of_average(trial))
     for argument in ARGUMENTS:
-        if argument.applies(trial) and (argument.seconds <= QUICK or has_time(argument.seconds)):
+        its = given if argument.applies(trial) else alike
+        if argument.applies(its.trial) and (argument.seconds <= QUICK or has_time(argument.seconds)):
             start = time.perf_counter()
-            bound = argument.find(given)
+            bound = argument.find(its)
+            if bound is not None and its is not given:
+                bound = worst_pair.by_average(trial, bound)
             # an argument too weak to say anything may end above 1
-            if bound is not None and bound.exact > 1:
+            if bound is not None and bound.exact > 1 and not trial.aim.kind.counts_meetings:
                 bound = None
             yield Tried(argument, bound, time.perf_counter() - start)
 
@@ -102,5 +111,8 @@ def all_bounds(
 
 
 def best_bound(trial: Trial, limits: Limits) -> Bound | None:
-    """The lowest bound of all that apply, the simplest argument on ties; None where there is none."""
-    return min(all_bounds(trial, limits), key=lambda bound: bound.exact, default=None)
+    """The tightest bound of all that apply, the simplest argument on ties; None where there is none."""
+    best: Bound | None = None
+    for bound in all_bounds(trial, limits):
+        best = bound if bound.beats(best) else best
+    return best

@@ -24,7 +24,7 @@ from search.efficiency.bounds.sums import Sums
 from search.efficiency.records import Bound
 from search.efficiency.reference import best_for_product, best_for_trace, product
 from search.foundation.exact import near
-from search.trial.records import Trial
+from search.trial.records import AimKind, Trial
 
 NAME = "replication"
 SENTENCE = (
@@ -36,8 +36,8 @@ Prices = tuple[Fraction, list[Fraction]]
 
 
 def applies(trial: Trial) -> bool:
-    """Always."""
-    return True
+    """Whether the aim means something without blocks, and is a sum or a product over treatments there."""
+    return trial.aim.kind not in (AimKind.EVEN_MEETINGS, AimKind.WORST_PAIR)
 
 
 def find(given: Problem) -> Bound | None:

@@ -26,7 +26,7 @@ MOST_COLUMNS = 20_000
 
 def applies(trial: Trial) -> bool:
     """Whether nothing stands twice in a block and the aim depends on the eigenvalues alone."""
-    return trial.aim.kind.treats_pairs_alike and not trial.rules.twice_in_block
+    return trial.aim.kind.depends_on_eigenvalues and not trial.rules.twice_in_block
 
 
 def bound_from(given: Problem, argument: str, squares: Fraction, multipliers: Mapping[str, Any]) -> Bound:

@@ -13,10 +13,13 @@ from search.proof.certificates import (
     by_meets,
     by_pairs,
     control_meets,
+    even_by_meets,
+    even_by_pairs,
     first_order,
     local_spectral,
     normalised,
     replication,
+    shorted_pair,
     trace_root,
 )
 
@@ -26,6 +29,9 @@ KINDS: dict[str, ModuleType] = {
     "trace root": trace_root,
     "second moment by pairs": by_pairs,
     "second moment by block meets": by_meets,
+    "even meetings by pairs": even_by_pairs,
+    "even meetings by block meets": even_by_meets,
+    "shorted pair": shorted_pair,
     "local spectral": local_spectral,
     "normalised moment": normalised,
     "averaged information": averaged,

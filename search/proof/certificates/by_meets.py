@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from fractions import Fraction
 from itertools import combinations_with_replacement
@@ -37,6 +37,28 @@ def derive(case: Case, multipliers: Part) -> Claim:
 
 
 @dataclass(frozen=True, slots=True)
+class Costs:
+    """What the sum is made of, but for its prices.
+
+    Parameters
+    ----------
+    square : of r² of each treatment
+    plot : by block size, of r of a treatment for each of its plots
+    meet : by both sizes, of x² of two blocks
+    blocks : by block size, of each block
+    """
+
+    square: int
+    plot: Callable[[int], Fraction]
+    meet: Callable[[int, int], Fraction]
+    blocks: Callable[[int], int]
+
+
+INFORMATION = Costs(1, lambda k: Fraction(-2, k), lambda k, other: Fraction(2, k * other), lambda k: 1)
+"""tr C²"""
+
+
+@dataclass(frozen=True, slots=True)
 class _Prices:
     """Prices by kind of block, 0 where the certificate gives none."""
 
@@ -44,13 +66,13 @@ class _Prices:
     plots: dict[Kind, Fraction]
 
 
-def least_squares(case: Case, multipliers: Part) -> Fraction:
-    """A number that tr C² is not below in any plan of the trial."""
+def least_squares(case: Case, multipliers: Part, costs: Costs = INFORMATION) -> Fraction:
+    """A number that the sum, tr C² where nothing else is said, is not below in any plan of the trial."""
     blocks = [(int(s), int(g)) for s, g in zip(case.rules.sizes, case.rules.group, strict=True)]
     prices = _read(multipliers, blocks)
     each, total = sum_prices(multipliers, case)
-    squares = sum((prices.plots[kind] * kind[0] for kind in blocks), case.rules.b - total)
-    return squares + sum(_treatments(case, prices, each, blocks)) + _block_pairs(prices, blocks)
+    squares = sum((prices.plots[kind] * kind[0] + costs.blocks(kind[0]) for kind in blocks), -total)
+    return squares + sum(_treatments(case, prices, each, blocks, costs)) + _block_pairs(prices, blocks, costs)
 
 
 def _read(multipliers: Part, blocks: list[Kind]) -> _Prices:
@@ -70,7 +92,9 @@ def _read(multipliers: Part, blocks: list[Kind]) -> _Prices:
     return prices
 
 
-def _treatments(case: Case, prices: _Prices, each: list[Fraction], blocks: list[Kind]) -> Iterator[Fraction]:
+def _treatments(
+    case: Case, prices: _Prices, each: list[Fraction], blocks: list[Kind], costs: Costs
+) -> Iterator[Fraction]:
     """For each treatment the least of r² plus what its blocks cost, over r and the blocks it stands in."""
     of_kind = {kind: [block == kind for block in blocks] for kind in prices.plots}
     solved: dict[tuple[object, ...], Fraction] = {}
@@ -81,19 +105,19 @@ def _treatments(case: Case, prices: _Prices, each: list[Fraction], blocks: list[
         key = (tuple(room.items()), share, case.plots_of(i), each[i])
         if key not in solved:
             least, most = case.plots_of(i)
-            costs = [
-                r * r + each[i] * r + cost
+            found = [
+                costs.square * r * r + each[i] * r + cost
                 for r in range(least, most + 1)
-                if (cost := _blocks_for(r, room, share, prices)) is not None
+                if (cost := _blocks_for(r, room, share, prices, costs)) is not None
             ]
-            if not costs:
+            if not found:
                 raise Refuted("the rules leave a treatment no blocks that add up")
-            solved[key] = min(costs)
+            solved[key] = min(found)
         yield solved[key]
 
 
 def _blocks_for(
-    r: int, room: dict[Kind, tuple[int, int]], share: tuple[int, ...], prices: _Prices
+    r: int, room: dict[Kind, tuple[int, int]], share: tuple[int, ...], prices: _Prices, costs: Costs
 ) -> Fraction | None:
     """The least cost of the blocks of a treatment with r plots, None where they cannot add up to r.
 
@@ -102,7 +126,9 @@ def _blocks_for(
     stands = {-1: r - sum(share)} | dict(enumerate(share))
     total = Fraction(0)
     for group, wanted in stands.items():
-        kinds = sorted((_cost(r, kind, stands, prices), room[kind]) for kind in room if kind[1] == group)
+        kinds = sorted(
+            (_cost(r, kind, stands, prices, costs), room[kind]) for kind in room if kind[1] == group
+        )
         left = wanted - sum(low for _, (low, _) in kinds)
         if left < 0:
             return None
@@ -115,16 +141,16 @@ def _blocks_for(
     return total
 
 
-def _cost(r: int, kind: Kind, stands: dict[int, int], prices: _Prices) -> Fraction:
+def _cost(r: int, kind: Kind, stands: dict[int, int], prices: _Prices, costs: Costs) -> Fraction:
     size, own = kind
-    cost = Fraction(-2 * r, size) - prices.plots[kind]
+    cost = r * costs.plot(size) - prices.plots[kind]
     for group, price in prices.meets[kind].items():
         cost += price * (stands[group] - (group == own))
     return cost
 
 
-def _block_pairs(prices: _Prices, blocks: list[Kind]) -> Fraction:
-    """Over all pairs of blocks the least of 2x²/(k k') less the prices of their meets."""
+def _block_pairs(prices: _Prices, blocks: list[Kind], costs: Costs) -> Fraction:
+    """Over all pairs of blocks the least of what x meets cost, less their prices."""
     number = Counter(blocks)
     total = Fraction(0)
     for one, other in combinations_with_replacement(sorted(number), 2):
@@ -132,7 +158,6 @@ def _block_pairs(prices: _Prices, blocks: list[Kind]) -> Fraction:
         pairs = number[one] * (number[one] - 1) // 2 if same else number[one] * number[other]
         if pairs:
             price = prices.meets[one][other[1]] + prices.meets[other][one[1]]
-            total += pairs * min(
-                Fraction(2 * x * x, one[0] * other[0]) - price * x for x in range(min(one[0], other[0]) + 1)
-            )
+            square = costs.meet(one[0], other[0])
+            total += pairs * min(square * x * x - price * x for x in range(min(one[0], other[0]) + 1))
     return total

@@ -8,6 +8,7 @@ from fractions import Fraction
 from search.proof.aims import weights
 from search.proof.certificates.case import Case
 from search.proof.certificates.spectrum import Spectrum
+from search.proof.intervals import Interval
 from search.proof.records import Refuted
 from search.proof.reference import best_determinant, least_mean_variance
 from search.trial.records import AimKind
@@ -23,6 +24,37 @@ class Claim:
     def supports(self, efficiency: Fraction) -> bool:
         """Whether an efficiency may be told as one that no plan passes."""
         return efficiency >= 0 and efficiency**self.power >= self.ratio
+
+    @property
+    def derived(self) -> Fraction:
+        """The least efficiency that may be told, or a hair above."""
+        return Interval.exactly(self.ratio).root(self.power).high
+
+
+@dataclass(frozen=True, slots=True)
+class LeastSum:
+    """No plan of the trial has a sum of squared meetings below `least`."""
+
+    least: int
+
+    def supports(self, bound: Fraction) -> bool:
+        """Whether a number may be told as one that no plan is below."""
+        return 0 < bound <= self.least and bound.denominator == 1
+
+    @property
+    def derived(self) -> Fraction:
+        """The most that may be told."""
+        return Fraction(self.least)
+
+
+def claim_of_meetings(case: Case, squares: Fraction) -> LeastSum:
+    """From a number that Σ λ² is not below in any plan in which nothing stands twice in a block.
+
+    λ² is odd where λ is, so the sum is odd where all meetings together, Σ k(k−1)/2 over the blocks, are.
+    """
+    meetings = sum(int(k) * (int(k) - 1) // 2 for k in case.rules.sizes)
+    least = max(0, -(-squares.numerator // squares.denominator))
+    return LeastSum(least + (least - meetings) % 2)
 
 
 def claim_of_variance(case: Case, least: Fraction) -> Claim:

@@ -14,7 +14,7 @@ from search.proof.records import Refuted
 from search.proof.reference import greatest_product
 from search.trial.records import AimKind
 
-AIMS = tuple(AimKind)
+AIMS = (AimKind.ALL_PAIRS, AimKind.OVERALL, AimKind.AGAINST_CONTROL, AimKind.CONTRASTS)
 
 
 def derive(case: Case, multipliers: Part) -> Claim:

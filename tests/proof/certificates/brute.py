@@ -11,18 +11,18 @@ import numpy as np
 
 from search.proof.certificates import KINDS
 from search.proof.certificates.case import Case
-from search.proof.certificates.claims import Claim
+from search.proof.certificates.claims import Claim, LeastSum
 from search.proof.parts import Part
 from search.proof.records import Refuted
 from search.trial.limits import limits
 from search.trial.records import AimKind, Trial
 from search.trial.tables import tables
 from tests.drawn import all_plans
-from tests.proof.plans import information, replications, weight_matrix
+from tests.proof.plans import information, replications, squared_meetings, weight_matrix
 
 
-def best_efficiency(trial: Trial, most: int = 1500) -> float | None:
-    """The greatest efficiency of all plans for the aim; None where no plan exists or too many do."""
+def best_score(trial: Trial, most: int = 1500) -> float | None:
+    """The best score of all plans for the aim; None where no plan exists or too many do."""
     try:
         plans = list(all_plans(trial, most))
     except OverflowError:
@@ -31,6 +31,8 @@ def best_efficiency(trial: Trial, most: int = 1500) -> float | None:
     if not plans or not references:
         return None
     t = trial.t
+    if trial.aim.kind.counts_meetings:
+        return min(squared_meetings(contents, t) for contents in plans)
     stack = np.array([information(contents, t) for contents in plans])
     x = np.linalg.eigvalsh(stack)[:, 1:]
     connected = x[:, 0] > 1e-9
@@ -39,9 +41,13 @@ def best_efficiency(trial: Trial, most: int = 1500) -> float | None:
     if trial.aim.kind is AimKind.OVERALL:
         best = max(np.prod(np.array(r, dtype=float)) for r in references) * t / trial.n
         return float(np.max(np.prod(x[connected], axis=1) / best) ** (1 / (t - 1)))
+    inverse = np.linalg.inv(stack[connected] + 1 / t)
+    if trial.aim.kind is AimKind.WORST_PAIR:
+        own = inverse[:, range(t), range(t)]
+        largest = (own[:, :, None] + own[:, None, :] - 2 * inverse).max(axis=(1, 2))
+        return min(sum(1 / x for x in sorted(r)[:2]) for r in references) / float(largest.min())
     W = weight_matrix(trial)
     best = min(float(np.sum(W.diagonal() / np.array(r))) for r in references)
-    inverse = np.linalg.inv(stack[connected] + 1 / t)
     return best / float(np.min(np.sum(inverse * W, axis=(1, 2))))
 
 
@@ -50,10 +56,16 @@ def case_of(trial: Trial) -> Case:
     return Case(trial, tables(trial), limits(trial))
 
 
-def derived(kind: str, case: Case, multipliers: dict[str, Any]) -> Claim:
+def derived(kind: str, case: Case, multipliers: dict[str, Any]) -> Any:
     """What a certificate of the kind proves with these multipliers."""
-    claim: Claim = KINDS[kind].derive(case, Part("multipliers", multipliers))
-    return claim
+    return KINDS[kind].derive(case, Part("multipliers", multipliers))
+
+
+def is_passed(claim: Claim | LeastSum, best: float) -> bool:
+    """Whether a plan with this score makes the claim false."""
+    if isinstance(claim, LeastSum):
+        return best < claim.least
+    return efficiency_of(claim) < best * (1 - 1e-9)
 
 
 def efficiency_of(claim: Claim) -> float:
@@ -98,7 +110,19 @@ def any_multipliers(kind: str, case: Case, draw: random.Random) -> dict[str, Any
                 "plots": {str(s): price() for s in sizes if draw.random() < 0.9},
                 "sums": sums,
             }
-        case "second moment by block meets":
+        case "even meetings by pairs":
+            order = draw.sample(range(case.trial.t), case.trial.t)
+            cut = draw.randint(0, case.trial.t)
+            return {
+                "partners": [
+                    {"treatments": part, "price": price()}
+                    for part in (order[:cut], order[cut:])
+                    if draw.random() < 0.9
+                ],
+                "plots": {str(s): price() for s in sizes if draw.random() < 0.9},
+                "sums": sums,
+            }
+        case "second moment by block meets" | "even meetings by block meets":
             return {
                 "meets": [
                     {"size": s, "group": g, "with": other, "price": price()}
@@ -239,20 +263,25 @@ def _is_symmetric(value: Any) -> bool:
     )
 
 
-def sharpened(kind: str, case: Case, draw: random.Random, steps: int) -> Claim:
+def sharpened(kind: str, case: Case, draw: random.Random, steps: int) -> Claim | LeastSum:
     """The strongest claim met on a random climb: certificates err where they are sharp, if anywhere."""
     multipliers = any_multipliers(kind, case, draw)
     best = _tried(kind, case, multipliers)
     for _ in range(steps):
         other = changed(multipliers, draw) if draw.random() < 0.9 else any_multipliers(kind, case, draw)
         claim = _tried(kind, case, other)
-        if claim.ratio <= best.ratio:
+        if _weakness(claim) <= _weakness(best):
             multipliers, best = other, claim
     return best
 
 
-def _tried(kind: str, case: Case, multipliers: dict[str, Any]) -> Claim:
+def _weakness(claim: Claim | LeastSum) -> Fraction:
+    return Fraction(-claim.least) if isinstance(claim, LeastSum) else claim.ratio
+
+
+def _tried(kind: str, case: Case, multipliers: dict[str, Any]) -> Claim | LeastSum:
     try:
-        return derived(kind, case, multipliers)
+        found: Claim | LeastSum = derived(kind, case, multipliers)
     except Refuted:
-        return Claim(Fraction(10**9))
+        return LeastSum(0) if case.aim.counts_meetings else Claim(Fraction(10**9))
+    return found

@@ -52,7 +52,7 @@ LOW_PENALTY = 0.3
 
 def applies(trial: Trial) -> bool:
     """Whether the aim depends on the eigenvalues alone and nothing may stand twice in a block."""
-    return trial.aim.kind.treats_pairs_alike and not trial.rules.twice_in_block
+    return trial.aim.kind.depends_on_eigenvalues and not trial.rules.twice_in_block
 
 
 def find(given: Problem) -> Bound | None:
