@@ -1,0 +1,94 @@
+// The plan of a row, its figures and why it stands where it does, over the page.
+let current = null;
+
+function pairs(list) {
+  return made("dl", {}, ...list.map(([name, value]) => made("div", {}, made("dt", {}, name), made("dd", {}, value))));
+}
+function figuresOf(row) {
+  const unit = row.unit ?? "";
+  const list = [
+    [`Efficiency, ${row.aim}`, efficiency(row.best)], ["Bound", efficiency(row.bound)],
+    ["Gap", known(row.gap) ? `${percent(row.gap, 3)} %` : ""],
+    ["Loss to replication", known(row.replication) ? `${percent(row.replication)} %` : ""],
+    ["Loss to blocks", known(row.blocks) ? `${percent(row.blocks)} %` : ""],
+    ["Break-even: variance cut by", known(row.blocks) ? `${percent(row.blocks)} %` : ""],
+    ["Standard error", known(row.error) ? `${three(row.error)} ${unit}` : ""],
+    ["of the worst pair", known(row.error_worst) ? `${three(row.error_worst)} ${unit}` : ""],
+    ["Detectable difference", known(row.detectable) ? `${three(row.detectable)} ${unit}` : ""],
+    ["of the worst pair", known(row.detectable_worst) ? `${three(row.detectable_worst)} ${unit}` : ""],
+    ["Residual df", whole(row.df)], ["without blocks", whole(row.df_without)],
+    ["Blocks that two share", row.meetings[0] === row.meetings[1] ? whole(row.meetings[0]) : `${row.meetings[0]} to ${row.meetings[1]}`],
+  ];
+  return made("div", { class: "figures" }, ...list.filter(([, value]) => value !== "").map(([name, value]) => made("div", {}, made("span", {}, name), made("b", {}, value))));
+}
+function blocksOf(row) {
+  const names = data.names[row.treatments];
+  const held = row.plan.split("|").map((block) => (block ? block.split(" ").map(Number) : []));
+  const box = made("div", { class: "blocks" });
+  let chosen = null;
+  const choose = (treatment) => {
+    chosen = chosen === treatment ? null : treatment;
+    box.querySelectorAll("div").forEach((block) => {
+      const plots = [...block.children];
+      const has = plots.some((plot) => Number(plot.dataset.i) === chosen);
+      plots.forEach((plot) => {
+        const is = Number(plot.dataset.i) === chosen;
+        plot.setAttribute("aria-pressed", String(is));
+        plot.classList.toggle("near", has && !is);
+      });
+    });
+  };
+  held.forEach((treatments, j) => {
+    const plots = treatments.map((i) => made("button", { type: "button", class: "plot", "data-i": i, "aria-pressed": "false", onclick: () => choose(i) }, made("bdi", {}, names[i])));
+    box.append(made("span", {}, made("bdi", {}, data.names[row.block_names][j])), made("div", {}, ...plots));
+  });
+  return box;
+}
+function clashOf(clash) {
+  const lines = [...clash.lines, ...clash.among].map((line) => made("li", {}, line.line ? `line ${line.line}: ${line.text}` : line.text));
+  const changes = clash.changes.map((change) => made("li", {}, change));
+  return [
+    made("h3", {}, clash.lines.length > 1 ? "These cannot all be kept" : "This cannot be kept"), made("ul", { class: "lines" }, ...lines),
+    made("p", {}, `Why: ${clash.cause}.`),
+    ...(changes.length ? [made("h3", {}, "Each of these changes was tried and leaves a plan"), made("ul", { class: "changes" }, ...changes)] : []),
+  ];
+}
+function insideOf(row) {
+  const values = namedValues(row);
+  const inside = made("div", { class: "inside" }, values.length ? pairs(values) : null);
+  if (row.t) inside.append(made("p", { class: "quiet" }, `${row.t} treatments on ${row.n} plots in ${row.b} blocks of ${sizes(row)}`));
+  if (row.best === undefined) {
+    inside.append(made("p", { class: "open" }, made("b", {}, `${row.status}. `), row.reason ?? ""), ...(row.clashes ?? []).flatMap(clashOf));
+    return inside;
+  }
+  inside.append(made("p", {}, made("b", {}, `${row.standing}. `), row.told));
+  if (row.argument) inside.append(made("p", { class: "quiet" }, `The bound’s argument: ${row.argument}.`));
+  inside.append(figuresOf(row));
+  if (row.compared) inside.append(made("p", { class: "quiet" }, `Standard error and detectable difference speak of ${row.compared}.`));
+  if (row.flags.length) inside.append(made("h3", {}, "Flags"), made("ul", { class: "warned" }, ...row.flags.map(([, told]) => made("li", {}, told))));
+  inside.append(made("h3", {}, "Blocks"));
+  if (known(row.plan)) inside.append(made("p", { class: "quiet screen" }, "A click on a treatment shows where it stands, and beside whom."), blocksOf(row));
+  else inside.append(made("p", { class: "quiet" }, "Too many plots for this page: the store keeps the plan."));
+  const kept = row.kept ? "kept from an earlier search, " : "";
+  inside.append(made("h3", {}, "Where the plan comes from"), made("p", { class: "quiet" }, `Started from: ${row.start}; ${kept}seed ${row.seed}, ${row.moves.toLocaleString("en")} moves in ${row.seconds} s.`));
+  return inside;
+}
+
+function openPlan(row) {
+  const rows = sorted(shown);
+  const at = rows.indexOf(row);
+  const step = (by) => { const next = rows[at + by]; if (next) openPlan(next); };
+  const button = (text, label, by) => made("button", { type: "button", class: "plain", "aria-label": label, disabled: at < 0 || !rows[at + by], onclick: () => step(by) }, text);
+  const dialog = byId("plan");
+  const close = made("button", { type: "button", class: "plain", onclick: () => dialog.close() }, "Close");
+  dialog.replaceChildren(made("div", { class: "bar" }, made("b", { id: "plan-title" }, `Row ${row.row}`), button("←", "Row before", -1), button("→", "Next row", 1), close), insideOf(row));
+  dialog.onkeydown = (event) => {
+    if (event.key === "ArrowLeft") step(-1);
+    if (event.key === "ArrowRight") step(1);
+  };
+  current = row;
+  if (!dialog.open) dialog.showModal();
+  dialog.scrollTop = 0;
+  close.focus();
+  history.replaceState(null, "", `#row-${row.row}`);
+}
