@@ -17,6 +17,7 @@ from typing import TYPE_CHECKING, Protocol
 from search.efficiency.evaluator import score
 from search.foundation.errors import WorkersLost
 from search.foundation.stopping import Ended, Limits
+from search.runs.conductor import checked
 from search.runs.effort import seconds_of
 from search.runs.keeping import Recalled, covers, recall, remember, run_of
 from search.runs.kept import SAME_SCORE
@@ -30,6 +31,7 @@ from search.runs.sweep_table import frame_of
 from search.runs.verdicts import Verdicts, key_of
 from search.runs.workers import Results, one_by_one, side_by_side
 from search.trial.canonical import Canonical, canonical
+from search.trial.carrying import from_canonical, to_canonical
 from search.trial.records import Trial
 
 if TYPE_CHECKING:
@@ -169,13 +171,42 @@ def _as_plan(trial: Trial, numbering: Canonical, kept: Recalled, ended: Ended) -
     )
 
 
+def _with_known(plan: Plan, task: _Task) -> Plan:
+    """The plan, or a better one that was kept when the sweep began; with the tighter of the two bounds.
+
+    What other rows found meanwhile has no say: a row must not depend on the order in which they end.
+    """
+    kept = task.known
+    if kept.plan is not None and kept.plan.score > plan.score.aim + SAME_SCORE:
+        better = _as_plan(plan.trial, task.numbering, replace(kept, bound=plan.bound), plan.ended_by)
+        plan = better or plan
+    bound = kept.bound
+    # The store is not trusted so far as to deny a plan that is there.
+    if bound is None or bound.value * (1 + 1e-9) < plan.score.aim:
+        return checked(plan)
+    if plan.bound is None or bound.exact < plan.bound.exact:
+        plan = replace(plan, bound=bound)
+    return checked(plan)
+
+
+def _carried(plan: Plan, numbering: Canonical, trial: Trial) -> Plan:
+    """The plan of a trial as a plan of another one that is the same problem."""
+    there, here = to_canonical(numbering), from_canonical(canonical(trial))
+    contents = here.contents(there.contents(plan.contents))
+    bound = plan.bound
+    if bound is not None:
+        bound = replace(bound, certificate=here.certificate(there.certificate(bound.certificate)))
+    return replace(plan, trial=trial, contents=contents, score=score(trial, contents), bound=bound)
+
+
 @dataclass(frozen=True, slots=True)
 class _Task:
-    """One search, the rows that it answers, and how long it may take."""
+    """One search, the rows that it answers, what is kept of them, and how long it may take."""
 
     rows: list[SweepRow]
     search: Search
     numbering: Canonical
+    known: Recalled
     verdict_key: str
     seconds: float
 
@@ -237,9 +268,10 @@ class _Sweeping:
             if key in tasks:
                 tasks[key].rows.append(row)
                 continue
-            start = None if self.fresh else recall(self.store, trial, numbering).contents
+            known = recall(self.store, trial, numbering)
+            start = None if self.fresh else known.contents
             search = Search(row.number, trial, numbering.digest, limits, start)
-            tasks[key] = _Task([row], search, numbering, verdict_key, seconds_of(trial, limits))
+            tasks[key] = _Task([row], search, numbering, known, verdict_key, seconds_of(trial, limits))
         return sorted(tasks.values(), key=lambda task: task.seconds)
 
     def is_known(
@@ -284,30 +316,25 @@ class _Sweeping:
             self.verdicts.add(task.verdict_key, found)
         else:
             remember(self.store, task.numbering, plan, run_of(plan, task.search.limits, 1))
-            plan = self.best_known(task, plan)
-        first, *others = task.rows
+            try:
+                plan = _with_known(plan, task)
+            except RuntimeError as error:  # a mistake of ours in one row must not lose the others
+                found = Found(found.number, RowStatus.FAILED, reason=f"internal error: {error}")
+                plan = None
+        row, *others = task.rows
         where_from = None if plan is None else WhereFrom.SEARCHED
-        self.end(RowResult(first, found.status, plan, where_from, found.reason, found.clashes))
+        first = RowResult(row, found.status, plan, where_from, found.reason, found.clashes)
+        self.end(first)
         if found.status is RowStatus.OPEN:
             raise KeyboardInterrupt
         for row in others:
-            self.end(self.answered_alike(row, found, task.search.limits))
+            self.end(self.answered_alike(row, task, first))
 
-    def best_known(self, task: _Task, plan: Plan) -> Plan:
-        """The plan, or a better one that was kept before; with the tightest bound known."""
-        kept = recall(self.store, plan.trial, task.numbering)
-        if kept.plan is not None and kept.plan.score > plan.score.aim + SAME_SCORE:
-            better = _as_plan(plan.trial, task.numbering, kept, plan.ended_by)
-            return plan if better is None else better
-        if kept.bound is not None and (plan.bound is None or kept.bound.exact < plan.bound.exact):
-            return replace(plan, bound=kept.bound)
-        return plan
-
-    def answered_alike(self, row: SweepRow, found: Found, limits: Limits) -> RowResult:
+    def answered_alike(self, row: SweepRow, task: _Task, first: RowResult) -> RowResult:
         """The result of a row whose problem another row has searched."""
-        if row.trial is None or found.plan is None:
-            return RowResult(row, found.status, None, None, found.reason, found.clashes)
-        plan = kept_plan(self.store, row.trial, canonical(row.trial), limits)
+        if row.trial is None or first.plan is None:
+            return replace(first, row=row)
+        plan = _carried(first.plan, task.numbering, row.trial)
         return RowResult(row, RowStatus.PLANNED, plan, WhereFrom.KEPT)
 
     def end(self, result: RowResult) -> None:
@@ -326,7 +353,7 @@ class _Sweeping:
         if self.seconds_searched > 0:
             # Estimates are wrong by a factor that is much the same for all rows: it cancels here.
             spent = time.monotonic() - self.started
-            left = max(0.0, spent / self.seconds_searched * self.seconds_waiting)
+            left = spent / self.seconds_searched * self.seconds_waiting if self.waiting else 0.0
         return Progress(
             rows=len(self.sweep.rows),
             done=len(self.results),

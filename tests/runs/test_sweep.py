@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import io
 import signal
 import threading
 import time
@@ -14,12 +15,14 @@ from joblib import parallel_config
 
 from search.foundation.errors import Undecided
 from search.foundation.stopping import Ended, Limits, Stop
+from search.runs import row_search
 from search.runs import sweep as sweeping
 from search.runs.plan import Plan
 from search.runs.store import Store
-from search.runs.sweep import Progress, RowResult, RowStatus, SweepObserver, WhereFrom, run_sweep
+from search.runs.sweep import SweepObserver, run_sweep
 from search.runs.sweep_file import Sweep, read_sweep
-from search.runs.sweep_table import sweep_frame, write_table
+from search.runs.sweep_records import Progress, RowResult, RowStatus, WhereFrom
+from search.runs.sweep_table import csv_of
 from search.trial.limits import limits as implied_limits
 from search.trial.records import Contents, Trial
 from tests.drawn import all_plans
@@ -56,8 +59,8 @@ class Searches(list[Trial]):
 @pytest.fixture
 def searches(monkeypatch: pytest.MonkeyPatch) -> Searches:
     found = Searches()
-    monkeypatch.setattr(sweeping, "find", found)
-    monkeypatch.setattr(sweeping._Sweeping, "make_kernels_ready", lambda self: None)
+    monkeypatch.setattr(row_search, "find", found)
+    monkeypatch.setattr(sweeping, "wait_for_kernels", lambda note: None)
     return found
 
 
@@ -127,7 +130,7 @@ def test_a_search_that_fails_is_a_row(
     def failing(trial: Trial, **asked: Any) -> Plan:
         raise errors.pop(0)
 
-    monkeypatch.setattr(sweeping, "find", failing)
+    monkeypatch.setattr(row_search, "find", failing)
     result = run_sweep(sweep_of(tmp_path, "  blocks.count: [3, 6]\n"), store)
     assert [(row.status, row.reason) for row in result.rows] == [
         (RowStatus.UNDECIDED, "no plan found in 20 s"),
@@ -169,8 +172,9 @@ def test_an_observer_is_told_of_every_row(tmp_path: Path, store: Store, searches
 def test_the_table_has_a_line_for_every_row(tmp_path: Path, store: Store, searches: Searches) -> None:
     """sweep.csv tells the varied values, best found against bound, and the reason where there is no plan."""
     result = run_sweep(sweep_of(tmp_path, MIXED), store)
-    write_table(result, tmp_path / "out" / "sweep.csv")
-    table = pd.read_csv(tmp_path / "out" / "sweep.csv")
+    text = csv_of(result.sweep.columns, result.rows)
+    assert text.startswith("\N{BYTE ORDER MARK}row,blocks.plots,")
+    table = pd.read_csv(io.StringIO(text.removeprefix("\N{BYTE ORDER MARK}")))
     assert list(table.columns[:6]) == ["row", "blocks.plots", "treatments", "plots_each", "t", "b"]
     assert list(table["status"]) == ["planned", "impossible", "faulty", "impossible"]
     planned = table.iloc[0]
@@ -183,7 +187,7 @@ def test_the_table_has_a_line_for_every_row(tmp_path: Path, store: Store, search
     assert table["best_found"].isna().tolist() == [False, True, True, True]
     assert "many" in table["reason"][2]
     assert table["treatments"][3] == "[A, B, C, D]"
-    frame = sweep_frame(result)
+    frame = result.frame
     assert str(frame["n"].dtype) == "Int64"
     assert frame["seed"][0] == 1
 
@@ -191,7 +195,7 @@ def test_the_table_has_a_line_for_every_row(tmp_path: Path, store: Store, search
 def test_a_varied_aim_has_one_column(tmp_path: Path, store: Store, searches: Searches) -> None:
     """What varies and what is told of every row share a column where they are the same."""
     result = run_sweep(sweep_of(tmp_path, "  aim: [all pairs, overall]\n"), store)
-    frame = sweep_frame(result)
+    frame = result.frame
     assert list(frame.columns).count("aim") == 1
     assert list(frame["aim"]) == ["all pairs", "overall"]
 
@@ -209,7 +213,7 @@ def test_an_interrupted_search_ends_the_sweep_and_is_kept(
             time.sleep(0.01)
         return made_plan(trial, next(all_plans(trial)), Ended.INTERRUPTED)
 
-    monkeypatch.setattr(sweeping, "find", slow)
+    monkeypatch.setattr(row_search, "find", slow)
     sweep = sweep_of(tmp_path, "  blocks.count: [3, 6, 9]\n")
     result = run_sweep(sweep, store)
     assert result.interrupted
@@ -223,7 +227,7 @@ def test_an_interrupted_search_ends_the_sweep_and_is_kept(
         starts.append(kept)
         return made_plan(trial, kept or ((0, 1),) * 9)
 
-    monkeypatch.setattr(sweeping, "find", going_on)
+    monkeypatch.setattr(row_search, "find", going_on)
     again = run_sweep(sweep, store)
     assert not again.interrupted
     assert [row.where_from for row in again.rows] == [WhereFrom.KEPT, WhereFrom.SEARCHED, WhereFrom.SEARCHED]
@@ -250,5 +254,5 @@ def test_processes_give_the_same_rows(tmp_path: Path) -> None:
         with Store(tmp_path / f"{workers}.sqlite") as store:
             result = run_sweep(sweep, store, workers=workers)
             assert store.count() == 6
-            tables.append(sweep_frame(result).drop(columns=["seconds"]))
+            tables.append(result.frame.drop(columns=["seconds"]))
     pd.testing.assert_frame_equal(*tables)

@@ -7,6 +7,8 @@ const CHARTS = [
 ];
 const MOST_LINES = 6;
 const NEAR = 18;
+const ASIDE = 3;
+const CLOUD = 2.5;
 const SHAPES = [
   (x, y) => `M${x - 4} ${y}a4 4 0 1 0 8 0a4 4 0 1 0 -8 0z`,
   (x, y) => `M${x - 3.6} ${y - 3.6}h7.2v7.2h-7.2z`,
@@ -19,9 +21,9 @@ const DASHES = ["", "7 3", "2 3", "9 3 2 3", "4 2", "1 2"];
 
 const GROUPINGS = [
   { title: "nothing", of: () => "" },
-  ...(several((row) => row.aim) && !data.columns.includes("aim") ? [{ title: "aim", of: (row) => row.aim }] : []),
-  ...data.columns.map((title, i) => ({ title, of: (row) => row.values[i] })),
+  ...(several((row) => row.aim) ? [{ title: "aim", of: (row) => row.aim }] : []),
   ...(several((row) => row.t) ? [{ title: "treatments", of: (row) => String(row.t) }] : []),
+  ...data.columns.map((title, i) => ({ title, of: (row) => row.values[i] })).filter(({ title }) => title !== "aim" && title !== "treatments"),
 ];
 const drawable = (row) => row.best > 0;
 let grouping = usualGrouping();
@@ -86,6 +88,12 @@ function drawChart(chart, all) {
     place.replaceChildren(caption, made("p", { class: "quiet" }, "No row to draw."));
     return;
   }
+  const places = distinct(rows.map(chart.x));
+  if (places.length < 2) {
+    place.replaceChildren(caption, made("p", { class: "quiet" }, `Nothing to compare: all rows have ${three(places[0])} ${chart.below}.`));
+    return;
+  }
+  const series = seriesOf(rows);
   const wide = Math.max(280, Math.min(900, place.clientWidth || 520));
   const high = Math.round(Math.min(330, Math.max(230, wide * 0.55)));
   const [left, right, top, bottom] = [52, wide - 12, 10, high - 40];
@@ -105,10 +113,14 @@ function drawChart(chart, all) {
   }
   image.append(drawn("line", { class: "axis", x1: left, x2: right, y1: bottom, y2: bottom }), drawn("text", { x: right, y: high - 5, "text-anchor": "end" }, chart.below));
   const points = [];
-  const at = (row) => [across.place(chart.x(row)), up.place(y(row))].map((value) => Math.round(value * 10) / 10);
-  for (const one of seriesOf(rows)) {
+  for (const one of series) {
+    // Set apart a little, so that no line hides another.
+    const aside = (one.i - (series.length - 1) / 2) * ASIDE;
+    const at = (row) => [across.place(chart.x(row)) + aside, up.place(y(row))].map((value) => Math.round(value * 10) / 10);
     const colour = `var(--s${one.i})`;
-    const line = one.loose ? [] : bestByPlace(chart, one.rows);
+    const best = bestByPlace(chart, one.rows);
+    // A line through a cloud would zigzag and mean nothing: there the points speak.
+    const line = one.loose || (best.length < one.rows.length && best.length > one.rows.length / CLOUD) ? [] : best;
     const path = (row, i, value) => `${i ? "L" : "M"}${at(row)[0]} ${value(row)}`;
     if (chart.best && line.length) {
       const bounded = line.filter((row) => known(row.bound));
@@ -116,8 +128,11 @@ function drawChart(chart, all) {
       const over = bounded.map((row, i) => path(row, i, limit)).join("");
       const back = bounded.toReversed().map((row) => `L${at(row).join(" ")}`).join("");
       if (bounded.length > 1) image.append(drawn("path", { class: "band", fill: colour, d: `${over}${back}z` }));
-      const stems = bounded.length === 1 ? `M${at(bounded[0])[0]} ${limit(bounded[0])}V${at(bounded[0])[1]}` : "";
-      image.append(drawn("path", { class: "limit", stroke: colour, d: over + stems }));
+      image.append(drawn("path", { class: "limit", stroke: colour, d: over }));
+    }
+    if (chart.best) {
+      const stems = one.rows.filter((row) => known(row.bound)).map((row) => `M${at(row)[0]} ${Math.round(up.place(row.bound) * 10) / 10}V${at(row)[1]}`);
+      image.append(drawn("path", { class: "stem", stroke: colour, d: stems.join("") }));
     }
     const through = line.map((row, i) => path(row, i, (r) => at(r)[1])).join("");
     image.append(drawn("path", { class: "line", stroke: colour, "stroke-dasharray": DASHES[one.i], d: through }));

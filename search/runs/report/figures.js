@@ -3,7 +3,7 @@ const known = (value) => value !== null && value !== undefined;
 const efficiency = (value) => (known(value) ? value.toFixed(5) : "");
 const percent = (value, places = 2) => (known(value) ? value.toFixed(places) : "");
 const whole = (value) => (known(value) ? String(value) : "");
-const three = (value) => (known(value) ? String(Number(value.toPrecision(3))) : "");
+const three = (value) => (!known(value) ? "" : Math.abs(value) < 999.5 ? value.toPrecision(3) : value.toFixed(0));
 const blockSize = (row) => (row.b ? row.n / row.b : null);
 const replication = (row) => (row.t ? row.n / row.t : null);
 const sizes = (row) => (!row.b ? "" : row.least === row.most ? String(row.least) : `${row.least}–${row.most}`);

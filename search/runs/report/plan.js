@@ -5,30 +5,40 @@ function pairs(list) {
   return made("dl", {}, ...list.map(([name, value]) => made("div", {}, made("dt", {}, name), made("dd", {}, value))));
 }
 function figuresOf(row) {
-  const unit = row.unit ?? "";
-  const list = [
-    [`Efficiency, ${row.aim}`, efficiency(row.best)], ["Bound", efficiency(row.bound)],
-    ["Gap", known(row.gap) ? `${percent(row.gap, 3)} %` : ""],
-    ["Loss to replication", known(row.replication) ? `${percent(row.replication)} %` : ""],
-    ["Loss to blocks", known(row.blocks) ? `${percent(row.blocks)} %` : ""],
-    ["Break-even: variance cut by", known(row.blocks) ? `${percent(row.blocks)} %` : ""],
-    ["Standard error", known(row.error) ? `${three(row.error)} ${unit}` : ""],
-    ["of the worst pair", known(row.error_worst) ? `${three(row.error_worst)} ${unit}` : ""],
-    ["Detectable difference", known(row.detectable) ? `${three(row.detectable)} ${unit}` : ""],
-    ["of the worst pair", known(row.detectable_worst) ? `${three(row.detectable_worst)} ${unit}` : ""],
-    ["Residual df", whole(row.df)], ["without blocks", whole(row.df_without)],
-    ["Blocks that two share", row.meetings[0] === row.meetings[1] ? whole(row.meetings[0]) : `${row.meetings[0]} to ${row.meetings[1]}`],
+  const losses = known(row.blocks) ? `${percent(row.blocks)} %` : "";
+  const groups = [
+    ["Efficiency", [
+      [`Best found, ${row.aim}`, efficiency(row.best)], ["Bound", efficiency(row.bound)], ["Gap", known(row.gap) ? `${percent(row.gap, 3)} %` : ""],
+      ["Blocks that two share", row.meetings[0] === row.meetings[1] ? whole(row.meetings[0]) : `${row.meetings[0]} to ${row.meetings[1]}`],
+    ]],
+    ["Losses", [
+      ["To replication", known(row.replication) ? `${percent(row.replication)} %` : ""], ["To blocks", losses],
+      ["Blocks pay when they cut the variance by more than", losses],
+      ["Residual degrees of freedom", whole(row.df)], ["without blocks", whole(row.df_without)],
+    ]],
+    ["In the field", [
+      ["Standard error of a difference", three(row.error)], ["of the worst pair", three(row.error_worst)],
+      ["Detectable difference", three(row.detectable)], ["of the worst pair", three(row.detectable_worst)],
+    ]],
   ];
-  return made("div", { class: "figures" }, ...list.filter(([, value]) => value !== "").map(([name, value]) => made("div", {}, made("span", {}, name), made("b", {}, value))));
+  const figure = ([name, value]) => made("div", {}, made("span", {}, name), made("b", {}, value));
+  const group = ([title, list]) => {
+    const given = list.filter(([, value]) => value !== "");
+    return given.length ? made("section", {}, made("h3", {}, title), ...given.map(figure)) : null;
+  };
+  return made("div", { class: "figures" }, ...groups.map(group));
 }
 function blocksOf(row) {
   const names = data.names[row.treatments];
   const held = row.plan.split("|").map((block) => (block ? block.split(" ").map(Number) : []));
   const box = made("div", { class: "blocks" });
+  const letters = Math.max(...names.map((name) => name.length));
+  // As many blocks beside each other as have room.
+  box.style.setProperty("--wide", `${Math.min(900, 120 + row.most * Math.max(48, letters * 8 + 20))}px`);
   let chosen = null;
   const choose = (treatment) => {
     chosen = chosen === treatment ? null : treatment;
-    box.querySelectorAll("div").forEach((block) => {
+    box.querySelectorAll("section > div").forEach((block) => {
       const plots = [...block.children];
       const has = plots.some((plot) => Number(plot.dataset.i) === chosen);
       plots.forEach((plot) => {
@@ -40,7 +50,7 @@ function blocksOf(row) {
   };
   held.forEach((treatments, j) => {
     const plots = treatments.map((i) => made("button", { type: "button", class: "plot", "data-i": i, "aria-pressed": "false", onclick: () => choose(i) }, made("bdi", {}, names[i])));
-    box.append(made("span", {}, made("bdi", {}, data.names[row.block_names][j])), made("div", {}, ...plots));
+    box.append(made("section", {}, made("span", {}, made("bdi", {}, data.names[row.block_names][j])), made("div", {}, ...plots)));
   });
   return box;
 }
@@ -64,7 +74,7 @@ function insideOf(row) {
   inside.append(made("p", {}, made("b", {}, `${row.standing}. `), row.told));
   if (row.argument) inside.append(made("p", { class: "quiet" }, `The bound’s argument: ${row.argument}.`));
   inside.append(figuresOf(row));
-  if (row.compared) inside.append(made("p", { class: "quiet" }, `Standard error and detectable difference speak of ${row.compared}.`));
+  if (row.compared) inside.append(made("p", { class: "quiet" }, `Standard error and detectable difference speak of ${row.compared}, in ${row.unit}.`));
   if (row.flags.length) inside.append(made("h3", {}, "Flags"), made("ul", { class: "warned" }, ...row.flags.map(([, told]) => made("li", {}, told))));
   inside.append(made("h3", {}, "Blocks"));
   if (known(row.plan)) inside.append(made("p", { class: "quiet screen" }, "A click on a treatment shows where it stands, and beside whom."), blocksOf(row));

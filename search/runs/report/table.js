@@ -7,12 +7,7 @@ const inUnit = oneUnit ? `, ${oneUnit}` : "";
 
 const COLUMNS = [
   { title: "Row", of: (row) => row.row, number: true },
-  ...data.columns.map((title, i) => ({ title, of: (row) => row.values[i], kind: "value", wide: true })),
-  { title: "Treat\u00adments", of: (row) => row.t, number: true },
-  { title: "Blocks", of: (row) => row.b, number: true },
-  { title: "Plots", of: (row) => row.n, number: true },
-  { title: "Block size", of: blockSize, shown: sizes, number: true },
-  ...(several((row) => row.aim) && !data.columns.includes("aim") ? [{ title: "Aim", of: (row) => row.aim, kind: "one" }] : []),
+  ...data.columns.map((title, i) => ({ title, of: (row) => row.values[i], kind: "value" })),
   { title: "Best found", of: (row) => row.best, shown: (row) => efficiency(row.best), number: true, figure: true },
   { title: "Bound", of: (row) => row.bound, shown: (row) => efficiency(row.bound), number: true, figure: true },
   { title: "Gap, %", of: (row) => row.gap, shown: (row) => percent(row.gap, 3), number: true, figure: true },
@@ -24,9 +19,15 @@ const COLUMNS = [
   ...(oneUnit ? [] : [{ title: "Unit", of: unitOf, kind: "one", figure: true }]),
   { title: "Residual df", of: (row) => row.df, number: true, figure: true },
   { title: "Flags", of: (row) => (row.flags ?? []).map(([short]) => short).join(", "), kind: "flags", figure: true },
-  { title: "Start", of: (row) => row.start, kind: "start", figure: true },
+  { title: "Treat\u00adments", of: (row) => row.t, number: true },
+  { title: "Blocks", of: (row) => row.b, number: true },
+  { title: "Block size", of: blockSize, shown: sizes, number: true },
+  { title: "Plots", of: (row) => row.n, number: true },
+  ...(several((row) => row.aim) && !data.columns.includes("aim") ? [{ title: "Aim", of: (row) => row.aim, kind: "one" }] : []),
+  { title: "Start", of: (row) => row.start, kind: "start" },
 ];
 const FIGURES = COLUMNS.filter((column) => column.figure).length;
+const AFTER = COLUMNS.findLastIndex((column) => column.figure) + 1;
 
 const order = { column: 0, down: false };
 let shown = data.rows;
@@ -46,17 +47,21 @@ function cell(column, row) {
   return made("td", { class: column.number ? "n" : column.kind }, inside);
 }
 
+function reason(row) {
+  // In the place of the figures that a row without a plan has not.
+  const told = made("span", { class: "short", title: row.reason ?? "" }, made("b", {}, row.status), row.reason ? ` ${row.reason}` : "");
+  return made("td", { class: "reason", colspan: FIGURES }, told);
+}
+
 function lineOf(row) {
   const line = made("tr", { "data-row": row.row });
   const open = made("button", { class: "row", type: "button", "aria-haspopup": "dialog", "aria-label": `Row ${row.row}: open its plan`, onclick: () => openPlan(row) }, String(row.row));
   line.append(made("td", { class: "n" }, open));
+  const without = row.best === undefined;
   for (const column of COLUMNS.slice(1)) {
-    if (column.figure && row.best === undefined) continue;
+    if (without && column.figure) continue;
+    if (without && column === COLUMNS[AFTER]) line.append(reason(row));
     line.append(cell(column, row));
-  }
-  if (row.best === undefined) {
-    const told = made("span", { class: "short", title: row.reason ?? "" }, made("b", {}, row.status), row.reason ? ` ${row.reason}` : "");
-    line.append(made("td", { class: "reason", colspan: FIGURES }, told));
   }
   return line;
 }
