@@ -23,7 +23,7 @@ if TYPE_CHECKING:
     from distributed import Client
 
 CONNECT_SECONDS = 5.0
-WAIT_SECONDS = 10.0
+WAIT_SECONDS = 30.0
 """Wall time in which a scheduler must have its first worker."""
 LOOK_SECONDS, COUNT_SECONDS = 0.2, 2.0
 NOBODY = -1

@@ -10,6 +10,7 @@ from search.runs.conductor import find
 from search.runs.explaining import explained
 from search.runs.plan import Plan
 from search.runs.sweep_records import RowStatus
+from search.trial.limits import limits
 from search.trial.records import Contents, Trial
 
 EXPLAIN_SECONDS = 3.0
@@ -78,6 +79,23 @@ def search_row(asked: Search, stop: Stop) -> Found:
         return Found(number, RowStatus.FAILED, reason=f"internal error: {type(error).__name__}: {error}")
     interrupted = plan.ended_by is Ended.INTERRUPTED
     return Found(number, RowStatus.OPEN if interrupted else RowStatus.PLANNED, plan)
+
+
+def impossible_alike(number: int, trial: Trial, other: int) -> Found:
+    """Why a row is impossible whose problem another row has under other names.
+
+    Parameters
+    ----------
+    number, trial : the row
+    other : number of the row of which it is known
+    """
+    error = Impossible((f"it is the problem of row {other}, which has no plan",), f"as row {other}")
+    try:
+        limits(trial)
+    except Impossible as counted:
+        error = counted
+    clashes = _clashes(trial, error)
+    return Found(number, RowStatus.IMPOSSIBLE, None, in_short(error, clashes), clashes)
 
 
 def _clashes(trial: Trial, error: Impossible) -> tuple[Clash, ...]:

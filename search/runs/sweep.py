@@ -23,7 +23,7 @@ from search.runs.keeping import Recalled, covers, recall, remember, run_of
 from search.runs.kept import SAME_SCORE
 from search.runs.kernels import wait_for_kernels
 from search.runs.plan import Plan
-from search.runs.row_search import Found, Search
+from search.runs.row_search import Found, Search, impossible_alike
 from search.runs.store import Store
 from search.runs.sweep_file import Sweep, SweepRow
 from search.runs.sweep_records import Progress, RowResult, RowStatus, WhereFrom
@@ -332,10 +332,15 @@ class _Sweeping:
 
     def answered_alike(self, row: SweepRow, task: _Task, first: RowResult) -> RowResult:
         """The result of a row whose problem another row has searched."""
-        if row.trial is None or first.plan is None:
+        trial = row.trial
+        if trial is None or first.status not in (RowStatus.PLANNED, RowStatus.IMPOSSIBLE):
             return replace(first, row=row)
-        plan = _carried(first.plan, task.numbering, row.trial)
-        return RowResult(row, RowStatus.PLANNED, plan, WhereFrom.KEPT)
+        if first.plan is not None:
+            plan = _carried(first.plan, task.numbering, trial)
+            return RowResult(row, RowStatus.PLANNED, plan, WhereFrom.KEPT)
+        found = impossible_alike(row.number, trial, first.row.number)
+        self.verdicts.add(key_of(trial, task.search.limits), found)
+        return RowResult(row, found.status, None, None, found.reason, found.clashes)
 
     def end(self, result: RowResult) -> None:
         """Note the result of a row, and tell it."""

@@ -9,6 +9,7 @@ const MOST_LINES = 6;
 const NEAR = 18;
 const ASIDE = 3;
 const CLOUD = 2.5;
+const STEEP = 6;
 const SHAPES = [
   (x, y) => `M${x - 4} ${y}a4 4 0 1 0 8 0a4 4 0 1 0 -8 0z`,
   (x, y) => `M${x - 3.6} ${y - 3.6}h7.2v7.2h-7.2z`,
@@ -56,14 +57,22 @@ function ticks(least, most, wanted) {
   return { step, at: Array.from({ length: Math.max(0, last - first + 1) }, (_, i) => (first + i) * step) };
 }
 
-function scale(values, from, to) {
-  let least = Math.min(...values);
-  let most = Math.max(...values);
+function scale(given, from, to, logarithmic = false) {
+  const on = logarithmic ? Math.log10 : (value) => value;
+  const values = given.map(on);
+  let least = values.reduce((a, b) => Math.min(a, b));
+  let most = values.reduce((a, b) => Math.max(a, b));
   const room = most > least ? (most - least) * 0.06 : Math.abs(most) * 0.05 || 1;
   least -= room;
   most += room;
-  const place = (value) => from + ((value - least) / (most - least)) * (to - from);
+  const place = (value) => from + ((on(value) - least) / (most - least)) * (to - from);
   return { place, least, most };
+}
+function decades(least, most) {
+  const at = [];
+  for (let power = Math.floor(least); power <= most; power += 1) at.push(...[1, 2, 5].map((times) => times * 10 ** power));
+  const inside = at.filter((value) => Math.log10(value) >= least && Math.log10(value) <= most);
+  return { step: Math.min(...inside, 1), at: inside };
 }
 const tickText = (value, step) => String(Number(value.toFixed(Math.max(0, Math.ceil(-Math.log10(step) + 1e-9) + (String(step).includes("25") ? 1 : 0)))));
 
@@ -82,7 +91,9 @@ function drawChart(chart, all) {
   const rows = chart.best ? all : all.filter((row) => known(row.detectable) && row.unit === chart.unit);
   const y = chart.best ? (row) => row.best : (row) => row.detectable;
   const unit = chart.best ? "efficiency" : chart.unit ?? "";
-  const caption = made("figcaption", {}, chart.title, made("span", {}, unit));
+  const steep = distinct(rows.map(y));
+  chart.logarithmic = !chart.best && steep.length > 1 && steep.at(-1) > STEEP * steep[0];
+  const caption = made("figcaption", {}, chart.title, made("span", {}, chart.logarithmic ? `${unit}, on a logarithmic scale` : unit));
   const place = chart.figure;
   if (!rows.length) {
     place.replaceChildren(caption, made("p", { class: "quiet" }, "No row to draw."));
@@ -99,9 +110,10 @@ function drawChart(chart, all) {
   const [left, right, top, bottom] = [52, wide - 12, 10, high - 40];
   const across = scale(rows.map(chart.x), left, right);
   const limits = chart.best ? rows.map((row) => row.bound).filter(known) : [];
-  const up = scale([...rows.map(y), ...limits], bottom, top);
+  const heights = [...rows.map(y), ...limits];
+  const up = scale(heights, bottom, top, chart.logarithmic);
   const image = drawn("svg", { viewBox: `0 0 ${wide} ${high}`, role: "img", "aria-label": `${chart.title}: ${rows.length} rows. The table below holds the same figures.` });
-  const levels = ticks(up.least, up.most, 5);
+  const levels = chart.logarithmic ? decades(up.least, up.most) : ticks(up.least, up.most, 5);
   for (const value of levels.at) {
     const at = up.place(value);
     image.append(drawn("line", { class: "grid", x1: left, x2: right, y1: at, y2: at }), drawn("text", { x: left - 8, y: at + 4, "text-anchor": "end" }, tickText(value, levels.step)));
@@ -113,14 +125,16 @@ function drawChart(chart, all) {
   }
   image.append(drawn("line", { class: "axis", x1: left, x2: right, y1: bottom, y2: bottom }), drawn("text", { x: right, y: high - 5, "text-anchor": "end" }, chart.below));
   const points = [];
+  const lines = series.map((one) => bestByPlace(chart, one.rows));
+  // A line through a cloud would zigzag and mean nothing: there the points speak.
+  const ofLines = lines.flat().length;
+  const isCloud = ofLines < rows.length && ofLines > rows.length / CLOUD;
   for (const one of series) {
     // Set apart a little, so that no line hides another.
     const aside = (one.i - (series.length - 1) / 2) * ASIDE;
     const at = (row) => [across.place(chart.x(row)) + aside, up.place(y(row))].map((value) => Math.round(value * 10) / 10);
     const colour = `var(--s${one.i})`;
-    const best = bestByPlace(chart, one.rows);
-    // A line through a cloud would zigzag and mean nothing: there the points speak.
-    const line = one.loose || (best.length < one.rows.length && best.length > one.rows.length / CLOUD) ? [] : best;
+    const line = one.loose || isCloud ? [] : lines[series.indexOf(one)];
     const path = (row, i, value) => `${i ? "L" : "M"}${at(row)[0]} ${value(row)}`;
     if (chart.best && line.length) {
       const bounded = line.filter((row) => known(row.bound));

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Sequence
+from statistics import median_high
 from typing import Any
 
 from search.runs.plan import Plan, Standing
@@ -65,7 +66,10 @@ def summary(rows: Sequence[RowResult]) -> str:
     sentence += (
         f" {best} of {_counted(len(plans), 'plan')} {'is' if best == 1 else 'are'} the best there can be"
     )
-    return f"{sentence}; the largest gap is {max(gaps):.2g} %." if gaps and max(gaps) > 0 else f"{sentence}."
+    if not gaps or max(gaps) == 0:
+        return f"{sentence}."
+    half = f"half of all gaps are at most {median_high(gaps):.2g} %, " if len(gaps) > 2 else ""
+    return f"{sentence}; {half}the largest gap is {max(gaps):.2g} %."
 
 
 def _counted(number: int, word: str) -> str:

@@ -26,7 +26,7 @@ function show() {
 
 function shade(dark) {
   document.documentElement.dataset.shade = dark ? "dark" : "light";
-  byId("shade").setAttribute("aria-pressed", String(dark));
+  byId("shade").textContent = dark ? "Light" : "Dark";
 }
 
 function begin() {

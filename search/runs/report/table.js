@@ -5,7 +5,7 @@ const unitOf = (row) => row.unit;
 const oneUnit = several(unitOf) ? "" : data.rows.map(unitOf).find(known) ?? "";
 const inUnit = oneUnit ? `, ${oneUnit}` : "";
 
-const COLUMNS = [
+const ALL = [
   { title: "Row", of: (row) => row.row, number: true },
   ...data.columns.map((title, i) => ({ title, of: (row) => row.values[i], kind: "value" })),
   { title: "Best found", of: (row) => row.best, shown: (row) => efficiency(row.best), number: true, figure: true },
@@ -19,13 +19,16 @@ const COLUMNS = [
   ...(oneUnit ? [] : [{ title: "Unit", of: unitOf, kind: "one", figure: true }]),
   { title: "Residual df", of: (row) => row.df, number: true, figure: true },
   { title: "Flags", of: (row) => (row.flags ?? []).map(([short]) => short).join(", "), kind: "flags", figure: true },
-  { title: "Treat\u00adments", of: (row) => row.t, number: true },
-  { title: "Blocks", of: (row) => row.b, number: true },
-  { title: "Block size", of: blockSize, shown: sizes, number: true },
-  { title: "Plots", of: (row) => row.n, number: true },
+  { title: "Treat\u00adments", of: (row) => row.t, size: true, number: true },
+  { title: "Blocks", of: (row) => row.b, size: true, number: true },
+  { title: "Block size", of: blockSize, shown: sizes, size: true, number: true },
+  { title: "Plots", of: (row) => row.n, size: true, number: true },
   ...(several((row) => row.aim) && !data.columns.includes("aim") ? [{ title: "Aim", of: (row) => row.aim, kind: "one" }] : []),
   { title: "Start", of: (row) => row.start, kind: "start" },
 ];
+// What varies is shown already where it is a size itself.
+const isTwin = (column) => data.columns.some((_, i) => data.rows.every((row) => !row.b || row.values[i] === (column.shown ?? column.of)(row).toString()));
+const COLUMNS = ALL.filter((column) => !column.size || !isTwin(column));
 const FIGURES = COLUMNS.filter((column) => column.figure).length;
 const AFTER = COLUMNS.findLastIndex((column) => column.figure) + 1;
 
