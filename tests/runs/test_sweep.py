@@ -187,7 +187,7 @@ def test_fresh_searches_anew_and_keeps_the_better(
     tmp_path: Path, store: Store, monkeypatch: pytest.MonkeyPatch, searches: Searches
 ) -> None:
     """`fresh` starts from no kept plan; where the new one is worse the old one is told and stays kept."""
-    sweep = sweep_of(tmp_path, "  treatments: [[A, B, C, D]]\n  blocks.count: [6]\n")
+    sweep = sweep_of(tmp_path, "  treatments: [[A, B, C, D]]\n  blocks.count: [4]\n")
     trial = sweep.rows[0].trial
     assert trial is not None
     plans = sorted(all_plans(trial), key=lambda contents: score(trial, contents).aim)
