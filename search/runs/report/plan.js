@@ -1,5 +1,6 @@
 // The plan of a row, its figures and why it stands where it does, over the page.
 let current = null;
+const titled = (word) => word.charAt(0).toUpperCase() + word.slice(1);
 
 function pairs(list) {
   return made("dl", {}, ...list.map(([name, value]) => made("div", {}, made("dt", {}, name), made("dd", {}, value))));
@@ -68,10 +69,10 @@ function insideOf(row) {
   const inside = made("div", { class: "inside" }, values.length ? pairs(values) : null);
   if (row.t) inside.append(made("p", { class: "quiet" }, `${row.t} treatments on ${row.n} plots in ${row.b} blocks of ${sizes(row)}`));
   if (row.best === undefined) {
-    inside.append(made("p", { class: "open" }, made("b", {}, `${row.status}. `), row.reason ?? ""), ...(row.clashes ?? []).flatMap(clashOf));
+    inside.append(made("p", { class: "open" }, made("b", {}, `${titled(row.status)}. `), row.reason ?? ""), ...(row.clashes ?? []).flatMap(clashOf));
     return inside;
   }
-  inside.append(made("p", {}, made("b", {}, `${row.standing}. `), row.told));
+  inside.append(made("p", {}, made("b", {}, `${titled(row.standing)}. `), row.told));
   if (row.argument) inside.append(made("p", { class: "quiet" }, `The bound’s argument: ${row.argument}.`));
   inside.append(figuresOf(row));
   if (row.compared) inside.append(made("p", { class: "quiet" }, `Standard error and detectable difference speak of ${row.compared}, in ${row.unit}.`));
