@@ -15,6 +15,7 @@ if TYPE_CHECKING:
     from search.api import bound as bound
     from search.api import evaluate as evaluate
     from search.api import plan as plan
+    from search.api import sweep as sweep
     from search.runs.store import Store as Store
 
 HOMES = {
@@ -22,9 +23,10 @@ HOMES = {
     "plan": "search.api",
     "evaluate": "search.api",
     "bound": "search.api",
+    "sweep": "search.api",
     "Store": "search.runs.store",
 }
-__all__ = ["Store", "Trial", "bound", "evaluate", "plan"]
+__all__ = ["Store", "Trial", "bound", "evaluate", "plan", "sweep"]
 
 
 def __getattr__(name: str) -> Any:

@@ -1,10 +1,11 @@
-"""Evenfield from Python: the main job in five names."""
+"""Evenfield from Python: the main job in a few names."""
 
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, fields
 from pathlib import Path
+from tempfile import TemporaryDirectory
 
 from search.efficiency.bounds import best_bound
 from search.efficiency.evaluator import score
@@ -14,6 +15,9 @@ from search.foundation.stopping import Limits, Observer
 from search.runs.conductor import find
 from search.runs.keeping import Keeping
 from search.runs.plan import Plan
+from search.runs.store import Store
+from search.runs.sweep import SweepResult, run_sweep
+from search.runs.sweep_file import read_sweep
 from search.trial import records
 from search.trial.checker import broken_rules
 from search.trial.limits import limits as implied_limits
@@ -87,6 +91,36 @@ def plan(
         if keeping.failure is not None:
             raise keeping.failure
         return found
+
+
+def sweep(
+    path: str | Path,
+    *,
+    workers: int = 1,
+    store: str | Path | None = None,
+    fresh: bool = False,
+) -> SweepResult:
+    """Plan every row of a sweep file; an interrupt ends it early with what it has.
+
+    Parameters
+    ----------
+    path : the sweep file
+    workers : rows searched at a time
+    store : a file that keeps results and starts from them; None keeps nothing
+    fresh : search every row anew; the better of old and new stays kept
+
+    Returns
+    -------
+    result : its `.frame` is a table with a line for each row, its `.rows` hold the plans
+
+    Raises
+    ------
+    FaultyTrial : the sweep file has faults
+    BadInput : the store cannot be used
+    """
+    rows = read_sweep(path)
+    with TemporaryDirectory() as folder, Store(store or Path(folder, "store.sqlite")) as kept:
+        return run_sweep(rows, kept, workers=workers, fresh=fresh)
 
 
 def evaluate(trial: records.Trial, blocks: Mapping[str, Sequence[str]]) -> Score:

@@ -13,6 +13,7 @@ With `--json` standard output holds one JSON document and nothing else, whatever
     1     refuted                  the findings of `verify`
     2     bad file                 faults
     2     bad input                a plan file, a store or an option that cannot be used
+    2     workers lost             `sweep` on other machines: rows and files as far as it came
     3     impossible               causes, shown_by,
                                    clashes: [{lines: [{key, line, text}], among, smallest, cause, shown_by,
                                    changes}]

@@ -11,6 +11,7 @@ from search.trial.records import Precision, Trial
 
 FAR = 9.5
 """No standard normal value lies beyond, but for two in 10²¹."""
+IN_DEVIATIONS = "plot standard deviations"
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,6 +57,20 @@ class BreakEven:
     variance_cut_percent: float
     residual_df: int
     residual_df_without_blocks: int
+
+
+def plot_deviation(asked: Precision) -> tuple[float, str]:
+    """Standard deviation between plots of a block and its unit; 1 where the trial says nothing of it.
+
+    Parameters
+    ----------
+    asked : what the trial says of its field
+    """
+    if asked.cv_percent is None:
+        return 1.0, IN_DEVIATIONS
+    if asked.mean is None:
+        return asked.cv_percent, "% of the mean"
+    return asked.cv_percent / 100 * asked.mean, asked.unit
 
 
 def standard_error(variance: float, plot_standard_deviation: float) -> float:

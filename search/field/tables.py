@@ -4,13 +4,9 @@ from __future__ import annotations
 
 import csv
 import io
-import re
 
 from search.field.crew import CrewPacket
-
-FORMULA = re.compile(r"(^|[;|])(\s*)(?=[=+\-@＝＋－＠])")
-"""Where a spreadsheet might take text for a formula: at the start of a cell, and after a semicolon or
-bar, which some countries' settings take for the end of a cell."""
+from search.foundation.spreadsheets import inert
 
 
 def plots_csv(packet: CrewPacket) -> str:
@@ -41,8 +37,3 @@ def plots_csv(packet: CrewPacket) -> str:
             ]
         )
     return "\N{BYTE ORDER MARK}" + text.getvalue()
-
-
-def inert(text: str) -> str:
-    """The text with an apostrophe wherever a spreadsheet might see a formula begin."""
-    return FORMULA.sub(r"\1\2'", text)

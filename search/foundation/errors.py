@@ -4,7 +4,8 @@ EvenfieldError                 everything a user can meet; never a traceback
 ├── FaultyTrial                the trial or sweep file has faults (all of them at once)
 ├── BadInput                   another input is unusable: a plan file, a store, an option
 ├── Impossible                 no plan obeys the trial's rules
-└── Undecided                  the time ran out before the rules were decided
+├── Undecided                  the time ran out before the rules were decided
+└── WorkersLost                other machines that searched for this one are gone
 """
 
 from __future__ import annotations
@@ -130,6 +131,12 @@ class Undecided(EvenfieldError):
 
     exit_status = 4
     status = "undecided"
+
+
+class WorkersLost(EvenfieldError):
+    """Other machines that searched for this one answer no more; what they had finished is kept."""
+
+    status = "workers lost"
 
 
 def did_you_mean(word: str, known: Iterable[str]) -> str:

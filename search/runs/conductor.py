@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import math
-import threading
 from collections.abc import Iterator
 from dataclasses import dataclass, field, replace
 
@@ -14,8 +13,9 @@ from search.efficiency.evaluator import meetings_and_ties, score
 from search.efficiency.records import Bound
 from search.efficiency.reference import reference_product, reference_variance
 from search.foundation.stopping import Ended, Limits, Observer, Stop
+from search.runs.kernels import wait_for_kernels
 from search.runs.plan import Plan
-from search.solvers.records import Goal, Outcome, Problem, problem_of
+from search.solvers.records import Outcome, Problem, problem_of
 from search.solvers.start import feasible_start, further_starts
 from search.trial.canonical import canonical
 from search.trial.checker import broken_rules
@@ -86,7 +86,7 @@ def find(
     best: Start | None = None
     try:
         best = _best_known(trial, kept, observer, stop)
-        _wait_for_kernels(problem.goal, observer, stop)
+        wait_for_kernels(observer.note, [problem.goal], lambda: stop.interrupted)
     except KeyboardInterrupt:
         # Before the search could begin: the plans that are there already count.
         start = best or Start(first, where_from)
@@ -177,30 +177,6 @@ def checked(plan: Plan) -> Plan:
             f"bound {plan.bound.value!r} ({plan.bound.argument}) below an achieved plan {plan.score.aim!r}"
         )
     return plan
-
-
-def _wait_for_kernels(goal: Goal, observer: Observer, stop: Stop) -> None:
-    """Load the kernels in a thread of their own, so that an interrupt is heard while they compile."""
-    from search.solvers.compiled import are_cached, warm_up
-
-    if not are_cached(goal):
-        observer.note("the search kernels are compiled once on this machine, about 20 s")
-    failure: list[BaseException] = []
-
-    def load() -> None:
-        try:
-            warm_up(goal)
-        except BaseException as error:
-            failure.append(error)
-
-    thread = threading.Thread(target=load, daemon=True)
-    thread.start()
-    while thread.is_alive():
-        thread.join(0.02)
-        if stop.interrupted:
-            raise KeyboardInterrupt
-    if failure:
-        raise failure[0]
 
 
 @dataclass(slots=True)

@@ -8,7 +8,7 @@ from math import sqrt
 
 from search.efficiency.bounds import all_bounds
 from search.efficiency.evaluator import score
-from search.efficiency.precision import detectable_multiple
+from search.efficiency.precision import detectable_multiple, plot_deviation
 from search.efficiency.records import Bound
 from search.efficiency.reference import reference_variance
 from search.trial.limits import Limits
@@ -17,7 +17,6 @@ from search.trial.records import Aim, AimKind, Contents, Trial
 MOST_TREATMENTS = 500
 """Beyond, scoring a plan takes longer than a page that is read before a search may."""
 BOUND_SECONDS = 4.0
-IN_DEVIATIONS = "plot standard deviations"
 
 
 @dataclass(frozen=True, slots=True)
@@ -73,7 +72,7 @@ def prospects(trial: Trial, implied: Limits, first: Contents) -> Prospects | Non
     counted = asked.aim.kind.counts_meetings
     if counted:
         bound = _quick_bound(asked, implied)
-    deviation, unit = _plot_deviation(trial)
+    deviation, unit = plot_deviation(trial.precision)
     return Prospects(
         compared=compared,
         aim=asked.aim.kind if counted else trial.aim.kind,
@@ -93,15 +92,6 @@ def _quick_bound(trial: Trial, implied: Limits) -> Bound | None:
     for bound in bounds:
         best = bound if bound.beats(best) else best
     return best
-
-
-def _plot_deviation(trial: Trial) -> tuple[float, str]:
-    asked = trial.precision
-    if asked.cv_percent is None:
-        return 1.0, IN_DEVIATIONS
-    if asked.mean is None:
-        return asked.cv_percent, "% of the mean"
-    return asked.cv_percent / 100 * asked.mean, asked.unit
 
 
 def _detectable(trial: Trial, variance: float | None, df: int, deviation: float) -> float | None:

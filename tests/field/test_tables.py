@@ -12,7 +12,8 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from search.field.crew import crew_packet
-from search.field.tables import inert, plots_csv
+from search.field.tables import plots_csv
+from search.foundation.spreadsheets import inert
 from search.trial.reading import trial_from_document
 from tests.field.made import LOW_MOOR, document_of, trial_with
 

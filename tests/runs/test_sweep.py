@@ -2,24 +2,38 @@
 
 from __future__ import annotations
 
+import io
 import signal
 import threading
 import time
+from collections.abc import Iterator, Sequence
+from fractions import Fraction
 from pathlib import Path
 from typing import Any
 
 import pandas as pd
 import pytest
 from joblib import parallel_config
+from scipy.stats import nct
+from scipy.stats import t as t_law
 
+from search.efficiency.evaluator import score
 from search.foundation.errors import Undecided
 from search.foundation.stopping import Ended, Limits, Stop
+from search.runs import row_search
 from search.runs import sweep as sweeping
+from search.runs.effort import seconds_of
+from search.runs.kept import KeptBound, problem_of
 from search.runs.plan import Plan
+from search.runs.row_search import Found, Search
 from search.runs.store import Store
-from search.runs.sweep import Progress, RowResult, RowStatus, SweepObserver, WhereFrom, run_sweep
+from search.runs.sweep import SweepObserver, run_sweep
 from search.runs.sweep_file import Sweep, read_sweep
-from search.runs.sweep_table import sweep_frame, write_table
+from search.runs.sweep_records import Progress, RowResult, RowStatus, WhereFrom
+from search.runs.sweep_table import csv_of
+from search.runs.workers import patiently
+from search.trial.canonical import canonical
+from search.trial.checker import broken_rules
 from search.trial.limits import limits as implied_limits
 from search.trial.records import Contents, Trial
 from tests.drawn import all_plans
@@ -56,8 +70,8 @@ class Searches(list[Trial]):
 @pytest.fixture
 def searches(monkeypatch: pytest.MonkeyPatch) -> Searches:
     found = Searches()
-    monkeypatch.setattr(sweeping, "find", found)
-    monkeypatch.setattr(sweeping._Sweeping, "make_kernels_ready", lambda self: None)
+    monkeypatch.setattr(row_search, "find", found)
+    monkeypatch.setattr(sweeping, "wait_for_kernels", lambda note: None)
     return found
 
 
@@ -118,6 +132,163 @@ def test_the_same_problem_is_searched_once(tmp_path: Path, store: Store, searche
     assert second.score.aim == pytest.approx(first.score.aim)
 
 
+def test_rows_that_are_alike_do_not_mix(tmp_path: Path, store: Store, searches: Searches) -> None:
+    """A row that shares another's search has that plan in its own names, whatever the store holds besides."""
+    cases = "cases:\n  one: {rules.keep_out: {A: [block 1]}}\n  other: {rules.keep_out: {C: [block 2]}}\n"
+    sweep = sweep_of(tmp_path, "  blocks.count: [4]\n" + cases)
+    first, second = run_sweep(sweep, store).rows
+    assert (first.where_from, second.where_from) == (WhereFrom.SEARCHED, WhereFrom.KEPT)
+    for row in (first, second):
+        assert row.plan is not None
+        assert row.row.trial == row.plan.trial
+        assert broken_rules(row.plan.trial, row.plan.contents) == ()
+        assert score(row.plan.trial, row.plan.contents) == row.plan.score
+
+
+def test_impossible_rows_that_are_alike_are_told_in_their_own_names(
+    tmp_path: Path, store: Store, searches: Searches
+) -> None:
+    """A row whose problem proved impossible under other names says which of its own lines clash."""
+    cases = (
+        "cases:\n  one: {rules.never_share_block: [[A, B]]}\n  other: {rules.never_share_block: [[B, C]]}\n"
+    )
+    verdicts = tmp_path / "verdicts.jsonl"
+    sweep = sweep_of(tmp_path, "  blocks: [{count: 3, plots: 3}]\n" + cases)
+    for _ in range(2):
+        first, second = run_sweep(sweep, store, verdicts=verdicts).rows
+        assert (first.status, second.status) == (RowStatus.IMPOSSIBLE, RowStatus.IMPOSSIBLE)
+        assert "[A, B]" in first.reason
+        assert "[B, C]" in second.reason
+        assert "A and B" not in second.reason
+    assert len(searches) == 1
+
+
+def test_quick_rows_come_first(tmp_path: Path, store: Store, searches: Searches) -> None:
+    """Rows without a search end first, then short searches and small trials before long and large ones."""
+    seen: list[int] = []
+
+    class Watching(SweepObserver):
+        def finished(self, result: RowResult, progress: Progress) -> None:
+            seen.append(result.row.number)
+
+    vary = (
+        "- search.moves: [9000000, 100]\n- search: [{seconds: 60}, {seconds: 3}]\n"
+        "- blocks.count: [12, many]\n  treatments: [[A, B, C, D, E, F, G, H, I]]\n"
+    )
+    sweep = sweep_of(tmp_path, vary)
+    run_sweep(sweep, store, observer=Watching())
+    assert seen == [6, 2, 5, 4, 1, 3]
+    trial = sweep.rows[0].trial
+    assert trial is not None
+    assert seconds_of(trial, Limits(seconds=3, moves=100)) < seconds_of(trial, Limits(seconds=3))
+
+
+def test_fresh_searches_anew_and_keeps_the_better(
+    tmp_path: Path, store: Store, monkeypatch: pytest.MonkeyPatch, searches: Searches
+) -> None:
+    """`fresh` starts from no kept plan; where the new one is worse the old one is told and stays kept."""
+    sweep = sweep_of(tmp_path, "  treatments: [[A, B, C, D]]\n  blocks.count: [4]\n")
+    trial = sweep.rows[0].trial
+    assert trial is not None
+    plans = sorted(all_plans(trial), key=lambda contents: score(trial, contents).aim)
+    worst, best = plans[0], plans[-1]
+    assert score(trial, worst).aim < score(trial, best).aim
+    asked: list[Contents | None] = []
+
+    def finding(contents: Contents) -> Any:
+        def found(trial: Trial, *, kept: Contents | None, **_: Any) -> Plan:
+            asked.append(kept)
+            return made_plan(trial, contents)
+
+        return found
+
+    for contents in (best, worst):
+        monkeypatch.setattr(row_search, "find", finding(contents))
+        (row,) = run_sweep(sweep, store, fresh=True).rows
+        assert row.plan is not None
+        assert row.plan.score.aim == pytest.approx(score(trial, best).aim)
+    assert asked == [None, None]
+    assert len(store.runs(row.plan.digest, "all pairs")) == 2
+
+
+def test_verdicts_are_kept_as_each_row_ends(
+    tmp_path: Path, store: Store, searches: Searches, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Why a row has no plan is written down and not asked again, unless the file or the limits change; a line
+    that a crash cut off costs that line alone."""
+    verdicts = tmp_path / "verdicts.jsonl"
+    sweep = sweep_of(
+        tmp_path,
+        "  blocks.plots: [2, 4]\n  rules.must_hold: [{block 1: [A]}, {block 1: [A], block 2: [A]}]\n",
+    )
+    first = run_sweep(sweep, store, verdicts=verdicts)
+    assert len(searches) == 4
+    assert len(verdicts.read_text().splitlines()) == 2
+    verdicts.write_bytes(verdicts.read_bytes()[:-20])
+    second = run_sweep(sweep, store, verdicts=verdicts)
+    assert len(searches) == 5
+    assert len(verdicts.read_text().splitlines()) == 3
+    third = run_sweep(sweep, store, verdicts=verdicts)
+    assert len(searches) == 5
+    for before, *after in zip(first.rows, second.rows, third.rows, strict=True):
+        for row in after:
+            assert (row.status, row.reason, row.clashes) == (before.status, before.reason, before.clashes)
+    assert third.rows[2].clashes[0].lines
+    run_sweep(sweep_of(tmp_path, "  blocks.plots: [4]\n  search.moves: [101]\n"), store, verdicts=verdicts)
+    assert len(searches) == 6
+    run_sweep(sweep, store, verdicts=verdicts, fresh=True)
+    assert len(searches) == 10
+
+
+def test_a_forged_bound_denies_no_plan(tmp_path: Path, store: Store, searches: Searches) -> None:
+    """A bound in the store that is below a plan is passed over; the plan and its own bound stand."""
+    sweep = sweep_of(tmp_path, "  blocks.count: [3]\n")
+    (row,) = run_sweep(sweep, store).rows
+    assert row.plan is not None
+    assert row.plan.bound is not None
+    store.forget_plan(row.plan.digest, "all pairs")
+    forged = KeptBound(Fraction(1, 2), "no plan is any good", {"kind": "none"})
+    store.keep(problem_of(row.plan.trial, canonical(row.plan.trial)), "all pairs", bound=forged)
+    (again,) = run_sweep(sweep, store, fresh=True).rows
+    assert again.plan is not None
+    assert again.plan.bound == row.plan.bound
+
+
+def test_a_killed_process_costs_no_row() -> None:
+    """What a dead worker had is searched again; rows that kill their worker time and again are given up."""
+
+    class Death(Exception):
+        pass
+
+    begun: list[list[int]] = []
+
+    def making(searches: Sequence[Search]) -> Iterator[Found]:
+        begun.append([asked.number for asked in searches])
+        for asked in searches:
+            if asked.number in (2, 4) and (asked.number == 4 or len(begun) < 2):
+                raise Death
+            yield Found(asked.number, RowStatus.PLANNED)
+
+    asked = [Search(number, None, "", Limits(), None) for number in range(1, 7)]  # type: ignore[arg-type]
+    found = {one.number: one for one in patiently(asked, making, Death, 1)}  # type: ignore[arg-type]
+    assert sorted(found) == [1, 2, 3, 4, 5, 6]
+    assert [number for number, one in found.items() if one.status is RowStatus.FAILED] == [4]
+    assert "killed" in found[4].reason
+    assert begun == [[1, 2, 3, 4, 5, 6], [2, 3, 4, 5, 6], [4, 5, 6], [4, 5, 6], [5, 6]]
+
+
+def test_a_bare_map_is_told(tmp_path: Path, store: Store, searches: Searches) -> None:
+    """Bays that are still to be cut from the map are no blocks yet: the row says who cuts them."""
+    path = tmp_path / "sweep.yaml"
+    path.write_text(
+        "sweep: bare\nbase:\n  trial: bare\n  treatments: 4\n  blocks: {wanted: {plots: 4}}\n"
+        "  ground: {rows: 'aaaa aaaa'}\nvary: {search.moves: [10]}\n".replace("'aaaa aaaa'", '"aaaa\\naaaa"')
+    )
+    (row,) = run_sweep(read_sweep(path), store).rows
+    assert row.status is RowStatus.FAULTY
+    assert "evenfield plan" in row.reason
+
+
 def test_a_search_that_fails_is_a_row(
     tmp_path: Path, store: Store, monkeypatch: pytest.MonkeyPatch, searches: Searches
 ) -> None:
@@ -127,7 +298,7 @@ def test_a_search_that_fails_is_a_row(
     def failing(trial: Trial, **asked: Any) -> Plan:
         raise errors.pop(0)
 
-    monkeypatch.setattr(sweeping, "find", failing)
+    monkeypatch.setattr(row_search, "find", failing)
     result = run_sweep(sweep_of(tmp_path, "  blocks.count: [3, 6]\n"), store)
     assert [(row.status, row.reason) for row in result.rows] == [
         (RowStatus.UNDECIDED, "no plan found in 20 s"),
@@ -169,8 +340,9 @@ def test_an_observer_is_told_of_every_row(tmp_path: Path, store: Store, searches
 def test_the_table_has_a_line_for_every_row(tmp_path: Path, store: Store, searches: Searches) -> None:
     """sweep.csv tells the varied values, best found against bound, and the reason where there is no plan."""
     result = run_sweep(sweep_of(tmp_path, MIXED), store)
-    write_table(result, tmp_path / "out" / "sweep.csv")
-    table = pd.read_csv(tmp_path / "out" / "sweep.csv")
+    text = csv_of(result.sweep.columns, result.rows)
+    assert text.startswith("\N{BYTE ORDER MARK}row,blocks.plots,")
+    table = pd.read_csv(io.StringIO(text.removeprefix("\N{BYTE ORDER MARK}")))
     assert list(table.columns[:6]) == ["row", "blocks.plots", "treatments", "plots_each", "t", "b"]
     assert list(table["status"]) == ["planned", "impossible", "faulty", "impossible"]
     planned = table.iloc[0]
@@ -183,15 +355,43 @@ def test_the_table_has_a_line_for_every_row(tmp_path: Path, store: Store, search
     assert table["best_found"].isna().tolist() == [False, True, True, True]
     assert "many" in table["reason"][2]
     assert table["treatments"][3] == "[A, B, C, D]"
-    frame = sweep_frame(result)
+    frame = result.frame
     assert str(frame["n"].dtype) == "Int64"
     assert frame["seed"][0] == 1
+
+
+def test_figures_of_a_row_by_hand(tmp_path: Path, store: Store, searches: Searches) -> None:
+    """Standard error s √v of the mean pair variance v, with s = 9 % of 6 t/ha; flags and break-even."""
+    vary = "  blocks.count: [6]\n  precision: [{cv_percent: 9, mean: 6, unit: t/ha}, ~]\n"
+    both, bare = run_sweep(sweep_of(tmp_path, vary), store).frame.to_dict("records")
+    # Two copies of the triangle: v = 2 / (r E) = 2 / (4 · 3/4) and df = 12 - 6 - 3 + 1 (closed forms).
+    assert both["residual_df"] == 4
+    assert both["residual_df_without_blocks"] == 9
+    assert both["standard_error"] == pytest.approx(0.54 * (2 / 3) ** 0.5)
+    assert bare["standard_error"] == pytest.approx((2 / 3) ** 0.5)
+    assert (both["unit"], bare["unit"]) == ("t/ha", "plot standard deviations")
+    multiple = both["detectable_difference"] / both["standard_error"]
+    power = 1 - nct.cdf(t_law.ppf(0.975, 4), 4, multiple)  # scipy's noncentral t, upper side alone
+    assert power == pytest.approx(0.8, abs=1e-4)
+    assert both["break_even_percent"] == pytest.approx(25)
+    assert both["flags"] == "4 df"
+
+
+def test_cells_are_no_formulas(tmp_path: Path, store: Store, searches: Searches) -> None:
+    """Text that a spreadsheet might run gets an apostrophe in front, in headings too."""
+    path = tmp_path / "sweep.yaml"
+    path.write_text(SWEEP.replace("[A, B, C]", "[A, B, '=C']") + "  aim: [all pairs]\ncases: {'=1+1': }\n")
+    result = run_sweep(read_sweep(path), store)
+    text = csv_of((*result.sweep.columns, "@x"), result.rows)
+    table = pd.read_csv(io.StringIO(text.removeprefix("\N{BYTE ORDER MARK}")))
+    assert table["case"][0] == "'=1+1"
+    assert "'@x" in table.columns
 
 
 def test_a_varied_aim_has_one_column(tmp_path: Path, store: Store, searches: Searches) -> None:
     """What varies and what is told of every row share a column where they are the same."""
     result = run_sweep(sweep_of(tmp_path, "  aim: [all pairs, overall]\n"), store)
-    frame = sweep_frame(result)
+    frame = result.frame
     assert list(frame.columns).count("aim") == 1
     assert list(frame["aim"]) == ["all pairs", "overall"]
 
@@ -209,7 +409,7 @@ def test_an_interrupted_search_ends_the_sweep_and_is_kept(
             time.sleep(0.01)
         return made_plan(trial, next(all_plans(trial)), Ended.INTERRUPTED)
 
-    monkeypatch.setattr(sweeping, "find", slow)
+    monkeypatch.setattr(row_search, "find", slow)
     sweep = sweep_of(tmp_path, "  blocks.count: [3, 6, 9]\n")
     result = run_sweep(sweep, store)
     assert result.interrupted
@@ -223,7 +423,7 @@ def test_an_interrupted_search_ends_the_sweep_and_is_kept(
         starts.append(kept)
         return made_plan(trial, kept or ((0, 1),) * 9)
 
-    monkeypatch.setattr(sweeping, "find", going_on)
+    monkeypatch.setattr(row_search, "find", going_on)
     again = run_sweep(sweep, store)
     assert not again.interrupted
     assert [row.where_from for row in again.rows] == [WhereFrom.KEPT, WhereFrom.SEARCHED, WhereFrom.SEARCHED]
@@ -250,5 +450,5 @@ def test_processes_give_the_same_rows(tmp_path: Path) -> None:
         with Store(tmp_path / f"{workers}.sqlite") as store:
             result = run_sweep(sweep, store, workers=workers)
             assert store.count() == 6
-            tables.append(sweep_frame(result).drop(columns=["seconds"]))
+            tables.append(result.frame.drop(columns=["seconds"]))
     pd.testing.assert_frame_equal(*tables)
