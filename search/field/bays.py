@@ -8,7 +8,7 @@ from itertools import combinations
 from math import dist
 
 from search.field.cutting import Cut, Field, compact, square_strips, walked
-from search.field.numbering import NO_PLOT, Place, places
+from search.trial.numbering import NO_PLOT, Place, places
 from search.field.positions import positions
 from search.foundation.errors import FaultyTrial, Impossible, Undecided
 from search.trial.limits import limits

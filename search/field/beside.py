@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from search.field.numbering import Place
+from search.trial.numbering import Place
 from search.field.positions import positions
 from search.trial.records import Ground, NotBeside, Trial
 
@@ -24,7 +24,8 @@ class Restriction:
     ----------
     rule : as in the file
     first, second : (m,) numbers of plots that are near one another, each pair once
-    clashing : (t, t) True for treatments that may not stand on such plots
+    clashing : (t + 1, t + 1) True for treatments that may not stand on such plots; the last is filler, which
+        may stand beside anything
     near : for each plot the plots near it
     """
 
@@ -49,9 +50,9 @@ def restriction(trial: Trial, sites: Sequence[Place]) -> Restriction | None:
     for p, q in pairs:
         near[p].append(q)
         near[q].append(p)
-    clashing = np.zeros((trial.t, trial.t), dtype=np.bool_)
+    clashing = np.zeros((trial.t + 1, trial.t + 1), dtype=np.bool_)
     if rule.itself:
-        np.fill_diagonal(clashing, True)
+        np.fill_diagonal(clashing[: trial.t, : trial.t], True)
     for i, j in rule.pairs:
         clashing[i, j] = clashing[j, i] = True
     table = np.array(pairs, dtype=np.int64).reshape(-1, 2)

@@ -9,7 +9,7 @@ from itertools import groupby
 from math import dist, sqrt
 from typing import TYPE_CHECKING
 
-from search.field.numbering import Place
+from search.trial.numbering import Place
 from search.foundation.cpsat import Answer, solve
 
 if TYPE_CHECKING:

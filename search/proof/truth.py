@@ -32,7 +32,7 @@ class Truth:
 
 def truth(trial: Trial, plan: Information) -> Truth:
     """The score of a plan whose counts obey the trial."""
-    degrees = trial.n - trial.b - trial.t + plan.components
+    degrees = sum(plan.replication) - trial.b - trial.t + plan.components
     if plan.components > 1:
         nothing = Interval.exactly(0)
         lost = _replication_kept(trial, plan).less_than_one_by()
@@ -71,7 +71,7 @@ def truth(trial: Trial, plan: Information) -> Truth:
 def _replication_kept(trial: Trial, plan: Information) -> Interval:
     """Efficiency of the plan's own replication without blocks, for the trial's aim."""
     if trial.aim.kind is AimKind.OVERALL:
-        own = Fraction(prod(plan.replication) * trial.t, trial.n)
+        own = Fraction(prod(plan.replication) * trial.t, sum(plan.replication))
         return Interval.exactly(own / reference.best_determinant(trial)).root(trial.t - 1)
     weights = aims.weights(trial)
     own = reference.mean_variance_without_blocks(plan.replication, weights)
@@ -81,7 +81,7 @@ def _replication_kept(trial: Trial, plan: Information) -> Interval:
 def _blocks_kept(trial: Trial, plan: Information, found: Variances) -> Interval:
     """Efficiency of the plan against its own replication without blocks, for the trial's aim."""
     if trial.aim.kind is AimKind.OVERALL:
-        own = Fraction(prod(plan.replication) * trial.t, trial.n)
+        own = Fraction(prod(plan.replication) * trial.t, sum(plan.replication))
         return found.determinant.times(1 / own).root(trial.t - 1)
     own = reference.mean_variance_without_blocks(plan.replication, aims.weights(trial))
     return aims.mean_variance(trial, found).under(own)

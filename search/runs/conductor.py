@@ -7,6 +7,8 @@ import threading
 from collections.abc import Iterator
 from dataclasses import dataclass, field, replace
 
+import numpy as np
+
 from search.designs.starts import Start, starts
 from search.efficiency.aims import weights
 from search.efficiency.bounds import all_bounds
@@ -15,6 +17,7 @@ from search.efficiency.records import Bound
 from search.efficiency.reference import reference_product, reference_variance
 from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.plan import Plan
+from search.solvers.filler import emptied, filled, spare_of, with_filler
 from search.solvers.records import Outcome, Problem
 from search.solvers.start import feasible_start, further_starts
 from search.trial.canonical import canonical
@@ -22,6 +25,7 @@ from search.trial.checker import broken_rules
 from search.trial.limits import Limits as Replication
 from search.trial.limits import limits as implied_limits
 from search.trial.records import AimKind, Contents, Trial
+from search.trial.settled import settled
 from search.trial.tables import Tables, tables
 
 DECIDE_SECONDS, DECIDE_EFFORT = 600.0, 6.0
@@ -66,10 +70,10 @@ def find(
     """
     observer = observer or Observer()
     stop = stop or Stop(limits)
-    implied = implied_limits(trial)
-    rules = replace(tables(trial), least=implied.least, most=implied.most)
+    planned, implied = settled(trial, implied_limits(trial))
+    rules = replace(tables(planned), least=implied.least, most=implied.most)
     first, where_from = feasible_start(
-        trial,
+        planned,
         rules,
         implied,
         seed=seed,
@@ -78,17 +82,17 @@ def find(
         stop=stop,
     )
     observer.first_plan(score(trial, first).aim, where_from)
-    bounds = _Bounds(trial, implied, observer, stop)
+    bounds = _Bounds(planned, implied, observer, stop)
     best: Start | None = None
     try:
-        best = _best_known(trial, kept, observer, stop)
+        best = _best_known(planned, kept, observer, stop)
         _wait_for_kernels(observer, stop)
     except KeyboardInterrupt:
         # Before the search could begin: the plans that are there already count.
         start = best or Start(first, where_from)
         outcome = Outcome(start.contents, math.nan, 0, 0.0, Ended.INTERRUPTED, -1, start.where_from)
     else:
-        outcome = _searched(trial, rules, implied, first, best, bounds, stop, seed, workers)
+        outcome = _searched(planned, rules, implied, first, best, bounds, stop, seed, workers)
     bounds.finish(score(trial, outcome.contents).aim)
     broken = broken_rules(trial, outcome.contents)
     if broken:
@@ -123,10 +127,17 @@ def _searched(
     from search.solvers.rounds import search
 
     stop.restart()
-    return search(
-        Problem(rules, weights(trial)),
-        first,
-        kept=None if best is None else best.contents,
+    known = None if best is None else best.contents
+    spare = spare_of(rules, first)
+    if known is not None and spare_of(rules, known) != spare:
+        known = None  # it leaves other plots empty than the search can: the two are compared afterwards
+    matrix, full = weights(trial), rules if rules.exact else with_filler(rules, spare)
+    if matrix is not None:
+        matrix = np.pad(matrix, (0, sum(spare)))
+    outcome = search(
+        Problem(full, matrix, filler=sum(spare)),
+        filled(rules, first),
+        kept=None if known is None else filled(rules, known),
         target=bounds.target,
         stop=stop,
         seed=seed,
@@ -135,8 +146,12 @@ def _searched(
             bounds.efficiency(value), moves, seconds
         ),
         known="" if best is None else best.where_from,
-        others=further_starts(trial, rules, implied, seed=seed),
+        others=[filled(rules, other) for other in further_starts(trial, full, implied, seed=seed)],
     )
+    outcome = replace(outcome, contents=emptied(outcome.contents, trial.t))
+    if best is not None and score(trial, best.contents).aim > score(trial, outcome.contents).aim:
+        return replace(outcome, contents=best.contents, objective=math.nan, run=-1, start=best.where_from)
+    return outcome
 
 
 def _best_known(trial: Trial, kept: Contents | None, observer: Observer, stop: Stop) -> Start | None:

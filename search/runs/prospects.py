@@ -63,7 +63,7 @@ def prospects(trial: Trial, implied: Limits, first: Contents) -> Prospects | Non
         trial, compared = replace(trial, aim=Aim(AimKind.ALL_PAIRS)), "pairs, on average"
     bound = _quick_bound(trial, implied)
     plan = score(trial, first)
-    df = trial.n - trial.b - trial.t + 1
+    df = implied.planted[1] - trial.b - trial.t + 1
     best = None if bound is None else float(reference_variance(trial)) / bound.value
     deviation, unit = _plot_deviation(trial)
     return Prospects(

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from search.efficiency.evaluator import components, information_matrix, log_pseudo_determinant, pseudo_inverse
 from search.solvers.compiled import kernel
+from search.solvers.filler import emptied
 from search.solvers.records import Floats, Problem
 from search.trial.records import Contents
 from search.trial.tables import Tables, contents_of, incidence
@@ -36,6 +37,9 @@ def objective(problem: Problem, contents: Contents) -> float:
     t = problem.tables.t
     if components(contents, t) > 1:
         return float("inf")
+    if problem.filler and problem.weights is None:
+        t -= problem.filler
+        contents = emptied(contents, t)
     information = information_matrix(contents, t)
     if problem.weights is None:
         return -log_pseudo_determinant(information) / (t - 1)

@@ -22,10 +22,12 @@ class Problem:
     ----------
     tables : the rules; `least` and `most` are what all the rules leave of the stated ranges
     weights : (t, t) W of a trace aim `tr(W C⁺)`, or None for the overall aim `−log pdet(C)/(t−1)`
+    filler : how many of the treatments, the last ones, are only filler (`search.solvers.filler`)
     """
 
     tables: Tables
     weights: Floats | None
+    filler: int = 0
 
 
 @dataclass(frozen=True, slots=True)

@@ -15,7 +15,7 @@ from scipy.stats import chisquare
 from search.field import restricted
 from search.field.beside import Restriction, clash_in_words, restriction
 from search.field.chain import Walk
-from search.field.numbering import Place, places
+from search.trial.numbering import Place, places
 from search.field.planfile import plan_document
 from search.field.randomise import lay_out
 from search.field.urn import Urn

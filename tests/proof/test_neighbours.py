@@ -7,7 +7,7 @@ from typing import Any
 import pytest
 
 from search.field.beside import clash_in_words
-from search.field.numbering import places
+from search.trial.numbering import places
 from search.proof.neighbours import kept_apart
 from search.proof.plots import planted
 from search.proof.reading import Plot

@@ -53,8 +53,9 @@ PLACES = 9
 
 
 def applies(trial: Trial) -> bool:
-    """Whether all pairs count alike and nothing may stand twice in a block."""
-    return trial.aim.kind is AimKind.ALL_PAIRS and not trial.rules.twice_in_block
+    """Whether all pairs count alike, no plot may stay filler, and nothing may stand twice in a block."""
+    exact = not (trial.rules.twice_in_block or trial.may_be_emptier)
+    return trial.aim.kind is AimKind.ALL_PAIRS and exact
 
 
 Class = tuple[int, int]

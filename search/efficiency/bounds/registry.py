@@ -12,6 +12,7 @@ from search.efficiency.bounds.spectral import local
 from search.efficiency.records import Bound
 from search.trial.limits import Limits
 from search.trial.records import Trial
+from search.trial.settled import settled
 
 QUICK = 0.1
 """Seconds that every caller has."""
@@ -62,12 +63,15 @@ def tried(
 ) -> Iterator[Tried]:
     """Every argument that applies, each tried when it is asked for, the quick ones first.
 
+    Where counting settles how many plots of each block are planted, the blocks are taken as exact.
+
     Parameters
     ----------
     trial : the trial
     limits : the replication that its rules leave, from `search.trial.limits`
     has_time : whether there are so many seconds left; arguments that take longer are left out
     """
+    trial, limits = settled(trial, limits)
     given = problem(trial, limits)
     if given is None:
         return

@@ -25,8 +25,10 @@ MOST_COLUMNS = 20_000
 
 
 def applies(trial: Trial) -> bool:
-    """Whether nothing stands twice in a block and the aim depends on the eigenvalues alone."""
-    return trial.aim.kind.treats_pairs_alike and not trial.rules.twice_in_block
+    """Whether nothing stands twice in a block, no plot may stay filler, and the aim depends on the
+    eigenvalues alone."""
+    exact = not (trial.rules.twice_in_block or trial.may_be_emptier)
+    return trial.aim.kind.treats_pairs_alike and exact
 
 
 def bound_from(given: Problem, argument: str, squares: Fraction, multipliers: Mapping[str, Any]) -> Bound:

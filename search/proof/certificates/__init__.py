@@ -28,3 +28,6 @@ KINDS: dict[str, ModuleType] = {
     "normalised moment": normalised,
 }
 """What a certificate's "kind" may say."""
+
+OF_ANY_FILLING = frozenset({"first order", "replication", "trace root"})
+"""Kinds that hold however many plots stay filler; the others count with blocks that are planted in full."""

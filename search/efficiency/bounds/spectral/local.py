@@ -50,8 +50,10 @@ LOW_PENALTY = 0.3
 
 
 def applies(trial: Trial) -> bool:
-    """Whether the aim depends on the eigenvalues alone and nothing may stand twice in a block."""
-    return trial.aim.kind.treats_pairs_alike and not trial.rules.twice_in_block
+    """Whether the aim depends on the eigenvalues alone, no plot may stay filler, and nothing may stand
+    twice in a block."""
+    exact = not (trial.rules.twice_in_block or trial.may_be_emptier)
+    return trial.aim.kind.treats_pairs_alike and exact
 
 
 def find(given: Problem) -> Bound | None:
