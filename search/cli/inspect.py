@@ -148,6 +148,7 @@ def planted(trial: Trial) -> Iterator[str]:
         "keep_out": len(trial.rules.keep_out),
         "must_hold": len(trial.rules.must_hold),
         "replicates": len(trial.rules.replicates),
+        "planted": len(trial.rules.planted),
     }
     told = ", ".join(f"{word} {many}" for word, many in rules.items() if many)
     once = "twice in a block allowed" if trial.rules.twice_in_block else "each once in a block"
