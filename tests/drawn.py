@@ -40,7 +40,9 @@ def small_documents(draw: st.DrawFn, most_treatments: int = 5, most_plots: int =
             sizes.append(size)
     sizes = sizes or [min(t, 2)]
     emptier = draw(st.lists(st.booleans(), min_size=len(sizes), max_size=len(sizes)))
-    emptier = [may and draw(st.booleans()) for may in emptier] if draw(st.booleans()) else [False] * len(sizes)
+    emptier = (
+        [may and draw(st.booleans()) for may in emptier] if draw(st.booleans()) else [False] * len(sizes)
+    )
     blocks: dict[str, Any] = {
         f"b{j}": {"at_most": size} if may else size
         for j, (size, may) in enumerate(zip(sizes, emptier, strict=True))

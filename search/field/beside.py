@@ -8,8 +8,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from search.trial.numbering import Place
 from search.field.positions import positions
+from search.trial.numbering import Place
 from search.trial.records import Ground, NotBeside, Trial
 
 SLACK_M = 1e-6

@@ -44,7 +44,9 @@ def blinded(trial: Trial, document: Document) -> tuple[Trial, Document]:
     document : its plan as in plan.json, checked against the trial already
     """
     codes = blind_codes(trial.t, document["layout"]["seed"])
-    code_of: dict[str | None, str | None] = {treatment.name: code for treatment, code in zip(trial.treatments, codes, strict=True)}
+    code_of: dict[str | None, str | None] = {
+        treatment.name: code for treatment, code in zip(trial.treatments, codes, strict=True)
+    }
     code_of[None] = None  # filler stays filler
     plots = [{**plot, "treatment": code_of[plot["treatment"]]} for plot in document["plots"]]
     count = Counter(plot["treatment"] for plot in plots)
@@ -60,9 +62,7 @@ def blinded(trial: Trial, document: Document) -> tuple[Trial, Document]:
             replicates=tuple(Replicate(group.name, group.blocks) for group in trial.rules.replicates),
             per_replicate=(),
             twice_in_block=True,
-            planted=tuple(
-                replace(x, treatment=order.index(codes[x.treatment])) for x in trial.rules.planted
-            ),
+            planted=tuple(replace(x, treatment=order.index(codes[x.treatment])) for x in trial.rules.planted),
         ),
         aim=Aim(),
     )

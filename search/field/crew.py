@@ -12,13 +12,13 @@ from typing import Any
 
 from search.field.cautions import FIRST, USUAL, office_notes
 from search.field.codes import treatment_codes
-from search.trial.numbering import extent
 from search.field.planted import planted_plots
 from search.field.randomise import Planted
 from search.field.standing import standing_in_words
 from search.field.walk import Pass, passes
 from search.field.wording import clean, counted
 from search.foundation.errors import BadInput
+from search.trial.numbering import extent
 from search.trial.records import Ground, Trial
 
 SHORT_NAME = 4
@@ -71,7 +71,7 @@ class TreatmentEntry:
 
 FILLER = TreatmentEntry(0, "fill", "", False, "", 0, "", "")
 """What stands on a plot without a treatment; the code is no other's, for those have no four letters."""
-FILLER_TOLD = "Filler: no treatment. Sow what the field sheet calls for, and do not score it."
+FILLER_TOLD = "Filler: no treatment, nothing to score."
 IN_SOIL_TOLD = "Planted already: do not sow."
 
 

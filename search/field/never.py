@@ -55,11 +55,7 @@ def _unseen(
     walk.alike, walk.parts = [], []
     held = [Counter(standing[list(free)].tolist()) for free in urn.free]
     unseen = {
-        (p, i)
-        for free, inside in zip(urn.free, held, strict=True)
-        for p in free
-        for i in inside
-        if i < urn.t
+        (p, i) for free, inside in zip(urn.free, held, strict=True) for p in free for i in inside if i < urn.t
     }
     unseen -= set(enumerate(walk.standing))
     for _ in range(SWEEPS if urn.n <= MOST_PLOTS else FEWER_SWEEPS):

@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 from search.field.beside import clash_in_words
-from search.trial.numbering import places
 from search.field.planshape import Document
 from search.field.randomise import Planted, on_plots
 from search.foundation.errors import BadInput, shown
 from search.trial.checker import broken_rules
+from search.trial.numbering import places
 from search.trial.records import Trial
 
 

@@ -10,11 +10,11 @@ import numpy as np
 
 from search.field.beside import restriction
 from search.field.never import never_on
-from search.trial.numbering import Place, places
 from search.field.restricted import draw_restricted
 from search.field.urn import Urn
 from search.foundation.errors import BadInput
 from search.trial.checker import broken_rules
+from search.trial.numbering import Place, places
 from search.trial.records import Contents, Trial
 
 MOST_SEED = 10**9

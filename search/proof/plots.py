@@ -47,7 +47,9 @@ def _in_soil(trial: Trial, plots: tuple[Plot, ...]) -> None:
     for planted in trial.rules.planted:
         if stands.get(planted.plot) != planted.treatment:
             name = trial.treatments[planted.treatment].name
-            raise Refuted(f"plot {planted.plot} is planted with {name} already, and the file has another there")
+            raise Refuted(
+                f"plot {planted.plot} is planted with {name} already, and the file has another there"
+            )
 
 
 def _same_contents(trial: Trial, contents: Contents, plots: tuple[Plot, ...]) -> None:

@@ -21,8 +21,8 @@ def counted(trial: Trial, contents: Contents) -> Finding:
     return Finding(
         "counts",
         True,
-        f"{sum(map(len, contents))} plots in {trial.b} blocks, and all of {trial.t} treatments have the plots "
-        "they may have",
+        f"{sum(map(len, contents))} plots in {trial.b} blocks, and all of {trial.t} treatments have "
+        "the plots they may have",
     )
 
 

@@ -103,7 +103,10 @@ def inspect(trial: Trial, *, seconds: float, seed: int = 1) -> Inspection:
 def balance(trial: Trial) -> tuple[str, Balanced | None]:
     """Whether a balanced design fits the trial, and its parameters if one does or may."""
     if trial.may_be_emptier:
-        return "Some plots may stay filler: block sizes are not settled, and no balanced design is sought.", None
+        return (
+            "Some plots may stay filler: block sizes are not settled, and no balanced design is sought.",
+            None,
+        )
     sizes = {block.plots for block in trial.blocks}
     if sizes == {trial.t}:
         return "Every block holds every treatment: complete blocks, balanced as they stand.", None

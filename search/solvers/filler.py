@@ -83,4 +83,3 @@ def filled(tables: Tables, contents: Contents) -> Contents:
 def emptied(contents: Contents, t: int) -> Contents:
     """A plan without its filler: of all treatments the first t."""
     return tuple(tuple(i for i in block if i < t) for block in contents)
-

@@ -418,8 +418,7 @@ def _even_shares(
     if not any(block.may_be_emptier for block in blocks):
         return shares
     return tuple(
-        (min(low, max(least, high - 1)), high)
-        for (low, high), (least, _) in zip(shares, limits, strict=True)
+        (min(low, max(least, high - 1)), high) for (low, high), (least, _) in zip(shares, limits, strict=True)
     )
 
 

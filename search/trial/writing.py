@@ -8,7 +8,18 @@ from typing import Any
 
 from search.trial.listing import table_lines
 from search.trial.reading_rules import EVERY
-from search.trial.records import Aim, AimKind, Block, Ground, Meeting, NotBeside, Rules, Treatment, Trial, Wanted
+from search.trial.records import (
+    Aim,
+    AimKind,
+    Block,
+    Ground,
+    Meeting,
+    NotBeside,
+    Rules,
+    Treatment,
+    Trial,
+    Wanted,
+)
 
 
 def trial_document(trial: Trial) -> dict[str, Any]:

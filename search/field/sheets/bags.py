@@ -33,12 +33,14 @@ def _head(packet: CrewPacket, title: str, room: float) -> Piece:
         if packet.spare_bags
         else ""
     )
-    already = f" {counted(packet.in_soil, 'plot')} planted already: no bag." if packet.in_soil else ""
-    told = f"{counted(bags, 'bag')}{spare}. One bag a plot; tick when weighed, and when the bags are counted.{already}"
+    told = f"{counted(bags, 'bag')}{spare}. One bag a plot; tick when weighed, and when the bags are counted."
+    already = f"{counted(packet.in_soil, 'plot')} planted already: no bag for those."
 
     def draw(sheet: Sheet, top: float) -> None:
         sheet.text(sheet.left, top + 15, title, 17, bold=True)
         sheet.text(sheet.left, top + 31, told, 9, ink=QUIET)
+        if packet.in_soil:
+            sheet.text(sheet.left, top + 42, already, 9, ink=QUIET)
         for x, name in ((CODE, "Code"), (NAME, "Treatment")):
             sheet.text(sheet.left + x, top + 52, name, 8.5, bold=True, ink=QUIET)
         for x, name in _columns(packet, "Bags", "Spare", "In a bag", "To weigh out"):

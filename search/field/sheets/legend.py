@@ -100,9 +100,7 @@ def _block(block: BlockEntry, tint: Colour) -> Entry:
     def draw(sheet: Sheet, x: float, y: float, room: float) -> None:
         sheet.box(x, y - 9, 24, 12, fill=tint, stroke=INK, weight=1)
         sheet.text(x + 12, y, block.letter, 9, align=0.5)
-        told = ", ".join(
-            filter(None, (isolated(block.name), block.size, isolated(block.replicate)))
-        )
+        told = ", ".join(filter(None, (isolated(block.name), block.size, isolated(block.replicate))))
         sheet.text(x + 32, y, cut(told, 9.5, room - 32), 9.5)
 
     return draw

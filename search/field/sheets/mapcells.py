@@ -52,8 +52,7 @@ def forms_for(packet: CrewPacket) -> tuple[Form, ...]:
     shown = [*packet.treatments, *([FILLER] if packet.filler else [])]
     code = max(width(treatment.code, CODE, True) for treatment in shown)
     signed = max(
-        width(treatment.code, CODE, True) + (SIGN if treatment.caution else 0)
-        for treatment in shown
+        width(treatment.code, CODE, True) + (SIGN if treatment.caution else 0) for treatment in shown
     )
     sign = SIGN if any(treatment.caution for treatment in packet.treatments) else 0
     letter = max(width(block.letter, BLOCK) for block in packet.blocks) + sign

@@ -14,6 +14,7 @@ import pytest
 
 from search.efficiency.bounds.problem import problem
 from search.efficiency.bounds.spectral import local
+from search.proof.certificates.case import case_of
 from search.proof.certificates.local_spectral import _exponential_above, _side, derive
 from search.proof.certificates.spectral.cycles import _determinant, _graphs, _inverses
 from search.proof.certificates.spectral.numbers import Numbers, Side, pairs_of_sides
@@ -23,7 +24,7 @@ from search.proof.records import Refuted
 from search.trial.records import Contents, Trial
 from tests.efficiency.plans import ALL_PAIRS, FANO, OVERALL, equal_trial, square_lattice, trial_of
 from tests.equal_plans import SETS, SHAPES, eigenvalues, excess, random_plan, random_sets
-from tests.proof.certificates.brute import case_of, efficiency_of
+from tests.proof.certificates.brute import efficiency_of
 from tests.proof.test_fuzz import mutated
 
 
