@@ -23,6 +23,7 @@ from search.solvers.streams import stream
 from search.solvers.walk import Walk
 from search.trial.checker import broken_rules
 from search.trial.records import Trial
+from search.trial.tables import tables
 from tests.drawn import small_trials
 from tests.solvers import plainly
 from tests.solvers.problems import (

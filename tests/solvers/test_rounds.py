@@ -13,6 +13,7 @@ import pytest
 from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 
+from search.efficiency.aims import weights
 from search.foundation.errors import Impossible
 from search.foundation.stopping import Ended, Limits, Stop
 from search.solvers import crew
@@ -23,6 +24,7 @@ from search.solvers.records import Outcome, Problem
 from search.solvers.rounds import RUNS, Best, best_of, runs_of, search
 from search.trial.checker import broken_rules
 from search.trial.records import Contents, Trial
+from search.trial.tables import tables
 from tests.drawn import all_plans, small_trials
 from tests.solvers.problems import filled_problem, in_turn, pairs, plain, plain_tables, within
 
