@@ -35,10 +35,12 @@ EXIT = {"possible": 0, "impossible": 3, "undecided": 4}
 @click.option("--json", "as_json", is_flag=True, help="One JSON document on standard output.")
 def command(trial: Path, seconds: float, as_json: bool) -> int:
     """Check a trial file, and tell what its rules imply and whether they can be met."""
+    from search.field.beside import refuse_clash_in_soil
     from search.runs.inspection import inspect
     from search.trial.reading import read_trial
 
     record = read_trial(trial)
+    refuse_clash_in_soil(record)
     found = inspect(record, seconds=seconds)
     if as_json:
         emit("inspect", found.status, document(record, found), EXIT[found.status])

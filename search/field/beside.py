@@ -9,7 +9,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from search.field.positions import positions
-from search.trial.numbering import Place
+from search.foundation.errors import Impossible
+from search.trial.numbering import Place, places
 from search.trial.records import Ground, NotBeside, Trial
 
 SLACK_M = 1e-6
@@ -57,6 +58,25 @@ def restriction(trial: Trial, sites: Sequence[Place]) -> Restriction | None:
         clashing[i, j] = clashing[j, i] = True
     table = np.array(pairs, dtype=np.int64).reshape(-1, 2)
     return Restriction(rule, table[:, 0], table[:, 1], clashing, tuple(map(tuple, near)))
+
+
+def refuse_clash_in_soil(trial: Trial) -> None:
+    """Find out before a search whether plots that are planted already leave a layout at all.
+
+    Raises
+    ------
+    Impossible : two of them stand near one another, and `not_beside` keeps their treatments apart
+    """
+    if not trial.rules.planted or trial.rules.not_beside is None:
+        return
+    sites = places(trial)
+    held = {x.plot: x.treatment for x in trial.rules.planted}
+    clash = clash_in_words(trial, sites, [held.get(site.plot, trial.t) for site in sites])
+    if clash:
+        raise Impossible(
+            [f"{clash}, both in the soil already, and rules.not_beside keeps them apart: leave that out"],
+            "the map",
+        )
 
 
 def clash_in_words(trial: Trial, sites: Sequence[Place], standing: Sequence[int]) -> str:

@@ -7,12 +7,14 @@ import csv
 import io
 import json
 from collections import Counter
+from itertools import pairwise
 from pathlib import Path
 from typing import Any
 
 import pytest
 
 from search.cli.clashes import clash_lines
+from search.field.beside import refuse_clash_in_soil
 from search.field.crew import FILLER, crew_packet
 from search.field.geojson import plots_geojson
 from search.field.packet import write_packet
@@ -171,3 +173,47 @@ def test_what_is_in_the_soil_clashes_with_a_line_of_the_file(case: str) -> None:
     )
     assert "planted: {101: A}" in told
     assert "(planted" not in told.split("(each tried, smallest first)")[1]
+
+
+def test_neighbours_in_the_soil_that_may_not_be_are_told_before_a_search(tmp_path: Path) -> None:
+    """No layout can part what is sown: the command ends as impossible at once and names both plots."""
+    text = """\
+trial: side by side
+treatments: [A, B, C, D]
+rules:
+  planted: {101: A, 102: B}
+  not_beside: {pairs: [[A, B]]}
+ground:
+  rows: |
+    aaabbb
+"""
+    path = tmp_path / "trial.yaml"
+    path.write_text(text, encoding="utf-8")
+    with pytest.raises(Impossible, match="A on plot 101 stands beside B on plot 102, both in the soil"):
+        refuse_clash_in_soil(read_trial(path))
+    path.write_text(text.replace("102: B", "103: B"), encoding="utf-8")
+    refuse_clash_in_soil(read_trial(path))
+
+
+def test_walks_under_a_rule_about_neighbours_leave_the_soil_alone() -> None:
+    """A tight row: A may not stand beside itself, and two plots are sown; all layouts keep both rules."""
+    document = {
+        "trial": "tight",
+        "treatments": {"A": {"plots": 5}, "B": {"plots": [3, 6]}, "C": {"plots": [1, 2]}},
+        "ground": {"rows": "aaaaaaaaaaa"},
+        "blocks": {"a": {"at_most": 11}},
+        "rules": {
+            "twice_in_block": True,
+            "not_beside": {"itself": True},
+            "planted": {"102": "A", "106": "B"},
+        },
+    }
+    trial = trial_from_document(document)
+    contents = ((0,) * 5 + (1,) * 3 + (2,),)
+    for seed in range(5):
+        layout = lay_out(trial, contents, seed)
+        stands = [planted.treatment for planted in layout.plots]
+        assert (stands[1], stands[5]) == (0, 1)
+        assert layout.contents == contents
+        assert stands.count(None) == 2
+        assert not any(x == y is not None for x, y in pairwise(stands))
