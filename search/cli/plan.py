@@ -47,10 +47,11 @@ def command(
     A limit given here replaces those of the file. With --moves alone the result does not depend on the
     clock or on the number of workers.
     """
-    from search.field.beside import refuse_clash_in_soil
     from search.trial.reading import read_trial
 
     record = read_trial(trial)
+    from search.field.beside import refuse_clash_in_soil
+
     refuse_clash_in_soil(record)
     if record.wanted is not None:
         record = _cut(record, quiet=as_json)
