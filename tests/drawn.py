@@ -25,7 +25,8 @@ def tiny_trial(**more: Any) -> Trial:
 
 @st.composite
 def small_documents(draw: st.DrawFn, most_treatments: int = 5, most_plots: int = 12) -> dict[str, Any]:
-    """A trial file as data: unequal blocks, ranges, and any mixture of rules and aims.
+    """A trial file as data: unequal blocks, some of which may stay partly empty, ranges, and any mixture of
+    rules and aims.
 
     Many of them are impossible; that is wanted.
     """
@@ -38,7 +39,14 @@ def small_documents(draw: st.DrawFn, most_treatments: int = 5, most_plots: int =
         if sum(sizes) + size <= most_plots:
             sizes.append(size)
     sizes = sizes or [min(t, 2)]
-    blocks = {f"b{j}": size for j, size in enumerate(sizes)}
+    emptier = draw(st.lists(st.booleans(), min_size=len(sizes), max_size=len(sizes)))
+    emptier = (
+        [may and draw(st.booleans()) for may in emptier] if draw(st.booleans()) else [False] * len(sizes)
+    )
+    blocks: dict[str, Any] = {
+        f"b{j}": {"at_most": size} if may else size
+        for j, (size, may) in enumerate(zip(sizes, emptier, strict=True))
+    }
     block_names, pairs = list(blocks), [list(pair) for pair in combinations(names, 2)]
 
     rules: dict[str, Any] = {"twice_in_block": True} if twice else {}
@@ -56,6 +64,10 @@ def small_documents(draw: st.DrawFn, most_treatments: int = 5, most_plots: int =
         rules["keep_out"] = {draw(st.sampled_from(names)): [draw(st.sampled_from(block_names))]}
     if sometimes(3):
         rules["must_hold"] = {draw(st.sampled_from(block_names)): [draw(st.sampled_from(names))]}
+    if sometimes(5):
+        j = draw(st.integers(0, len(sizes) - 1))
+        plots = draw(st.lists(st.integers(1, sizes[j]), min_size=1, max_size=2, unique=True))
+        rules["planted"] = {str(100 * (j + 1) + place): draw(st.sampled_from(names)) for place in plots}
     replicate = _complete_set(sizes, t)
     if replicate and sometimes(1):
         rules["replicates"] = {"set": [block_names[j] for j in replicate]}
@@ -112,7 +124,8 @@ def all_plans(trial: Trial, most: int = 20_000) -> Iterator[Contents]:
     for j, block in enumerate(trial.blocks):
         fitting = [
             column
-            for column in choose(range(trial.t), block.plots)
+            for plots in range(rules.fewest[j], block.plots + 1)
+            for column in choose(range(trial.t), plots)
             if all(rules.low[i, j] <= column.count(i) <= rules.high[i, j] for i in range(trial.t))
         ]
         columns.append(fitting)

@@ -36,10 +36,12 @@ EXIT = {"possible": 0, "impossible": 3, "undecided": 4}
 @click.option("--json", "as_json", is_flag=True, help="One JSON document on standard output.")
 def command(trial: Path, seconds: float, as_json: bool) -> int:
     """Check a trial file, and tell what its rules imply and whether they can be met."""
+    from search.field.beside import refuse_clash_in_soil
     from search.runs.inspection import inspect
     from search.trial.reading import read_trial
 
     record = read_trial(trial)
+    refuse_clash_in_soil(record)
     found = inspect(record, seconds=seconds)
     if as_json:
         emit("inspect", found.status, document(record, found), EXIT[found.status])
@@ -49,9 +51,12 @@ def command(trial: Path, seconds: float, as_json: bool) -> int:
 
 
 def sizes_in_words(trial: Trial) -> str:
-    """Block sizes, such as "5 blocks of 8, 1 of 7"."""
-    counts = sorted(Counter(block.plots for block in trial.blocks).items(), reverse=True)
-    first, *rest = (f"{many} {'blocks' if many > 1 else 'block'} of {size}" for size, many in counts)
+    """Block sizes, such as "5 blocks of 8, 1 of 7, 1 of at most 9"."""
+    sizes = Counter((not block.may_be_emptier, block.plots) for block in trial.blocks)
+    first, *rest = (
+        f"{many} {'blocks' if many > 1 else 'block'} of {'' if exact else 'at most '}{size}"
+        for (exact, size), many in sorted(sizes.items(), reverse=True)
+    )
     return ", ".join([first, *(words.replace(" blocks", "").replace(" block", "") for words in rest)])
 
 
@@ -62,6 +67,10 @@ def document(trial: Trial, found: Inspection) -> dict[str, Any]:
         "trial": trial.name,
         "treatments": trial.t,
         "plots": trial.n,
+        "filler": {
+            "blocks": [block.name for block in trial.blocks if block.may_be_emptier],
+            "planted": None if implied is None else list(implied.planted),
+        },
         "blocks": {block.name: block.plots for block in trial.blocks},
         "aim": trial.aim.kind.value,
         "plots_each": {
@@ -130,7 +139,8 @@ def show(trial: Trial, found: Inspection) -> None:
 
 def planted(trial: Trial) -> Iterator[str]:
     """What will be planted, in sentences."""
-    yield f"{trial.t} treatments on {trial.n} plots: {sizes_in_words(trial)}"
+    most = "at most " if trial.may_be_emptier else ""
+    yield f"{trial.t} treatments on {most}{trial.n} plots: {sizes_in_words(trial)}"
     yield _replication(trial)
     if trial.controls:
         yield f"control: {', '.join(trial.treatments[i].name for i in trial.controls)}"
@@ -141,6 +151,7 @@ def planted(trial: Trial) -> Iterator[str]:
         "keep_out": len(trial.rules.keep_out),
         "must_hold": len(trial.rules.must_hold),
         "replicates": len(trial.rules.replicates),
+        "planted": len(trial.rules.planted),
     }
     told = ", ".join(f"{word} {many}" for word, many in rules.items() if many)
     once = "twice in a block allowed" if trial.rules.twice_in_block else "each once in a block"

@@ -50,6 +50,9 @@ def command(
     from search.trial.reading import read_trial
 
     record = read_trial(trial)
+    from search.field.beside import refuse_clash_in_soil
+
+    refuse_clash_in_soil(record)
     if record.wanted is not None:
         record = _cut(record, quiet=as_json)
     folder = out or default_folder(record)

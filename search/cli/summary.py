@@ -30,7 +30,7 @@ def show_plan(console: Console, issued: Issued) -> None:
 
     trial, document = issued.trial, issued.document
     console.print(f"\nPlan {document['mark']}", style="bold")
-    for sentence in standing_in_words(document, trial.n):
+    for sentence in standing_in_words(document):
         indented(console, sentence)
     grid = Table.grid(padding=(0, 2, 0, 0))
     grid.add_column(width=2)

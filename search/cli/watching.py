@@ -75,7 +75,8 @@ class Watching(Observer):
     def begin(self, trial: Trial) -> None:
         """Say what is planned."""
         self.aim = trial.aim.kind
-        self._say(f"{trial.name}: {trial.t} treatments on {trial.n} plots in {trial.b} blocks")
+        most = "at most " if trial.may_be_emptier else ""
+        self._say(f"{trial.name}: {trial.t} treatments on {most}{trial.n} plots in {trial.b} blocks")
 
     def note(self, text: str) -> None:
         self._say(text)

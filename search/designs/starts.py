@@ -58,6 +58,8 @@ def starts(trial: Trial, *, effort: float = EFFORT, stop: Stop | None = None) ->
     stop : ends the solver from outside
     """
     rules = tables(trial)
+    if not rules.exact:
+        return  # a design has blocks of known sizes
     exact = False
     for template in _fitting(rules):
         contents = labelled(template, rules, effort=effort, stop=stop)

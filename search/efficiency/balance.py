@@ -11,16 +11,25 @@ from search.efficiency.filling import least_square_sum
 from search.efficiency.one_thread import one_thread
 from search.efficiency.records import NearBalance
 from search.trial.records import Contents, Trial
+from search.trial.settled import settled_trial
 from search.trial.tables import Ints, Tables, incidence, tables
 
 
+def _fullest(rules: Tables) -> Ints:
+    """The most plots that can be planted in each block: its size, unless too few may enter a block that
+    may stay partly empty."""
+    room = rules.high.sum(axis=0)
+    return np.where(rules.fewest < rules.sizes, np.minimum(rules.sizes, room), rules.sizes)
+
+
 def least_repeats(rules: Tables) -> tuple[int, ...] | None:
-    """For each block the least `Σ_i n_iB²` that its rules allow: its size where nothing repeats.
+    """For each block the least `Σ_i n_iB²` that its rules allow when it is full: its size where nothing
+    repeats.
 
     Returns None where some block cannot be filled at all.
     """
     least = []
-    for low, high, size in zip(rules.low.T, rules.high.T, rules.sizes, strict=True):
+    for low, high, size in zip(rules.low.T, rules.high.T, _fullest(rules), strict=True):
         squares = least_square_sum(low, high, int(size))
         if squares is None:
             return None
@@ -28,16 +37,24 @@ def least_repeats(rules: Tables) -> tuple[int, ...] | None:
     return tuple(least)
 
 
-def greatest_trace(rules: Tables) -> Fraction | None:
+def greatest_trace(rules: Tables, planted: int | None = None) -> Fraction | None:
     """`n − Σ_B min Σ_i n_iB² / k_B`: no plan's information matrix has a greater trace.
 
-    It is n − b where no treatment has to stand twice in a block. None where no plan exists.
+    It is n − b where no treatment has to stand twice in a block. None where no plan exists. A plot more
+    never takes information away, so blocks that may stay partly empty count as full; and a plan with n
+    plots loses at least one to each block, whatever is left empty.
+
+    Parameters
+    ----------
+    rules : tables of the trial
+    planted : no plan has more plots; what sizes and stated ranges allow where left out
     """
-    repeats = least_repeats(rules)
-    if repeats is None:
+    repeats, sizes = least_repeats(rules), _fullest(rules)
+    if repeats is None or (sizes < 1).any():
         return None
-    lost = sum((Fraction(q, int(k)) for q, k in zip(repeats, rules.sizes, strict=True)), Fraction())
-    return rules.n - lost
+    lost = sum((Fraction(q, int(k)) for q, k in zip(repeats, sizes, strict=True)), Fraction())
+    planted = rules.n if planted is None else planted
+    return min(int(sizes.sum()) - lost, Fraction(planted - rules.b))
 
 
 def is_balanced(trial: Trial, contents: Contents) -> bool:
@@ -48,8 +65,9 @@ def is_balanced(trial: Trial, contents: Contents) -> bool:
     treats all pairs alike (universal optimality: Kiefer 1975; from memory).
     """
     counts = incidence(contents, trial.t)
-    repeats = least_repeats(tables(trial))
-    if repeats is None or tuple((counts * counts).sum(axis=0).tolist()) != repeats:
+    squares, sizes = (counts * counts).sum(axis=0).tolist(), counts.sum(axis=0).tolist()
+    lost = sum((Fraction(q, k) for q, k in zip(squares, sizes, strict=True)), Fraction())
+    if sum(sizes) - lost != greatest_trace(tables(settled_trial(trial))):
         return False
     weighted = _scaled_concurrences(counts)
     off_diagonal = weighted[np.triu_indices(trial.t, 1)]
@@ -89,18 +107,19 @@ def near_balance(trial: Trial, contents: Contents) -> NearBalance:
     YES where the sum meets a lower bound that holds for every plan; else UNKNOWN. Where a treatment
     may stand twice in a block the total of the λ is not fixed and nothing is said.
     """
-    rules = tables(trial)
+    rules = tables(settled_trial(trial))
     least = least_concurrence_squares(rules)
     return NearBalance.YES if squared_meetings(contents, trial.t) == least else NearBalance.UNKNOWN
 
 
 def least_concurrence_squares(rules: Tables) -> int | None:
-    """A number that `Σ_{i<j} λ_ij²` of no plan is below; None where treatments may repeat.
+    """A number that `Σ_{i<j} λ_ij²` of no plan is below; None where treatments may repeat, and where
+    it is not settled how many plots are planted.
 
     The total of the λ is `Σ k(k−1)/2`, and with equal blocks a treatment of r plots has
     `r (k−1)` meetings: as even as the rules for each pair allow, over all pairs and row by row.
     """
-    if (rules.high > 1).any():
+    if (rules.high > 1).any() or not rules.exact:
         return None
     low = rules.meet_least
     high = np.minimum(rules.meet_most, np.minimum.outer(rules.most, rules.most))

@@ -143,7 +143,7 @@ def score(trial: Trial, contents: Contents) -> Score:
         aim_variance=reached.aim_variance,
         loss_to_replication_percent=100 * (1 - replication_alone),
         loss_to_blocks_percent=100 * (1 - _at_most_one(blocks_alone)),
-        residual_df=trial.n - trial.b - t + parts,
+        residual_df=int(counts.sum()) - trial.b - t + parts,
         connected=parts == 1,
         least_meetings=int(meetings.min()),
         most_meetings=int(meetings.max()),

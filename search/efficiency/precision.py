@@ -201,5 +201,6 @@ def break_even(trial: Trial, plan: Score) -> BreakEven:
     return BreakEven(
         variance_cut_percent=plan.loss_to_blocks_percent,
         residual_df=plan.residual_df,
-        residual_df_without_blocks=trial.n - trial.t,
+        # A connected plan loses b − 1 of them to blocks, however many plots are filler.
+        residual_df_without_blocks=plan.residual_df + trial.b - 1 if plan.connected else trial.n - trial.t,
     )

@@ -8,8 +8,9 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from search.field.numbering import Place
 from search.field.positions import positions
+from search.foundation.errors import Impossible
+from search.trial.numbering import Place, places
 from search.trial.records import Ground, NotBeside, Trial
 
 SLACK_M = 1e-6
@@ -24,7 +25,8 @@ class Restriction:
     ----------
     rule : as in the file
     first, second : (m,) numbers of plots that are near one another, each pair once
-    clashing : (t, t) True for treatments that may not stand on such plots
+    clashing : (t + 1, t + 1) True for treatments that may not stand on such plots; the last is filler, which
+        may stand beside anything
     near : for each plot the plots near it
     """
 
@@ -49,13 +51,32 @@ def restriction(trial: Trial, sites: Sequence[Place]) -> Restriction | None:
     for p, q in pairs:
         near[p].append(q)
         near[q].append(p)
-    clashing = np.zeros((trial.t, trial.t), dtype=np.bool_)
+    clashing = np.zeros((trial.t + 1, trial.t + 1), dtype=np.bool_)
     if rule.itself:
-        np.fill_diagonal(clashing, True)
+        np.fill_diagonal(clashing[: trial.t, : trial.t], True)
     for i, j in rule.pairs:
         clashing[i, j] = clashing[j, i] = True
     table = np.array(pairs, dtype=np.int64).reshape(-1, 2)
     return Restriction(rule, table[:, 0], table[:, 1], clashing, tuple(map(tuple, near)))
+
+
+def refuse_clash_in_soil(trial: Trial) -> None:
+    """Find out before a search whether plots that are planted already leave a layout at all.
+
+    Raises
+    ------
+    Impossible : two of them stand near one another, and `not_beside` keeps their treatments apart
+    """
+    if not trial.rules.planted or trial.rules.not_beside is None:
+        return
+    sites = places(trial)
+    held = {x.plot: x.treatment for x in trial.rules.planted}
+    clash = clash_in_words(trial, sites, [held.get(site.plot, trial.t) for site in sites])
+    if clash:
+        raise Impossible(
+            [f"{clash}, both in the soil already, and rules.not_beside keeps them apart: leave that out"],
+            "the map",
+        )
 
 
 def clash_in_words(trial: Trial, sites: Sequence[Place], standing: Sequence[int]) -> str:

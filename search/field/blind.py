@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from dataclasses import replace
 from typing import Any
 
@@ -43,15 +44,17 @@ def blinded(trial: Trial, document: Document) -> tuple[Trial, Document]:
     document : its plan as in plan.json, checked against the trial already
     """
     codes = blind_codes(trial.t, document["layout"]["seed"])
-    code_of = {treatment.name: code for treatment, code in zip(trial.treatments, codes, strict=True)}
+    code_of: dict[str | None, str | None] = {
+        treatment.name: code for treatment, code in zip(trial.treatments, codes, strict=True)
+    }
+    code_of[None] = None  # filler stays filler
     plots = [{**plot, "treatment": code_of[plot["treatment"]]} for plot in document["plots"]]
-    count = dict.fromkeys(codes, 0)
-    for plot in plots:
-        count[plot["treatment"]] += 1
+    count = Counter(plot["treatment"] for plot in plots)
     shown = [
         Treatment(code, count[code], count[code], own_range=True, caution=treatment.caution)
         for treatment, code in zip(trial.treatments, codes, strict=True)
     ]
+    order = sorted(codes)
     hidden = replace(
         trial,
         treatments=tuple(sorted(shown, key=lambda treatment: treatment.name)),
@@ -59,6 +62,7 @@ def blinded(trial: Trial, document: Document) -> tuple[Trial, Document]:
             replicates=tuple(Replicate(group.name, group.blocks) for group in trial.rules.replicates),
             per_replicate=(),
             twice_in_block=True,
+            planted=tuple(replace(x, treatment=order.index(codes[x.treatment])) for x in trial.rules.planted),
         ),
         aim=Aim(),
     )

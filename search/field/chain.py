@@ -19,6 +19,8 @@ STIFFEST = 12.0
 class Walk:
     """Exchanges of plots within blocks, of alike blocks, and of names that play the same part.
 
+    What is in the soil already stays: only the other plots are exchanged or renamed.
+
     A step that makes `d` more clashes is taken with chance `exp(−stiffness d)` (Metropolis et al. 1953).
     Every layout of the urn can be reached, so the walk settles where each layout has a weight by its
     number of clashes alone: those without a clash are then all equally likely.
@@ -31,7 +33,7 @@ class Walk:
         self.clashes = limit.clashes(standing)
         self.stiffness = min(STIFFEST, 3.0 + log(1 + self.clashes))
         self.random = Random(int(random.integers(2**63)))
-        self.within = [plots for plots in urn.plots if len(plots) > 1]
+        self.within = [plots for plots in urn.free if len(plots) > 1]
         self.sizes = [len(plots) for plots in self.within]
         self.alike = [members for members in urn.alike if len(members) > 1]
         # Names that nobody's rule tells apart clash with whoever stands beside them, whatever they are.
@@ -57,14 +59,15 @@ class Walk:
     def _exchange_blocks(self) -> None:
         one, other = self.random.sample(self.random.choice(self.alike), 2)
         change = {}
-        for p, q in zip(self.urn.plots[one], self.urn.plots[other], strict=True):
+        for p, q in zip(self.urn.free[one], self.urn.free[other], strict=True):
             change[p], change[q] = self.standing[q], self.standing[p]
         self._try(change)
 
     def _exchange_names(self) -> None:
         one, other = self.random.sample(self.random.choice(self.parts), 2)
         to = {one: other, other: one}
-        self._try({p: to[i] for p, i in enumerate(self.standing) if i in to})
+        fixed = self.urn.fixed
+        self._try({p: to[i] for p, i in enumerate(self.standing) if i in to and p not in fixed})
 
     def _try(self, change: dict[int, int]) -> None:
         before = self._clashes_at(change)

@@ -12,13 +12,13 @@ from typing import Any
 
 from search.field.cautions import FIRST, USUAL, office_notes
 from search.field.codes import treatment_codes
-from search.field.numbering import extent
 from search.field.planted import planted_plots
 from search.field.randomise import Planted
 from search.field.standing import standing_in_words
 from search.field.walk import Pass, passes
 from search.field.wording import clean, counted
 from search.foundation.errors import BadInput
+from search.trial.numbering import extent
 from search.trial.records import Ground, Trial
 
 SHORT_NAME = 4
@@ -49,6 +49,7 @@ class TreatmentEntry:
     code : short name on the map
     name : whole name; empty in a blind packet
     plots : how many it has
+    in_soil : how many of them are planted already: they need no bag
     per_plot, total : what to weigh out, with its unit; the total includes spare bags
     """
 
@@ -60,6 +61,18 @@ class TreatmentEntry:
     plots: int
     per_plot: str
     total: str
+    in_soil: int = 0
+
+    @property
+    def to_sow(self) -> int:
+        """Plots that still need seed."""
+        return self.plots - self.in_soil
+
+
+FILLER = TreatmentEntry(0, "fill", "", False, "", 0, "", "")
+"""What stands on a plot without a treatment; the code is no other's, for those have no four letters."""
+FILLER_TOLD = "Filler: no treatment, nothing to score."
+IN_SOIL_TOLD = "Planted already: do not sow."
 
 
 @dataclass(frozen=True, slots=True)
@@ -70,6 +83,13 @@ class BlockEntry:
     name: str
     replicate: str
     plots: int
+    filler: int = 0
+    """How many of them are filler."""
+
+    @property
+    def size(self) -> str:
+        """Its plots in words."""
+        return counted(self.plots, "plot") + (f", {self.filler} filler" if self.filler else "")
 
 
 @dataclass(frozen=True, slots=True)
@@ -127,6 +147,26 @@ class CrewPacket:
     labels: str
     blind: bool
 
+    def held(self, planted: Planted) -> TreatmentEntry:
+        """What stands on a plot, `FILLER` where no treatment does."""
+        return FILLER if planted.treatment is None else self.treatments[planted.treatment]
+
+    @property
+    def filler(self) -> int:
+        """Plots without a treatment."""
+        return sum(planted.treatment is None for planted in self.plots)
+
+    @property
+    def in_soil(self) -> int:
+        """Plots that are planted already."""
+        return sum(planted.in_soil for planted in self.plots)
+
+    def note(self, planted: Planted) -> str:
+        """What is out of the ordinary with a plot, in a word or two."""
+        if planted.treatment is None:
+            return "filler"
+        return "planted already" if planted.in_soil else ""
+
 
 def crew_packet(trial: Trial, document: dict[str, Any], blind: bool = False) -> CrewPacket:
     """Decide what the crew of a trial reads.
@@ -150,12 +190,12 @@ def crew_packet(trial: Trial, document: dict[str, Any], blind: bool = False) -> 
         seed=document["layout"]["seed"],
         paper=trial.packet.paper,
         about=tuple((clean(key), clean(value)) for key, value in trial.about),
-        size=", ".join((counted(trial.t, "treatment"), counted(trial.b, "block"), counted(trial.n, "plot"))),
-        standing=standing_in_words(document, trial.n),
+        size=_size(trial, plots),
+        standing=standing_in_words(document),
         cautions=_cautions(treatments, blind),
         office=() if blind else office_notes(trial, document),
         treatments=treatments,
-        blocks=_blocks(trial),
+        blocks=_blocks(trial, plots),
         plots=plots,
         ground=trial.ground,
         extent=extent([planted.place for planted in plots], trial.ground),
@@ -172,6 +212,12 @@ def with_codes(packet: CrewPacket, codes: Sequence[str]) -> CrewPacket:
     return replace(packet, treatments=tuple(coded))
 
 
+def _size(trial: Trial, plots: tuple[Planted, ...]) -> str:
+    filler = sum(planted.treatment is None for planted in plots)
+    parts = [counted(trial.t, "treatment"), counted(trial.b, "block"), counted(len(plots) - filler, "plot")]
+    return ", ".join([*parts, *([counted(filler, "plot") + " of filler"] if filler else [])])
+
+
 def _day(issued: str) -> str:
     try:
         day = datetime.strptime(issued, "%Y-%m-%dT%H:%M:%SZ")
@@ -183,9 +229,10 @@ def _day(issued: str) -> str:
 def _treatments(trial: Trial, plots: tuple[Planted, ...], blind: bool) -> tuple[TreatmentEntry, ...]:
     names = [clean(treatment.name) for treatment in trial.treatments]
     stands = Counter(planted.treatment for planted in plots)
+    in_soil = Counter(planted.treatment for planted in plots if planted.in_soil)
     entries = []
     for i, (treatment, code) in enumerate(zip(trial.treatments, treatment_codes(names), strict=True)):
-        amount, bags = treatment.amount, stands[i] + trial.packet.spare_bags
+        amount, bags = treatment.amount, stands[i] - in_soil[i] + trial.packet.spare_bags
         entries.append(
             TreatmentEntry(
                 number=i + 1,
@@ -194,6 +241,7 @@ def _treatments(trial: Trial, plots: tuple[Planted, ...], blind: bool) -> tuple[
                 control=treatment.control,
                 caution=clean(treatment.caution),
                 plots=stands[i],
+                in_soil=in_soil[i],
                 per_plot=clean(f"{amount.per_plot:.10g} {amount.unit}") if amount else "",
                 total=clean(f"{amount.per_plot * bags:.10g} {amount.unit}") if amount else "",
             )
@@ -201,11 +249,12 @@ def _treatments(trial: Trial, plots: tuple[Planted, ...], blind: bool) -> tuple[
     return tuple(entries)
 
 
-def _blocks(trial: Trial) -> tuple[BlockEntry, ...]:
+def _blocks(trial: Trial, plots: tuple[Planted, ...]) -> tuple[BlockEntry, ...]:
     letters = _signs(trial)
+    filler = Counter(planted.place.block for planted in plots if planted.treatment is None)
     replicate = {j: clean(group.name) for group in trial.rules.replicates for j in group.blocks}
     return tuple(
-        BlockEntry(letters.get(j, ""), clean(block.name), replicate.get(j, ""), block.plots)
+        BlockEntry(letters.get(j, ""), clean(block.name), replicate.get(j, ""), block.plots, filler[j])
         for j, block in enumerate(trial.blocks)
     )
 

@@ -9,8 +9,8 @@ from itertools import groupby
 from math import dist, sqrt
 from typing import TYPE_CHECKING
 
-from search.field.numbering import Place
 from search.foundation.cpsat import Answer, solve
+from search.trial.numbering import Place
 
 if TYPE_CHECKING:
     from ortools.sat.python.cp_model import CpModel, IntVar

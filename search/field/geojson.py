@@ -9,6 +9,7 @@ from typing import Any
 
 from search.field.crew import CrewPacket
 from search.field.positions import Position, positions
+from search.field.tables import named
 from search.trial.records import Ground
 
 RADIUS_M, FLATTENING = 6_378_137.0, 1 / 298.257223563
@@ -28,7 +29,7 @@ def plots_geojson(packet: CrewPacket) -> str | None:
     globe = _Globe(ground, middles)
     features = []
     for planted, middle in zip(packet.plots, middles, strict=True):
-        treatment = packet.treatments[planted.treatment]
+        note = packet.note(planted)
         features.append(
             {
                 "type": "Feature",
@@ -40,8 +41,9 @@ def plots_geojson(packet: CrewPacket) -> str | None:
                     "block": packet.blocks[planted.place.block].name,
                     "line": planted.place.line,
                     "place": planted.place.place,
-                    "treatment": treatment.name or treatment.code,
-                    "code": treatment.code,
+                    "treatment": named(packet, planted) or None,
+                    "code": packet.held(planted).code,
+                    **({"note": note} if note else {}),
                 },
             }
         )

@@ -53,8 +53,10 @@ def _unseen(
 ) -> list[tuple[int, int]]:
     walk = Walk(urn, limit, standing, random)
     walk.alike, walk.parts = [], []
-    held = [Counter(standing[list(plots)].tolist()) for plots in urn.plots]
-    unseen = {(p, i) for plots, inside in zip(urn.plots, held, strict=True) for p in plots for i in inside}
+    held = [Counter(standing[list(free)].tolist()) for free in urn.free]
+    unseen = {
+        (p, i) for free, inside in zip(urn.free, held, strict=True) for p in free for i in inside if i < urn.t
+    }
     unseen -= set(enumerate(walk.standing))
     for _ in range(SWEEPS if urn.n <= MOST_PLOTS else FEWER_SWEEPS):
         walk.sweep()

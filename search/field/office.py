@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from search.field.codes import treatment_codes
 from search.field.pictures import Picture, picture
-from search.field.standing import standing_in_words
+from search.field.standing import plots_planted, standing_in_words
 from search.field.wording import clean
 from search.runs.cautions import ENOUGH_DF
 from search.trial.records import Contents, Trial
@@ -79,7 +79,7 @@ def office_sheet(trial: Trial, document: dict[str, Any], notes: tuple[str, ...])
         Group("Where the plan comes from", tuple(_origin(document))),
     )
     return OfficeSheet(
-        standing=standing_in_words(document, trial.n),
+        standing=standing_in_words(document),
         groups=tuple(group for group in groups if group.figures),
         notes=notes,
         pictures=tuple(_pictures(trial, document, variances)),
@@ -92,7 +92,7 @@ def _efficiency(trial: Trial, document: dict[str, Any]) -> Iterator[Figure]:
     aim = trial.aim.kind.value
     if trial.aim.kind.counts_meetings:
         yield from _evenness(document)
-        yield from _losses(trial, score)
+        yield from _losses(plots_planted(document) - trial.t, score)
         return
     yield Figure(
         f"Efficiency, {aim}",
@@ -104,13 +104,14 @@ def _efficiency(trial: Trial, document: dict[str, Any]) -> Iterator[Figure]:
         value = f"{100 * float(bound['value']):.2f} %" if isinstance(bound.get("value"), float) else ""
         yield Figure("Best possible, at most", value, f"Proved by: {argument}.")
     if gap is not None and score["connected"]:
-        worth = floor(10 * trial.n * (1 - gap / 100) + 1e-9) / 10
+        plots = plots_planted(document)
+        worth = floor(10 * plots * (1 - gap / 100) + 1e-9) / 10
         yield Figure(
             "Gap",
             f"{gap:.2f} %",
-            f"At most {trial.n - worth:.1f} of {trial.n} plots are wasted against the best possible plan.",
+            f"At most {plots - worth:.1f} of {plots} plots are wasted against the best possible plan.",
         )
-    yield from _losses(trial, score)
+    yield from _losses(plots_planted(document) - trial.t, score)
 
 
 def _evenness(document: dict[str, Any]) -> Iterator[Figure]:
@@ -139,7 +140,7 @@ def _evenness(document: dict[str, Any]) -> Iterator[Figure]:
         )
 
 
-def _losses(trial: Trial, score: dict[str, Any]) -> Iterator[Figure]:
+def _losses(df_without_blocks: int, score: dict[str, Any]) -> Iterator[Figure]:
     replication, blocks = (score.get(f"loss_to_{word}_percent") for word in ("replication", "blocks"))
     if not score["connected"] or replication is None or blocks is None:
         return
@@ -148,7 +149,7 @@ def _losses(trial: Trial, score: dict[str, Any]) -> Iterator[Figure]:
         "Lost to blocks",
         f"{blocks:.2f} %",
         f"Break-even: blocks pay when they cut the variance between plots by more than {blocks:.1f} %. "
-        f"Residual degrees of freedom are then {score['residual_df']}, without blocks {trial.n - trial.t}.",
+        f"Residual degrees of freedom are then {score['residual_df']}, without blocks {df_without_blocks}.",
     )
 
 

@@ -7,9 +7,10 @@ from dataclasses import dataclass
 
 from search.field.crew import CrewPacket
 from search.field.positions import is_measured
-from search.field.sheets.palette import hex_of
+from search.field.sheets.palette import WHITE, hex_of
 from search.field.sheets.steps import steps_of
 from search.field.sheets.tints import block_tints
+from search.field.tables import named
 
 WIDE, LONG = 52.0, 58.0
 """Pixels of the smallest plot in which number, code and block can be read."""
@@ -32,6 +33,8 @@ class Cell:
     letter: str
     caution: bool
     told: str
+    filler: bool = False
+    in_soil: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -85,17 +88,21 @@ def page_map(packet: CrewPacket) -> PageMap:
     at = {(planted.place.row, planted.place.column): planted for planted in packet.plots}
     cells = []
     for (row, column), planted in at.items():
-        treatment, block = packet.treatments[planted.treatment], packet.blocks[planted.place.block]
-        told = [f"plot {planted.place.plot}", block.name, treatment.name or treatment.code, treatment.caution]
+        treatment, block = packet.held(planted), packet.blocks[planted.place.block]
+        filler = planted.treatment is None
+        told = [f"plot {planted.place.plot}", block.name, named(packet, planted), packet.note(planted)]
+        told.append(treatment.caution)
         cells.append(
             Cell(
                 *corner(row, column),
-                tint=tints[planted.place.block],
+                tint=hex_of(WHITE) if filler else tints[planted.place.block],
                 plot=planted.place.plot,
                 code=treatment.code,
                 letter=block.letter,
                 caution=bool(treatment.caution),
                 told=", ".join(filter(None, told)),
+                filler=filler,
+                in_soil=planted.in_soil,
             )
         )
     empty = [

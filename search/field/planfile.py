@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 
 from search.field.planmark import mark_of, seal_of
 from search.field.planshape import Document, misfit
-from search.field.randomise import PlotMap
+from search.field.randomise import Planted, PlotMap
 from search.foundation.documents import canonical_json, read_json, write_whole
 from search.foundation.errors import BadInput, shown
 from search.foundation.versions import versions
@@ -87,12 +87,20 @@ def _planted(trial: Trial, plot_map: PlotMap) -> Document:
                 "block": blocks[planted.place.block],
                 "line": planted.place.line,
                 "place": planted.place.place,
-                "treatment": names[planted.treatment],
+                **_held(planted, names),
             }
             for planted in plot_map.plots
         ],
         "layout": _layout(trial, plot_map),
     }
+
+
+def _held(planted: Planted, names: list[str]) -> Document:
+    """What stands on a plot; filler says so, and so does what was in the soil before."""
+    if planted.treatment is None:
+        return {"treatment": None, "filler": True}
+    held: Document = {"treatment": names[planted.treatment]}
+    return held | {"in_soil": True} if planted.in_soil else held
 
 
 def _layout(trial: Trial, plot_map: PlotMap) -> Document:

@@ -18,6 +18,7 @@ class Optional:
     shape: Any
 
 
+FLAG = Optional(bool)
 _NUMBER = (int, float)
 _MAYBE = (int, float, type(None))
 RESTRICTION = Optional(
@@ -34,7 +35,9 @@ SHAPE: Document = {
     "issued": re.compile(r"\d{4}-\d\d-\d\dT\d\d:\d\d:\d\dZ", re.ASCII),
     "trial": dict,
     "blocks": {ANY_KEY: [str]},
-    "plots": [{"plot": int, "block": str, "line": int, "place": int, "treatment": str}],
+    "plots": [
+        {"plot": int, "block": str, "line": int, "place": int, "treatment": Optional(str), "filler": FLAG}
+    ],
     "layout": {"seed": int, "scheme": str, "restriction": RESTRICTION},
     "score": {
         "aim": _NUMBER,

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from search.field.numbering import Place, extent
+from search.trial.numbering import Place, extent
 from search.trial.records import Ground
 
 

@@ -10,11 +10,11 @@ import numpy as np
 
 from search.field.beside import restriction
 from search.field.never import never_on
-from search.field.numbering import Place, places
 from search.field.restricted import draw_restricted
 from search.field.urn import Urn
 from search.foundation.errors import BadInput
 from search.trial.checker import broken_rules
+from search.trial.numbering import Place, places
 from search.trial.records import Contents, Trial
 
 MOST_SEED = 10**9
@@ -23,10 +23,14 @@ MOST_SEED = 10**9
 
 @dataclass(frozen=True, slots=True)
 class Planted:
-    """A plot and the treatment that stands on it."""
+    """A plot and the treatment that stands on it; None for filler.
+
+    `in_soil` tells that it was planted before the plan was made.
+    """
 
     place: Place
-    treatment: int
+    treatment: int | None
+    in_soil: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -90,7 +94,8 @@ def lay_out(trial: Trial, contents: Contents, seed: int) -> PlotMap:
 
     Every draw has the same chance among all ways to rename treatments that play the same part, to
     move whole blocks among those equal in size, rules and replicate, and to order plots in a block;
-    under `not_beside` among those of them that keep it, as far as `restriction` says.
+    under `not_beside` among those of them that keep it, as far as `restriction` says. Filler is drawn like
+    a treatment; what is in the soil already stays where it is.
 
     Parameters
     ----------
@@ -120,11 +125,20 @@ def lay_out(trial: Trial, contents: Contents, seed: int) -> PlotMap:
     if broken := broken_rules(trial, held):
         raise RuntimeError(f"a layout broke a rule that its plan keeps: {broken[0]}")
     return PlotMap(
-        plots=tuple(Planted(site, i) for site, i in zip(sites, standing.tolist(), strict=True)),
+        plots=on_plots(trial, sites, standing.tolist()),
         contents=held,
         seed=seed,
         scheme=_scheme(trial, urn),
         restricted=restricted,
+    )
+
+
+def on_plots(trial: Trial, sites: Sequence[Place], standing: Sequence[int]) -> tuple[Planted, ...]:
+    """A layout plot by plot; numbers beyond the treatments are filler."""
+    in_soil = {x.plot for x in trial.rules.planted}
+    return tuple(
+        Planted(site, i if i < trial.t else None, site.plot in in_soil)
+        for site, i in zip(sites, standing, strict=True)
     )
 
 
@@ -137,9 +151,16 @@ def _scheme(trial: Trial, urn: Urn) -> str:
             "treatments drawn among those that play the same part: " + _groups(urn.parts, treatments),
             "whole blocks drawn among those equal in size, rules and replicate: "
             + _groups(urn.alike, blocks),
-            "plots drawn within each block",
+            "plots drawn within each block" + _left_out(trial),
         )
     )
+
+
+def _left_out(trial: Trial) -> str:
+    """What the draw does with filler and with what is in the soil, where there is any."""
+    filler = ", filler among them" if trial.may_be_emptier else ""
+    plots = ", ".join(str(x.plot) for x in trial.rules.planted)
+    return filler + (f", but for what is in the soil already (plot {plots})" if plots else "")
 
 
 def _groups(classes: tuple[tuple[int, ...], ...], names: Sequence[str]) -> str:

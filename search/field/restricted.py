@@ -115,6 +115,7 @@ def _clash(trial: Trial, urn: Urn, limit: Restriction, standing: Standing, answe
     block = unsettled_block(urn, limit, standing)
     if block is not None:
         held = Counter(standing[list(urn.plots[block])].tolist())
+        # Filler clashes with nobody, so it is never named.
         names = [trial.treatments[i].name for i in held if limit.clashing[i][list(held)].any()]
         words += (
             f": the {len(urn.plots[block])} plots of {trial.blocks[block].name} cannot keep "

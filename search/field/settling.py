@@ -46,6 +46,8 @@ def model_of(urn: Urn, limit: Restriction, standing: Standing, blocks: range | t
             for i in held:
                 stands[p, i] = model.new_bool_var("")
             model.add_exactly_one(stands[p, i] for i in held)
+            if p in urn.fixed:
+                model.add(stands[p, urn.fixed[p]] == 1)
         for i, times in held.items():
             model.add(sum(stands[p, i] for p in urn.plots[j]) == times)
     on: dict[int, list[int]] = {}

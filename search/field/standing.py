@@ -8,13 +8,17 @@ from typing import Any
 EVEN_MEETINGS = "even meetings"
 
 
-def standing_in_words(document: dict[str, Any], plots: int) -> tuple[str, ...]:
+def plots_planted(document: dict[str, Any]) -> int:
+    """Plots of a plan that hold a treatment; the others are filler."""
+    return sum(plot["treatment"] is not None for plot in document["plots"])
+
+
+def standing_in_words(document: dict[str, Any]) -> tuple[str, ...]:
     """What is known of a plan, each sentence true as it stands.
 
     Parameters
     ----------
     document : the plan as in plan.json
-    plots : plots of the trial
     """
     score, gap, standing = document["score"], document["gap_percent"], document["standing"]
     if not score["connected"]:
@@ -34,7 +38,7 @@ def standing_in_words(document: dict[str, Any], plots: int) -> tuple[str, ...]:
     if standing == "proven optimal":
         return (obeys, "No plan under these rules is better by even one part in a million; that is proved.")
     if standing == "bounded" and gap is not None and 0 <= gap < 100:
-        return (obeys, *_within(gap, plots))
+        return (obeys, *_within(gap, plots_planted(document)))
     return (obeys, "How much better another plan could be is not known.")
 
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from itertools import groupby, pairwise
 
-from search.field.numbering import Place, places
+from search.trial.numbering import Place, places
 from search.trial.records import Ground, Trial
 
 COMPASS = ("north", "north-east", "east", "south-east", "south", "south-west", "west", "north-west")

@@ -7,8 +7,9 @@ from datetime import date, datetime
 from typing import TYPE_CHECKING, Any
 
 from search.field.crew import CrewPacket
-from search.field.sheets.palette import INK, PANEL, WARNING, hex_of
+from search.field.sheets.palette import INK, PANEL, QUIET, WARNING, WHITE, hex_of
 from search.field.sheets.tints import block_tints
+from search.field.tables import named
 
 if TYPE_CHECKING:
     from xlsxwriter import Workbook
@@ -24,6 +25,8 @@ MADE = datetime(2000, 1, 1)
 """Stands for the moment of writing, so that the same packet gives the same bytes."""
 PAPER = {"A4": 9, "letter": 1}
 LARGEST = 1e9
+IN_SOIL = " \N{BLACK SQUARE}"
+"""Behind the number of a plot that is planted already."""
 LINE = 15.0
 """Points that a line of text takes."""
 
@@ -91,21 +94,24 @@ def _plots(sheet: Worksheet, packet: CrewPacket, styles: _Styles) -> None:
     fixed = [("plot", 7.0), ("block", 16.0), ("replicate", 12.0), ("line", 6.0), ("place", 6.0)]
     fixed += [("treatment", 24.0), ("code", 8.0), ("caution", 32.0), ("mark", 8.0)]
     fixed = [column for column in fixed if resolvable or column[0] != "replicate"]
+    if any(packet.note(planted) for planted in packet.plots):
+        fixed.append(("note", 15.0))
     names = [name for name, _ in fixed] + list(DATA)
     _head(sheet, names, styles, [wide for _, wide in fixed] + [12.0] * (len(DATA) - 1) + [32.0])
     for row, planted in enumerate(packet.plots, start=1):
         place, block = planted.place, packet.blocks[planted.place.block]
-        treatment = packet.treatments[planted.treatment]
+        treatment = packet.held(planted)
         values: dict[str, Any] = {
             "plot": place.plot,
             "block": block.name,
             "replicate": block.replicate,
             "line": place.line,
             "place": place.place,
-            "treatment": treatment.name or treatment.code,
+            "treatment": named(packet, planted),
             "code": treatment.code,
             "caution": treatment.caution,
             "mark": packet.mark,
+            "note": packet.note(planted),
         }
         _make_room(sheet, row, treatment.caution, 32)
         for column, name in enumerate(names):
@@ -152,7 +158,7 @@ def _bags(sheet: Worksheet, packet: CrewPacket, styles: _Styles) -> None:
     names = ["code", "treatment", "bags", "spare", "in a bag", "to weigh out", "caution"]
     _head(sheet, names, styles, [8, 28, 8, 8, 14, 14, 48])
     for row, entry in enumerate(packet.treatments, start=1):
-        bags = entry.plots + packet.spare_bags
+        bags = entry.to_sow + packet.spare_bags
         _write(sheet, row, 0, entry.code, styles.bold)
         for column, value in enumerate((entry.name, bags, packet.spare_bags, entry.per_plot, entry.total), 1):
             _write(sheet, row, column, value, styles.plain)
@@ -192,13 +198,15 @@ def _map(sheet: Worksheet, packet: CrewPacket, book: Workbook, styles: _Styles) 
         block = planted.place.block
         beyond = [(row - 1, column), (row + 1, column), (row, column - 1), (row, column + 1)]
         edges = tuple(place not in at or at[place].place.block != block for place in beyond)
-        key = (tints[block], edges)
+        filler = planted.treatment is None
+        tint = WHITE if filler else tints[block]
+        key = (tint, edges)
         if key not in made:
             sides = zip(("top", "bottom", "left", "right"), edges, strict=True)
             made[key] = book.add_format(
                 {
-                    "bg_color": hex_of(tints[block]),
-                    "font_color": hex_of(INK),
+                    "bg_color": hex_of(tint),
+                    "font_color": hex_of(QUIET if filler else INK),
                     "font_size": 10,
                     "align": "center",
                     "valign": "vcenter",
@@ -206,10 +214,13 @@ def _map(sheet: Worksheet, packet: CrewPacket, book: Workbook, styles: _Styles) 
                     **{side: 2 if edge else 4 for side, edge in sides},
                 }
             )
-        treatment = packet.treatments[planted.treatment]
-        told = f"{planted.place.plot}\n{treatment.code}" + (" !" if treatment.caution else "")
+        treatment = packet.held(planted)
+        told = f"{planted.place.plot}{IN_SOIL if planted.in_soil else ''}\n{treatment.code}"
+        told += " !" if treatment.caution else ""
         sheet.write_string(row, column, told, made[key])
     foot = f"Far side at the top. {packet.mark}, issued {packet.issued}. ! has a caution."
+    foot += " White, fill: filler, no treatment." if packet.filler else ""
+    foot += f"{IN_SOIL} planted already." if packet.in_soil else ""
     sheet.write_string(rows + 1, 0, foot, styles.plain)
 
 

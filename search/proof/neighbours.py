@@ -29,7 +29,7 @@ def kept_apart(trial: Trial, plots: tuple[Plot, ...]) -> Finding | None:
     for one, other in _pairs(rule, trial.t, plots):
         looked_at += 1
         if _too_near(rule, ground, lie[one.number], lie[other.number]):
-            names = [trial.treatments[plot.treatment].name for plot in (one, other)]
+            names = [trial.treatments[plot.treatment or 0].name for plot in (one, other)]
             raise Refuted(f"{names[0]} on plot {one.number} stands beside {names[1]} on plot {other.number}")
     return Finding("neighbours", True, f"{looked_at:,} pairs of plots that must lie apart do")
 
@@ -37,7 +37,8 @@ def kept_apart(trial: Trial, plots: tuple[Plot, ...]) -> Finding | None:
 def _pairs(rule: NotBeside, t: int, plots: tuple[Plot, ...]) -> Iterator[tuple[Plot, Plot]]:
     of: list[list[Plot]] = [[] for _ in range(t)]
     for plot in plots:
-        of[plot.treatment].append(plot)
+        if plot.treatment is not None:
+            of[plot.treatment].append(plot)
     if rule.itself:
         for own in of:
             yield from combinations(own, 2)

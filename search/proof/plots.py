@@ -13,7 +13,10 @@ Place = tuple[int, int]
 
 
 def planted(trial: Trial, contents: Contents, plots: tuple[Plot, ...]) -> Finding:
-    """Every block's plots hold the block's contents, and every plot has its number and place."""
+    """Every block's plots hold the block's contents, and every plot has its number and place.
+
+    Filler stands only where a block may stay partly empty, and what is in the soil already stands there.
+    """
     _same_contents(trial, contents, plots)
     field = _field(trial.ground) if trial.ground else _blocks_as_lines(trial)
     step = 100 if _longest_line(trial) <= 99 else 1000
@@ -30,11 +33,30 @@ def planted(trial: Trial, contents: Contents, plots: tuple[Plot, ...]) -> Findin
             raise Refuted(f"{_named(plot, trial)} lies on a place of {owner}")
         if plot.number != plot.line * step + plot.place:
             raise Refuted(f"line {plot.line}, place {plot.place} has another plot number")
-    return Finding("plots", True, f"{len(plots)} plots at their places hold what the blocks say")
+    if len(seen) != len(field):
+        raise Refuted(f"the field has {len(field)} plots, the file {len(seen)}")
+    _in_soil(trial, plots)
+    filler = sum(plot.treatment is None for plot in plots)
+    told = f", {filler} of them filler" if filler else ""
+    return Finding("plots", True, f"{len(plots)} plots at their places hold what the blocks say{told}")
+
+
+def _in_soil(trial: Trial, plots: tuple[Plot, ...]) -> None:
+    """What the trial says is planted already stands on just those plots."""
+    stands = {plot.number: plot.treatment for plot in plots}
+    for planted in trial.rules.planted:
+        if stands.get(planted.plot) != planted.treatment:
+            name = trial.treatments[planted.treatment].name
+            raise Refuted(
+                f"plot {planted.plot} is planted with {name} already, and the file has another there"
+            )
 
 
 def _same_contents(trial: Trial, contents: Contents, plots: tuple[Plot, ...]) -> None:
-    on_plots = Counter((plot.block, plot.treatment) for plot in plots)
+    on_plots = Counter((plot.block, plot.treatment) for plot in plots if plot.treatment is not None)
+    for j, block in enumerate(trial.blocks):
+        if not block.may_be_emptier and any(plot.block == j and plot.treatment is None for plot in plots):
+            raise Refuted(f"a plot of {block.name} is filler, and all plots of that block are to be planted")
     in_blocks = Counter((j, i) for j, block in enumerate(contents) for i in block)
     for j, i in sorted(on_plots.keys() | in_blocks.keys()):
         if on_plots[j, i] != in_blocks[j, i]:
@@ -75,4 +97,5 @@ def _longest_line(trial: Trial) -> int:
 
 
 def _named(plot: Plot, trial: Trial) -> str:
-    return f"a plot of {trial.blocks[plot.block].name} with {trial.treatments[plot.treatment].name}"
+    held = "filler" if plot.treatment is None else trial.treatments[plot.treatment].name
+    return f"a plot of {trial.blocks[plot.block].name} with {held}"

@@ -20,13 +20,13 @@ MOST_BYTES = 1 << 26
 
 @dataclass(frozen=True, slots=True)
 class Plot:
-    """A plot of the file, its block and treatment by number."""
+    """A plot of the file, its block and treatment by number; filler has no treatment."""
 
     number: int
     block: int
     line: int
     place: int
-    treatment: int
+    treatment: int | None
 
 
 def document_of(path: Path) -> Any:
@@ -95,17 +95,20 @@ def plots_of(file: Part, trial: Trial) -> tuple[Plot, ...]:
 
     def plot(at: int, value: Any) -> Plot:
         row = Part.of(f"plots[{at}]", value)
-        block, treatment = row.text("block"), row.text("treatment")
+        block = row.text("block")
         if block not in blocks:
             raise Refuted(f"{row.where} stands in {quoted(block)}, which is no block of the trial")
-        if treatment not in treatments:
-            raise Refuted(f"{row.where} holds {quoted(treatment)}, which is no treatment of the trial")
+        filler = row.has("filler") and row.flag("filler")
+        treatment = None if filler and row.value("treatment") is None else row.text("treatment")
+        if treatment is not None and (filler or treatment not in treatments):
+            what = "said to be filler" if filler else "which is no treatment of the trial"
+            raise Refuted(f"{row.where} holds {quoted(treatment)}, {what}")
         return Plot(
             number=row.whole("plot"),
             block=blocks[block],
             line=row.whole("line"),
             place=row.whole("place"),
-            treatment=treatments[treatment],
+            treatment=None if treatment is None else treatments[treatment],
         )
 
     rows = listed("plots", file.value("plots"))

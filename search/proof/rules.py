@@ -21,7 +21,8 @@ def counted(trial: Trial, contents: Contents) -> Finding:
     return Finding(
         "counts",
         True,
-        f"{trial.n} plots in {trial.b} blocks, and all of {trial.t} treatments have the plots they may have",
+        f"{sum(map(len, contents))} plots in {trial.b} blocks, and all of {trial.t} treatments have "
+        "the plots they may have",
     )
 
 
@@ -37,8 +38,10 @@ def obeyed(trial: Trial, contents: Contents) -> Finding:
 
 def _miscounts(trial: Trial, contents: Contents) -> Iterator[str]:
     for block, planted in zip(trial.blocks, contents, strict=True):
-        if len(planted) != block.plots:
-            yield f"{block.name} has {len(planted)} plots planted, not {block.plots}"
+        least = 1 if block.may_be_emptier else block.plots
+        if not least <= len(planted) <= block.plots:
+            wanted = f"{least} to {block.plots}" if block.may_be_emptier else f"{block.plots}"
+            yield f"{block.name} has {len(planted)} plots planted, not {wanted}"
         twice = [i for i, times in Counter(planted).items() if times > 1]
         if twice and not trial.rules.twice_in_block:
             yield f"{trial.treatments[twice[0]].name} stands more than once in {block.name}"
@@ -56,6 +59,7 @@ def _number_of_rules(rules: Rules) -> int:
         + len(rules.keep_out)
         + len(rules.must_hold)
         + len(rules.replicates)
+        + len(rules.planted)
     )
 
 

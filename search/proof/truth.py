@@ -35,7 +35,7 @@ class Truth:
 
 def truth(trial: Trial, plan: Information) -> Truth:
     """The score of a plan whose counts obey the trial."""
-    degrees = trial.n - trial.b - trial.t + plan.components
+    degrees = sum(plan.replication) - trial.b - trial.t + plan.components
     if plan.components > 1:
         nothing = Interval.exactly(0)
         lost = _replication_kept(trial, plan).less_than_one_by()
@@ -86,7 +86,7 @@ def _replication_kept(trial: Trial, plan: Information) -> Interval:
     For even meetings, which mean nothing without blocks, that of all pairs.
     """
     if trial.aim.kind is AimKind.OVERALL:
-        own = Fraction(prod(plan.replication) * trial.t, trial.n)
+        own = Fraction(prod(plan.replication) * trial.t, sum(plan.replication))
         return Interval.exactly(own / reference.best_determinant(trial)).root(trial.t - 1)
     if trial.aim.kind is AimKind.WORST_PAIR:
         own = reference.worst_pair_without_blocks(plan.replication)
@@ -99,7 +99,7 @@ def _replication_kept(trial: Trial, plan: Information) -> Interval:
 def _blocks_kept(trial: Trial, plan: Information, found: Variances) -> Interval:
     """Efficiency of the plan against its own replication without blocks, for the trial's aim."""
     if trial.aim.kind is AimKind.OVERALL:
-        own = Fraction(prod(plan.replication) * trial.t, trial.n)
+        own = Fraction(prod(plan.replication) * trial.t, sum(plan.replication))
         return found.determinant.times(1 / own).root(trial.t - 1)
     if trial.aim.kind is AimKind.WORST_PAIR:
         return aims.largest_pair_variance(found).under(reference.worst_pair_without_blocks(plan.replication))

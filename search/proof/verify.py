@@ -10,14 +10,12 @@ from typing import Any
 from search.foundation.errors import Impossible
 from search.proof import neighbours, plots, reading, rules, score, stamp, standing
 from search.proof.bound import bounded
-from search.proof.certificates.case import Case
+from search.proof.certificates.case import case_of
 from search.proof.information import information
 from search.proof.parts import Part
 from search.proof.records import Finding, Refuted, Verdict
 from search.proof.truth import truth
-from search.trial.limits import limits
 from search.trial.records import Contents, Trial
-from search.trial.tables import tables
 
 
 def verify(document: Any) -> Verdict:
@@ -90,7 +88,7 @@ def _planting(file: Part, proof: _Proof) -> None:
 def _claims(file: Part, trial: Trial, contents: Contents, proof: _Proof) -> None:
     """Score, meetings, bound, gap and standing."""
     try:
-        case = Case(trial, tables(trial), limits(trial))
+        case = case_of(trial)
     except Impossible as clash:
         raise Refuted(f"no plan can obey the trial's own counts: {clash}") from clash
     plan = information(contents, trial.t)

@@ -8,21 +8,23 @@ from dataclasses import dataclass, field, replace
 
 from search.designs.starts import Start, starts
 from search.efficiency.bounds import all_bounds
-from search.efficiency.comparing import gap_percent, merit
+from search.efficiency.comparing import Merit, beats, gap_percent, merit
 from search.efficiency.evaluator import meetings_and_ties, score
 from search.efficiency.records import Bound
 from search.efficiency.reference import reference_product, reference_variance
 from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.kernels import wait_for_kernels
 from search.runs.plan import Plan
-from search.solvers.records import Outcome, Problem, problem_of
+from search.solvers.filler import emptied, filled, spare_of, with_filler
+from search.solvers.records import Outcome, goal_of, problem_of
 from search.solvers.start import feasible_start, further_starts
 from search.trial.canonical import canonical
 from search.trial.checker import broken_rules
 from search.trial.limits import Limits as Replication
 from search.trial.limits import limits as implied_limits
 from search.trial.records import Aim, AimKind, Contents, Trial
-from search.trial.tables import tables
+from search.trial.settled import settled
+from search.trial.tables import Tables, tables
 
 DECIDE_SECONDS, DECIDE_EFFORT = 600.0, 6.0
 """Where only moves are limited: deterministic work in which the rule solver must find a first plan (about
@@ -69,11 +71,10 @@ def find(
     """
     observer = observer or Observer()
     stop = stop or Stop(limits)
-    implied = implied_limits(trial)
-    rules = replace(tables(trial), least=implied.least, most=implied.most)
-    problem = problem_of(trial, rules)
+    planned, implied = settled(trial, implied_limits(trial))
+    rules = replace(tables(planned), least=implied.least, most=implied.most)
     first, where_from = feasible_start(
-        trial,
+        planned,
         rules,
         implied,
         seed=seed,
@@ -82,17 +83,17 @@ def find(
         stop=stop,
     )
     observer.first_plan(score(trial, first).aim, where_from)
-    bounds = _Bounds(trial, implied, observer, stop)
+    bounds = _Bounds(planned, implied, observer, stop)
     best: Start | None = None
     try:
-        best = _best_known(trial, kept, observer, stop)
-        wait_for_kernels(observer.note, [problem.goal], lambda: stop.interrupted)
+        best = _best_known(planned, kept, observer, stop)
+        wait_for_kernels(observer.note, [goal_of(trial.aim.kind)], lambda: stop.interrupted)
     except KeyboardInterrupt:
         # Before the search could begin: the plans that are there already count.
         start = best or Start(first, where_from)
         outcome = Outcome(start.contents, math.nan, 0, 0.0, Ended.INTERRUPTED, -1, start.where_from)
     else:
-        outcome = _searched(trial, problem, implied, first, best, bounds, stop, seed, workers)
+        outcome = _searched(planned, rules, implied, first, best, bounds, stop, seed, workers)
     bounds.finish(score(trial, outcome.contents).aim)
     broken = broken_rules(trial, outcome.contents)
     if broken:
@@ -115,7 +116,7 @@ def find(
 
 def _searched(
     trial: Trial,
-    problem: Problem,
+    rules: Tables,
     implied: Replication,
     first: Contents,
     best: Start | None,
@@ -127,10 +128,15 @@ def _searched(
     from search.solvers.rounds import search
 
     stop.restart()
-    return search(
-        problem,
-        first,
-        kept=None if best is None else best.contents,
+    known = None if best is None else best.contents
+    spare = spare_of(rules, first)
+    if known is not None and spare_of(rules, known) != spare:
+        known = None  # it leaves other plots empty than the search can: the two are compared afterwards
+    full = rules if rules.exact else with_filler(rules, spare)
+    outcome = search(
+        problem_of(trial, full, sum(spare)),
+        filled(rules, first),
+        kept=None if known is None else filled(rules, known),
         target=bounds.target,
         stop=stop,
         seed=seed,
@@ -139,8 +145,12 @@ def _searched(
             bounds.efficiency(value), moves, seconds
         ),
         known="" if best is None else best.where_from,
-        others=further_starts(trial, problem.tables, implied, seed=seed),
+        others=[filled(rules, other) for other in further_starts(trial, full, implied, seed=seed)],
     )
+    outcome = replace(outcome, contents=emptied(outcome.contents, trial.t))
+    if best is not None and beats(_merit(trial, best.contents), _merit(trial, outcome.contents)):
+        return replace(outcome, contents=best.contents, objective=math.nan, run=-1, start=best.where_from)
+    return outcome
 
 
 def _best_known(trial: Trial, kept: Contents | None, observer: Observer, stop: Stop) -> Start | None:
@@ -158,11 +168,15 @@ def _best_known(trial: Trial, kept: Contents | None, observer: Observer, stop: S
         candidates.insert(0, Start(kept, "kept plan"))
     if not candidates:
         return None
-    scores = [score(trial, start.contents) for start in candidates]
-    merits = [merit(trial.aim.kind, one.aim, one.aim_variance) for one in scores]
+    merits = [_merit(trial, start.contents) for start in candidates]
     best = max(range(len(candidates)), key=lambda i: (merits[i], -i))
-    observer.first_plan(scores[best].aim, candidates[best].where_from)
+    observer.first_plan(score(trial, candidates[best].contents).aim, candidates[best].where_from)
     return candidates[best]
+
+
+def _merit(trial: Trial, contents: Contents) -> Merit:
+    found = score(trial, contents)
+    return merit(trial.aim.kind, found.aim, found.aim_variance)
 
 
 def checked(plan: Plan) -> Plan:

@@ -15,6 +15,7 @@ from search.runs.prospects import Prospects, prospects
 from search.solvers.start import feasible_start
 from search.trial.limits import Limits, limits
 from search.trial.records import Trial
+from search.trial.settled import settled
 from search.trial.tables import tables
 
 
@@ -64,19 +65,22 @@ def inspect(trial: Trial, *, seconds: float, seed: int = 1) -> Inspection:
     seed : of the greedy builder and the solver
     """
     implied, status, shown_by, causes = None, "possible", "", tuple[str, ...]()
+    planned, plots = trial, trial.n
     clashes, expected = tuple[Clash, ...](), None
     try:
         implied = limits(trial)
-        rules = replace(tables(trial), least=implied.least, most=implied.most)
-        first, shown_by = feasible_start(trial, rules, implied, seed=seed, seconds=seconds)
+        plots = implied.planted[1]
+        planned, exactly = settled(trial, implied)
+        rules = replace(tables(planned), least=exactly.least, most=exactly.most)
+        first, shown_by = feasible_start(planned, rules, exactly, seed=seed, seconds=seconds)
         expected = prospects(trial, implied, first)
     except Impossible as error:
         status, shown_by, causes = "impossible", error.shown_by, error.causes
         clashes = explained(trial, error, seconds=min(seconds, USUAL_SECONDS), seed=seed).clashes
     except Undecided as error:
         status, causes = "undecided", (str(error),)
-    sentence, design = balance(trial)
-    sizes = Counter(block.plots for block in trial.blocks)
+    sentence, design = balance(planned)
+    sizes = Counter(block.plots for block in planned.blocks)
     usual = max(sizes, key=lambda k: (sizes[k], k))
     fewest = smallest(trial.t, usual) if 2 <= usual < trial.t else None
     return Inspection(
@@ -88,9 +92,9 @@ def inspect(trial: Trial, *, seconds: float, seed: int = 1) -> Inspection:
         balanced=sentence,
         design=design,
         fewest=fewest,
-        near=tuple(x for x in nearby(trial.t, usual, trial.n) if x not in (fewest, design)),
+        near=tuple(x for x in nearby(trial.t, usual, plots) if x not in (fewest, design)),
         never_meeting=never_meeting(trial),
-        residual_df=max(0, trial.n - trial.b - trial.t + 1),
+        residual_df=max(0, plots - trial.b - trial.t + 1),
         prospects=expected,
         warnings=cautions(trial, implied),
     )
@@ -98,6 +102,11 @@ def inspect(trial: Trial, *, seconds: float, seed: int = 1) -> Inspection:
 
 def balance(trial: Trial) -> tuple[str, Balanced | None]:
     """Whether a balanced design fits the trial, and its parameters if one does or may."""
+    if trial.may_be_emptier:
+        return (
+            "Some plots may stay filler: block sizes are not settled, and no balanced design is sought.",
+            None,
+        )
     sizes = {block.plots for block in trial.blocks}
     if sizes == {trial.t}:
         return "Every block holds every treatment: complete blocks, balanced as they stand.", None

@@ -30,7 +30,7 @@ class Problem:
     b: int
     n: int
     sizes: tuple[int, ...]
-    """Plots of the blocks, in canonical order."""
+    """Plots of the blocks, in canonical order, with those that may stay filler; n is their sum."""
     name: str
     """Name of the trial that was last seen with this problem."""
 
@@ -38,7 +38,7 @@ class Problem:
 def problem_of(trial: Trial, numbering: Canonical) -> Problem:
     """The problem of a trial."""
     sizes = tuple(trial.blocks[j].plots for j in numbering.blocks)
-    return Problem(numbering.digest, numbering.text, trial.t, trial.b, trial.n, sizes, trial.name)
+    return Problem(numbering.digest, numbering.text, trial.t, trial.b, trial.land, sizes, trial.name)
 
 
 @dataclass(frozen=True, slots=True)

@@ -67,7 +67,7 @@ def prospects(trial: Trial, implied: Limits, first: Contents) -> Prospects | Non
         compared = "the worst pair"
     bound = _quick_bound(trial, implied)
     plan = score(trial, first)
-    df = trial.n - trial.b - trial.t + 1
+    df = implied.planted[1] - trial.b - trial.t + 1
     best = None if bound is None else float(reference_variance(trial)) / bound.value
     counted = asked.aim.kind.counts_meetings
     if counted:

@@ -16,6 +16,7 @@ from search.efficiency.evaluator import (
     pseudo_inverse,
 )
 from search.solvers.compiled import kernel
+from search.solvers.filler import emptied
 from search.solvers.records import Floats, Goal, Problem
 from search.trial.records import Contents
 from search.trial.tables import Tables, contents_of, incidence
@@ -41,6 +42,9 @@ class Board(NamedTuple):
 def objective(problem: Problem, contents: Contents) -> float:
     """The aim's objective from scratch, see `search.efficiency.evaluator.objective`; inf if disconnected."""
     t = problem.tables.t
+    if problem.filler:
+        t -= problem.filler
+        contents = emptied(contents, t)
     if components(contents, t) > 1:
         return float("inf")
     information = information_matrix(contents, t)
@@ -50,7 +54,7 @@ def objective(problem: Problem, contents: Contents) -> float:
     if problem.goal is Goal.WORST:
         own = np.diag(inverse)
         return float((own[:, None] + own[None, :] - 2 * inverse).max())
-    mean = float((problem.weights * inverse).sum())
+    mean = float((problem.weights[:t, :t] * inverse).sum())
     if problem.goal is Goal.MEETINGS:
         return meetings_and_ties(squared_meetings(contents, t), mean)
     return mean

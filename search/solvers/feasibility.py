@@ -30,7 +30,7 @@ def decide(
     effort: float | None = None,
     stop: Stop | None = None,
 ) -> Contents:
-    """A plan within the rules.
+    """A plan within the rules; where plots may stay filler, one with as few of them as was found.
 
     Parameters
     ----------
@@ -72,8 +72,14 @@ def _model(tables: Tables, limits: Limits) -> tuple[CpModel, list[list[IntVar]]]
         [model.new_int_var(int(tables.low[i, j]), int(tables.high[i, j]), "") for j in range(b)]
         for i in range(t)
     ]
+    fewest, fullest = tables.sizes, tables.sizes
+    if not tables.exact:
+        fewest, fullest = limits.fewest, limits.fullest
+        planted = sum(v for row in x for v in row)
+        model.add_linear_constraint(planted, *limits.planted)
+        model.maximize(planted)
     for j in range(b):
-        model.add(sum(x[i][j] for i in range(t)) == int(tables.sizes[j]))
+        model.add_linear_constraint(sum(x[i][j] for i in range(t)), int(fewest[j]), int(fullest[j]))
     for i in range(t):
         model.add_linear_constraint(sum(x[i]), int(tables.least[i]), int(tables.most[i]))
         for g in range(tables.share.shape[1]):
@@ -123,7 +129,7 @@ def _add_meetings(model: CpModel, tables: Tables, present: list[list[IntVar]]) -
             line.append(both)
         shared[int(i), int(j)] = line
         model.add_linear_constraint(sum(line), int(tables.meet_least[i, j]), int(tables.meet_most[i, j]))
-    if len(shared) == tables.t * (tables.t - 1) // 2 and (tables.high <= 1).all():
+    if len(shared) == tables.t * (tables.t - 1) // 2 and (tables.high <= 1).all() and tables.exact:
         # Redundant, and what makes dense limits decidable: a treatment meets k − 1 others in a block.
         for i in range(tables.t):
             for block in range(tables.b):

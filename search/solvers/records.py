@@ -36,11 +36,13 @@ class Problem:
     tables : the rules; `least` and `most` are what all the rules leave of the stated ranges
     weights : (t, t) W of a mean variance `tr(W C⁺)`, or None for the overall aim `−log pdet(C)/(t−1)`
     goal : what is made small
+    filler : how many of the treatments, the last ones, are only filler (`search.solvers.filler`)
     """
 
     tables: Tables
     weights: Floats | None
     goal: Goal = Goal.SPREAD
+    filler: int = 0
 
 
 def goal_of(aim: AimKind) -> Goal:
@@ -48,16 +50,20 @@ def goal_of(aim: AimKind) -> Goal:
     return {AimKind.EVEN_MEETINGS: Goal.MEETINGS, AimKind.WORST_PAIR: Goal.WORST}.get(aim, Goal.SPREAD)
 
 
-def problem_of(trial: Trial, rules: Tables) -> Problem:
+def problem_of(trial: Trial, rules: Tables, filler: int = 0) -> Problem:
     """The problem of a trial.
 
     Parameters
     ----------
     trial : gives the aim
     rules : its tables, with the implied replication
+    filler : how many of their treatments, the last ones, are only filler
     """
     goal = goal_of(trial.aim.kind)
-    return Problem(rules, weights(trial) if goal is Goal.SPREAD else pair_weights(trial.t), goal)
+    matrix = weights(trial) if goal is Goal.SPREAD else pair_weights(trial.t)
+    if matrix is not None:
+        matrix = np.pad(matrix, (0, filler))
+    return Problem(rules, matrix, goal, filler)
 
 
 @dataclass(frozen=True, slots=True)

@@ -90,6 +90,8 @@ class _Relaxer:
                 return list(self._meeting(said))
             case "never_share_block":
                 return list(self._group(said))
+            case "planted":
+                return []  # what is in the soil is no wish that could be dropped
         words = "twice_in_block: true" if said.sort == "twice_in_block" else "leave it out"
         size = Size.ONE_ENTRY if said.sort in ("keep_out", "must_hold") else Size.WHOLE_LINE
         return [Change(said, words, size)] if self._without(said) else []
@@ -101,7 +103,7 @@ class _Relaxer:
             return []
         together = replace(lines[0], items=tuple(i for said in lines for i in said.items))
         most = max(treatment.least for treatment in self.trial.treatments) - 1
-        for room, down, up, more in ((most, 1, 0, "fewer"), (self.trial.n, 0, 1, "more")):
+        for room, down, up, more in ((most, 1, 0, "fewer"), (self.trial.land, 0, 1, "more")):
             steps = self._least_step(room, partial(self._ranged, together, down, up))
             if steps is not None:
                 plots = "one plot" if steps == 1 else f"{steps} plots"
@@ -114,8 +116,9 @@ class _Relaxer:
         frame = next((said for said in self.trial.said if said.sort in ("blocks", "ground")), None)
         if frame is None or self.trial.even:
             return []  # as even as the plots allow: other plots would be other demands
-        short = sum(treatment.least for treatment in self.trial.treatments) - self.trial.n
-        spare = self.trial.n - sum(treatment.most for treatment in self.trial.treatments)
+        short = sum(treatment.least for treatment in self.trial.treatments) - self.trial.land
+        taken = sum(treatment.most for treatment in self.trial.treatments)
+        spare = 0 if self.trial.may_be_emptier else self.trial.land - taken  # filler takes what is spare
         by = short if short > 0 else -spare if spare > 0 else 0
         if abs(by) > 1:
             changed = self._spread(by)
@@ -172,7 +175,7 @@ class _Relaxer:
         least = min(self.trial.treatments[i].least for i in said.items)
         most = max(self.trial.treatments[i].most for i in said.items)
         size = Size.ONE_NUMBER if said.sort == "plots" else Size.MANY_NUMBERS
-        ways = ((least - 1, 1, 0), (self.trial.n - most, 0, 1), (self.trial.n - most, 1, 1))
+        ways = ((least - 1, 1, 0), (self.trial.land - most, 0, 1), (self.trial.land - most, 1, 1))
         found = False
         for room, down, up in ways:
             if found and down and up:

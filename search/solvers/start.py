@@ -7,6 +7,7 @@ import numpy as np
 from search.foundation.errors import Undecided
 from search.foundation.stopping import Stop
 from search.solvers.feasibility import decide
+from search.solvers.filler import least_spare, with_filler
 from search.trial.checker import broken_rules
 from search.trial.limits import Limits, cliques
 from search.trial.records import Contents, Trial
@@ -29,6 +30,8 @@ def feasible_start(
 ) -> tuple[Contents, str]:
     """A plan that obeys every rule, and where it came from.
 
+    Where plots may stay filler, as many as counting allows are planted, or as many as the solver finds.
+
     Parameters
     ----------
     trial : the trial
@@ -44,12 +47,12 @@ def feasible_start(
     Undecided : it ran out of time
     """
     rng = np.random.default_rng(seed)
-    for _ in range(ATTEMPTS):
-        counts = build(tables, limits, rng)
-        if counts is not None:
-            contents = contents_of(counts)
-            if not broken_rules(trial, contents):
-                return contents, "greedy start"
+    full = _with_least_filler(tables, limits)
+    if full is not None:
+        for _ in range(ATTEMPTS):
+            built = _built(trial, full, limits, rng)
+            if built is not None:
+                return built, "greedy start"
     contents = decide(tables, limits, seed=seed, seconds=seconds, effort=effort, stop=stop)
     broken = broken_rules(trial, contents)
     if broken:  # the model or the solver is at fault, not the trial
@@ -63,20 +66,43 @@ def further_starts(
     """More plans within the rules, as far as the greedy builder finds any, all different.
 
     Rules can part the plans into islands that no exchange or replacement joins: so start on several.
+
+    Parameters
+    ----------
+    trial, limits, seed : as in `feasible_start`
+    tables : of exact blocks; those of a search with filler hold a treatment for each plot of it
+    many : how many are tried
     """
     if tables.n > FURTHER_PLOTS:
         return ()
     rng = np.random.default_rng((seed, 1))
     found: dict[Contents, None] = {}
     for _ in range(many):
-        counts = build(tables, limits, rng)
-        if counts is not None and not broken_rules(trial, contents := contents_of(counts)):
+        contents = _built(trial, tables, limits, rng)
+        if contents is not None:
             found[contents] = None
     return tuple(found)
 
 
+def _with_least_filler(tables: Tables, limits: Limits) -> Tables | None:
+    """The rules with as little filler as counting allows; None where the counts of its parts clash."""
+    if tables.exact:
+        return tables
+    spare = least_spare(tables, limits.planted[1])
+    return with_filler(tables, spare) if min(spare) >= 0 else None
+
+
+def _built(trial: Trial, tables: Tables, limits: Limits, rng: np.random.Generator) -> Contents | None:
+    """A greedy plan without its filler, if it obeys the rules."""
+    counts = build(tables, limits, rng)
+    if counts is None:
+        return None
+    contents = contents_of(counts[: trial.t])
+    return None if broken_rules(trial, contents) else contents
+
+
 def build(tables: Tables, limits: Limits, rng: np.random.Generator) -> Ints | None:
-    """Fill block after block with the treatments that run out of blocks first.
+    """Fill block after block, exact ones, with the treatments that run out of blocks first.
 
     Returns
     -------

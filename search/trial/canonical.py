@@ -24,6 +24,8 @@ from search.trial.roles import Classes, block_classes, treatment_classes
 from search.trial.tables import Ints
 
 VERSION = "evenfield problem 1"
+EMPTIER = "at most"
+"""In the text, the mark of blocks that may stay partly empty."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -119,11 +121,16 @@ class _Parts:
         """Members and plots."""
         return [(len(members), int(self.rel.sizes[members[0]])) for members in self.blocks]
 
+    def emptier(self) -> list[bool]:
+        """Whether some of those plots may stay filler."""
+        return [bool(self.rel.emptier[members[0]]) for members in self.blocks]
+
     def colours(self) -> Ints:
         """Equal numbers for parts that are alike in themselves."""
         grouped = (self.rel.group[[members[0] for members in self.blocks]] >= 0).tolist()
         marks: list[tuple[Any, ...]] = [(0, *mark) for mark in self.treatment_marks()]
-        marks += [(1, *mark, inside) for mark, inside in zip(self.block_marks(), grouped, strict=True)]
+        blocks = zip(self.block_marks(), grouped, self.emptier(), strict=True)
+        marks += [(1, *mark, inside, emptier) for mark, inside, emptier in blocks]
         marks += [(2, self.rel.shares[c]) for c in self.contrasts]
         number = {mark: rank for rank, mark in enumerate(sorted(set(marks)))}
         return np.array([number[mark] for mark in marks], dtype=np.int64)
@@ -167,7 +174,11 @@ class _Parts:
         group = [int(self.rel.group[members[0]]) for members in self.blocks]
         return {
             "treatments": [list(mark) for mark in self.treatment_marks()],
-            "blocks": [[*mark, place.get(g, -1)] for mark, g in zip(self.block_marks(), group, strict=True)],
+            "blocks": [
+                # A mark of its own where plots may stay filler; other blocks are written as ever.
+                [*mark, place.get(g, -1), *([EMPTIER] if emptier else [])]
+                for mark, g, emptier in zip(self.block_marks(), group, self.emptier(), strict=True)
+            ],
             "pairs": self.pairs_document(),
             "cells": self.cells_document(),
             "contrasts": [self.contrast_document(c) for c in self.contrasts],

@@ -48,20 +48,19 @@ TREATMENT = Fields(
 )
 
 
+SIZE = Either(
+    "a number of plots, or {at_most: a number}",
+    scalar=COUNT,
+    mapping=Fields({"at_most": COUNT}, ("at_most",), slips={"up_to": "at_most", "most": "at_most"}),
+)
+
+
 @dataclass(frozen=True, slots=True)
 class BlocksKind:
     """Names with sizes, or so many blocks of one size; the words of the second form are reserved."""
 
-    named: Kind = Table(
-        Either(
-            "a number of plots",
-            scalar=COUNT,
-            mapping=Fields({"at_most": NotYet("a block that may stay partly empty")}),
-        ),
-        1,
-        MOST_BLOCKS,
-    )
-    alike: Kind = Fields({"count": Whole(1, MOST_BLOCKS), "plots": COUNT}, ("count", "plots"))
+    named: Kind = Table(SIZE, 1, MOST_BLOCKS)
+    alike: Kind = Fields({"count": Whole(1, MOST_BLOCKS), "plots": SIZE}, ("count", "plots"))
     cut: Kind = Fields(
         {"wanted": Fields({"plots": RANGE, "count": Whole(1, MOST_BLOCKS)}, one_of=("plots", "count"))},
         ("wanted",),
@@ -130,7 +129,7 @@ RULES = Fields(
                 "distance_m": Number(0, 1000, above=True),
             }
         ),
-        "planted": NotYet("plots that are in the soil already"),
+        "planted": Table(Text(), 1, MOST_PLOTS),
     },
     slips={
         "reps": "plots_each, at the top of the file",

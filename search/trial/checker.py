@@ -32,8 +32,10 @@ def _breaches(trial: Trial, contents: Contents) -> Iterator[str]:
     counts = incidence(contents, trial.t)
     present = counts > 0
 
-    for j in np.flatnonzero(counts.sum(axis=0) != rules.sizes):
-        yield f"{blocks[j]} has {len(contents[j])} plots planted, not {rules.sizes[j]}"
+    held = counts.sum(axis=0)
+    for j in np.flatnonzero((held < rules.fewest) | (held > rules.sizes)):
+        wanted = _range(int(rules.fewest[j]), int(rules.sizes[j]))
+        yield f"{blocks[j]} has {held[j]} plots planted, not {wanted}"
     plots = counts.sum(axis=1)
     for i in np.flatnonzero((plots < rules.least) | (plots > rules.most)):
         wanted = _range(int(rules.least[i]), int(rules.most[i]))

@@ -36,12 +36,17 @@ class Limits:
     Parameters
     ----------
     least, most : (t,) range of plots of each treatment that all the rules leave
+    fewest, fullest : (b,) range of plots that are planted in each block
+    planted : fewest and most plots that are planted in all
     sums : limits on sums that the box does not imply already
     told : what the rules force beyond the stated ranges, in sentences
     """
 
     least: Ints
     most: Ints
+    fewest: Ints
+    fullest: Ints
+    planted: tuple[int, int]
     sums: tuple[SumLimit, ...]
     told: tuple[str, ...]
 
@@ -138,6 +143,9 @@ class _Implications:
         self.blocks = [block.name for block in trial.blocks]
         self.least = self.tables.least.copy()
         self.most = self.tables.most.copy()
+        self.fewest = self.tables.fewest.copy()
+        self.fullest = self.tables.sizes.copy()
+        self.planted = (0, 0)
         self.cliques = cliques(self.tables.apart)
         self.once = bool((self.tables.high <= 1).all())
         self.reasons: dict[int, str] = {}
@@ -149,15 +157,17 @@ class _Implications:
         self._replicates_can_be_filled()
         self._each_treatment()
         while True:
-            before = self.least.copy(), self.most.copy()
+            before = [x.copy() for x in (self.least, self.most, self.fewest, self.fullest)]
             self._sums_of_cliques()
             self._totals()
             self._meetings()
-            if (self.least == before[0]).all() and (self.most == before[1]).all():
+            now = (self.least, self.most, self.fewest, self.fullest)
+            if all((x == y).all() for x, y in zip(before, now, strict=True)):
                 break
         self._meetings_in_all()
         sums = tuple(s for s in self.sums if self.most[list(s.treatments)].sum() > s.most)
-        return Limits(self.least, self.most, sums, tuple(self._told(sums)))
+        told = (*self._told(sums), *self._told_of_filler())
+        return Limits(self.least, self.most, self.fewest, self.fullest, self.planted, sums, told)
 
     # -- steps ---------------------------------------------------------------------------------
 
@@ -167,6 +177,11 @@ class _Implications:
         for i, j in zip(*np.nonzero(rules.low > rules.high), strict=True):
             if rules.high[i, j] == 0:
                 causes.append(f"{self.blocks[j]} must hold {self.names[i]}, which is kept out of it")
+            elif rules.high[i, j] == 1:
+                causes.append(
+                    f"{self.names[i]} is planted on {rules.low[i, j]} plots of {self.blocks[j]} already, and "
+                    "no treatment may stand there twice"
+                )
         if causes:
             raise Impossible(causes, "count")
         for i, j in zip(*np.nonzero(np.triu(rules.meet_least > rules.meet_most, 1)), strict=True):
@@ -194,8 +209,8 @@ class _Implications:
     def _blocks_can_be_filled(self) -> None:
         rules = self.tables
         room = rules.high.sum(axis=0) - self._lost_to_cliques(np.arange(rules.b))
-        for j in np.flatnonzero(room < rules.sizes):
-            by_cliques = rules.high[:, j].sum() >= rules.sizes[j]
+        for j in np.flatnonzero(room < rules.fewest):
+            by_cliques = rules.high[:, j].sum() >= rules.fewest[j]
             why = " with treatments that may share a block" if by_cliques else ""
             raise _clash(
                 f"{self.blocks[j]} has {rules.sizes[j]} plots, but at most {room[j]} can be planted{why}",
@@ -205,6 +220,8 @@ class _Implications:
             raise _clash(
                 f"{self.blocks[j]} has {rules.sizes[j]} plots, but must hold {rules.low[:, j].sum()}"
             )
+        self.fullest = np.minimum(self.fullest, room)
+        self.fewest = np.maximum(self.fewest, rules.low.sum(axis=0))
 
     def _lost_to_cliques(self, blocks: Ints) -> Ints:
         """For each block the plots that treatments of disjoint sets, never together, cannot take."""
@@ -223,7 +240,7 @@ class _Implications:
         for g, replicate in enumerate(self.trial.rules.replicates):
             blocks = list(replicate.blocks)
             plots, wanted = int(rules.sizes[blocks].sum()), int(rules.share[:, g].sum())
-            if plots != wanted:
+            if not self._shared_out(blocks, wanted, wanted):
                 raise _clash(
                     f"replicate {replicate.name} has {plots} plots, but its treatments need {wanted}"
                 )
@@ -286,10 +303,24 @@ class _Implications:
             room += int(rules.share[members].sum())
         return room
 
+    def _shared_out(self, blocks: list[int], least: int, most: int) -> bool:
+        """Whether blocks can hold so many plots together; what that asks of each of them is kept."""
+        fewest, fullest = self.fewest[blocks], self.fullest[blocks]
+        if least > fullest.sum() or most < fewest.sum():
+            return False
+        self.fewest[blocks] = np.maximum(fewest, least - (fullest.sum() - fullest))
+        self.fullest[blocks] = np.minimum(fullest, most - (fewest.sum() - fewest))
+        return True
+
     def _totals(self) -> None:
-        n = self.tables.n
-        if self.least.sum() > n:
-            raise _clash(f"the treatments need at least {self.least.sum()} plots, but the blocks have {n}")
+        for g, replicate in enumerate(self.trial.rules.replicates):
+            wanted = int(self.tables.share[:, g].sum())
+            self._shared_out(list(replicate.blocks), wanted, wanted)
+        fewest, fullest = int(self.fewest.sum()), int(self.fullest.sum())
+        if self.least.sum() > fullest:
+            raise _clash(
+                f"the treatments need at least {self.least.sum()} plots, but the blocks have {fullest}"
+            )
         # Disjoint sums bound the total from above, treatment by treatment.
         part = {}
         ceiling = 0
@@ -302,17 +333,19 @@ class _Implications:
                 ceiling += min(s.most, int(self.most[list(s.treatments)].sum()))
                 part.update(dict.fromkeys(s.treatments, s))
         ceiling += int(self.most.sum()) - int(self.most[list(used)].sum())
-        if ceiling < n:
-            raise _clash(f"the treatments can have at most {ceiling} plots, but the blocks have {n}")
+        if ceiling < fewest:
+            raise _clash(f"the treatments can have at most {ceiling} plots, but the blocks have {fewest}")
         spare = int(self.least.sum())
+        self.planted = (max(fewest, spare), min(fullest, ceiling))
+        self._shared_out(list(range(self.tables.b)), *self.planted)
         for i in range(self.tables.t):
-            self._at_most(i, n - spare + int(self.least[i]), "the plots that the others need")
+            self._at_most(i, fullest - spare + int(self.least[i]), "the plots that the others need")
             without = ceiling - int(self.most[i])
             if i in part:
                 s = part[i]
                 all_most = int(self.most[list(s.treatments)].sum())
                 without = ceiling - min(s.most, all_most) + min(s.most, all_most - int(self.most[i]))
-            self._at_least(i, n - without, "the plots that the others cannot take")
+            self._at_least(i, fewest - without, "the plots that the others cannot take")
 
     def _meetings(self) -> None:
         """Meeting caps and floors limit in how many blocks a treatment can stand."""
@@ -322,9 +355,10 @@ class _Implications:
         caps = np.minimum(rules.meet_most, np.minimum.outer(self.most, self.most))
         np.fill_diagonal(caps, 0)
         for i in range(rules.t):
-            partners = np.sort(rules.sizes[rules.high[i] > 0] - 1)
+            fewest = np.sort(self.fewest[rules.high[i] > 0] - 1)
+            partners = np.sort(self.fullest[rules.high[i] > 0] - 1)
             room, needed = int(caps[i].sum()), int(rules.meet_least[i].sum())
-            fits = int(np.searchsorted(np.cumsum(partners), room, side="right"))
+            fits = int(np.searchsorted(np.cumsum(fewest), room, side="right"))
             self._at_most(i, fits, "the meetings that are allowed")
             most = np.cumsum(partners[::-1])
             if needed > (int(most[-1]) if len(most) else 0):
@@ -336,17 +370,18 @@ class _Implications:
         rules = self.tables
         if not self.once:
             return
-        pairs = int((rules.sizes * (rules.sizes - 1) // 2).sum())
+        pairs = int((self.fewest * (self.fewest - 1) // 2).sum())
+        most_pairs = int((self.fullest * (self.fullest - 1) // 2).sum())
         caps = np.triu(np.minimum(rules.meet_most, np.minimum.outer(self.most, self.most)), 1).sum()
         floors = np.triu(rules.meet_least, 1).sum()
         if pairs > caps:
             raise _clash(
                 f"the blocks bring about {pairs} meetings of two treatments, but only {caps} are allowed"
             )
-        if pairs < floors:
+        if most_pairs < floors:
             raise _clash(
                 f"the rules ask for {floors} meetings of two treatments, "
-                f"but the blocks bring about only {pairs}"
+                f"but the blocks bring about only {most_pairs}"
             )
 
         self._once_together(bool((caps_of_pairs(rules) <= 1).all()))
@@ -356,7 +391,7 @@ class _Implications:
         if not applies:
             return
         b = self.tables.b
-        crossings = _fewest_crossings(self.least.tolist(), self.most.tolist(), self.tables.n)
+        crossings = _fewest_crossings(self.least.tolist(), self.most.tolist(), self.planted[0])
         if crossings > b * (b - 1) // 2:
             raise _clash(
                 f"no pair may meet twice, so each two of the {b} blocks share at most one treatment, "
@@ -402,6 +437,17 @@ class _Implications:
                 else f"{self._named(tuple(sorted(who)))}: {plots} plots, because of {why}"
             )
         told.extend(s.why for s in sums)
+        return told
+
+    def _told_of_filler(self) -> list[str]:
+        """Which blocks may hold how many plots, where some may stay filler."""
+        most, land = self.planted[1], self.trial.land
+        told = [f"at most {most} of {land} plots can be planted; the rest is filler"] if most < land else []
+        for j, block in enumerate(self.trial.blocks):
+            fewest, fullest = int(self.fewest[j]), int(self.fullest[j])
+            if block.may_be_emptier and (fewest > 1 or fullest < block.plots):
+                plots = f"exactly {fewest}" if fewest == fullest else f"{fewest} to {fullest}"
+                told.append(f"{block.name}: {plots} of {block.plots} plots planted")
         return told
 
     def _named(self, treatments: tuple[int, ...]) -> str:

@@ -36,7 +36,7 @@ def only(trial: Trial, kept: Collection[Said]) -> Trial:
         items.setdefault(said.sort, set()).update(said.items)
     bound = items.get("plots", set()) | items.get("plots_each", set())
     treatments = tuple(
-        treatment if i in bound else replace(treatment, least=1, most=max(1, trial.n))
+        treatment if i in bound else replace(treatment, least=1, most=max(1, trial.land))
         for i, treatment in enumerate(trial.treatments)
     )
     named = {said.sort for said in trial.said} & set(Rules.__slots__) - {"twice_in_block"}
@@ -74,7 +74,7 @@ def quoted(trial: Trial, said: Said) -> str:
         case "treatments":
             return f"treatments: {trial.t} of them"
         case "blocks" | "ground":
-            return f"{said.sort}: {trial.n} plots in {trial.b} blocks"
+            return f"{said.sort}: {trial.land} plots in {trial.b} blocks"
         case "plots":
             return f"{names[at]}: {{plots: {_range(trial, at)}}}"
         case "plots_each":
@@ -97,6 +97,9 @@ def quoted(trial: Trial, said: Said) -> str:
             i, j = rules.must_hold[at]
             block = EVERY if len(said.items) > 1 else blocks[j]
             return f"must_hold: {{{block}: [{names[i]}]}}"
+        case "planted":
+            planted = rules.planted[at]
+            return f"planted: {{{planted.plot}: {names[planted.treatment]}}}"
         case "replicates":
             replicate = rules.replicates[at]
             return f"replicates: {{{replicate.name}: [{_listed([blocks[j] for j in replicate.blocks])}]}}"

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Iterator
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -13,6 +15,7 @@ from search.trial.even import even_ranges
 from search.trial.kinds import Report, Section
 from search.trial.names import Names, plain
 from search.trial.nodes import Node, nodes_of, read_nodes
+from search.trial.planted import read_planted
 from search.trial.reading_rules import EVERY, read_rules
 from search.trial.records import (
     Aim,
@@ -90,6 +93,8 @@ class _Reader:
         treatments = Names("treatment", names)
         bays = Names("block", [block.name for block in blocks])
         rules, said = read_rules(self.section.get("rules", Section()), treatments, bays, self.report)
+        if wanted is None:
+            rules, said = self._planted(rules, said, treatments, ground, blocks)
         self._fits_ground(rules, ground, wanted)
         settings = self.section.get("treatments")
         settings = settings if isinstance(settings, Section) else Section()
@@ -166,26 +171,50 @@ class _Reader:
         if "count" in section.where or "plots" in section.where:
             if "count" not in section or "plots" not in section:
                 return None
-            if not self._few_enough(section["count"] * section["plots"]):
+            if isinstance(section["plots"], Section) and "at_most" not in section["plots"]:
                 return None
-            blocks = tuple(Block(f"block {j}", section["plots"]) for j in range(1, section["count"] + 1))
+            blocks = tuple(_block(f"block {j}", section["plots"]) for j in range(1, section["count"] + 1))
         else:
             self._unlike(list(section.key_at), list(section.key_at.values()), "blocks")
-            if not all(isinstance(plots, int) for plots in section.values()):
-                return None  # a block with settings has left its fault behind
-            blocks = tuple(Block(name, plots) for name, plots in section.items())
-            if not self._few_enough(sum(section.values())):
-                return None
-        if drawn is not None and sorted(map(repr, drawn)) != sorted(map(repr, blocks)):
-            self.report.add(
-                self.section.where["blocks"],
-                "blocks",
-                "blocks unlike those on the map",
-                "blocks as ground draws them, or no blocks at all",
-                "two accounts of one field: one of them is wrong",
-                "leave blocks out",
-            )
-        return drawn if drawn is not None else blocks
+            if any(isinstance(size, Section) and "at_most" not in size for size in section.values()):
+                return None  # it has left its fault behind
+            blocks = tuple(_block(name, size) for name, size in section.items())
+        if not self._few_enough(sum(block.plots for block in blocks)):
+            return None
+        return blocks if drawn is None else self._as_drawn(drawn, blocks)
+
+    def _as_drawn(self, drawn: tuple[Block, ...], named: tuple[Block, ...]) -> tuple[Block, ...]:
+        """The blocks of the map, in its order; `blocks` beside it may say which of them may be emptier."""
+        size = {block.name: block.plots for block in drawn}
+        agree = all(size.get(block.name) == block.plots for block in named)
+        if agree and (len(named) == len(drawn) or all(block.may_be_emptier for block in named)):
+            known = {block.name: block for block in named}
+            return tuple(known.get(block.name, block) for block in drawn)
+        self.report.add(
+            self.section.where["blocks"],
+            "blocks",
+            "blocks unlike those on the map",
+            "blocks as ground draws them, or those alone that may stay partly empty: {at_most: its plots}",
+            "two accounts of one field: one of them is wrong",
+            "leave blocks out",
+        )
+        return drawn
+
+    def _planted(
+        self,
+        rules: Rules,
+        said: tuple[Said, ...],
+        treatments: Names,
+        ground: Ground | None,
+        blocks: tuple[Block, ...],
+    ) -> tuple[Rules, tuple[Said, ...]]:
+        """The rules with what is in the soil already: plot numbers need the map, the other rules do not."""
+        section: Section | None = self.section.get("rules", Section()).get("planted")
+        if section is None or (ground is None and "ground" in self.section.where):
+            return rules, said
+        sites = self.section.get("randomise", Section()).get("sites", 1)
+        planted, places = read_planted(section, treatments, ground, blocks, sites, self.report)
+        return replace(rules, planted=planted), (*said, *places)
 
     def _wanted(self, ground: Ground | None) -> Wanted | None:
         """What the bays to be cut must be like; they need a map to be cut from."""
@@ -213,7 +242,7 @@ class _Reader:
             self._needs_map(rules.not_beside, section.where["not_beside"], ground)
         if wanted is None:
             return
-        single: list[str] = [key for key in ("keep_out", "replicates") if key in section.where]
+        single: list[str] = [key for key in ("keep_out", "replicates", "planted") if key in section.where]
         if set(section.get("must_hold", ())) - {EVERY}:
             single.append("must_hold")
         for key in single:
@@ -292,7 +321,7 @@ class _Reader:
         ]
         each = self.plots_each
         if each is None:
-            ranges = even_ranges(_own_limits(own, blocks, rules), sum(block.plots for block in blocks))
+            ranges = _even_shares(_own_limits(own, blocks, rules), blocks, rules)
         else:
             ranges = tuple(each for _ in names)
         return tuple(
@@ -370,6 +399,33 @@ def _own_limits(
         else:
             limits.append((1, None))
     return limits
+
+
+def _even_shares(
+    limits: list[tuple[int, int | None]], blocks: tuple[Block, ...], rules: Rules
+) -> tuple[tuple[int, int], ...]:
+    """The even share of the plots that can be planted; a plot less where some may stay filler.
+
+    A block that may stay partly empty counts with as many plots as there are treatments that may enter
+    it, where none may stand there twice. Filler takes its plots from any treatment, one from each at most.
+    """
+    barred = Counter(j for _, j in set(rules.keep_out))
+    plots = 0
+    for j, block in enumerate(blocks):
+        able = len(limits) - barred[j]
+        plots += min(block.plots, able) if block.may_be_emptier and not rules.twice_in_block else block.plots
+    shares = even_ranges(limits, plots)
+    if not any(block.may_be_emptier for block in blocks):
+        return shares
+    return tuple(
+        (min(low, max(least, high - 1)), high) for (low, high), (least, _) in zip(shares, limits, strict=True)
+    )
+
+
+def _block(name: str, size: int | Section) -> Block:
+    if isinstance(size, int):
+        return Block(name, size)
+    return Block(name, size["at_most"], may_be_emptier=True)
 
 
 def _treatment(name: str, plots: tuple[int, int], own: bool, settings: Section) -> Treatment:

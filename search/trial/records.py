@@ -41,10 +41,14 @@ class Treatment:
 
 @dataclass(frozen=True, slots=True)
 class Block:
-    """A block of exactly `plots` plots."""
+    """A block of `plots` plots: all of them planted, or, where `may_be_emptier`, one or more of them.
+
+    What is not planted of a block is filler: sown to keep the field even, and not scored.
+    """
 
     name: str
     plots: int
+    may_be_emptier: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -79,6 +83,15 @@ class NotBeside:
 
 
 @dataclass(frozen=True, slots=True)
+class InSoil:
+    """A plot that is planted already: its number on the stake, its treatment, and its block."""
+
+    plot: int
+    treatment: int
+    block: int
+
+
+@dataclass(frozen=True, slots=True)
 class Rules:
     """The rules of the file, by treatment and block numbers."""
 
@@ -97,6 +110,8 @@ class Rules:
     """(treatment, times): stands that often in each replicate, instead of once."""
     twice_in_block: bool = False
     not_beside: NotBeside | None = None
+    planted: tuple[InSoil, ...] = ()
+    """In the order of the file; each plot at most once."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -293,9 +308,22 @@ class Trial:
         return len(self.blocks)
 
     @property
-    def n(self) -> int:
-        """Number of plots."""
+    def land(self) -> int:
+        """Number of plots, with those that stay filler."""
         return sum(block.plots for block in self.blocks)
+
+    @property
+    def may_be_emptier(self) -> bool:
+        """Whether some plots may stay filler."""
+        return any(block.may_be_emptier for block in self.blocks)
+
+    @property
+    def n(self) -> int:
+        """The most plots that can be planted: all of them, or, where some may stay filler, no more than
+        the stated ranges of the treatments take."""
+        if not self.may_be_emptier:
+            return self.land
+        return min(self.land, sum(treatment.most for treatment in self.treatments))
 
     @property
     def controls(self) -> tuple[int, ...]:

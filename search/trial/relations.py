@@ -12,7 +12,7 @@ from fractions import Fraction
 import numpy as np
 
 from search.trial.records import AimKind, Trial
-from search.trial.tables import Ints, Tables, tables
+from search.trial.tables import Bools, Ints, Tables, tables
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -24,6 +24,7 @@ class Relations:
     ranges : for each treatment the least and most plots stated
     controls : for each treatment whether it is a control and the aim asks who is
     sizes : (b,) plots of each block
+    emptier : (b,) True where some of them may stay filler
     group : (b,) number of the block's replicate, -1 outside
     pairs : (t, t) fewest and most meetings and whether the pair is apart, in one number
     cells : (t, b) fewest and most plots in the block and the plots in its replicate, in one number
@@ -34,6 +35,7 @@ class Relations:
     ranges: tuple[tuple[int, int], ...]
     controls: tuple[bool, ...]
     sizes: Ints
+    emptier: Bools
     group: Ints
     pairs: Ints
     cells: Ints
@@ -66,6 +68,7 @@ def relations(trial: Trial) -> Relations:
         ranges=tuple((x.least, x.most) for x in trial.treatments),
         controls=tuple(x.control and asks_controls for x in trial.treatments),
         sizes=rules.sizes,
+        emptier=rules.fewest < rules.sizes,
         group=rules.group,
         pairs=_pairs(rules),
         cells=_cells(rules),

@@ -69,9 +69,12 @@ def block_classes(rel: Relations) -> Classes:
     return _classes(zip(rel.group.tolist(), _block_kinds(rel), strict=True))
 
 
-def _block_kinds(rel: Relations) -> list[tuple[int, bytes]]:
+def _block_kinds(rel: Relations) -> list[tuple[int, bool, bytes]]:
     columns = np.ascontiguousarray(rel.cells.T)
-    return [(int(size), column.tobytes()) for size, column in zip(rel.sizes, columns, strict=True)]
+    return [
+        (int(size), bool(emptier), column.tobytes())
+        for size, emptier, column in zip(rel.sizes, rel.emptier, columns, strict=True)
+    ]
 
 
 def _classes(marks: Iterable[Hashable]) -> Classes:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from dataclasses import dataclass
 
 import numpy as np
@@ -20,6 +21,7 @@ class Tables:
     Parameters
     ----------
     sizes : (b,) plots of each block
+    fewest : (b,) plots of each block that are planted at least: all, or one where some may stay filler
     low, high : (t, b) fewest and most plots of a treatment in a block: 0 and 0 where it is kept out,
         at least 1 where the block must hold it, at most 1 unless it may stand twice
     least, most : (t,) stated range of plots of each treatment
@@ -30,6 +32,7 @@ class Tables:
     """
 
     sizes: Ints
+    fewest: Ints
     low: Ints
     high: Ints
     least: Ints
@@ -52,8 +55,14 @@ class Tables:
 
     @property
     def n(self) -> int:
-        """Number of plots."""
-        return int(self.sizes.sum())
+        """The most plots that can be planted, as far as sizes and stated ranges tell; see `Trial.n`."""
+        land = int(self.sizes.sum())
+        return land if self.exact else min(land, int(self.most.sum()))
+
+    @property
+    def exact(self) -> bool:
+        """Whether all plots of every block are planted."""
+        return bool((self.fewest == self.sizes).all())
 
     @property
     def limits_meetings(self) -> bool:
@@ -68,17 +77,21 @@ def tables(trial: Trial) -> Tables:
     sizes = np.array([block.plots for block in trial.blocks], dtype=np.int64)
     high = np.ones((t, b), dtype=np.int64)
     low = np.zeros((t, b), dtype=np.int64)
+    fewest = np.array([1 if x.may_be_emptier else x.plots for x in trial.blocks], dtype=np.int64)
     if rules.twice_in_block:
         high *= sizes
-        low += sizes // t
+        low += fewest // t
+    in_soil = Counter((x.treatment, x.block) for x in rules.planted)
     for i, j in rules.must_hold:
         low[i, j] = max(1, low[i, j])
-    held = set(rules.must_hold)
+    held = {*rules.must_hold, *in_soil}
     for i, j in rules.keep_out:
         high[i, j] = 0
     for i, j in (*rules.keep_out, *rules.unforced):
         if (i, j) not in held:
             low[i, j] = 0
+    for (i, j), times in in_soil.items():
+        low[i, j] = max(times, low[i, j])
 
     apart = np.zeros((t, t), dtype=np.bool_)
     for together in rules.never_share_block:
@@ -102,6 +115,7 @@ def tables(trial: Trial) -> Tables:
         share[i, :] = times
     return Tables(
         sizes=sizes,
+        fewest=fewest,
         low=low,
         high=high,
         least=np.array([x.least for x in trial.treatments], dtype=np.int64),

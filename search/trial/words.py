@@ -34,6 +34,7 @@ SECOND = "a plan under another rule than you meant looks just as good on paper"
 DRILL = "the drill and the crew go by the map: one place wrong shifts every plot after it"
 PAPER = "the crew works from this paper, far from anybody who could explain it"
 ERROR = "expected errors and detectable differences are worked out from it"
+FILLER = "a plot that nobody plants is a gap: filler keeps the neighbours from growing into it"
 SEED = "the seed is what makes the same plan again"
 
 WORDS: dict[str, Words] = {
@@ -112,15 +113,26 @@ WORDS: dict[str, Words] = {
     ),
     "blocks.*": Words(
         "Plots of this block",
-        "So many plots, all of them planted.",
+        "So many plots, all of them planted; or {at_most: so many}.",
         "a plan for more plots than the block has cannot be sown",
         "north bay: 8",
     ),
     "blocks.*.at_most": Words(
-        "At most", "Up to so many plots; the rest is filler.", "filler is sown too", "{at_most: 8}"
+        "At most",
+        "So many plots, as many of them planted as ranges and rules allow, one at least; the rest is filler.",
+        FILLER,
+        "north bay: {at_most: 8}",
     ),
     "blocks.count": Words("Number of blocks", "How many blocks of one size.", NUMBERS, "count: 6"),
-    "blocks.plots": Words("Plots of a block", "How many plots each of them has.", NUMBERS, "plots: 8"),
+    "blocks.plots": Words(
+        "Plots of a block",
+        "How many plots each of them has; all are planted, or {at_most: so many}.",
+        NUMBERS,
+        "plots: 8",
+    ),
+    "blocks.plots.at_most": Words(
+        "At most", "The same for each of these blocks; the rest is filler.", FILLER, "plots: {at_most: 8}"
+    ),
     "blocks.wanted": Words(
         "Blocks to be cut", "Cut the blocks from the bare map.", DRILL, "wanted: {plots: [7, 8]}"
     ),
@@ -129,7 +141,7 @@ WORDS: dict[str, Words] = {
     "plots_each": Words(
         "Plots for each treatment",
         "How many plots a treatment has that says nothing itself: a number or [least, most]; left out: as "
-        "even as the plots allow.",
+        "even as the plots that can be planted allow.",
         "replication decides how small a difference the trial can show",
         "plots_each: [3, 4]",
     ),
@@ -207,8 +219,8 @@ WORDS: dict[str, Words] = {
     "rules.not_beside.distance_m": Words("Distance", "Metres in between.", SECOND, "distance_m: 3"),
     "rules.planted": Words(
         "Planted already",
-        "Plot numbers with the treatment that is in the soil.",
-        "what is sown cannot be moved",
+        "Plot numbers, as on the stakes, each with the treatment that is in the soil there.",
+        "what is sown cannot be moved, and a plan that moves it would be sown twice",
         "planted: {101: Arlen}",
     ),
     "ground": Words(

@@ -8,7 +8,18 @@ from typing import Any
 
 from search.trial.listing import table_lines
 from search.trial.reading_rules import EVERY
-from search.trial.records import Aim, AimKind, Ground, Meeting, NotBeside, Rules, Treatment, Trial, Wanted
+from search.trial.records import (
+    Aim,
+    AimKind,
+    Block,
+    Ground,
+    Meeting,
+    NotBeside,
+    Rules,
+    Treatment,
+    Trial,
+    Wanted,
+)
 
 
 def trial_document(trial: Trial) -> dict[str, Any]:
@@ -22,8 +33,10 @@ def trial_document(trial: Trial) -> dict[str, Any]:
     }
     if trial.wanted is not None:
         document["blocks"] = {"wanted": _wanted(trial.wanted)}
-    elif trial.ground is None:
-        document["blocks"] = {block.name: block.plots for block in trial.blocks}
+    elif trial.ground is None or trial.may_be_emptier:
+        # Beside a map only what it does not show: which blocks may stay partly empty.
+        named = [block for block in trial.blocks if trial.ground is None or block.may_be_emptier]
+        document["blocks"] = {block.name: _size(block) for block in named}
     if trial.plots_each is not None:
         document["plots_each"] = list(trial.plots_each)
     document["rules"] = _rules(trial.rules, names, blocks)
@@ -46,6 +59,10 @@ def trial_document(trial: Trial) -> dict[str, Any]:
 def _settings(record: Any) -> dict[str, Any]:
     values = {name: getattr(record, name) for name in record.__slots__}
     return {name: value for name, value in values.items() if value not in (None, "")}
+
+
+def _size(block: Block) -> int | dict[str, int]:
+    return {"at_most": block.plots} if block.may_be_emptier else block.plots
 
 
 def _treatment(treatment: Treatment) -> dict[str, Any]:
@@ -75,6 +92,8 @@ def _rules(rules: Rules, names: list[str], blocks: list[str]) -> dict[str, Any]:
     document["twice_in_block"] = rules.twice_in_block
     if rules.not_beside is not None:
         document["not_beside"] = _not_beside(rules.not_beside, names)
+    if rules.planted:
+        document["planted"] = {str(x.plot): names[x.treatment] for x in rules.planted}
     return document
 
 

@@ -9,8 +9,8 @@ import networkx as nx
 import pytest
 
 from search.field.bays import ways_to_cut
-from search.field.numbering import places
 from search.foundation.errors import BadInput
+from search.trial.numbering import places
 from search.trial.reading import trial_from_document
 from search.trial.records import Trial
 from search.trial.writing import trial_document

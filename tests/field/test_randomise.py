@@ -75,7 +75,11 @@ def test_no_draw_breaks_a_rule_or_costs_efficiency(trial: Trial, seed: int) -> N
     assert score(trial, drawn.contents).aim == pytest.approx(score(trial, contents).aim, abs=1e-9)
     by_block: list[list[int]] = [[] for _ in trial.blocks]
     for planted in drawn.plots:
-        by_block[planted.place.block].append(planted.treatment)
+        if planted.treatment is not None:
+            by_block[planted.place.block].append(planted.treatment)
+        assert (planted.treatment is not None) or trial.blocks[planted.place.block].may_be_emptier
+    stands = {planted.place.plot: planted.treatment for planted in drawn.plots}
+    assert all(stands[x.plot] == x.treatment for x in trial.rules.planted)
     assert tuple(tuple(sorted(block)) for block in by_block) == drawn.contents
 
 

@@ -15,12 +15,12 @@ from scipy.stats import chisquare
 from search.field import restricted
 from search.field.beside import Restriction, clash_in_words, restriction
 from search.field.chain import Walk
-from search.field.numbering import Place, places
 from search.field.planfile import plan_document
 from search.field.randomise import lay_out
 from search.field.urn import Urn
 from search.foundation.errors import Undecided
 from search.proof import verify as proof
+from search.trial.numbering import Place, places
 from search.trial.reading import trial_from_document
 from search.trial.records import Contents, Trial
 from tests.field.made import ISSUED, plan_of, trial_with

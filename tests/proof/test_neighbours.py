@@ -7,11 +7,11 @@ from typing import Any
 import pytest
 
 from search.field.beside import clash_in_words
-from search.field.numbering import places
 from search.proof.neighbours import kept_apart
 from search.proof.plots import planted
 from search.proof.reading import Plot
 from search.proof.records import Refuted
+from search.trial.numbering import places
 from search.trial.reading import trial_from_document
 from search.trial.records import Trial
 

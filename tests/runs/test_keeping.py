@@ -17,7 +17,7 @@ from search.efficiency.bounds import all_bounds
 from search.foundation.errors import Impossible
 from search.foundation.stopping import Ended, Limits
 from search.proof.bound import bounded
-from search.proof.certificates.case import Case
+from search.proof.certificates.case import case_of
 from search.runs.keeping import Keeping, covers, recall, remember, run_of
 from search.runs.kept import problem_of
 from search.runs.store import Store
@@ -26,7 +26,6 @@ from search.trial.carrying import from_canonical, to_canonical
 from search.trial.limits import limits
 from search.trial.reading import trial_from_document
 from search.trial.records import Trial
-from search.trial.tables import tables
 from tests.drawn import small_trials, tiny_trial
 from tests.runs.made import made_plan
 from tests.runs.test_store import AIM, GOOD, bound, problem, run, written_to
@@ -44,7 +43,7 @@ def test_carried_certificates_still_prove_their_bounds(trial: Trial, draw: rando
         return
     other = renumbered(trial, draw)
     to, back = to_canonical(canonical(trial)), from_canonical(canonical(other))
-    case = Case(other, tables(other), limits(other))
+    case = case_of(other)
     for found in bounds:
         claim = {
             "aim": found.aim.value,

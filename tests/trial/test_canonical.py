@@ -57,6 +57,9 @@ def renumbered(trial: Trial, draw: random.Random) -> Trial:
             [replace(r, blocks=mixed([block_to[j] for j in r.blocks])) for r in rules.replicates]
         ),
         per_replicate=mixed([(to[i], times) for i, times in rules.per_replicate]),
+        planted=mixed(
+            [replace(x, treatment=to[x.treatment], block=block_to[x.block]) for x in rules.planted]
+        ),
     )
     contrasts = [
         replace(c, label=c.label * 2, of=mixed([(to[i], x) for i, x in c.of])) for c in trial.aim.contrasts

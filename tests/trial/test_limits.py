@@ -28,7 +28,11 @@ def test_no_plan_lies_outside_the_limits(trial: Trial) -> None:
         assert not plans
         return
     for contents in plans:
-        plots = incidence(contents, trial.t).sum(axis=1)
+        counts = incidence(contents, trial.t)
+        plots, held = counts.sum(axis=1), counts.sum(axis=0)
+        assert (implied.fewest <= held).all()
+        assert (held <= implied.fullest).all()
+        assert implied.planted[0] <= held.sum() <= implied.planted[1]
         assert (implied.least <= plots).all()
         assert (plots <= implied.most).all()
         for s in implied.sums:

@@ -436,6 +436,28 @@ MISTAKES = {
         "see page: four",
         '"see page: four"',
     ),
+    "planted_plot_unknown": Mistake(
+        6,
+        ("a plot of this trial: 101 to 403", "the nearest is 103: line 1, place 3"),
+        "104: Arlen",
+        "103: Arlen",
+    ),
+    "planted_plot_without_number": Mistake(
+        6, ("the number alone, such as  101: name",), "north: Arlen", "101: Arlen"
+    ),
+    "planted_treatment_unknown": Mistake(6, ('did you mean "Arlen"',), "Arlene", "Arlen"),
+    "planted_plot_twice": Mistake(
+        6, ("plot 101 a second time", "the first stands in line 6"), '"0101"', "102"
+    ),
+    "planted_at_three_sites": Mistake(6, ("3 sites to plan", "randomise.sites"), "sites: 3", "sites: 1"),
+    "planted_before_bays_are_cut": Mistake(
+        6, ("a rule about single blocks", "cut the bays first"), "rules:\n  planted: {101: Arlen}\n", ""
+    ),
+    "at_most_unlike_the_map": Mistake(
+        4, ("blocks unlike those on the map", "{at_most: its plots}"), "at_most: 2", "at_most: 3"
+    ),
+    "at_most_misspelt": Mistake(6, ('the key "up_to"', "at_most"), "up_to", "at_most"),
+    "at_most_of_nothing": Mistake(6, ("1",), "at_most: 0", "at_most: 3"),
     "bracket_left_open": Mistake(3, ("a bracket that is not closed",), "Clover\n", "Clover]\n"),
     "quote_left_open": Mistake(5, ("a quote that is not closed",), "Moor}", 'Moor"}'),
     "line_set_in_too_far": Mistake(6, ("a line set in too far or too little",), "   north", "  north"),

@@ -60,7 +60,7 @@ PLACES = 9
 
 def applies(trial: Trial) -> bool:
     """Whether all pairs count alike and nothing may stand twice in a block."""
-    return trial.aim.kind.treats_pairs_alike and not trial.rules.twice_in_block
+    return trial.aim.kind.depends_on_eigenvalues and not trial.rules.twice_in_block
 
 
 HAIR = Fraction(1, 10**9)

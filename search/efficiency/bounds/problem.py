@@ -32,6 +32,8 @@ class Problem:
     trial, rules : the trial and its rules as arrays
     limits : the replication that all the rules together leave
     trace : the greatest `tr C` that the rules allow, n − b where nothing stands twice
+
+    Where plots may stay filler, a bound holds for every plan, however many are planted.
     """
 
     trial: Trial
@@ -45,6 +47,11 @@ class Problem:
         return self.trial.t - 1
 
     @property
+    def n(self) -> int:
+        """The most plots that any plan has."""
+        return self.limits.planted[1]
+
+    @property
     def cap(self) -> int:
         """No eigenvalue is above this: `C ≼ R`, so the greatest replication is one."""
         return int(self.limits.most.max())
@@ -53,7 +60,7 @@ class Problem:
 def problem(trial: Trial, limits: Limits) -> Problem | None:
     """The trial as the bounds see it; None where no plan can be connected, so that none has worth."""
     rules = tables(trial)
-    trace = greatest_trace(rules)
+    trace = greatest_trace(rules, limits.planted[1])
     if trace is None or trace <= 0 or (limits.most < 1).any():
         return None
     return Problem(trial, rules, limits, trace)

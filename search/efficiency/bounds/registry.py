@@ -23,6 +23,7 @@ from search.efficiency.bounds.spectral import local
 from search.efficiency.records import Bound
 from search.trial.limits import Limits
 from search.trial.records import AimKind, Trial
+from search.trial.settled import settled
 
 QUICK = 0.1
 """Seconds that every caller has."""
@@ -39,6 +40,7 @@ class Argument:
     applies : whether it holds for a trial at all
     find : its bound, or None where it has none to give
     seconds : what it takes in a large trial, about
+    any_filling : whether it also holds where plots of a block may stay filler
     """
 
     name: str
@@ -46,6 +48,11 @@ class Argument:
     applies: Callable[[Trial], bool]
     find: Callable[[Problem], Bound | None]
     seconds: float = QUICK
+    any_filling: bool = False
+
+    def speaks_of(self, trial: Trial) -> bool:
+        """Whether it holds for a trial at all."""
+        return (self.any_filling or not trial.may_be_emptier) and self.applies(trial)
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,8 +66,12 @@ class Tried:
 
 ARGUMENTS = (
     *(
+        Argument(module.NAME, module.SENTENCE, module.applies, module.find, any_filling=True)
+        for module in (first_order, replication, trace_root)
+    ),
+    *(
         Argument(module.NAME, module.SENTENCE, module.applies, module.find)
-        for module in (first_order, replication, trace_root, even_pairs, worst_pair, pairs, meets)
+        for module in (even_pairs, worst_pair, pairs, meets)
     ),
     Argument(averaged.NAME, averaged.SENTENCE, averaged.applies, averaged.find, 1.0),
     Argument(control_meets.NAME, control_meets.SENTENCE, control_meets.applies, control_meets.find, 1.0),
@@ -76,12 +87,15 @@ def tried(
 ) -> Iterator[Tried]:
     """Every argument that applies, each tried when it is asked for, the quick ones first.
 
+    Where counting settles how many plots of each block are planted, the blocks are taken as exact.
+
     Parameters
     ----------
     trial : the trial
     limits : the replication that its rules leave, from `search.trial.limits`
     has_time : whether there are so many seconds left; arguments that take longer are left out
     """
+    trial, limits = settled(trial, limits)
     given = problem(trial, limits)
     if given is None:
         return
@@ -89,8 +103,8 @@ def tried(
     if trial.aim.kind is AimKind.WORST_PAIR:  # which is not below the average
         alike = replace(given, trial=worst_pair.of_average(trial))
     for argument in ARGUMENTS:
-        its = given if argument.applies(trial) else alike
-        if argument.applies(its.trial) and (argument.seconds <= QUICK or has_time(argument.seconds)):
+        its = given if argument.speaks_of(trial) else alike
+        if argument.speaks_of(its.trial) and (argument.seconds <= QUICK or has_time(argument.seconds)):
             start = time.perf_counter()
             bound = argument.find(its)
             if bound is not None and its is not given:

@@ -5,7 +5,8 @@ rules leave.
 
 Proof. `C ≼ R − rr'/n`, of which `R⁻¹` is a generalised inverse and `Π r_i · t / n` the
 pseudo-determinant. The least `Σ W_ii / r_i` with `Σ r = n` and further sums `Σ_S r ≤ most` is not below
-`Σ_i min_r [W_ii / r + μ r + Σ_{S∋i} π_S r] − μ n − Σ π_S most_S` for any price μ and any π ≥ 0.
+`Σ_i min_r [W_ii / r + μ r + Σ_{S∋i} π_S r] − μ n − Σ π_S most_S` for any price μ and any π ≥ 0. Where plots
+may stay filler, n is the most that can be planted, Σ r ≤ n, and μ ≥ 0; `Π r_i / Σ r` rises with each r_i.
 
 Source. Shah and Sinha 1989, section 1 (from memory); the prices are Lagrange's.
 """
@@ -44,9 +45,9 @@ def find(given: Problem) -> Bound | None:
     """The better of the bound from the ranges alone and the one that knows the sums too."""
     least, most = given.limits.least.tolist(), given.limits.most.tolist()
     if not is_trace(given.trial):
-        return bound_on_determinant(given, NAME, product(best_for_product(least, most, given.trial.n)), {})
+        return bound_on_determinant(given, NAME, product(best_for_product(least, most, given.n)), {})
     diagonal, sums = exact_diagonal(given.trial), Sums.of(given)
-    candidates = [_prices_of_ranges(diagonal, least, most, given.trial.n, sums)]
+    candidates = [_prices_of_ranges(diagonal, least, most, given.n, sums)]
     if sums.types:
         candidates.extend(_prices_with_sums(given, diagonal, sums))
     variance, (price, pi) = max((_least_variance(given, diagonal, sums, p), p) for p in candidates)
@@ -72,7 +73,7 @@ def _prices_with_sums(given: Problem, diagonal: tuple[Fraction, ...], sums: Sums
     if sum(len(r) for r in ranges) > MOST_COLUMNS:
         return []
     program = Program()
-    program.equal("plots", given.trial.n)
+    program.equal("plots", given.n)
     sums.add_rows(program)
     for i, r in enumerate(ranges):
         program.equal(("treatment", i), 1)
@@ -81,13 +82,16 @@ def _prices_with_sums(given: Problem, diagonal: tuple[Fraction, ...], sums: Sums
     prices = program.prices()
     if prices is None:
         return []
-    return [(near(-prices["plots"]), [near(pi) for pi in sums.values(prices)])]
+    price = near(-prices["plots"])
+    if not given.rules.exact:
+        price = max(price, Fraction(0))
+    return [(price, [near(pi) for pi in sums.values(prices)])]
 
 
 def _least_variance(given: Problem, diagonal: tuple[Fraction, ...], sums: Sums, prices: Prices) -> Fraction:
     """The Lagrangian at the prices, exactly."""
     price, pi = prices
-    total = -price * given.trial.n - sums.constant(pi)
+    total = -price * given.n - sums.constant(pi)
     for i, w in enumerate(diagonal):
         each = price + sums.each(sums.memberships[i].tolist(), pi)
         low, high = max(1, int(given.limits.least[i])), int(given.limits.most[i])

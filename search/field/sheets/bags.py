@@ -27,17 +27,20 @@ def bag_pages(packet: CrewPacket, title: str = "Bag list") -> list[Page]:
 
 
 def _head(packet: CrewPacket, title: str, room: float) -> Piece:
-    bags = len(packet.plots) + packet.spare_bags * len(packet.treatments)
+    bags = sum(entry.to_sow + packet.spare_bags for entry in packet.treatments)
     spare = (
         f", {counted(packet.spare_bags, 'spare bag')} of each treatment among them"
         if packet.spare_bags
         else ""
     )
     told = f"{counted(bags, 'bag')}{spare}. One bag a plot; tick when weighed, and when the bags are counted."
+    already = f"{counted(packet.in_soil, 'plot')} planted already: no bag for those."
 
     def draw(sheet: Sheet, top: float) -> None:
         sheet.text(sheet.left, top + 15, title, 17, bold=True)
         sheet.text(sheet.left, top + 31, told, 9, ink=QUIET)
+        if packet.in_soil:
+            sheet.text(sheet.left, top + 42, already, 9, ink=QUIET)
         for x, name in ((CODE, "Code"), (NAME, "Treatment")):
             sheet.text(sheet.left + x, top + 52, name, 8.5, bold=True, ink=QUIET)
         for x, name in _columns(packet, "Bags", "Spare", "In a bag", "To weigh out"):
@@ -69,7 +72,7 @@ def _row(entry: TreatmentEntry, packet: CrewPacket, room: float) -> Piece:
         words = paragraph(entry.caution, left, room - NAME - TOTAL, size=9, leading=12, ink=WARNING, after=1)
         parts.append(words)
     text = below(*parts, space(5))
-    cells = (str(entry.plots + packet.spare_bags), str(packet.spare_bags), entry.per_plot, entry.total)
+    cells = (str(entry.to_sow + packet.spare_bags), str(packet.spare_bags), entry.per_plot, entry.total)
 
     def draw(sheet: Sheet, top: float) -> None:
         base = top + 14.5

@@ -20,7 +20,8 @@ def key_pages(packet: CrewPacket) -> list[Page]:
     order = sorted(range(len(packet.treatments)), key=lambda i: packet.treatments[i].code)
     plots: list[list[str]] = [[] for _ in order]
     for planted in packet.plots:
-        plots[planted.treatment].append(str(planted.place.plot))
+        if planted.treatment is not None:
+            plots[planted.treatment].append(str(planted.place.plot))
     rows = [_row(packet.treatments[i], ", ".join(plots[i]), room) for i in order]
     return pages_of([_seal(room), *rows], size, _head(packet, len(order)))
 

@@ -34,6 +34,7 @@ class Label:
     where : block, line and place
     turn : its place in the planting order
     coded : text of the QR code
+    in_soil : whether the plot is planted already
     """
 
     head: str
@@ -41,10 +42,14 @@ class Label:
     where: str
     turn: str
     coded: str
+    in_soil: bool = False
 
 
 def label_pages(packet: CrewPacket) -> list[Page]:
-    """The labels of a packet: one for each plot in planting order, then those of spare bags."""
+    """The labels of a packet: one for each plot in planting order, then those of spare bags.
+
+    Filler has none. What is planted already has one for its stake, which asks for no seed.
+    """
     labels = list(_labels(packet))
     if packet.labels == "single":
         return [Page(SINGLE, partial(_label, packet, label, (0.0, 0.0), SINGLE)) for label in labels]
@@ -58,16 +63,22 @@ def label_pages(packet: CrewPacket) -> list[Page]:
 
 def _labels(packet: CrewPacket) -> Iterator[Label]:
     stood = {planted.place.plot: planted for planted in packet.plots}
-    stops = [(walked, stop.place.plot) for walked in packet.passes for stop in walked.stops]
+    stops = [
+        (walked, stop.place.plot)
+        for walked in packet.passes
+        for stop in walked.stops
+        if stood[stop.place.plot].treatment is not None
+    ]
     for turn, (walked, plot) in enumerate(stops, start=1):
         planted = stood[plot]
         place = planted.place
         yield Label(
             head=str(plot),
-            entry=packet.treatments[planted.treatment],
+            entry=packet.held(planted),
             where=f"{isolated(packet.blocks[place.block].name)}, line {place.line}, place {place.place}",
             turn=f"{turn} of {len(stops)}" + (f", pass {walked.number}" if packet.ground else ""),
             coded=f"{packet.mark} {plot}",
+            in_soil=planted.in_soil,
         )
     for entry in packet.treatments:
         for bag in range(1, packet.spare_bags + 1):
@@ -109,6 +120,7 @@ def _label(
     for number, line in enumerate(told):
         sheet.text(x, base + (10.5 + 9.5 * number) * grown, line, 8.5 * grown)
     amount = f"{entry.per_plot}   " if entry.per_plot else ""
+    amount = "no seed: planted already   " if label.in_soil else amount
     below = len(told) > 1 or width(amount, 8 * grown, True) + width(label.where, 8 * grown) > beside
     base = top + (65 if below else 58) * grown
     wide = sheet.text(x, base, cut(amount, 8 * grown, room), 8 * grown, bold=True)

@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 
-from search.field.crew import BlockEntry, CrewPacket, TreatmentEntry
+from search.field.crew import FILLER, BlockEntry, CrewPacket, TreatmentEntry
 from search.field.sheets.flow import Piece, below, paragraph, space
 from search.field.sheets.lettering import cut, named
 from search.field.sheets.palette import HAIR, INK, QUIET, WHITE, Colour
@@ -42,7 +42,36 @@ def legend_of(packet: CrewPacket, room: float, tints: Sequence[Colour] = ()) -> 
     else:
         told = "Codes and their treatments stand in full on the pages Treatments."
         parts.append(paragraph(told, MARGIN, room, size=9, ink=QUIET))
+    if packet.filler or packet.in_soil:
+        parts += [space(4), _grid(list(_marks(packet)), room)]
     return below(*parts)
+
+
+def _marks(packet: CrewPacket) -> Iterator[Entry]:
+    """What else a plot of the map may show."""
+    if packet.filler:
+        yield _mark(f"{counted(packet.filler, 'plot')} of filler, no treatment", _crossed)
+    if packet.in_soil:
+        yield _mark(f"{counted(packet.in_soil, 'plot')} planted already", _framed)
+
+
+def _mark(told: str, sign: Callable[[Sheet, float, float], None]) -> Entry:
+    def draw(sheet: Sheet, x: float, y: float, room: float) -> None:
+        sheet.box(x, y - 9, 24, 12, fill=WHITE, stroke=QUIET, weight=0.4)
+        sign(sheet, x, y - 9)
+        sheet.text(x + 32, y, cut(told, 9.5, room - 32), 9.5)
+
+    return draw
+
+
+def _crossed(sheet: Sheet, x: float, y: float) -> None:
+    sheet.line(x, y, x + 24, y + 12, ink=HAIR)
+    sheet.line(x, y + 12, x + 24, y, ink=HAIR)
+    sheet.text(x + 12, y + 9, FILLER.code, 9, bold=True, align=0.5)
+
+
+def _framed(sheet: Sheet, x: float, y: float) -> None:
+    sheet.box(x + 2, y + 2, 20, 8, stroke=INK, weight=0.9)
 
 
 def _rule(room: float) -> Piece:
@@ -71,9 +100,7 @@ def _block(block: BlockEntry, tint: Colour) -> Entry:
     def draw(sheet: Sheet, x: float, y: float, room: float) -> None:
         sheet.box(x, y - 9, 24, 12, fill=tint, stroke=INK, weight=1)
         sheet.text(x + 12, y, block.letter, 9, align=0.5)
-        told = ", ".join(
-            filter(None, (isolated(block.name), counted(block.plots, "plot"), isolated(block.replicate)))
-        )
+        told = ", ".join(filter(None, (isolated(block.name), block.size, isolated(block.replicate))))
         sheet.text(x + 32, y, cut(told, 9.5, room - 32), 9.5)
 
     return draw

@@ -6,7 +6,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from functools import partial
 
-from search.field.crew import CrewPacket
+from search.field.crew import FILLER, CrewPacket
 from search.field.sheets.lettering import width
 from search.field.sheets.sheet import Sheet
 
@@ -49,10 +49,10 @@ class Form:
 def forms_for(packet: CrewPacket) -> tuple[Form, ...]:
     """The forms of cell for a packet, the most readable first."""
     number = max(width(str(planted.place.plot), NUMBER) for planted in packet.plots)
-    code = max(width(treatment.code, CODE, True) for treatment in packet.treatments)
+    shown = [*packet.treatments, *([FILLER] if packet.filler else [])]
+    code = max(width(treatment.code, CODE, True) for treatment in shown)
     signed = max(
-        width(treatment.code, CODE, True) + (SIGN if treatment.caution else 0)
-        for treatment in packet.treatments
+        width(treatment.code, CODE, True) + (SIGN if treatment.caution else 0) for treatment in shown
     )
     sign = SIGN if any(treatment.caution for treatment in packet.treatments) else 0
     letter = max(width(block.letter, BLOCK) for block in packet.blocks) + sign

@@ -11,7 +11,7 @@ from search.field.sheets.legend import legend_of
 from search.field.sheets.lettering import width, wrapped
 from search.field.sheets.mapcells import BLOCK, Cell, Form, forms_for
 from search.field.sheets.mapheading import HEAD, heading
-from search.field.sheets.palette import ACCENT, INK, QUIET, WHITE, Colour
+from search.field.sheets.palette import ACCENT, HAIR, INK, QUIET, WHITE, Colour
 from search.field.sheets.sheet import FOOT, MARGIN, PAPERS, Page, Sheet
 from search.field.sheets.steps import Steps, steps_of
 from search.field.sheets.tiling import Tile, Tiling, tiled
@@ -23,6 +23,8 @@ SIDE = 40
 NAMES = 118
 """Width at the left for names of blocks where each block is a line."""
 OUTLINE = 1.7
+FRAME = 0.9
+"""Line of the frame within a plot that is planted already."""
 Position = tuple[int, int]
 
 
@@ -132,10 +134,15 @@ def _plot(grid: _Grid, position: Position, sheet: Sheet) -> None:
         if grid.plan.packet.ground:
             sheet.dot(x + grid.wide / 2, y + grid.high / 2, 1.6, QUIET)
         return
-    tint = grid.plan.tints[planted.place.block]
+    packet, filler = grid.plan.packet, planted.treatment is None
+    tint = WHITE if filler else grid.plan.tints[planted.place.block]
     sheet.box(x, y, grid.wide, grid.high, fill=tint, stroke=QUIET, weight=0.4)
-    packet = grid.plan.packet
-    treatment = packet.treatments[planted.treatment]
+    if filler:
+        sheet.line(x, y, x + grid.wide, y + grid.high, ink=HAIR)
+        sheet.line(x, y + grid.high, x + grid.wide, y, ink=HAIR)
+    if planted.in_soil:
+        sheet.box(x + 2, y + 2, grid.wide - 4, grid.high - 4, stroke=INK, weight=FRAME)
+    treatment = packet.held(planted)
     cell = Cell(
         plot=str(planted.place.plot),
         code=treatment.code,

@@ -65,8 +65,10 @@ def _pass(packet: CrewPacket, walked: Pass, room: float) -> Iterator[Piece]:
     title = f"Pass {walked.number}" if packet.ground else isolated(packet.blocks[walked.line - 1].name)
     yield replace(_pass_head(title, walked, room), clings=True)
     again = _pass_head(f"{title}, continued", walked, room)
+    filler = {planted.place.plot for planted in packet.plots if planted.treatment is None}
     for number, stop in enumerate(walked.stops):
-        row = _plot(stop, packet.blocks[stop.place.block].name, number % 2 == 1, room)
+        block = packet.blocks[stop.place.block].name
+        row = _plot(stop, block, number % 2 == 1, stop.place.plot in filler, room)
         yield replace(row, context=again)
     yield space(8)
 
@@ -81,7 +83,7 @@ def _pass_head(title: str, walked: Pass, room: float) -> Piece:
     return Piece(18, draw)
 
 
-def _plot(stop: Stop, block: str, shaded: bool, room: float) -> Piece:
+def _plot(stop: Stop, block: str, shaded: bool, filler: bool, room: float) -> Piece:
     edges = _edges(room)
     name = cut(block, 8.5, FIRST - BLOCK - 6)
 
@@ -90,7 +92,9 @@ def _plot(stop: Stop, block: str, shaded: bool, room: float) -> Piece:
             sheet.box(sheet.left, top, room, ROW, fill=PANEL)
         sheet.text(sheet.left + PLOT, top + 12.5, str(stop.place.plot), 11, bold=True)
         sheet.text(sheet.left + BLOCK, top + 12.5, name, 8.5)
-        for x in edges:
+        if filler:
+            sheet.text(edges[0] + 5, top + 12.5, "filler: nothing to score", 8.5, ink=QUIET)
+        for x in edges[-1:] if filler else edges:
             sheet.line(x, top, x, top + ROW, ink=HAIR)
         sheet.line(sheet.left, top + ROW, sheet.right, top + ROW)
 

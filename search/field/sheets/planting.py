@@ -5,13 +5,14 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import replace
 
-from search.field.crew import CrewPacket, TreatmentEntry
+from search.field.crew import FILLER_TOLD, IN_SOIL_TOLD, CrewPacket, TreatmentEntry
+from search.field.randomise import Planted
 from search.field.sheets.flow import Piece, below, pages_of, paragraph, space
 from search.field.sheets.lettering import cut, named, width
 from search.field.sheets.palette import ACCENT, INK, PANEL, QUIET, WARNING
 from search.field.sheets.scripts import isolated
 from search.field.sheets.sheet import MARGIN, PAPERS, Page, Sheet
-from search.field.walk import Pass, Stop
+from search.field.walk import Pass
 from search.field.wording import counted
 
 TICK, PLOT, BLOCK, CODE, NAME = 0.0, 26.0, 76.0, 158.0, 204.0
@@ -54,13 +55,13 @@ def _pass(packet: CrewPacket, walked: Pass, room: float) -> Iterator[Piece]:
     title = f"Pass {walked.number}" if packet.ground else isolated(packet.blocks[walked.line - 1].name)
     yield replace(_pass_head(title, walked, room), clings=True)
     again = _pass_head(f"{title}, continued", walked, room)
-    stood = {planted.place.plot: planted.treatment for planted in packet.plots}
+    stood = {planted.place.plot: planted for planted in packet.plots}
     for stop in walked.stops:
         if stop.skipped:
             yield replace(_skipped(stop.skipped), clings=True, context=again)
-        entry = packet.treatments[stood[stop.place.plot]]
+        planted = stood[stop.place.plot]
         block = packet.blocks[stop.place.block].name
-        yield replace(_plot(stop, entry, block, room), context=again)
+        yield replace(_plot(planted, packet.held(planted), block, room), context=again)
     yield space(12)
 
 
@@ -89,12 +90,14 @@ def _skipped(places: int) -> Piece:
     return Piece(16, draw)
 
 
-def _plot(stop: Stop, entry: TreatmentEntry, block: str, room: float) -> Piece:
+def _plot(planted: Planted, entry: TreatmentEntry, block: str, room: float) -> Piece:
     left, wide = MARGIN + NAME, room - NAME - REMARKS
     parts = [space(4.5)]
     if entry.name:
         name = named(entry.name, entry.number) + (", control" if entry.control else "")
         parts.append(paragraph(name, left, wide, size=10.5, leading=13, most=2))
+    if told := FILLER_TOLD if planted.treatment is None else IN_SOIL_TOLD if planted.in_soil else "":
+        parts.append(paragraph(told, left, wide, size=9, leading=12, ink=QUIET, most=2))
     if entry.caution:
         words = paragraph(entry.caution, left, wide, size=8.5, leading=11, ink=WARNING, most=3, after=1.5)
         parts.append(words)
@@ -104,8 +107,11 @@ def _plot(stop: Stop, entry: TreatmentEntry, block: str, room: float) -> Piece:
 
     def draw(sheet: Sheet, top: float) -> None:
         base = top + 15
-        sheet.box(sheet.left + TICK + 3, top + 5, 11.5, 11.5, stroke=INK, weight=1)
-        sheet.text(sheet.left + PLOT, base, str(stop.place.plot), 12.5, bold=True)
+        if planted.in_soil:  # nothing to tick: nothing is sown
+            sheet.line(sheet.left + TICK + 4, top + 11, sheet.left + TICK + 13, top + 11, weight=1, ink=INK)
+        else:
+            sheet.box(sheet.left + TICK + 3, top + 5, 11.5, 11.5, stroke=INK, weight=1)
+        sheet.text(sheet.left + PLOT, base, str(planted.place.plot), 12.5, bold=True)
         sheet.text(sheet.left + CODE, base, entry.code, 11, bold=True)
         if entry.caution:
             sheet.caution_sign(left - 15, base, 10.5)

@@ -38,3 +38,6 @@ KINDS: dict[str, ModuleType] = {
     "second moment against controls": control_meets,
 }
 """What a certificate's "kind" may say."""
+
+OF_ANY_FILLING = frozenset({"first order", "replication", "trace root"})
+"""Kinds that hold however many plots stay filler; the others count with blocks that are planted in full."""

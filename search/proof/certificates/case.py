@@ -5,9 +5,13 @@ from __future__ import annotations
 from dataclasses import dataclass
 from fractions import Fraction
 
-from search.trial.limits import Limits
+import numpy as np
+
+from search.proof.records import Refuted
+from search.trial.limits import Limits, limits
 from search.trial.records import AimKind, Trial
-from search.trial.tables import Tables
+from search.trial.settled import settled
+from search.trial.tables import Tables, tables
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -50,18 +54,43 @@ class Case:
         return bool((self.rules.high <= 1).all())
 
     @property
+    def n(self) -> int:
+        """The most plots that any plan has."""
+        return self.implied.planted[1]
+
+    @property
     def rank(self) -> int:
         """Number of non-zero eigenvalues of C in a connected plan."""
         return self.trial.t - 1
 
 
-def greatest_trace(rules: Tables) -> Fraction:
+def case_of(trial: Trial) -> Case:
+    """What is to be proved of a trial, its blocks exact where counting settles what is planted in them.
+
+    Raises
+    ------
+    Impossible : counts that cannot all hold
+    """
+    trial, implied = settled(trial, limits(trial))
+    return Case(trial, tables(trial), implied)
+
+
+def greatest_trace(rules: Tables, planted: int | None = None) -> Fraction:
     """A number that tr C = n − Σ_B Σ_i n_iB²/k_B does not pass; attained where nothing stands twice.
 
-    In each block Σ_i n_iB² is least where plots go one by one to the treatment that has fewest there.
+    In each block Σ_i n_iB² is least where plots go one by one to the treatment that has fewest there. A block
+    that may stay partly empty counts as full, for a plot more adds to C; and each block takes at least one.
+
+    Parameters
+    ----------
+    rules : tables of the trial
+    planted : no plan has more plots; what sizes and stated ranges allow where left out
     """
-    trace = Fraction(rules.n)
-    for low, high, size in zip(rules.low.T, rules.high.T, rules.sizes, strict=True):
+    trace, full = Fraction(0), np.minimum(rules.sizes, rules.high.sum(axis=0))
+    for low, high, size in zip(rules.low.T, rules.high.T, full, strict=True):
+        if not size:
+            raise Refuted("the rules leave a block that no treatment may enter")
+        trace += int(size)
         squares, left, level = int((low**2).sum()), int(size - low.sum()), 0
         while left > 0:
             steps = int(((low <= level) & (level < high)).sum())
@@ -70,4 +99,4 @@ def greatest_trace(rules: Tables) -> Fraction:
             taken = min(left, steps)
             squares, left, level = squares + taken * (2 * level + 1), left - taken, level + 1
         trace -= Fraction(squares, int(size))
-    return trace
+    return min(trace, Fraction((rules.n if planted is None else planted) - rules.b))

@@ -15,4 +15,4 @@ AIMS = (AimKind.ALL_PAIRS, AimKind.OVERALL)
 def derive(case: Case, multipliers: Part) -> Claim:
     """Σ 1/x ≥ (t−1)²/tr C and Π x ≤ (tr C/(t−1))^(t−1)."""
     known(multipliers, ())
-    return claim_of_spectrum(case, even_spectrum(case.rank, greatest_trace(case.rules)))
+    return claim_of_spectrum(case, even_spectrum(case.rank, greatest_trace(case.rules, case.n)))

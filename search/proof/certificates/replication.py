@@ -20,16 +20,19 @@ AIMS = (AimKind.ALL_PAIRS, AimKind.OVERALL, AimKind.AGAINST_CONTROL, AimKind.CON
 def derive(case: Case, multipliers: Part) -> Claim:
     """C ≼ R − rr'/n, so tr(WC⁺) ≥ Σ W_ii/r_i, and the product of eigenvalues is at most Π r_i · t/n.
 
-    The least of Σ W_ii/r_i under Σ r_i = n is not below Σ_i min_r (W_ii/r + μ r) − μ n for any price μ.
+    The least of Σ W_ii/r_i under Σ r_i = n is not below Σ_i min_r (W_ii/r + μ r) − μ n for any price μ; under
+    Σ r_i ≤ n, where plots may stay filler, for any μ that is not below 0. Π r_i/Σ r_i rises with each r_i.
     """
     if case.aim is AimKind.OVERALL:
         known(multipliers, ())
-        product = greatest_product(case.least, case.most, case.trial.n)
-        return claim_of_determinant(case, Fraction(product * case.trial.t, case.trial.n))
+        product = greatest_product(case.least, case.most, case.n)
+        return claim_of_determinant(case, Fraction(product * case.trial.t, case.n))
     known(multipliers, ("price", "sums"))
     price = multipliers.ratio("price")
+    if price < 0 and not case.rules.exact:
+        raise Refuted("a price below 0 proves nothing where plots may stay filler")
     each, total = sum_prices(multipliers, case)
-    least = -price * case.trial.n - total
+    least = -price * case.n - total
     for i, weight in enumerate(weights(case.trial)):
         least += _cheapest(weight, price + each[i], max(1, case.least[i]), case.most[i])
     return claim_of_variance(case, least)

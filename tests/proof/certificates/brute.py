@@ -14,9 +14,7 @@ from search.proof.certificates.case import Case
 from search.proof.certificates.claims import Claim, LeastSum
 from search.proof.parts import Part
 from search.proof.records import Refuted
-from search.trial.limits import limits
 from search.trial.records import AimKind, Trial
-from search.trial.tables import tables
 from tests.drawn import all_plans
 from tests.proof.plans import information, replications, squared_meetings, weight_matrix
 
@@ -49,11 +47,6 @@ def best_score(trial: Trial, most: int = 1500) -> float | None:
     W = weight_matrix(trial)
     best = min(float(np.sum(W.diagonal() / np.array(r))) for r in references)
     return best / float(np.min(np.sum(inverse * W, axis=(1, 2))))
-
-
-def case_of(trial: Trial) -> Case:
-    """The trial with its rules and what they imply."""
-    return Case(trial, tables(trial), limits(trial))
 
 
 def derived(kind: str, case: Case, multipliers: dict[str, Any]) -> Any:

@@ -15,6 +15,7 @@ import pytest
 
 from search.efficiency.bounds.problem import problem
 from search.efficiency.bounds.spectral import local
+from search.proof.certificates.case import case_of
 from search.proof.certificates.claims import exponential_above
 from search.proof.certificates.local_spectral import _side, derive
 from search.proof.certificates.spectral.cycles import _determinant, _graphs, _inverses
@@ -26,7 +27,7 @@ from search.trial.records import Contents, Trial
 from search.trial.tables import incidence
 from tests.efficiency.plans import ALL_PAIRS, FANO, OVERALL, equal_trial, square_lattice, trial_of
 from tests.equal_plans import SETS, SHAPES, eigenvalues, excess, random_plan, random_sets
-from tests.proof.certificates.brute import case_of, efficiency_of
+from tests.proof.certificates.brute import efficiency_of
 from tests.proof.test_fuzz import mutated
 
 MEETING = [(5, 10, 2), (6, 10, 3), (7, 14, 3), (6, 18, 2), (8, 10, 4), (9, 15, 3)]

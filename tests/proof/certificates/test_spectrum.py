@@ -8,12 +8,11 @@ from math import prod
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from search.proof.certificates.case import greatest_trace
+from search.proof.certificates.case import case_of, greatest_trace
 from search.proof.certificates.spectrum import extreme_spectrum, second_moment_spectrum
 from search.trial.reading import trial_from_document
 from search.trial.tables import tables
 from tests.drawn import tiny_trial
-from tests.proof.certificates.brute import case_of
 
 values = st.fractions(min_value=Fraction(1, 20), max_value=1, max_denominator=20)
 

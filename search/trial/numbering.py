@@ -6,7 +6,7 @@ from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 from search.foundation.errors import BadInput
-from search.trial.records import Ground, Trial
+from search.trial.records import Block, Ground, Trial
 
 NO_PLOT = "."
 MOST_PLACES = 999
@@ -44,12 +44,22 @@ def places(trial: Trial) -> tuple[Place, ...]:
     """
     if trial.wanted is not None:
         raise BadInput("the blocks of this trial are not cut from its map yet: plan the trial first")
-    if trial.ground is None:
-        found = _blocks_as_lines(trial)
-    elif trial.ground.spots:
-        found = _listed(trial.ground)
+    return places_on(trial.ground, trial.blocks)
+
+
+def places_on(ground: Ground | None, blocks: Sequence[Block]) -> tuple[Place, ...]:
+    """The same for a ground and its blocks.
+
+    Raises
+    ------
+    BadInput : a line has more places than three digits can number
+    """
+    if ground is None:
+        found = _blocks_as_lines(blocks)
+    elif ground.spots:
+        found = _listed(ground)
     else:
-        found = _drawn(trial.ground)
+        found = _drawn(ground)
     return tuple(sorted(found, key=lambda place: place.plot))
 
 
@@ -91,9 +101,9 @@ def _from_left(ground: Ground, line: int) -> bool:
     return ground.numbering.start.endswith("left") != turned
 
 
-def _blocks_as_lines(trial: Trial) -> Iterator[Place]:
-    step = _step(max(block.plots for block in trial.blocks))
-    for number, block in enumerate(trial.blocks):
+def _blocks_as_lines(blocks: Sequence[Block]) -> Iterator[Place]:
+    step = _step(max(block.plots for block in blocks))
+    for number, block in enumerate(blocks):
         for column in range(block.plots):
             line, place = number + 1, column + 1
             yield Place(line * step + place, number, line, place, number, column)

@@ -4,8 +4,8 @@ from __future__ import annotations
 
 import pytest
 
-from search.field.numbering import Place, places
 from search.foundation.errors import BadInput
+from search.trial.numbering import Place, places
 from search.trial.reading import trial_from_document
 from search.trial.records import Trial
 from tests.drawn import tiny_trial
