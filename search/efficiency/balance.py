@@ -69,20 +69,22 @@ def is_balanced(trial: Trial, contents: Contents) -> bool:
     lost = sum((Fraction(q, k) for q, k in zip(squares, sizes, strict=True)), Fraction())
     if sum(sizes) - lost != greatest_trace(tables(settled_trial(trial))):
         return False
-    weighted = _scaled_concurrences(counts)
+    if len(set(_scaled_concurrences(counts, 1)[0, 1:].tolist())) > 1:
+        return False  # one row tells it of nearly all plans
+    weighted = _scaled_concurrences(counts, trial.t)
     off_diagonal = weighted[np.triu_indices(trial.t, 1)]
     return bool(off_diagonal[0] > 0 and (off_diagonal == off_diagonal[0]).all())
 
 
-def _scaled_concurrences(counts: Ints) -> Ints:
-    """`N K⁻¹ N'` times the least common multiple of the block sizes, in whole numbers."""
+def _scaled_concurrences(counts: Ints, rows: int) -> Ints:
+    """The first rows of `N K⁻¹ N'` times the least common multiple of the block sizes, in whole numbers."""
     sizes = counts.sum(axis=0).tolist()
     scale = lcm(*sizes)
     exact_in_64_bits = scale * sum(sizes) ** 2 < 2**62
     kind = np.int64 if exact_in_64_bits else object
     shares = np.array([scale // k for k in sizes], dtype=kind)
     wide = counts.astype(kind)
-    return np.asarray((wide * shares) @ wide.T)
+    return np.asarray((wide[:rows] * shares) @ wide.T)
 
 
 def concurrences(contents: Contents, t: int) -> Ints:
@@ -98,7 +100,10 @@ def squared_meetings(contents: Contents, t: int) -> int:
     A plot of i and a plot of j in one block are one meeting, so a block that holds i twice and j once
     gives two; two plots of one treatment do not meet.
     """
-    return int((np.triu(concurrences(contents, t), 1) ** 2).sum())
+    counts = incidence(contents, t).astype(np.float64)  # whole numbers, multiplied fast
+    meets = counts.T @ counts if len(contents) < t else counts @ counts.T  # equal sums of squares
+    own = (counts**2).sum(axis=1)
+    return (int((meets**2).sum()) - int((own**2).sum())) // 2
 
 
 def near_balance(trial: Trial, contents: Contents) -> NearBalance:
@@ -128,11 +133,12 @@ def least_concurrence_squares(rules: Tables) -> int | None:
     overall = least_square_sum(low[pairs], high[pairs], total)
     if overall is None or len(set(rules.sizes.tolist())) > 1 or (rules.least < rules.most).any():
         return overall
-    twice = 0
-    for i, r in enumerate(rules.least.tolist()):
+    twice, alike = 0, not rules.limits_meetings and not rules.apart.any()
+    alike &= len(set(rules.least.tolist())) == 1
+    for i, r in enumerate(rules.least.tolist()[: 1 if alike else None]):
         others = np.arange(rules.t) != i
         row = least_square_sum(low[i, others], high[i, others], r * (int(rules.sizes[0]) - 1))
         if row is None:
             return None
-        twice += row
+        twice += row * (rules.t if alike else 1)
     return max(overall, -(-twice // 2))

@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 
 from search.efficiency.aims import exact_diagonal, is_trace, weights
 from search.efficiency.balance import is_balanced, near_balance, squared_meetings
+from search.efficiency.by_blocks import inverse_and_log
 from search.efficiency.one_thread import one_thread
 from search.efficiency.records import Score
 from search.efficiency.reference import (
@@ -31,6 +32,11 @@ from search.trial.records import AimKind, Contents, Trial
 from search.trial.tables import incidence
 
 Matrix = NDArray[np.float64]
+
+LARGE = 500
+"""Treatments from which on a plan is scored by way of its blocks, if these are fewer."""
+ROWS = 256
+"""Rows of large tables that are looked at together."""
 
 
 def information_matrix(contents: Contents, t: int) -> Matrix:
@@ -128,8 +134,7 @@ def score(trial: Trial, contents: Contents) -> Score:
     t = trial.t
     parts = components(contents, t)
     counts = incidence(contents, t)
-    present = (counts > 0).astype(np.int64)
-    meetings = (present @ present.T)[np.triu_indices(t, 1)]
+    least_meetings, most_meetings = _range_of_meetings(counts)
     replication_alone = _efficiency_without_blocks(trial, counts.sum(axis=1).tolist())
     reached = _reached(trial, contents) if parts == 1 else _Reached()
     blocks_alone = reached.aim / replication_alone if replication_alone else 0.0
@@ -145,11 +150,37 @@ def score(trial: Trial, contents: Contents) -> Score:
         loss_to_blocks_percent=100 * (1 - _at_most_one(blocks_alone)),
         residual_df=int(counts.sum()) - trial.b - t + parts,
         connected=parts == 1,
-        least_meetings=int(meetings.min()),
-        most_meetings=int(meetings.max()),
+        least_meetings=least_meetings,
+        most_meetings=most_meetings,
         near_balanced=near_balance(trial, contents),
         balanced=is_balanced(trial, contents),
     )
+
+
+def _range_of_meetings(counts: NDArray[np.int64]) -> tuple[int, int]:
+    """Fewest and most blocks that two treatments share."""
+    present = (counts > 0).astype(np.float64)  # whole numbers, multiplied fast
+    t, b = counts.shape
+    least, most = b, 0
+    with one_thread():
+        for first in range(0, t, ROWS):
+            met = present[first : first + ROWS] @ present.T
+            own = np.arange(len(met)), np.arange(first, first + len(met))
+            met[own] = 0
+            most = max(most, int(met.max()))
+            met[own] = b
+            least = min(least, int(met.min()))
+    return least, most
+
+
+def _mean_and_largest(inverse: Matrix) -> tuple[float, float]:
+    """Average and largest variance of a difference, row by row: the matrix may be large."""
+    own, total, largest = np.diag(inverse), 0.0, 0.0
+    for i in range(1, len(inverse)):
+        row = own[i] + own[:i] - 2 * inverse[i, :i]
+        total += float(row.sum())
+        largest = max(largest, float(row.max()))
+    return 2 * total / (len(inverse) * (len(inverse) - 1)), largest
 
 
 @dataclass(frozen=True, slots=True)
@@ -167,13 +198,15 @@ class _Reached:
 
 def _reached(trial: Trial, contents: Contents) -> _Reached:
     t = trial.t
-    information = information_matrix(contents, t)
-    inverse = pseudo_inverse(information)
-    variances = _differences(inverse)[np.triu_indices(t, 1)]
-    average, largest = float(variances.mean()), float(variances.max())
+    if t > max(LARGE, trial.b):
+        inverse, logarithm = inverse_and_log(incidence(contents, t))
+    else:
+        information = information_matrix(contents, t)
+        inverse, logarithm = pseudo_inverse(information), log_pseudo_determinant(information)
+    average, largest = _mean_and_largest(inverse)
     pairs = [Fraction(2, t)] * t
     best_average = mean_variance(pairs, reference_replication(trial, AimKind.ALL_PAIRS))
-    log_ratio = log_pseudo_determinant(information) - _log(reference_product(trial))
+    log_ratio = logarithm - _log(reference_product(trial))
 
     a = _at_most_one(float(best_average) / average)
     d = _at_most_one(exp(log_ratio / (t - 1)))

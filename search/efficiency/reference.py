@@ -120,7 +120,7 @@ def least_worst_pair(trial: Trial) -> Fraction:
     """
     least, most = _stated(trial)
     candidates = []
-    q = trial.n
+    q = (trial.n - 1) // (trial.t - 1)  # t − 1 treatments with q each, and one with a plot
     for p in range(1, trial.n // trial.t + 1):
         while q >= p and not _affordable(least, most, trial.n, p, q):
             q -= 1

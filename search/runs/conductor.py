@@ -125,7 +125,7 @@ def _searched(
     seed: int,
     workers: int,
 ) -> Outcome:
-    from search.solvers.rounds import search
+    from search.solvers.sides import search_smaller_side
 
     stop.restart()
     known = None if best is None else best.contents
@@ -133,7 +133,7 @@ def _searched(
     if known is not None and spare_of(rules, known) != spare:
         known = None  # it leaves other plots empty than the search can: the two are compared afterwards
     full = rules if rules.exact else with_filler(rules, spare)
-    outcome = search(
+    outcome = search_smaller_side(
         problem_of(trial, full, sum(spare)),
         filled(rules, first),
         kept=None if known is None else filled(rules, known),

@@ -148,7 +148,7 @@ def _fill(counts: Ints, blocks: Ints, wanted: Ints, tables: Tables, rng: np.rand
     rivals = [np.array(members) for members in cliques(tables.apart)]
     for j in blocks[np.lexsort((rng.random(len(blocks)), -tables.sizes[blocks]))]:
         remaining -= tables.high[:, j] - counts[:, j]
-        barred = (tables.apart & (counts[:, j] > 0)).any(axis=1)
+        barred = tables.apart[:, counts[:, j] > 0].any(axis=1)
         pressure = need / (remaining + 1.0)
         for members in rivals:  # they take turns: their needs add up, their blocks do not
             together = need[members].sum() / (remaining[members].max() + 1.0)

@@ -25,12 +25,12 @@ from search.trial.kinds import (
 from search.trial.nodes import Mapping, Node, Scalar, describe
 from search.trial.records import AimKind
 
-MOST_TREATMENTS = 2_000
+MOST_TREATMENTS = 5_000
 MOST_BLOCKS = 5_000
 MOST_PLOTS = 100_000
 MOST_APART = 20
 """Plots; who wants more apart wants them in other blocks."""
-MOST_CELLS = 2_000_000
+MOST_CELLS = 2_500_000
 """Treatments times blocks: tables of that size still fit into a small machine."""
 
 COUNT = Whole(1, MOST_PLOTS)

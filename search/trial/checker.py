@@ -7,7 +7,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from search.trial.records import Contents, Trial
-from search.trial.tables import incidence, tables
+from search.trial.tables import Bools, Tables, incidence, tables
 
 
 def broken_rules(trial: Trial, contents: Contents) -> tuple[str, ...]:
@@ -30,7 +30,6 @@ def _breaches(trial: Trial, contents: Contents) -> Iterator[str]:
     names = [treatment.name for treatment in trial.treatments]
     blocks = [block.name for block in trial.blocks]
     counts = incidence(contents, trial.t)
-    present = counts > 0
 
     held = counts.sum(axis=0)
     for j in np.flatnonzero((held < rules.fewest) | (held > rules.sizes)):
@@ -48,7 +47,18 @@ def _breaches(trial: Trial, contents: Contents) -> Iterator[str]:
     for i, j in zip(*np.nonzero(counts < rules.low), strict=True):
         yield f"{blocks[j]} holds {names[i]} {counts[i, j]} times, at least {rules.low[i, j]} required"
 
-    shared = present.astype(np.int64) @ present.T.astype(np.int64)
+    if rules.apart.any() or rules.limits_meetings:
+        yield from _breaches_of_meetings(rules, names, counts > 0)
+
+    for g, replicate in enumerate(trial.rules.replicates):
+        held = counts[:, list(replicate.blocks)].sum(axis=1)
+        for i in np.flatnonzero(held != rules.share[:, g]):
+            yield f"{names[i]} stands {held[i]} times in replicate {replicate.name}, not {rules.share[i, g]}"
+
+
+def _breaches_of_meetings(rules: Tables, names: list[str], present: Bools) -> Iterator[str]:
+    wide = present.astype(np.float64)  # whole numbers, multiplied fast
+    shared = (wide @ wide.T).astype(np.int64)
     for i, j in zip(*np.nonzero(np.triu(shared > rules.meet_most, 1)), strict=True):
         if rules.apart[i, j]:
             yield f"{names[i]} and {names[j]} share a block, which they never may"
@@ -58,11 +68,6 @@ def _breaches(trial: Trial, contents: Contents) -> Iterator[str]:
     for i, j in zip(*np.nonzero(np.triu(shared < rules.meet_least, 1)), strict=True):
         least = rules.meet_least[i, j]
         yield f"{names[i]} and {names[j]} share {shared[i, j]} blocks, at least {least} required"
-
-    for g, replicate in enumerate(trial.rules.replicates):
-        held = counts[:, list(replicate.blocks)].sum(axis=1)
-        for i in np.flatnonzero(held != rules.share[:, g]):
-            yield f"{names[i]} stands {held[i]} times in replicate {replicate.name}, not {rules.share[i, g]}"
 
 
 def _range(least: int, most: int) -> str:
