@@ -3,6 +3,10 @@
 The information matrix of the treatments is `C = R − N K⁻¹ N'` with N the incidence of treatments in
 blocks, R the replications and K the block sizes. It is the Laplacian of the graph with weights
 `Σ_B n_iB n_jB / k_B`, so the variance of a difference is a resistance distance.
+
+Where blocks are random with γ = block variance over plot variance, what the block totals tell is counted
+too: `C(γ) = R − N diag(γ/(1+γk)) N' − s s'/Σs` with `s_i = Σ_B n_iB/(1+γk_B)`. It lies between C (γ → ∞) and
+the information without blocks, and differences have a variance even where no chain of blocks joins them.
 """
 
 from __future__ import annotations
@@ -32,11 +36,26 @@ from search.trial.tables import incidence
 Matrix = NDArray[np.float64]
 
 
-def information_matrix(contents: Contents, t: int) -> Matrix:
-    """`C = R − N K⁻¹ N'`, shape (t, t), in units of one over the plot variance."""
+def information_matrix(contents: Contents, t: int, blocks_random: Fraction | None = None) -> Matrix:
+    """`C = R − N K⁻¹ N'`, or C(γ), shape (t, t), in units of one over the plot variance.
+
+    Parameters
+    ----------
+    contents : a plan
+    t : number of treatments
+    blocks_random : γ, block variance over plot variance; None where blocks are fixed
+    """
     counts = incidence(contents, t).astype(np.float64)
+    sizes = counts.sum(axis=0)
+    replication = np.diag(counts.sum(axis=1))
+    if blocks_random is None:
+        with one_thread():
+            return np.asarray(replication - (counts / sizes) @ counts.T)
+    ratio = float(blocks_random)
+    kept = counts @ (1 / (1 + ratio * sizes))
     with one_thread():
-        return np.asarray(np.diag(counts.sum(axis=1)) - (counts / counts.sum(axis=0)) @ counts.T)
+        within = replication - (counts * (ratio / (1 + ratio * sizes))) @ counts.T
+        return np.asarray(within - np.outer(kept, kept) / kept.sum())
 
 
 def components(contents: Contents, t: int) -> int:
@@ -62,16 +81,23 @@ def pseudo_inverse(information: Matrix) -> Matrix:
         return np.asarray(np.linalg.inv(information + level) - level)
 
 
-def pair_variances(contents: Contents, t: int) -> Matrix | None:
-    """Variance of each estimated difference, in units of the plot variance; None if disconnected.
+def is_estimable(contents: Contents, t: int, blocks_random: Fraction | None = None) -> bool:
+    """Whether all differences can be estimated: the plan is connected, or blocks are random."""
+    if blocks_random is None:
+        return components(contents, t) == 1
+    return len({i for block in contents for i in block}) == t
+
+
+def pair_variances(contents: Contents, t: int, blocks_random: Fraction | None = None) -> Matrix | None:
+    """Variance of each estimated difference, in units of the plot variance; None where one has none.
 
     Returns
     -------
     variances : (t, t), `v_ij = C⁺_ii + C⁺_jj − 2 C⁺_ij`
     """
-    if components(contents, t) > 1:
+    if not is_estimable(contents, t, blocks_random):
         return None
-    return _differences(pseudo_inverse(information_matrix(contents, t)))
+    return _differences(pseudo_inverse(information_matrix(contents, t, blocks_random)))
 
 
 def _differences(inverse: Matrix) -> Matrix:
@@ -92,9 +118,9 @@ def objective(contents: Contents, trial: Trial) -> float:
     -------
     value : the aim's mean variance `tr(W C⁺)`; for overall `−log pdet(C) / (t − 1)`
     """
-    if components(contents, trial.t) > 1:
+    if not is_estimable(contents, trial.t, trial.blocks_random):
         return float("inf")
-    information = information_matrix(contents, trial.t)
+    information = information_matrix(contents, trial.t, trial.blocks_random)
     matrix = weights(trial)
     if matrix is None:
         return -log_pseudo_determinant(information) / (trial.t - 1)
@@ -118,7 +144,8 @@ def score(trial: Trial, contents: Contents) -> Score:
     present = (counts > 0).astype(np.int64)
     meetings = (present @ present.T)[np.triu_indices(t, 1)]
     replication_alone = _efficiency_without_blocks(trial, counts.sum(axis=1).tolist())
-    reached = _reached(trial, contents) if parts == 1 else _Reached()
+    estimable = is_estimable(contents, t, trial.blocks_random)
+    reached = _reached(trial, contents) if estimable else _Reached()
     blocks_alone = reached.aim / replication_alone if replication_alone else 0.0
     return Score(
         aim=reached.aim,
@@ -141,7 +168,7 @@ def score(trial: Trial, contents: Contents) -> Score:
 
 @dataclass(frozen=True, slots=True)
 class _Reached:
-    """What a plan reaches; the defaults are those of a disconnected one."""
+    """What a plan reaches; the defaults are those of one that leaves a difference open."""
 
     aim: float = 0.0
     A: float = 0.0
@@ -154,7 +181,7 @@ class _Reached:
 
 def _reached(trial: Trial, contents: Contents) -> _Reached:
     t = trial.t
-    information = information_matrix(contents, t)
+    information = information_matrix(contents, t, trial.blocks_random)
     inverse = pseudo_inverse(information)
     variances = _differences(inverse)[np.triu_indices(t, 1)]
     average, largest = float(variances.mean()), float(variances.max())

@@ -15,7 +15,7 @@ def standing_in_words(document: dict[str, Any], plots: int) -> tuple[str, ...]:
     plots : plots of the trial
     """
     score, gap, standing = document["score"], document["gap_percent"], document["standing"]
-    if not score["connected"]:
+    if score["average_pair_variance"] is None:
         return (
             "This plan falls into parts that share no block: treatments of one part cannot be "
             "compared with those of another.",

@@ -5,7 +5,7 @@ from __future__ import annotations
 from fractions import Fraction
 from typing import Any
 
-from search.proof.certificates import KINDS
+from search.proof.certificates import KINDS, KNOW_RANDOM_BLOCKS
 from search.proof.certificates.case import Case
 from search.proof.certificates.claims import Claim
 from search.proof.intervals import Interval
@@ -56,5 +56,7 @@ def _derived(certificate: Part, case: Case) -> Claim:
         raise Refuted(f"a certificate of a kind that this version cannot check: {quoted(word)}")
     if case.aim not in kind.AIMS:
         raise Refuted(f"a certificate of the kind {word} says nothing about the aim {case.aim.value}")
+    if case.trial.blocks_random is not None and word not in KNOW_RANDOM_BLOCKS:
+        raise Refuted(f"a certificate of the kind {word} says nothing where blocks are random")
     claim: Claim = kind.derive(case, certificate.part("multipliers"))
     return claim

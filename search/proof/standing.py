@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from fractions import Fraction
 
-from search.proof.certificates.case import Case, greatest_trace
+from search.proof.certificates.case import Case
 from search.proof.information import Information
 from search.proof.intervals import Interval
 from search.proof.parts import Part, quoted, told
@@ -59,12 +59,12 @@ def is_balanced(case: Case, plan: Information) -> bool:
     """Whether C is completely symmetric with the greatest trace, for an aim that treats pairs alike."""
     alike = case.aim in (AimKind.ALL_PAIRS, AimKind.OVERALL)
     trace = Fraction(plan.trace_scaled, plan.scale)
-    return alike and plan.completely_symmetric and trace == greatest_trace(case.rules)
+    return alike and plan.completely_symmetric and trace == case.greatest_trace
 
 
 def _standings(case: Case, plan: Information, real: Truth, bound: Fraction | None) -> tuple[str, ...]:
     """The words that hold; two only where an enclosure cannot tell a gap from one in a million."""
-    if not bound or not real.connected:
+    if not bound or real.average_pair_variance is None:
         return ("feasible",)
     if is_balanced(case, plan):
         return ("balanced",)

@@ -15,7 +15,7 @@ from search.trial.records import AimKind, Trial
 
 @dataclass(frozen=True, slots=True)
 class Truth:
-    """The score of a plan as it is; variances are None where the plan is disconnected."""
+    """The score of a plan as it is; variances are None where a difference cannot be estimated."""
 
     aim: Interval
     A: Interval
@@ -33,11 +33,12 @@ class Truth:
 def truth(trial: Trial, plan: Information) -> Truth:
     """The score of a plan whose counts obey the trial."""
     degrees = trial.n - trial.b - trial.t + plan.components
-    if plan.components > 1:
+    if not plan.estimable:
         nothing = Interval.exactly(0)
         lost = _replication_kept(trial, plan).less_than_one_by()
         all_ = Interval.exactly(1)
-        return Truth(nothing, nothing, nothing, nothing, None, None, lost, all_, degrees, False, True)
+        connected = plan.components == 1
+        return Truth(nothing, nothing, nothing, nothing, None, None, lost, all_, degrees, connected, True)
 
     found = variances(plan)
     average, largest = aims.average_pair_variance(found), aims.largest_pair_variance(found)
@@ -63,7 +64,7 @@ def truth(trial: Trial, plan: Information) -> Truth:
         loss_to_replication=_replication_kept(trial, plan).less_than_one_by(),
         loss_to_blocks=_blocks_kept(trial, plan, found).less_than_one_by(),
         residual_df=degrees,
-        connected=True,
+        connected=plan.components == 1,
         exact=found.exact,
     )
 

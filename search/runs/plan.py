@@ -54,7 +54,7 @@ class Plan:
     @property
     def standing(self) -> Standing:
         """Balanced, proven optimal, bounded or feasible."""
-        if self.bound is None or not self.score.connected:
+        if self.bound is None or self.score.average_pair_variance is None:
             return Standing.FEASIBLE
         if self.score.balanced and self.trial.aim.kind.treats_pairs_alike:
             return Standing.BALANCED

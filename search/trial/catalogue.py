@@ -217,7 +217,7 @@ TRIAL_KEYS: dict[str, Kind] = {
             "blind": Flag(),
         }
     ),
-    "blocks_random": NotYet("planning for the combined analysis"),
+    "blocks_random": Ratio(positive=True),
 }
 
 TRIAL = Fields(

@@ -75,7 +75,6 @@ def test_contrasts_are_exact() -> None:
 NOT_YET: dict[str, dict[str, Any]] = {
     "planted": {"rules": {"planted": {"101": "A"}}},
     "at_most": {"blocks": {"b": {"at_most": 3}}},
-    "blocks_random": {"blocks_random": 2},
     "even meetings": {"aim": "even meetings"},
     "worst pair": {"aim": "worst pair"},
 }

@@ -28,6 +28,7 @@ class Argument:
     applies : whether it holds for a trial at all
     find : its bound, or None where it has none to give
     seconds : what it takes in a large trial, about
+    knows_random_blocks : whether it also holds where what block totals tell is counted
     """
 
     name: str
@@ -35,6 +36,11 @@ class Argument:
     applies: Callable[[Trial], bool]
     find: Callable[[Problem], Bound | None]
     seconds: float = QUICK
+    knows_random_blocks: bool = False
+
+    def speaks_of(self, trial: Trial) -> bool:
+        """Whether it holds for a trial at all."""
+        return (trial.blocks_random is None or self.knows_random_blocks) and self.applies(trial)
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,7 +54,7 @@ class Tried:
 
 ARGUMENTS = (
     *(
-        Argument(module.NAME, module.SENTENCE, module.applies, module.find)
+        Argument(module.NAME, module.SENTENCE, module.applies, module.find, knows_random_blocks=True)
         for module in (first_order, replication, trace_root, pairs, meets)
     ),
     Argument(normalised.NAME, normalised.SENTENCE, normalised.applies, normalised.find, 1.0),
@@ -72,7 +78,7 @@ def tried(
     if given is None:
         return
     for argument in ARGUMENTS:
-        if argument.applies(trial) and (argument.seconds <= QUICK or has_time(argument.seconds)):
+        if argument.speaks_of(trial) and (argument.seconds <= QUICK or has_time(argument.seconds)):
             start = time.perf_counter()
             bound = argument.find(given)
             # an argument too weak to say anything may end above 1

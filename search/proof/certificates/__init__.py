@@ -28,3 +28,14 @@ KINDS: dict[str, ModuleType] = {
     "normalised moment": normalised,
 }
 """What a certificate's "kind" may say."""
+
+KNOW_RANDOM_BLOCKS = frozenset(
+    {
+        "first order",
+        "replication",
+        "trace root",
+        "second moment by pairs",
+        "second moment by block meets",
+    }
+)
+"""Kinds that also hold where blocks are random; all others speak of C, and C(γ) tells more than that."""

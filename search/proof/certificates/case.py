@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 from fractions import Fraction
 
@@ -50,17 +51,37 @@ class Case:
         return bool((self.rules.high <= 1).all())
 
     @property
+    def greatest_trace(self) -> Fraction:
+        """A number that the trace of the information matrix does not pass in any plan."""
+        ratio = self.trial.blocks_random
+        if ratio is None:
+            return greatest_trace(self.rules)
+        # tr C(γ) = n − Σ_B γ Σ_i n_iB²/(1+γk_B) − Σ_i s_i²/Σs, and Σ_i s_i² ≥ (Σs)²/t
+        trace = Fraction(self.rules.n)
+        for squares, size in zip(least_squares(self.rules), self.rules.sizes, strict=True):
+            k = int(size)
+            trace -= ratio * squares / (1 + ratio * k) + Fraction(k, self.trial.t) / (1 + ratio * k)
+        return trace
+
+    @property
     def rank(self) -> int:
         """Number of non-zero eigenvalues of C in a connected plan."""
         return self.trial.t - 1
 
 
 def greatest_trace(rules: Tables) -> Fraction:
-    """A number that tr C = n − Σ_B Σ_i n_iB²/k_B does not pass; attained where nothing stands twice.
-
-    In each block Σ_i n_iB² is least where plots go one by one to the treatment that has fewest there.
-    """
+    """A number that tr C = n − Σ_B Σ_i n_iB²/k_B does not pass; attained where nothing stands twice."""
     trace = Fraction(rules.n)
+    for squares, size in zip(least_squares(rules), rules.sizes, strict=True):
+        trace -= Fraction(squares, int(size))
+    return trace
+
+
+def least_squares(rules: Tables) -> Iterator[int]:
+    """For each block a number that Σ_i n_iB² is not below.
+
+    It is least where plots go one by one to the treatment that has fewest there.
+    """
     for low, high, size in zip(rules.low.T, rules.high.T, rules.sizes, strict=True):
         squares, left, level = int((low**2).sum()), int(size - low.sum()), 0
         while left > 0:
@@ -69,5 +90,4 @@ def greatest_trace(rules: Tables) -> Fraction:
                 break
             taken = min(left, steps)
             squares, left, level = squares + taken * (2 * level + 1), left - taken, level + 1
-        trace -= Fraction(squares, int(size))
-    return trace
+        yield squares
