@@ -42,7 +42,7 @@ def test_variances_are_those_of_generalised_least_squares(
     t, contents = plan
     covariance, planted = spread(contents, ratio)
     design = np.eye(t)[planted]
-    estimates = sm.GLS(np.zeros(len(planted)), design, sigma=covariance).normalized_cov_params
+    estimates = sm.GLS(np.zeros(len(planted)), design, sigma=covariance).fit().normalized_cov_params
     own = np.diag(estimates)
     expected = own[:, None] + own[None, :] - 2 * estimates
     found = pair_variances(contents, t, ratio)
