@@ -120,10 +120,10 @@ def _searched(
     seed: int,
     workers: int,
 ) -> Outcome:
-    from search.solvers.rounds import search
+    from search.solvers.sides import search_smaller_side
 
     stop.restart()
-    return search(
+    return search_smaller_side(
         Problem(rules, weights(trial)),
         first,
         kept=None if best is None else best.contents,

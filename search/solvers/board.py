@@ -8,13 +8,18 @@ import numpy as np
 from numpy.typing import NDArray
 
 from search.efficiency.evaluator import components, information_matrix, log_pseudo_determinant, pseudo_inverse
+from search.efficiency.one_thread import one_thread
 from search.solvers.compiled import kernel
 from search.solvers.records import Floats, Problem
 from search.trial.records import Contents
 from search.trial.tables import Tables, contents_of, incidence
 
 if TYPE_CHECKING:
-    from search.solvers.kernel import Admitted, Beds, Distances, Planting
+    from search.solvers.kernel import Admitted, Beds, Metrics, Planting
+
+
+LANES = 8
+"""Rows of the tables are filled up to a multiple of so many numbers: a vector of the processor."""
 
 
 class Board(NamedTuple):
@@ -23,7 +28,7 @@ class Board(NamedTuple):
     beds: Beds
     admitted: Admitted
     planting: Planting
-    distances: Distances
+    metrics: Metrics
 
     @property
     def plain(self) -> tuple[tuple[Any, ...], ...]:
@@ -48,14 +53,14 @@ def unit_of(problem: Problem, value: float) -> float:
 
 
 def board_of(problem: Problem, contents: Contents) -> Board:
-    """A board with a plan on it; the distances wait for `refresh`."""
+    """A board with a plan on it; the tables of its metrics wait for `refresh`."""
     tables = problem.tables
     beds = _beds(tables)
     return Board(
         beds=beds,
         admitted=_admitted(tables),
         planting=_planting(tables, beds, contents),
-        distances=_distances(tables, overall=problem.weights is None),
+        metrics=_metrics(tables, overall=problem.weights is None),
     )
 
 
@@ -65,20 +70,16 @@ def contents_on(board: Board) -> Contents:
 
 
 def refresh(problem: Problem, board: Board) -> None:
-    """Measure the distances of a connected plan from scratch."""
+    """Compute the tables of a connected plan from scratch."""
     t = problem.tables.t
-    counts = board.planting.copies.T.astype(np.float64)
-    points = np.hstack([np.eye(t), counts / counts.sum(axis=0)])
-    inverse = pseudo_inverse(information_matrix(contents_on(board), t))
-    board.distances.variance[:] = _squared(points, inverse)
-    if problem.weights is not None:
-        board.distances.worth[:] = _squared(points, inverse @ problem.weights @ inverse)
-
-
-def _squared(points: Floats, metric: Floats) -> Floats:
-    products = points.T @ metric @ points
-    own = np.diag(products)
-    return np.asarray(own[:, None] + own[None, :] - 2 * products)
+    information = information_matrix(contents_on(board), t)
+    with one_thread():
+        inverse = np.linalg.inv(information + 1 / t)
+        board.metrics.inverse[:, :t] = inverse
+        if problem.weights is not None:
+            board.metrics.worth[:, :t] = inverse @ problem.weights @ inverse
+    board.metrics.stamps[:] = -1
+    board.metrics.stamps[-1] = 0
 
 
 def _beds(tables: Tables) -> Beds:
@@ -130,24 +131,28 @@ def _planting(tables: Tables, beds: Beds, contents: Contents) -> Planting:
         copies=_count(counts.T),
         meetings=_count(meetings),
         gate=_count(gate.T),
-        room=np.zeros(_room(tables), dtype=np.uint32),
+        room=np.zeros(tables.t + tables.b, dtype=np.uint32),
     )
     return planting
 
 
-def _distances(tables: Tables, *, overall: bool) -> Distances:
-    points = tables.t + tables.b
-    distances: Distances = kernel().Distances(
-        variance=np.zeros((points, points)),
-        worth=np.zeros((1, 1) if overall else (points, points)),
-        work=np.zeros((8, _room(tables))),
+def _metrics(tables: Tables, *, overall: bool) -> Metrics:
+    module, t, b = kernel(), tables.t, tables.b
+    width = -(-t // LANES) * LANES
+    of_worth = (1, 1) if overall else (t, width)
+    metrics: Metrics = module.Metrics(
+        inverse=np.zeros((t, width)),
+        worth=np.zeros(of_worth),
+        means=np.zeros((1 if overall else 2, b, width)),
+        inner=np.zeros((2, b)),
+        stamps=np.zeros(b + 1, dtype=np.int64),
+        work=np.zeros((6, width)),
+        strip=np.zeros(module.STRIP_COLUMNS * module.STRIP),
+        listed=np.zeros(4 * module.STRIP, dtype=np.uint32),
         overall=overall,
+        degrees=t - 1.0,
     )
-    return distances
-
-
-def _room(tables: Tables) -> int:
-    return max(tables.t + tables.b, tables.n)
+    return metrics
 
 
 def _number(array: NDArray[Any]) -> NDArray[np.uint32]:

@@ -1,32 +1,34 @@
 """The exchange kernel: legal moves, scored in O(1) each.
 
-**Points.** Every treatment is a point, and every block is a point too: the mean of the treatments that
-stand in it. With `G = (C + J/t)⁻¹` the squared distance of two points p and q,
-`(p − q)' G (p − q)`, is the variance of their estimated difference; `Distances.variance` holds it for
-all pairs of points, treatments first, then blocks. `Distances.worth` holds the same in the metric of
-`H = G W G`, the slope of the objective `tr(W C⁺)`: what more information on a difference is worth.
+**Points and sets.** Treatments are points, blocks are sets of points: a set stands for the mean of what
+it holds. `Metrics` holds `G = (C + J/t)⁻¹`, whose quadratic form is the variance of an estimated
+difference, and `H = G W G`, the slope of the objective `tr(W C⁺)`: what more information on a difference
+is worth. On a trial whose sides are turned (`sides.py`) blocks are the points and treatments the sets.
 
 **Moves.** To exchange u (block a) with v (block c), or to plant v for u on a plot of block a, changes
-the information by `d w' + w d'` with `d = u − v` and
+the information by `d w' + w d' − s d d'` with `d = u − v` and
 
-    exchange:  w = (a − c) − ½ s d,            s = 1/k_a + 1/k_c
-    replace:   w = (a − ½(u + v)) − ½ s d,     s = 1/k_a
+    exchange:  w = a − c,              s = 1/k_a + 1/k_c
+    replace:   w = a − ½(u + v),       s = 1/k_a
 
-All of these are differences of points, so that `α = d'Gd`, `β = d'Gw`, `γ = w'Gw` are sums of at most
-six entries of `variance`, and `a, b, c`, the same in the metric of H, of `worth`. Then
+With `α = d'Gd, β = d'Gw, γ = w'Gw + s` and `a, b, c = d'Hd, d'Hw, w'Hw`
 
     ratio = (1 + β)² − αγ                       pdet(C) grows by this factor
     rise  = (γ a − 2(1 + β) b + α c) / ratio    tr(W C⁺) grows by this much
 
-**Accepted moves** cost O((t + b)² + n). With `g = Gd`, `h = Gw`, `p = Hd`, `q = Hw`:
+Moves are scored in strips: one plot against many others at once, in a loop without branches. What G and
+H have between a block and every treatment, the mean of its treatments' rows, is computed when a strip
+needs it and kept until the next accepted move. Carried from move to move instead, it would cost more than
+it brings, and so would products of blocks with each other, which are means of those.
+
+**Accepted moves** cost O(t²). With `g = Gd`, `h = G(w − ½ s d)`, `p = Hd`, `q = H(w − ½ s d)`, and
+α to c taken for `w − ½ s d` too, γ without s:
 
     G' = G + g x' + h y',   x = (γ g − (1 + β) h)/ratio,   y = (α h − (1 + β) g)/ratio
     H' = H + x s' + s x' + y z' + z y',   s = p + ½ a x + ½ b y,   z = q + ½ c y + ½ b x
 
-and the points a and c move by ∓d/k. The vectors are summed afresh from the distances between
-treatments, and their values at blocks from the contents, at every accepted move: read from the rows
-of the blocks instead, the error would grow by a constant factor per move. Distances do not change
-when a vector gets a constant added, so vectors are only known up to one.
+The vectors are summed afresh from the rows of both tables at every accepted move: read from carried
+means, their error would grow by a constant factor each time.
 
 One file on purpose: the compiler's cache does not notice a change in a function of another file.
 Everything here also runs as plain Python, with NUMBA_DISABLE_JIT=1.
@@ -45,8 +47,12 @@ LEAST_RATIO = 1e-3
 NOTHING = 1e-12
 """A rise or a squared distance below this is nothing but rounding."""
 
-DRAWS = -np.log((np.arange(1024) + 0.5) / 1024)
-"""Quantiles of the exponential law: how far uphill a move may go, over the temperature."""
+STRIP = 64
+"""Most moves of a plot that are scored in one go."""
+
+DRAWS = -np.log((np.arange(1024 + STRIP) * 619 % 1024 + 0.5) / 1024)
+"""Quantiles of the exponential law: how far uphill a move may go, over the temperature. Steps near the
+golden section: moves tried together are allowed to climb as differently as can be."""
 
 FULL, PINNED = 1 << 20, 1 << 21
 """Flags in `Planting.gate`: no plot more, no plot less of the treatment in the block."""
@@ -58,6 +64,24 @@ replicates, the number of loose treatments."""
 
 LEAST, MOST = range(2)
 """Layers of the ranges in `Admitted`."""
+
+FEWEST = 8
+"""Partners that annealing lists at least; twice as many after a block without an accepted move, half as
+many after one with some, since every one makes the list stale."""
+
+PULL_G, PULL_H, OWN_G, OWN_H, GAMMA, C_ = range(6)
+"""Columns of a strip, each of STRIP numbers: what a move owes to the partner and its block. Pulls are what
+G and H have between the partner and w."""
+
+X_G, X_H, OF_G, OF_H, CLOSED, RISE, RATIO = range(6, 13)
+"""What it owes to the plot too: entries of G and H, those between the treatment and the partner's block,
+whether the move is illegal, and what comes of it: the rise times the ratio, and the ratio."""
+
+STRIP_COLUMNS = 13
+
+PARTNER, POINT, BLOCK, ORDER = range(4)
+"""Parts of `Metrics.listed`, each of STRIP numbers: partners, their treatments, their blocks, and which of
+the plots or treatments looked at they were."""
 
 
 class Beds(NamedTuple):
@@ -103,23 +127,38 @@ class Planting(NamedTuple):
     gate: Any
     """(b, t) plots of the block whose treatments never meet this one, with the flags FULL and PINNED"""
     room: Any
-    """(t + b or n,) room for numbers of points or plots"""
+    """(t + b,) room for numbers of points"""
 
 
-class Distances(NamedTuple):
-    """Squared distances of points, (t+b, t+b); the part (treatments, blocks) is not kept."""
+class Metrics(NamedTuple):
+    """The two tables by which moves are scored; rows are filled up with zeros to a multiple of eight."""
 
-    variance: Any
+    inverse: Any
+    """(t, width) G"""
     worth: Any
+    """(t, width) H; not kept where `overall`"""
+    means: Any
+    """(2, b, width) what G and H have between each block and the treatments, where up to date"""
+    inner: Any
+    """(2, b) what they have between each block and itself"""
+    stamps: Any
+    """(b + 1,) the accepted move at which that was up to date, and the last accepted one"""
     work: Any
-    """(8, t + b or n) room for vectors"""
+    """(6, width) room for vectors"""
+    strip: Any
+    """(STRIP_COLUMNS * STRIP,) room for the columns of a strip"""
+    listed: Any
+    """(4 * STRIP,) room for its partners"""
     overall: bool
-    """True where −log pdet(C)/(t−1) is wanted and not a trace; then `worth` is not kept"""
+    """True where −log pdet(C)/degrees is wanted and not a trace"""
+    degrees: float
+    """Treatments less one, whichever side the points are"""
 
 
 _I1, _I2, _I3 = types.int32[::1], types.int32[:, ::1], types.int32[:, :, ::1]
 _U1, _U2 = types.uint32[::1], types.uint32[:, ::1]
-_F1, _F2 = types.float64[::1], types.float64[:, ::1]
+_F1, _F2, _F3 = types.float64[::1], types.float64[:, ::1], types.float64[:, :, ::1]
+_I8 = types.int64[::1]
 _YES, _INT, _FLOAT = types.boolean, types.int64, types.float64
 _RANDOM = types.uint64[::1]
 _BOARD = types.Tuple(
@@ -127,7 +166,7 @@ _BOARD = types.Tuple(
         types.Tuple((_U1, _U2, _F1, _U1)),
         types.Tuple((_I2, _I3, _I3, _I2, _YES, _YES)),
         types.Tuple((_U1, _I1, _I2, _I2, _I2, _U1)),
-        types.Tuple((_F2, _F2, _F2, _YES)),
+        types.Tuple((_F2, _F2, _F3, _F2, _I8, _F2, _F1, _U1, _YES, _FLOAT)),
     )
 )
 
@@ -145,8 +184,8 @@ def _entry(signature):
 @_hot
 def _named(board):
     """The parts of a board by name; entry points take plain tuples, which are handed over faster."""
-    beds, admitted, planting, distances = board
-    return Beds(*beds), Admitted(*admitted), Planting(*planting), Distances(*distances)
+    beds, admitted, planting, metrics = board
+    return Beds(*beds), Admitted(*admitted), Planting(*planting), Metrics(*metrics)
 
 
 @_hot
@@ -189,7 +228,7 @@ def _below(bits, bound):
 
 @_hot
 def _draw(beds, random):
-    """A random move, legal or not, and a place in `DRAWS`, out of one random number."""
+    """A random move, legal or not, its place among the partners, and one in `DRAWS`: one random number."""
     bits = _next(random)
     plot = _below(bits >> np.uint64(37), len(beds.home))
     a = np.int64(beds.home[plot])
@@ -199,7 +238,7 @@ def _draw(beds, random):
         partner = np.int64(beds.blocks[a, POOL_FIRST]) + choice
     else:
         partner = len(beds.home) + np.int64(beds.loose[choice - pool])
-    return plot, partner, np.int64(bits & np.uint64(1023))
+    return plot, partner, choice, np.int64(bits & np.uint64(1023))
 
 
 @_hot
@@ -335,169 +374,306 @@ def _plant(admitted, planting, plot, partner, u, v, a, c):
 # --- scoring --------------------------------------------------------------------------------------
 
 
-@_hot
-def _corrected(dd, dw, ww, step):
-    """`d'd`, `d'w`, `w'w` for `w − ½ step d` in place of w."""
-    return dd, dw - 0.5 * step * dd, ww - step * dw + 0.25 * step * step * dd
+@_inner
+def _add_block(beds, planted, table, width, block, factor, vector):
+    """Add to a vector over the treatments the mean row of a block's treatments, times a factor."""
+    factor *= beds.share[block]
+    begin, end = _span(beds, block)
+    for plot in range(begin, end):
+        j = np.int64(planted[plot])
+        for i in range(width):
+            vector[i] += factor * table[j, i]
+
+
+@_inner
+def _mean_of(beds, planted, vector, block):
+    """The mean of a vector over the plots of a block."""
+    total = 0.0
+    begin, end = _span(beds, block)
+    for plot in range(begin, end):
+        total += vector[np.int64(planted[plot])]
+    return beds.share[block] * total
+
+
+@_inner
+def _take_means(planted, begin, end, share, table, means):
+    """The mean of the rows of some plots, four rows at a time; returns its mean over the plots."""
+    for first in range(begin, end, 4):
+        i = np.int64(planted[first])
+        j, k, m = i, i, i
+        at_j, at_k, at_m = 0.0, 0.0, 0.0
+        if first + 1 < end:
+            j, at_j = np.int64(planted[first + 1]), share
+        if first + 2 < end:
+            k, at_k = np.int64(planted[first + 2]), share
+        if first + 3 < end:
+            m, at_m = np.int64(planted[first + 3]), share
+        kept = 1.0 if first > begin else 0.0
+        for x in range(len(means)):
+            four = share * table[i, x] + at_j * table[j, x] + at_k * table[k, x] + at_m * table[m, x]
+            means[x] = kept * means[x] + four
+    total = 0.0
+    for plot in range(begin, end):
+        total += means[np.int64(planted[plot])]
+    return share * total
 
 
 @_hot
-def _products(share, table, t, u, v, a, c):
-    """`d'd`, `d'w`, `w'w` of a move in the metric of a table of squared distances."""
-    dd = table[u, v]
-    if c >= 0:
-        dw = 0.5 * ((table[t + c, u] - table[t + a, u]) - (table[t + c, v] - table[t + a, v]))
-        return _corrected(dd, dw, table[t + a, t + c], share[a] + share[c])
-    dw = 0.5 * (table[t + a, v] - table[t + a, u])
-    ww = 0.5 * (table[t + a, u] + table[t + a, v]) - 0.25 * dd
-    return _corrected(dd, dw, ww, share[a])
+def _renew(beds, planted, metrics, block):
+    """See to it that the means of a block are up to date."""
+    stamps, means, inner, share = metrics.stamps, metrics.means, metrics.inner, beds.share[block]
+    now = stamps[len(stamps) - 1]
+    if stamps[block] != now:
+        stamps[block] = now
+        begin, end = _span(beds, block)
+        inner[0, block] = _take_means(planted, begin, end, share, metrics.inverse, means[0, block])
+        if not metrics.overall:
+            inner[1, block] = _take_means(planted, begin, end, share, metrics.worth, means[1, block])
 
 
 @_hot
-def _judged(overall, t, in_g, in_h):
-    """How much a move raises the objective, and the ratio of pseudo-determinants.
+def _columns(beds, admitted, planting, metrics, a, first, many):
+    """List plots that plots of block a may exchange with, and what such moves owe to them; returns how many.
+
+    Of so many plots, from `first` on and round within the pool of the block. Where treatments are kept
+    apart, some are listed though no move with them is legal.
+    """
+    planted, gate, strip, listed = planting.planted, planting.gate, metrics.strip, metrics.listed
+    begin = np.int64(beds.blocks[a, POOL_FIRST])
+    end = begin + np.int64(beds.blocks[a, POOL_PLOTS])
+    most = 1 if admitted.any_apart else 0
+    _renew(beds, planted, metrics, a)
+    last, gamma, c_, plot = np.int64(-1), 0.0, 0.0, first
+    j = 0
+    for i in range(many):
+        v, c = np.int64(planted[plot]), np.int64(beds.home[plot])
+        if c != last:
+            last = c
+            _renew(beds, planted, metrics, c)
+            gamma = metrics.inner[0, a] + metrics.inner[0, c] + beds.share[a] + beds.share[c]
+            gamma -= 2.0 * _mean_of(beds, planted, metrics.means[0, a], c)
+            if not metrics.overall:
+                c_ = metrics.inner[1, a] + metrics.inner[1, c]
+                c_ -= 2.0 * _mean_of(beds, planted, metrics.means[1, a], c)
+        listed[PARTNER * STRIP + j], listed[POINT * STRIP + j], listed[BLOCK * STRIP + j] = plot, v, c
+        listed[ORDER * STRIP + j] = i
+        may = (a != c) & (gate[a, v] & ~PINNED <= most) & (gate[c, v] < PINNED)
+        strip[GAMMA * STRIP + j] = gamma
+        strip[PULL_G * STRIP + j] = metrics.means[0, a, v] - metrics.means[0, c, v]
+        strip[OWN_G * STRIP + j] = metrics.inverse[v, v]
+        if not metrics.overall:
+            strip[C_ * STRIP + j] = c_
+            strip[PULL_H * STRIP + j] = metrics.means[1, a, v] - metrics.means[1, c, v]
+            strip[OWN_H * STRIP + j] = metrics.worth[v, v]
+        j += int(may)
+        plot += 1
+        if plot == end:
+            plot = begin
+    return j
+
+
+@_hot
+def _loose_columns(beds, admitted, planting, metrics, a, first, many):
+    """The same for the loose treatments that may be planted in block a, from number `first` on and round."""
+    planted, gate, strip, listed = planting.planted, planting.gate, metrics.strip, metrics.listed
+    most = 1 if admitted.any_apart else 0
+    _renew(beds, planted, metrics, a)
+    number = first
+    j = 0
+    for i in range(many):
+        v = np.int64(beds.loose[number])
+        listed[PARTNER * STRIP + j], listed[POINT * STRIP + j], listed[ORDER * STRIP + j] = len(planted) + v, v, i
+        may = (gate[a, v] & ~PINNED <= most) & (planting.plots[v] < admitted.plots[MOST, v])
+        strip[GAMMA * STRIP + j] = metrics.inner[0, a] + beds.share[a]
+        strip[OWN_G * STRIP + j] = metrics.inverse[v, v]
+        strip[PULL_G * STRIP + j] = metrics.means[0, a, v] - 0.5 * metrics.inverse[v, v]
+        if not metrics.overall:
+            strip[C_ * STRIP + j] = metrics.inner[1, a]
+            strip[OWN_H * STRIP + j] = metrics.worth[v, v]
+            strip[PULL_H * STRIP + j] = metrics.means[1, a, v] - 0.5 * metrics.worth[v, v]
+        j += int(may)
+        number += 1
+        if number == len(beds.loose):
+            number = 0
+    return j
+
+
+@_inner
+def _list(beds, admitted, planting, metrics, a, first, many, replacing):
+    """List partners for block a: from plot `first` on, or from loose treatment `first` on to replace."""
+    if replacing:
+        return _loose_columns(beds, admitted, planting, metrics, a, first, many)
+    return _columns(beds, admitted, planting, metrics, a, first, many)
+
+
+@_hot
+def _meet(admitted, planting, metrics, begin, many, u, a, replacing):
+    """What the moves of treatment u in block a owe to the entries between it and the partners."""
+    strip, listed, gate = metrics.strip, metrics.listed, planting.gate
+    for j in range(begin, many):
+        v = np.int64(listed[POINT * STRIP + j])
+        strip[X_G * STRIP + j] = metrics.inverse[u, v]
+        if not metrics.overall:
+            strip[X_H * STRIP + j] = metrics.worth[u, v]
+        closed = u == v
+        if replacing:
+            strip[OF_G * STRIP + j] = 0.5 * metrics.inverse[u, u]
+            if not metrics.overall:
+                strip[OF_H * STRIP + j] = 0.5 * metrics.worth[u, u]
+        else:
+            c = np.int64(listed[BLOCK * STRIP + j])
+            strip[OF_G * STRIP + j] = metrics.means[0, c, u]
+            if not metrics.overall:
+                strip[OF_H * STRIP + j] = metrics.means[1, c, u]
+            closed |= (gate[c, u] & ~PINNED) > int(admitted.any_apart)
+        strip[CLOSED * STRIP + j] = np.inf if closed else 0.0
+    if admitted.any_apart:
+        for j in range(begin, many):
+            v = np.int64(listed[POINT * STRIP + j])
+            c = np.int64(-1) if replacing else np.int64(listed[BLOCK * STRIP + j])
+            if not _may(admitted, planting, u, v, a, c):
+                strip[CLOSED * STRIP + j] = np.inf
+
+
+@_hot
+def _score(metrics, begin, many, u, a, replacing):
+    """Rises, times the ratio, and ratios of the moves of treatment u in block a; how many are legal.
 
     For the overall aim the rise is a lower bound, `−log x ≥ 1 − x`, that orders moves alike.
     """
-    alpha, beta, gamma = in_g
-    a, b, c = in_h
-    ratio = (1.0 + beta) * (1.0 + beta) - alpha * gamma
-    if overall:
-        return (1.0 - ratio) / (t - 1), ratio
-    return (gamma * a - 2.0 * (1.0 + beta) * b + alpha * c) / ratio, ratio
+    strip = metrics.strip
+    pull_g, own_g = metrics.means[0, a, u], metrics.inverse[u, u]
+    legal = 0
+    if metrics.overall:
+        scale = 1.0 / metrics.degrees
+        for j in range(begin, many):
+            alpha = own_g + strip[OWN_G * STRIP + j] - 2.0 * strip[X_G * STRIP + j]
+            pull = pull_g - strip[OF_G * STRIP + j]
+            one = 1.0 + (pull - strip[PULL_G * STRIP + j])
+            gamma = strip[GAMMA * STRIP + j]
+            if replacing:
+                gamma -= pull + strip[PULL_G * STRIP + j] + 0.25 * alpha
+            ratio = one * one - alpha * gamma
+            strip[RATIO * STRIP + j] = ratio
+            strip[RISE * STRIP + j] = (1.0 - ratio) * ratio * scale + strip[CLOSED * STRIP + j]
+            legal += int(strip[CLOSED * STRIP + j] == 0.0)
+        return legal
+    pull_h, own_h = metrics.means[1, a, u], metrics.worth[u, u]
+    for j in range(begin, many):
+        alpha = own_g + strip[OWN_G * STRIP + j] - 2.0 * strip[X_G * STRIP + j]
+        in_h = own_h + strip[OWN_H * STRIP + j] - 2.0 * strip[X_H * STRIP + j]
+        pull, pull_in_h = pull_g - strip[OF_G * STRIP + j], pull_h - strip[OF_H * STRIP + j]
+        one = 1.0 + (pull - strip[PULL_G * STRIP + j])
+        gamma, c = strip[GAMMA * STRIP + j], strip[C_ * STRIP + j]
+        if replacing:
+            gamma -= pull + strip[PULL_G * STRIP + j] + 0.25 * alpha
+            c -= pull_in_h + strip[PULL_H * STRIP + j] + 0.25 * in_h
+        b = pull_in_h - strip[PULL_H * STRIP + j]
+        strip[RATIO * STRIP + j] = one * one - alpha * gamma
+        strip[RISE * STRIP + j] = gamma * in_h - 2.0 * one * b + alpha * c + strip[CLOSED * STRIP + j]
+        legal += int(strip[CLOSED * STRIP + j] == 0.0)
+    return legal
 
 
 @_hot
-def _score(share, distances, t, u, v, a, c):
-    in_g = _products(share, distances.variance, t, u, v, a, c)
-    in_h = in_g if distances.overall else _products(share, distances.worth, t, u, v, a, c)
-    return _judged(distances.overall, t, in_g, in_h)
+def _score_strip(admitted, planting, metrics, begin, many, u, a, replacing):
+    """Score all moves of treatment u in block a with partners listed; returns how many are legal."""
+    _meet(admitted, planting, metrics, begin, many, u, a, replacing)
+    if replacing:
+        return _score(metrics, begin, many, u, a, True)
+    return _score(metrics, begin, many, u, a, False)
 
 
 @_hot
-def _true_rise(overall, t, rise, ratio):
-    return -np.log(ratio) / (t - 1) if overall else rise
+def _true_rise(metrics, rise, ratio):
+    return -np.log(ratio) / metrics.degrees if metrics.overall else rise
+
+
+@_inner
+def _for_nothing(beds, metrics, j, u, a):
+    """Whether an exchange only swaps the names of two blocks, alike but for u and v: then w = ½ s d."""
+    strip = metrics.strip
+    c = np.int64(metrics.listed[BLOCK * STRIP + j])
+    step = beds.share[a] + beds.share[c]
+    dd = metrics.inverse[u, u] + strip[OWN_G * STRIP + j] - 2.0 * strip[X_G * STRIP + j]
+    dw = metrics.means[0, a, u] - strip[OF_G * STRIP + j] - strip[PULL_G * STRIP + j]
+    return strip[GAMMA * STRIP + j] - step - step * dw + 0.25 * step * step * dd < NOTHING
 
 
 # --- accepted moves -------------------------------------------------------------------------------
 
 
 @_inner
-def _add_block(beds, planted, table, t, block, factor, vector):
-    """Add to a vector over the treatments the mean row of a block's treatments, times a factor."""
-    factor *= beds.share[block]
-    begin, end = _span(beds, block)
-    for plot in range(begin, end):
-        j = np.int64(planted[plot])
-        for i in range(t):
-            vector[i] += factor * table[j, i]
-
-
-@_inner
-def _extend(beds, planted, t, first, second):
-    """The values of two vectors at the blocks: means over their treatments."""
-    for block in range(len(beds.blocks)):
-        in_first, in_second = 0.0, 0.0
-        begin, end = _span(beds, block)
-        for plot in range(begin, end):
-            i = np.int64(planted[plot])
-            in_first += first[i]
-            in_second += second[i]
-        first[t + block] = in_first * beds.share[block]
-        second[t + block] = in_second * beds.share[block]
-
-
-@_inner
 def _images(beds, planted, table, t, u, v, a, c, of_d, of_w):
-    """Fill in the images of d and w in the metric of a table, at all points, up to a constant."""
+    """Fill in the images of d and of `w − ½ s d` in a table."""
     step = beds.share[a]
-    for i in range(t):
-        of_d[i] = 0.5 * (table[v, i] - table[u, i])
     if c >= 0:
         step += beds.share[c]
         for i in range(t):
+            of_d[i] = table[u, i] - table[v, i]
             of_w[i] = -0.5 * step * of_d[i]
-        _add_block(beds, planted, table, t, c, 0.5, of_w)
+        _add_block(beds, planted, table, t, c, -1.0, of_w)
     else:
         for i in range(t):
-            of_w[i] = 0.25 * (table[u, i] + table[v, i]) - 0.5 * step * of_d[i]
-    _add_block(beds, planted, table, t, a, -0.5, of_w)
-    _extend(beds, planted, t, of_d, of_w)
+            of_d[i] = table[u, i] - table[v, i]
+            of_w[i] = -0.5 * step * of_d[i] - 0.5 * (table[u, i] + table[v, i])
+    _add_block(beds, planted, table, t, a, 1.0, of_w)
 
 
 @_inner
-def _product_with_w(share, vector, t, u, v, a, c):
-    """`w'` times a vector that is known at all points."""
+def _product_with_w(beds, planted, vector, u, v, a, c):
+    """`w − ½ s d` times a vector over the treatments."""
     d = vector[u] - vector[v]
+    in_a = _mean_of(beds, planted, vector, a)
     if c >= 0:
-        return vector[t + a] - vector[t + c] - 0.5 * (share[a] + share[c]) * d
-    return vector[t + a] - 0.5 * (vector[u] + vector[v]) - 0.5 * share[a] * d
+        return in_a - _mean_of(beds, planted, vector, c) - 0.5 * (beds.share[a] + beds.share[c]) * d
+    return in_a - 0.5 * (vector[u] + vector[v]) - 0.5 * beds.share[a] * d
 
 
 @_inner
-def _grow(table, t, first, second, third, fourth):
-    """Distances after the metric grew by `first second' + third fourth'`, a symmetric sum."""
-    points = table.shape[0]
-    for i in range(points):
-        f, s, h, r = first[i], second[i], third[i], fourth[i]
-        for j in range(t if i < t else points):
-            table[i, j] += (f - first[j]) * (s - second[j]) + (h - third[j]) * (r - fourth[j])
+def _grow(inverse, t, g, h, x, y):
+    for i in range(t):
+        g_i, h_i = g[i], h[i]
+        for j in range(inverse.shape[1]):
+            inverse[i, j] += g_i * x[j] + h_i * y[j]
 
 
 @_inner
-def _shift(table, t, block, step, of_d, dd):
-    """Distances after the point of a block moved by `step·d`; `of_d` is the image of d."""
-    point, points = t + block, table.shape[0]
-    centre = of_d[point]
-    for i in range(points):
-        table[point, i] += 2.0 * step * (centre - of_d[i]) + step * step * dd
-    table[point, point] = 0.0
-    for i in range(t, points):
-        table[i, point] = table[point, i]
-    of_d[point] += step * dd
+def _grow_both(inverse, worth, t, g, h, x, y, s, z):
+    """Both tables in one pass: each takes half of its time to get its entries."""
+    for i in range(t):
+        g_i, h_i, x_i, y_i, s_i, z_i = g[i], h[i], x[i], y[i], s[i], z[i]
+        for j in range(inverse.shape[1]):
+            inverse[i, j] += g_i * x[j] + h_i * y[j]
+            worth[i, j] += (x_i * s[j] + s_i * x[j]) + (y_i * z[j] + z_i * y[j])
 
 
 @_inner
-def _shift_blocks(share, table, t, u, v, a, c, of_d):
-    """Distances after u left block a for v, and v left block c for u."""
-    dd = of_d[u] - of_d[v]
-    _shift(table, t, a, -share[a], of_d, dd)
-    if c >= 0:
-        _shift(table, t, c, share[c], of_d, dd)
-
-
-@_inner
-def _move_points(beds, planted, distances, t, u, v, a, c):
-    """Bring the distances up to date with a move that is about to be made."""
-    variance, worth, work, share = distances.variance, distances.worth, distances.work, beds.share
-    points = variance.shape[0]
-    g, h, p, q = work[0], work[1], work[2], work[3]
-    x, y, s, z = work[4], work[5], work[6], work[7]
-    _images(beds, planted, variance, t, u, v, a, c, g, h)
+def _move_points(beds, planted, metrics, t, u, v, a, c):
+    """Bring the tables up to date with a move that is about to be made; returns its rise and ratio."""
+    metrics.stamps[len(metrics.stamps) - 1] += 1
+    inverse, worth, work = metrics.inverse, metrics.worth, metrics.work
+    width = inverse.shape[1]
+    g, h, x, y, p, q = work[0], work[1], work[2], work[3], work[4], work[5]
+    _images(beds, planted, inverse, width, u, v, a, c, g, h)
     alpha, one = g[u] - g[v], 1.0 + h[u] - h[v]
-    gamma = _product_with_w(share, h, t, u, v, a, c)
+    gamma = _product_with_w(beds, planted, h, u, v, a, c)
     ratio = one * one - alpha * gamma
-    for i in range(points):
+    for i in range(width):
         x[i] = (gamma * g[i] - one * h[i]) / ratio
         y[i] = (alpha * h[i] - one * g[i]) / ratio
-    _grow(variance, t, g, x, h, y)
-    x_d, y_d = x[u] - x[v], y[u] - y[v]
-    for i in range(points):
-        g[i] += g[i] * x_d + h[i] * y_d
-    _shift_blocks(share, variance, t, u, v, a, c, g)
-    if distances.overall:
-        return
-    _images(beds, planted, worth, t, u, v, a, c, p, q)
-    a2, b2 = p[u] - p[v], q[u] - q[v]
-    c2 = _product_with_w(share, q, t, u, v, a, c)
-    for i in range(points):
-        s[i] = 2.0 * p[i] + a2 * x[i] + b2 * y[i]  # twice s and z: H' − H is x s' + y z', symmetrised
-        z[i] = 2.0 * q[i] + c2 * y[i] + b2 * x[i]
-    _grow(worth, t, x, s, y, z)
-    s_d, z_d = 0.5 * (s[u] - s[v]), 0.5 * (z[u] - z[v])
-    for i in range(points):
-        p[i] += x[i] * s_d + 0.5 * s[i] * x_d + y[i] * z_d + 0.5 * z[i] * y_d
-    _shift_blocks(share, worth, t, u, v, a, c, p)
+    if metrics.overall:
+        _grow(inverse, t, g, h, x, y)
+        return 0.0, ratio
+    _images(beds, planted, worth, width, u, v, a, c, p, q)
+    half_a, half_b = 0.5 * (p[u] - p[v]), 0.5 * (q[u] - q[v])
+    half_c = 0.5 * _product_with_w(beds, planted, q, u, v, a, c)
+    rise = 2.0 * (gamma * half_a - 2.0 * one * half_b + alpha * half_c) / ratio
+    for i in range(width):
+        p[i] += half_a * x[i] + half_b * y[i]
+        q[i] += half_c * y[i] + half_b * x[i]
+    _grow_both(inverse, worth, t, g, h, x, y, p, q)
+    return rise, ratio
 
 
 # --- connecting -----------------------------------------------------------------------------------
@@ -526,81 +702,72 @@ def _parts(beds, planting, t):
     return parts
 
 
-# --- scanning -------------------------------------------------------------------------------------
+# --- trying and scanning --------------------------------------------------------------------------
 
 
 @_hot
-def _candidates(beds, planting, distances, t, a):
-    """List the plots after block a that may exchange with it, with what their scores share.
-
-    The pull of v (block c) towards a is its squared distance to a less that to c: `d'w` of an exchange
-    is half the sum of two pulls.
-    """
-    variance, worth, room, work = distances.variance, distances.worth, planting.room, distances.work
-    begin = np.int64(beds.blocks[a, FIRST]) + np.int64(beds.blocks[a, PLOTS])
-    end = np.int64(beds.blocks[a, POOL_FIRST]) + np.int64(beds.blocks[a, POOL_PLOTS])
+def _any_allowed(strip, begin, many, temperature, chance):
+    """Whether one of the moves scored may be made, as far as can be told at a glance."""
     found = 0
-    for plot in range(begin, end):
-        v, c = np.int64(planting.planted[plot]), np.int64(beds.home[plot])
-        room[found] = plot
-        work[0, found] = variance[t + a, v] - variance[t + c, v]
-        work[1, found] = variance[t + a, t + c]
-        if not distances.overall:
-            work[2, found] = worth[t + a, v] - worth[t + c, v]
-            work[3, found] = worth[t + a, t + c]
-        found += int(((planting.gate[a, v] & FULL) == 0) & (planting.gate[c, v] < PINNED))
-    return found
+    for j in range(begin, many):
+        ratio = strip[RATIO * STRIP + j]
+        allowed = temperature * DRAWS[chance + j] * ratio
+        found |= int(strip[RISE * STRIP + j] <= allowed) & int(ratio >= LEAST_RATIO)
+    return found > 0
 
 
 @_inner
-def _scan_exchanges(beds, admitted, planting, distances, t, a, below):
-    """The best exchange of block a with a later block that rises less than `below`."""
-    planted, room, work = planting.planted, planting.room, distances.work
-    variance, worth, overall = distances.variance, distances.worth, distances.overall
-    scored, best_plot, best_partner = 0, -1, -1
-    candidates = _candidates(beds, planting, distances, t, a)
-    begin, end = _span(beds, a)
-    for plot in range(begin, end):
-        u = np.int64(planted[plot])
-        if planting.gate[a, u] >= PINNED:
+def _first_allowed(beds, admitted, planting, metrics, begin, many, temperature, chance, u, a, replacing):
+    """The first of the moves scored that may be made, −1 for none, its rise, and the legal ones up to it."""
+    strip, listed, legal = metrics.strip, metrics.listed, 0
+    for j in range(begin, many):
+        legal += int(strip[CLOSED * STRIP + j] == 0.0)
+        ratio = strip[RATIO * STRIP + j]
+        allowed = temperature * DRAWS[chance + j]
+        if not (strip[RISE * STRIP + j] <= allowed * ratio and ratio >= LEAST_RATIO):
             continue
-        for i in range(candidates):
-            partner = np.int64(room[i])
-            v, c = np.int64(planted[partner]), np.int64(beds.home[partner])
-            if planting.gate[c, u] & FULL or u == v:
-                continue
-            if admitted.any_apart and not _may(admitted, planting, u, v, a, c):
-                continue
-            scored += 1
-            step = beds.share[a] + beds.share[c]
-            dw = 0.5 * (variance[t + c, u] - variance[t + a, u] + work[0, i])
-            in_g = in_h = _corrected(variance[u, v], dw, work[1, i], step)
-            if not overall:
-                dw = 0.5 * (worth[t + c, u] - worth[t + a, u] + work[2, i])
-                in_h = _corrected(worth[u, v], dw, work[3, i], step)
-            rise, ratio = _judged(overall, t, in_g, in_h)
-            if rise < below and ratio >= LEAST_RATIO and _meets(beds, admitted, planting, u, v, a, c):
-                below, best_plot, best_partner = rise, plot, partner
-    return scored, best_plot, best_partner, below
+        rise = strip[RISE * STRIP + j] / ratio
+        v = np.int64(listed[POINT * STRIP + j])
+        c = np.int64(-1) if replacing else np.int64(listed[BLOCK * STRIP + j])
+        if _true_rise(metrics, rise, ratio) > allowed:
+            continue
+        if not replacing and abs(rise) < NOTHING and _for_nothing(beds, metrics, j, u, a):
+            continue
+        if _meets(beds, admitted, planting, u, v, a, c):
+            return j, rise, legal
+    return -1, 0.0, legal
+
+
+@_hot
+def _any_below(strip, many, below):
+    found = 0
+    for j in range(many):
+        ratio = strip[RATIO * STRIP + j]
+        found |= int(strip[RISE * STRIP + j] < below * ratio) & int(ratio >= LEAST_RATIO)
+    return found > 0
 
 
 @_inner
-def _scan_replacements(beds, admitted, planting, distances, t, a, below):
-    """The best replacement on a plot of block a that rises less than `below`."""
-    scored, best_plot, best_partner, c = 0, -1, -1, np.int64(-1)
-    loose = np.int64(beds.blocks[a, REACH]) - np.int64(beds.blocks[a, POOL_PLOTS])
-    begin, end = _span(beds, a)
-    for plot in range(begin, end):
-        u = np.int64(planting.planted[plot])
-        for i in range(loose):
-            v = np.int64(beds.loose[i])
-            if not _may(admitted, planting, u, v, a, c):
-                continue
-            scored += 1
-            rise, ratio = _score(beds.share, distances, t, u, v, a, c)
-            if rise < below and ratio >= LEAST_RATIO and _meets(beds, admitted, planting, u, v, a, c):
-                below, best_plot, best_partner = rise, plot, len(planting.planted) + v
-    return scored, best_plot, best_partner, below
+def _least_below(beds, admitted, planting, metrics, many, below, u, a, replacing):
+    """The one of the moves scored that rises least and less than `below`, −1 for none, and its rise."""
+    strip, listed, best = metrics.strip, metrics.listed, -1
+    for j in range(many):
+        ratio = strip[RATIO * STRIP + j]
+        if strip[RISE * STRIP + j] < below * ratio and ratio >= LEAST_RATIO:
+            v = np.int64(listed[POINT * STRIP + j])
+            c = np.int64(-1) if replacing else np.int64(listed[BLOCK * STRIP + j])
+            if _meets(beds, admitted, planting, u, v, a, c):
+                best, below = j, strip[RISE * STRIP + j] / ratio
+    return best, below
+
+
+@_inner
+def _tell_rises(strip, begin, many, rises, told):
+    for j in range(begin, many):
+        if told < len(rises) and strip[CLOSED * STRIP + j] == 0.0:
+            rises[told] = strip[RISE * STRIP + j] / strip[RATIO * STRIP + j]
+            told += 1
+    return told
 
 
 # --- entry points: each call ends after a bounded number of steps ---------------------------------
@@ -621,7 +788,7 @@ def wander(board, random, tries, join):
     for _ in range(tries):
         if join and parts == 1:
             break
-        plot, partner, _ = _draw(beds, random)
+        plot, partner, _, _ = _draw(beds, random)
         u, v, a, c = _read(beds, planted, plot, partner)
         if not (_may(admitted, planting, u, v, a, c) and _meets(beds, admitted, planting, u, v, a, c)):
             continue
@@ -639,50 +806,76 @@ def wander(board, random, tries, join):
 @_entry(_FLOAT(_BOARD, _INT, _INT))
 def make_move(board, plot, partner):
     """Make a legal move of a connected plan; returns how much the objective rises."""
-    beds, admitted, planting, distances = _named(board)
+    beds, admitted, planting, metrics = _named(board)
     t = _treatments(planting)
     u, v, a, c = _read(beds, planting.planted, plot, partner)
-    rise, ratio = _score(beds.share, distances, t, u, v, a, c)
-    _move_points(beds, planting.planted, distances, t, u, v, a, c)
+    rise, ratio = _move_points(beds, planting.planted, metrics, t, u, v, a, c)
     _plant(admitted, planting, plot, partner, u, v, a, c)
-    return _true_rise(distances.overall, t, rise, ratio)
+    return _true_rise(metrics, rise, ratio)
 
 
 @_entry(types.UniTuple(_INT, 4)(_BOARD, _RANDOM, _FLOAT, _FLOAT, _INT, _INT, _INT, _F1))
 def anneal(board, random, temperature, cooling, moves, tries, most_accepted, rises):
     """Simulated annealing (Metropolis et al. 1953; Kirkpatrick, Gelatt & Vecchi 1983).
 
-    Ends after `moves` scored moves, `tries` drawn ones or `most_accepted` accepted ones, whichever
-    comes first; the temperature is multiplied by `cooling` after each scored move. The first rises are
-    written to `rises`, as many as it has room for. Returns the moves scored, drawn, accepted, and accepted
-    though they raise the objective.
+    Moves are tried in an order that does not depend on which are accepted: the plots of a random block in
+    turn, each with the same partners. To begin anew after an accepted move instead would favour moves of
+    blocks where few are accepted, as if it were hotter. Ends after `moves` scored moves, about `tries`
+    looked at, legal or not, or `most_accepted` accepted ones, whichever comes first; but the moves of a
+    strip are all scored. The temperature is multiplied by `cooling` for each scored move. The first rises
+    are written to `rises`, as many as it has room for. Returns the moves scored, looked at, accepted, and
+    accepted though they raise the objective.
     """
-    beds, admitted, planting, distances = _named(board)
-    planted, t = planting.planted, _treatments(planting)
-    scored, drawn, accepted, climbed = 0, 0, 0, 0
+    beds, admitted, planting, metrics = _named(board)
+    planted, t, strip = planting.planted, _treatments(planting), metrics.strip
+    scored, drawn, accepted, climbed, told, tried = 0, 0, 0, 0, 0, FEWEST
     while scored < moves and drawn < tries and accepted < most_accepted:
-        drawn += 1
-        plot, partner, place = _draw(beds, random)
-        u, v, a, c = _read(beds, planted, plot, partner)
-        if not _may(admitted, planting, u, v, a, c):
-            continue
-        rise, ratio = _score(beds.share, distances, t, u, v, a, c)
-        if scored < len(rises):
-            rises[scored] = rise
-        scored += 1
-        allowed = temperature * DRAWS[place]
-        temperature *= cooling
-        if not (rise <= allowed and ratio >= LEAST_RATIO):
-            continue
-        if _true_rise(distances.overall, t, rise, ratio) > allowed:
-            continue
-        if abs(rise) < NOTHING and _products(beds.share, distances.variance, t, u, v, a, c)[2] < NOTHING:
-            continue  # w = 0: two blocks alike but for u and v would only swap their names
-        if _meets(beds, admitted, planting, u, v, a, c):
-            _move_points(beds, planted, distances, t, u, v, a, c)
-            _plant(admitted, planting, plot, partner, u, v, a, c)
-            accepted += 1
-            climbed += int(rise > NOTHING)
+        plot, partner, choice, chance = _draw(beds, random)
+        a, pool = np.int64(beds.home[plot]), np.int64(beds.blocks[np.int64(beds.home[plot]), POOL_PLOTS])
+        replacing = choice >= pool
+        first = choice - pool if replacing else partner
+        tried = min(tried, len(beds.loose) if replacing else pool)
+        listed = _list(beds, admitted, planting, metrics, a, first, tried, replacing)
+        begin, end = _span(beds, a)
+        before = accepted
+        for _ in range(begin, end):
+            drawn += tried
+            done = np.int64(0)
+            while done < listed and accepted < most_accepted:
+                u = np.int64(planted[plot])
+                if planting.gate[a, u] >= PINNED or (
+                    replacing and planting.plots[u] <= admitted.plots[LEAST, u]
+                ):
+                    break
+                legal = _score_strip(admitted, planting, metrics, done, listed, u, a, replacing)
+                if told < len(rises):
+                    told = _tell_rises(strip, done, listed, rises, told)
+                j, rise = -1, 0.0
+                if _any_allowed(strip, done, listed, temperature, chance):
+                    j, rise, legal = _first_allowed(
+                        beds, admitted, planting, metrics, done, listed, temperature, chance, u, a, replacing
+                    )
+                scored += legal
+                temperature *= cooling**legal
+                chance = (chance + listed) & 1023
+                if j < 0:
+                    break
+                partner, order = metrics.listed[PARTNER * STRIP + j], metrics.listed[ORDER * STRIP + j]
+                u, v, a, c = _read(beds, planted, plot, np.int64(partner))
+                _move_points(beds, planted, metrics, t, u, v, a, c)
+                _plant(admitted, planting, plot, np.int64(partner), u, v, a, c)
+                accepted += 1
+                climbed += int(rise > NOTHING)
+                listed = _list(beds, admitted, planting, metrics, a, first, tried, replacing)
+                done = np.int64(0)
+                while done < listed and metrics.listed[ORDER * STRIP + done] <= order:
+                    done += 1
+            if scored >= moves or accepted >= most_accepted:
+                break
+            plot += 1
+            if plot == end:
+                plot = begin
+        tried = max(FEWEST, tried // 2) if accepted > before else min(2 * tried, STRIP)
     return scored, drawn, accepted, climbed
 
 
@@ -694,18 +887,30 @@ def best_move(board, begin, end, below):
     moves alone. Returns the moves scored, the move (plot −1 for none) and its rise, for the overall
     aim the lower bound by which moves are ordered.
     """
-    beds, admitted, planting, distances = _named(board)
+    beds, admitted, planting, metrics = _named(board)
     t = _treatments(planting)
     scored, best_plot, best_partner = 0, -1, -1
     for a in range(begin, end):
-        looked, plot, partner, rise = _scan_exchanges(beds, admitted, planting, distances, t, a, below)
-        scored += looked
-        if plot >= 0:
-            best_plot, best_partner, below = plot, partner, rise
-        if beds.blocks[a, REACH] == beds.blocks[a, POOL_PLOTS]:
-            continue
-        looked, plot, partner, rise = _scan_replacements(beds, admitted, planting, distances, t, a, below)
-        scored += looked
-        if plot >= 0:
-            best_plot, best_partner, below = plot, partner, rise
+        first, next_ = _span(beds, a)
+        pool = np.int64(beds.blocks[a, POOL_PLOTS])
+        last, loose = np.int64(beds.blocks[a, POOL_FIRST]) + pool, np.int64(beds.blocks[a, REACH]) - pool
+        while next_ < last + loose:
+            replacing = next_ >= last
+            many = min(STRIP, last + loose - next_ if replacing else last - next_)
+            begin_at = next_ - last if replacing else next_
+            listed = _list(beds, admitted, planting, metrics, a, begin_at, many, replacing)
+            next_ += many
+            for plot in range(first, first + np.int64(beds.blocks[a, PLOTS])):
+                u = np.int64(planting.planted[plot])
+                if planting.gate[a, u] >= PINNED:
+                    continue
+                if replacing and planting.plots[u] <= admitted.plots[LEAST, u]:
+                    continue
+                scored += _score_strip(admitted, planting, metrics, 0, listed, u, a, replacing)
+                if _any_below(metrics.strip, listed, below):
+                    j, below = _least_below(
+                        beds, admitted, planting, metrics, listed, below, u, a, replacing
+                    )
+                    if j >= 0:
+                        best_plot, best_partner = plot, np.int64(metrics.listed[PARTNER * STRIP + j])
     return scored, best_plot, best_partner, below

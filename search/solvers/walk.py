@@ -20,8 +20,8 @@ CALL_PAIRS = 4_000_000
 CALL_ENTRIES = 50_000_000
 """Most moves drawn, pairs of plots scanned, and entries of tables changed in one call: at most 0.1 s each
 on a slow processor."""
-REFRESH_AFTER = 5_000
-"""Accepted moves after which the distances are measured from scratch."""
+REFRESH_AFTER = 20_000
+"""Accepted moves after which the tables are computed from scratch."""
 DRAWS_PER_MOVE = 50
 """Where rules leave less than one legal move in so many draws, fewer moves are scored than asked for."""
 ROUNDING = 1e-12
@@ -99,7 +99,7 @@ class Walk:
         climbed : moves made although they raise the objective
         """
         factor = (cold / hot) ** (1 / moves) if cold > 0 and moves > 0 else 1.0
-        most = max(1, CALL_ENTRIES // len(self.board.distances.variance) ** 2)
+        most = max(1, CALL_ENTRIES // self.problem.tables.t**2)
         temperature, left, draws, climbed = hot, moves, DRAWS_PER_MOVE * moves, 0
         while left > 0 and draws > 0:
             scored, drawn, accepted, up = kernel().anneal(

@@ -134,3 +134,18 @@ def contents_of(matrix: Ints) -> Contents:
     """Block contents of an incidence matrix of shape (t, b)."""
     t = matrix.shape[0]
     return tuple(tuple(np.repeat(np.arange(t), column).tolist()) for column in matrix.T)
+
+
+def turned(contents: Contents, many: int) -> Contents:
+    """The plan with the two sides exchanged: for each of so many treatments the blocks that it stands in.
+
+    Parameters
+    ----------
+    contents : block contents, or what this function made of some
+    many : treatments, or then blocks
+    """
+    holding: list[list[int]] = [[] for _ in range(many)]
+    for j, block in enumerate(contents):
+        for i in block:
+            holding[i].append(j)
+    return tuple(tuple(blocks) for blocks in holding)

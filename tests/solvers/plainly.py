@@ -15,7 +15,7 @@ from tests.solvers.problems import FOREVER, in_turn, pairs, plain_tables
 
 
 def told() -> str:
-    """Plans, moves and distances of a few calls of every entry point of the kernel."""
+    """Plans, moves and tables of a few calls of every entry point of the kernel."""
     sizes = [3, 3, 2, 2, 2]
     table = plain_tables(5, sizes, plots=(2, 3))
     table.apart[0, 1] = table.apart[1, 0] = True
@@ -31,7 +31,7 @@ def told() -> str:
         walk = Walk(problem, contents_on(board), random, FOREVER)
         accepted = walk.cool(0.2, 0.01, 300)
         walk.descend(200)
-        lines.append(f"{accepted} {walk.moves} {walk.contents} {walk.board.distances.variance.sum():.9f}")
+        lines.append(f"{accepted} {walk.moves} {walk.contents} {np.abs(walk.board.metrics.inverse).sum():.9f}")
     problem = Problem(plain_tables(4, [3, 3, 2], plots=(1, 3)), pairs(4))
     walk = Walk(problem, in_turn(4, [3, 3, 2]), stream(1, 1), FOREVER)
     plot, partner = walk.best_move(np.inf) or (-1, -1)
