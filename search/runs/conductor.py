@@ -124,7 +124,7 @@ def _searched(
 
     stop.restart()
     return search_smaller_side(
-        Problem(rules, weights(trial)),
+        Problem(rules, weights(trial), trial.blocks_random),
         first,
         kept=None if best is None else best.contents,
         target=bounds.target,

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from fractions import Fraction
 
 import numpy as np
 from numpy.typing import NDArray
@@ -22,10 +23,12 @@ class Problem:
     ----------
     tables : the rules; `least` and `most` are what all the rules leave of the stated ranges
     weights : (t, t) W of a trace aim `tr(W C⁺)`, or None for the overall aim `−log pdet(C)/(t−1)`
+    blocks_random : block variance over plot variance; None where blocks are fixed
     """
 
     tables: Tables
     weights: Floats | None
+    blocks_random: Fraction | None = None
 
 
 @dataclass(frozen=True, slots=True)
