@@ -63,7 +63,9 @@ def plain(t: int, b: int, k: int) -> tuple[Problem, Contents]:
 def problem_of(trial: Trial) -> Problem:
     """The search's problem of a trial, with the replication that its rules imply."""
     implied = limits(trial)
-    return Problem(replace(tables(trial), least=implied.least, most=implied.most), weights(trial))
+    return Problem(
+        replace(tables(trial), least=implied.least, most=implied.most), weights(trial), trial.blocks_random
+    )
 
 
 def moves_from(board: Board) -> Iterator[tuple[int, int, Contents]]:
