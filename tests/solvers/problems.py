@@ -77,6 +77,7 @@ def moves_from(board: Board) -> Iterator[tuple[int, int, Contents]]:
     """
     planted, home = board.planting.planted.tolist(), board.beds.home.tolist()
     n, (b, t) = len(planted), board.planting.copies.shape
+    t -= int(board.beds.mean > 0)  # the general mean is never planted
     for plot in range(n):
         for partner in [*range(plot + 1, n), *range(n, n + t)]:
             after = list(planted)

@@ -54,7 +54,7 @@ def aim_of(kind: str, t: int) -> Floats | None:
 
 @st.composite
 def connected_problems(draw: st.DrawFn) -> tuple[Problem, Walk]:
-    """Unequal blocks, fixed or random, ranges of plots, repeats or none, every aim; and a plan to walk from."""
+    """Unequal blocks, fixed or random, ranges of plots, repeats or none, every aim; a plan to walk from."""
     t = draw(st.integers(3, 7))
     twice = draw(st.booleans())
     sizes = draw(st.lists(st.integers(2, t + 2 if twice else t), min_size=2, max_size=7))
