@@ -86,6 +86,8 @@ def small_documents(draw: st.DrawFn, most_treatments: int = 5, most_plots: int =
         "rules": rules,
         "aim": draw(_aims(names)),
     }
+    if sometimes(5):
+        document["blocks_random"] = draw(st.sampled_from(["1/2", 2, "7/3"]))
     if draw(st.booleans()):
         least = draw(st.integers(1, 2))
         document["plots_each"] = [least, least + draw(st.integers(0, 3))]

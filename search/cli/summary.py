@@ -60,7 +60,7 @@ def _figures(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
         rows.append((f"best possible, {limit}", f"{in_figures(aim, bound['value'])} ({bound['argument']})"))
     if document["gap_percent"] is not None:
         rows.append(("gap", f"{document['gap_percent']:.4f} %, {document['standing']}"))
-    if score["connected"]:
+    if score["average_pair_variance"] is not None:
         least, most = score["meetings"]["least"], score["meetings"]["most"]
         rows += [
             ("A, D, worst pair", f"{score['A']:.4f}, {score['D']:.4f}, {score['worst_pair_efficiency']:.4f}"),
@@ -71,7 +71,11 @@ def _figures(trial: Trial, document: dict[str, Any]) -> list[tuple[str, str]]:
             ("lost to replication", f"{score['loss_to_replication_percent']:.2f} %"),
             ("each pair shares", _blocks(least, most)),
         ]
-    rows.append(("residual degrees of freedom", str(score["residual_df"])))
+    df = str(score["residual_df"])
+    if trial.blocks_random is not None:
+        rows.append(("blocks", f"random, {float(trial.blocks_random):g} times the plot variance"))
+        df += " within blocks; the combined analysis has no single number"
+    rows.append(("residual degrees of freedom", df))
     rows += _expected(trial, document)
     far = f"{run['seconds']:.1f} s, {run['moves']:,} moves, seed {run['seed']}"
     rows += [("search", f"{far}: {ENDED[document['ended_by']]}"), ("start", shortened(run["start"]))]

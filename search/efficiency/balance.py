@@ -57,34 +57,66 @@ def greatest_trace(rules: Tables, planted: int | None = None) -> Fraction | None
     return min(int(sizes.sum()) - lost, Fraction(planted - rules.b))
 
 
+def greatest_information(trial: Trial, rules: Tables, planted: int) -> Fraction | None:
+    """A number that `tr C`, or `tr C(γ)` where blocks are random, passes in no plan; None where none exists.
+
+    `tr C(γ) = n − Σ_B Σ_i n_iB² γ/(1+γk_B) − Σ_i s_i²/Σs`; the last term is least, `Σs/t`, where all s_i are
+    alike, and Σs is the same for all plans. A plan with filler tells less than one with anything in its
+    place, so there blocks count as full, of whatever kind.
+
+    Parameters
+    ----------
+    trial, rules : the trial and its tables
+    planted : no plan has more plots
+    """
+    if trial.blocks_random is None:
+        return greatest_trace(rules, planted)
+    repeats = least_repeats(rules) if rules.exact else tuple(rules.sizes.tolist())
+    if repeats is None:
+        return None
+    trace, ratio = Fraction(rules.n), trial.blocks_random
+    for q, k in zip(repeats, rules.sizes.tolist(), strict=True):
+        trace -= (q * ratio + Fraction(k, rules.t)) / (1 + ratio * k)
+    return trace
+
+
 def is_balanced(trial: Trial, contents: Contents) -> bool:
     """Whether all pairs have one variance and no information is lost that need not be.
 
     All pair variances of a connected plan are equal when all off-diagonal entries of
-    `N K⁻¹ N'` are. With the greatest possible trace as well, no plan is better for an aim that
+    `N K⁻¹ N'` are; where blocks are random, `K + 1/γ` stands for K, and what the block totals tell must be
+    shared out evenly. With the greatest possible trace as well, no plan is better for an aim that
     treats all pairs alike (universal optimality: Kiefer 1975; from memory).
     """
     counts = incidence(contents, trial.t)
     squares, sizes = (counts * counts).sum(axis=0).tolist(), counts.sum(axis=0).tolist()
     lost = sum((Fraction(q, k) for q, k in zip(squares, sizes, strict=True)), Fraction())
-    if sum(sizes) - lost != greatest_trace(tables(settled_trial(trial))):
+    exact = settled_trial(trial)
+    if sum(sizes) - lost != greatest_trace(tables(exact)):
         return False
-    if len(set(_scaled_concurrences(counts, 1)[0, 1:].tolist())) > 1:
+    if trial.blocks_random is not None and exact.may_be_emptier:
+        return False  # the trace is not known to be the greatest
+    wide, shares = _scaled_shares(counts, trial.blocks_random)
+    one = (wide[0] * shares) @ wide.T
+    if len(set(one[1:].tolist())) > 1:
         return False  # one row tells it of nearly all plans
-    weighted = _scaled_concurrences(counts, trial.t)
+    weighted = (wide * shares) @ wide.T
     off_diagonal = weighted[np.triu_indices(trial.t, 1)]
-    return bool(off_diagonal[0] > 0 and (off_diagonal == off_diagonal[0]).all())
+    alike = bool((off_diagonal == off_diagonal[0]).all())
+    if trial.blocks_random is None:
+        return alike and bool(off_diagonal[0] > 0)
+    between = wide @ shares
+    return alike and bool((between == between[0]).all())
 
 
-def _scaled_concurrences(counts: Ints, rows: int) -> Ints:
-    """The first rows of `N K⁻¹ N'` times the least common multiple of the block sizes, in whole numbers."""
-    sizes = counts.sum(axis=0).tolist()
+def _scaled_shares(counts: Ints, blocks_random: Fraction | None) -> tuple[Ints, Ints]:
+    """The counts, and for each block `1/k`, or `1/(k + 1/γ)`, in whole numbers on one common scale."""
+    over, under = (1, 0) if blocks_random is None else blocks_random.as_integer_ratio()
+    sizes = [over * k + under for k in counts.sum(axis=0).tolist()]
     scale = lcm(*sizes)
     exact_in_64_bits = scale * sum(sizes) ** 2 < 2**62
     kind = np.int64 if exact_in_64_bits else object
-    shares = np.array([scale // k for k in sizes], dtype=kind)
-    wide = counts.astype(kind)
-    return np.asarray((wide[:rows] * shares) @ wide.T)
+    return counts.astype(kind), np.array([scale // k for k in sizes], dtype=kind)
 
 
 def concurrences(contents: Contents, t: int) -> Ints:

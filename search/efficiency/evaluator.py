@@ -3,6 +3,10 @@
 The information matrix of the treatments is `C = R − N K⁻¹ N'` with N the incidence of treatments in
 blocks, R the replications and K the block sizes. It is the Laplacian of the graph with weights
 `Σ_B n_iB n_jB / k_B`, so the variance of a difference is a resistance distance.
+
+Where blocks are random with γ = block variance over plot variance, what the block totals tell is counted
+too: `C(γ) = R − N diag(γ/(1+γk)) N' − s s'/Σs` with `s_i = Σ_B n_iB/(1+γk_B)`. It lies between C (γ → ∞) and
+the information without blocks, and differences have a variance even where no chain of blocks joins them.
 """
 
 from __future__ import annotations
@@ -39,11 +43,26 @@ ROWS = 256
 """Rows of large tables that are looked at together."""
 
 
-def information_matrix(contents: Contents, t: int) -> Matrix:
-    """`C = R − N K⁻¹ N'`, shape (t, t), in units of one over the plot variance."""
+def information_matrix(contents: Contents, t: int, blocks_random: Fraction | None = None) -> Matrix:
+    """`C = R − N K⁻¹ N'`, or C(γ), shape (t, t), in units of one over the plot variance.
+
+    Parameters
+    ----------
+    contents : a plan
+    t : number of treatments
+    blocks_random : γ, block variance over plot variance; None where blocks are fixed
+    """
     counts = incidence(contents, t).astype(np.float64)
+    sizes = counts.sum(axis=0)
+    replication = np.diag(counts.sum(axis=1))
+    if blocks_random is None:
+        with one_thread():
+            return np.asarray(replication - (counts / sizes) @ counts.T)
+    ratio = float(blocks_random)
+    kept = counts @ (1 / (1 + ratio * sizes))
     with one_thread():
-        return np.asarray(np.diag(counts.sum(axis=1)) - (counts / counts.sum(axis=0)) @ counts.T)
+        within = replication - (counts * (ratio / (1 + ratio * sizes))) @ counts.T
+        return np.asarray(within - np.outer(kept, kept) / kept.sum())
 
 
 def components(contents: Contents, t: int) -> int:
@@ -69,16 +88,23 @@ def pseudo_inverse(information: Matrix) -> Matrix:
         return np.asarray(np.linalg.inv(information + level) - level)
 
 
-def pair_variances(contents: Contents, t: int) -> Matrix | None:
-    """Variance of each estimated difference, in units of the plot variance; None if disconnected.
+def is_estimable(contents: Contents, t: int, blocks_random: Fraction | None = None) -> bool:
+    """Whether all differences can be estimated: the plan is connected, or blocks are random."""
+    if blocks_random is None:
+        return components(contents, t) == 1
+    return len({i for block in contents for i in block}) == t
+
+
+def pair_variances(contents: Contents, t: int, blocks_random: Fraction | None = None) -> Matrix | None:
+    """Variance of each estimated difference, in units of the plot variance; None where one has none.
 
     Returns
     -------
     variances : (t, t), `v_ij = C⁺_ii + C⁺_jj − 2 C⁺_ij`
     """
-    if components(contents, t) > 1:
+    if not is_estimable(contents, t, blocks_random):
         return None
-    return _differences(pseudo_inverse(information_matrix(contents, t)))
+    return _differences(pseudo_inverse(information_matrix(contents, t, blocks_random)))
 
 
 def _differences(inverse: Matrix) -> Matrix:
@@ -100,9 +126,9 @@ def objective(contents: Contents, trial: Trial) -> float:
     value : the aim's mean variance `tr(W C⁺)`; for overall `−log pdet(C) / (t − 1)`; for the worst pair the
         largest pair variance; for even meetings see `meetings_and_ties`
     """
-    if components(contents, trial.t) > 1:
+    if not is_estimable(contents, trial.t, trial.blocks_random):
         return float("inf")
-    information = information_matrix(contents, trial.t)
+    information = information_matrix(contents, trial.t, trial.blocks_random)
     if trial.aim.kind is AimKind.OVERALL:
         return -log_pseudo_determinant(information) / (trial.t - 1)
     inverse = pseudo_inverse(information)
@@ -136,7 +162,8 @@ def score(trial: Trial, contents: Contents) -> Score:
     counts = incidence(contents, t)
     least_meetings, most_meetings = _range_of_meetings(counts)
     replication_alone = _efficiency_without_blocks(trial, counts.sum(axis=1).tolist())
-    reached = _reached(trial, contents) if parts == 1 else _Reached()
+    estimable = is_estimable(contents, t, trial.blocks_random)
+    reached = _reached(trial, contents) if estimable else _Reached()
     blocks_alone = reached.aim / replication_alone if replication_alone else 0.0
     return Score(
         aim=squared_meetings(contents, t) if trial.aim.kind.counts_meetings else reached.aim,
@@ -185,7 +212,7 @@ def _mean_and_largest(inverse: Matrix) -> tuple[float, float]:
 
 @dataclass(frozen=True, slots=True)
 class _Reached:
-    """What a plan reaches; the defaults are those of a disconnected one."""
+    """What a plan reaches; the defaults are those of one that leaves a difference open."""
 
     aim: float = 0.0
     A: float = 0.0
@@ -198,10 +225,10 @@ class _Reached:
 
 def _reached(trial: Trial, contents: Contents) -> _Reached:
     t = trial.t
-    if t > max(LARGE, trial.b):
+    if t > max(LARGE, trial.b) and trial.blocks_random is None:
         inverse, logarithm = inverse_and_log(incidence(contents, t))
     else:
-        information = information_matrix(contents, t)
+        information = information_matrix(contents, t, trial.blocks_random)
         inverse, logarithm = pseudo_inverse(information), log_pseudo_determinant(information)
     average, largest = _mean_and_largest(inverse)
     pairs = [Fraction(2, t)] * t

@@ -52,7 +52,12 @@ def _notes(trial: Trial, document: dict[str, Any]) -> Iterator[str]:
     plots = Counter(plot["treatment"] for plot in document["plots"])
     df, gap = document["score"]["residual_df"], document["gap_percent"]
     if not document["score"]["connected"]:
-        yield "The plan is disconnected: not every difference between treatments can be estimated."
+        yield "The plan is disconnected: " + (
+            "not every difference between treatments can be estimated."
+            if trial.blocks_random is None
+            else "some differences are told by block totals alone, and an analysis with fixed blocks "
+            "cannot estimate them."
+        )
     if df < ENOUGH_DF:
         yield (
             f"{counted(df, 'residual degree')} of freedom: fewer than {ENOUGH_DF}, which EPPO standard "

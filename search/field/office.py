@@ -99,11 +99,18 @@ def _efficiency(trial: Trial, document: dict[str, Any]) -> Iterator[Figure]:
         f"{100 * score['aim']:.2f} %",
         "Against the same plots without blocks in the best replication that the file allows.",
     )
-    if bound is not None and score["connected"]:
+    if trial.blocks_random is not None:
+        yield Figure(
+            "Blocks",
+            "random",
+            "Planned for the combined analysis, which counts what block totals tell, with "
+            f"{float(trial.blocks_random):g} times the variance between blocks that there is between plots.",
+        )
+    if bound is not None and score["average_pair_variance"] is not None:
         argument = clean(str(bound.get("argument", "")))
         value = f"{100 * float(bound['value']):.2f} %" if isinstance(bound.get("value"), float) else ""
         yield Figure("Best possible, at most", value, f"Proved by: {argument}.")
-    if gap is not None and score["connected"]:
+    if gap is not None and score["average_pair_variance"] is not None:
         plots = plots_planted(document)
         worth = floor(10 * plots * (1 - gap / 100) + 1e-9) / 10
         yield Figure(
@@ -142,7 +149,7 @@ def _evenness(document: dict[str, Any]) -> Iterator[Figure]:
 
 def _losses(df_without_blocks: int, score: dict[str, Any]) -> Iterator[Figure]:
     replication, blocks = (score.get(f"loss_to_{word}_percent") for word in ("replication", "blocks"))
-    if not score["connected"] or replication is None or blocks is None:
+    if score["average_pair_variance"] is None or replication is None or blocks is None:
         return
     yield Figure("Lost to replication", f"{replication:.2f} %", "By plots shared out otherwise than is best.")
     yield Figure(
@@ -248,7 +255,7 @@ def _variances(trial: Trial, document: dict[str, Any]) -> NDArray[np.float64] | 
 
     if trial.t > MOST_PICTURED:
         return None
-    return pair_variances(_contents(trial, document), trial.t)
+    return pair_variances(_contents(trial, document), trial.t, trial.blocks_random)
 
 
 def _contents(trial: Trial, document: dict[str, Any]) -> Contents:

@@ -21,7 +21,7 @@ def standing_in_words(document: dict[str, Any]) -> tuple[str, ...]:
     document : the plan as in plan.json
     """
     score, gap, standing = document["score"], document["gap_percent"], document["standing"]
-    if not score["connected"]:
+    if score["average_pair_variance"] is None:
         return (
             "This plan falls into parts that share no block: treatments of one part cannot be "
             "compared with those of another.",

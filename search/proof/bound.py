@@ -8,7 +8,7 @@ from types import ModuleType
 from typing import Any
 
 from search.proof.aims import pair_weights
-from search.proof.certificates import KINDS, OF_ANY_FILLING
+from search.proof.certificates import KINDS, KNOW_RANDOM_BLOCKS, OF_ANY_FILLING
 from search.proof.certificates.case import Case
 from search.proof.certificates.claims import Claim, LeastSum
 from search.proof.intervals import Interval
@@ -61,6 +61,8 @@ def _derived(certificate: Part, case: Case) -> Claim | LeastSum:
         raise Refuted(f"a certificate of a kind that this version cannot check: {quoted(word)}")
     if word not in OF_ANY_FILLING and not case.rules.exact:
         raise Refuted(f"a certificate of the kind {word} says nothing of blocks that may stay partly empty")
+    if case.trial.blocks_random is not None and word not in KNOW_RANDOM_BLOCKS:
+        raise Refuted(f"a certificate of the kind {word} says nothing where blocks are random")
     if case.aim is AimKind.WORST_PAIR and AimKind.ALL_PAIRS in kind.AIMS:
         return _by_average(kind, certificate, case)
     if case.aim not in kind.AIMS:

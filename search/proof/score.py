@@ -53,7 +53,7 @@ def _mismatches(claims: Part, real: Truth, aim: AimKind) -> Iterator[str]:
     ):
         if exact is None:
             if claims.value(key) is not None:
-                yield f"{key} must be null: no variance exists in a disconnected plan"
+                yield f"{key} must be null: some difference cannot be estimated"
         elif not exact.agrees(claimed := claims.number(key), RELATIVE):
             yield f"{key} is claimed to be {told(claimed)}, but is {told(exact.low)}"
     for key, exact in (

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from fractions import Fraction
 
-from search.proof.certificates.case import Case, greatest_trace
+from search.proof.certificates.case import Case
 from search.proof.information import Information
 from search.proof.intervals import Interval
 from search.proof.parts import Part, quoted, told
@@ -64,12 +64,12 @@ def is_balanced(case: Case, plan: Information) -> bool:
     """
     alike = case.aim not in (AimKind.AGAINST_CONTROL, AimKind.CONTRASTS)
     trace = Fraction(plan.trace_scaled, plan.scale)
-    return alike and plan.completely_symmetric and trace == greatest_trace(case.rules)
+    return alike and plan.completely_symmetric and trace == case.greatest_trace
 
 
 def _standings(case: Case, plan: Information, real: Truth, bound: Fraction | None) -> tuple[str, ...]:
     """The words that hold; two only where an enclosure cannot tell a gap from one in a million."""
-    if not bound or not real.connected:
+    if not bound or real.average_pair_variance is None:
         return ("feasible",)
     gap = _gap(case, real, bound)
     if is_balanced(case, plan) and (gap.high <= 0 or not case.aim.counts_meetings):

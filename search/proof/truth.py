@@ -15,7 +15,7 @@ from search.trial.records import AimKind, Trial
 
 @dataclass(frozen=True, slots=True)
 class Truth:
-    """The score of a plan as it is; variances are None where the plan is disconnected.
+    """The score of a plan as it is; variances are None where a difference cannot be told.
 
     `aim` is the efficiency for the aim, and for even meetings the sum of squared meetings, a whole number.
     """
@@ -36,12 +36,13 @@ class Truth:
 def truth(trial: Trial, plan: Information) -> Truth:
     """The score of a plan whose counts obey the trial."""
     degrees = sum(plan.replication) - trial.b - trial.t + plan.components
-    if plan.components > 1:
+    if not plan.estimable:
         nothing = Interval.exactly(0)
         lost = _replication_kept(trial, plan).less_than_one_by()
         all_ = Interval.exactly(1)
         aim = _squares(plan) if trial.aim.kind.counts_meetings else nothing
-        return Truth(aim, nothing, nothing, nothing, None, None, lost, all_, degrees, False, True)
+        connected = plan.components == 1
+        return Truth(aim, nothing, nothing, nothing, None, None, lost, all_, degrees, connected, True)
 
     found = variances(plan)
     average, largest = aims.average_pair_variance(found), aims.largest_pair_variance(found)
@@ -71,7 +72,7 @@ def truth(trial: Trial, plan: Information) -> Truth:
         loss_to_replication=_replication_kept(trial, plan).less_than_one_by(),
         loss_to_blocks=_blocks_kept(trial, plan, found).less_than_one_by(),
         residual_df=degrees,
-        connected=True,
+        connected=plan.components == 1,
         exact=found.exact,
     )
 

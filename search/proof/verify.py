@@ -91,7 +91,7 @@ def _claims(file: Part, trial: Trial, contents: Contents, proof: _Proof) -> None
         case = case_of(trial)
     except Impossible as clash:
         raise Refuted(f"no plan can obey the trial's own counts: {clash}") from clash
-    plan = information(contents, trial.t)
+    plan = information(contents, trial.t, trial.blocks_random)
     real = truth(trial, plan)
     claims = file.part("score")
     proof.findings.extend(score.compared(claims, real, case.aim))

@@ -49,15 +49,27 @@ def _of_connection(trial: Trial) -> Iterator[str]:
     if trial.n < needed:
         yield (
             f"{trial.n} plots cannot connect {trial.t} treatments in {trial.b} blocks: at least "
-            f"{needed} are needed, so not every difference can be estimated"
+            f"{needed} are needed, so {_left_open(trial)}"
         )
     groups = _groups(_can_meet(trial))
     if len(groups) > 1:
         smallest = min(groups, key=len)
         yield (
-            f"the rules keep {len(groups)} groups of treatments from ever meeting, so no plan can compare "
-            f"them: {_named(trial, smallest)} never stand with any of the others"
+            f"the rules keep {len(groups)} groups of treatments from ever meeting, "
+            f"so {_not_compared(trial)}: {_named(trial, smallest)} never stand with any of the others"
         )
+
+
+def _not_compared(trial: Trial) -> str:
+    return "no plan can compare them" if trial.blocks_random is None else _left_open(trial)
+
+
+def _left_open(trial: Trial) -> str:
+    if trial.blocks_random is None:
+        return "not every difference can be estimated"
+    return (
+        "some differences are told by block totals alone, and only if blocks are as random as the file says"
+    )
 
 
 def _groups(can_meet: Bools) -> list[list[int]]:

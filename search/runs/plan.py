@@ -66,7 +66,7 @@ class Plan:
     @property
     def standing(self) -> Standing:
         """Balanced, proven optimal, bounded or feasible."""
-        if self.bound is None or not self.score.connected:
+        if self.bound is None or self.score.average_pair_variance is None:
             return Standing.FEASIBLE
         aim, gap = self.trial.aim.kind, self._distance(self.bound)
         # Balanced with unequal blocks need not be as even as can be: only a met bound tells.

@@ -101,6 +101,8 @@ def connected(problem: Problem, contents: Contents, random: Stream, stop: Stop) 
     stop : ends the attempt
     """
     tables = problem.tables
+    if problem.blocks_random is not None:
+        return contents  # block totals tell what no chain of blocks does
     if tables.n < tables.t + tables.b - 1:
         return None  # too few plots to connect so many treatments and blocks, however planted
     board = board_of(problem, contents)

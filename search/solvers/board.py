@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING, Any, NamedTuple
 
 import numpy as np
@@ -9,8 +10,8 @@ from numpy.typing import NDArray
 
 from search.efficiency.balance import squared_meetings
 from search.efficiency.evaluator import (
-    components,
     information_matrix,
+    is_estimable,
     log_pseudo_determinant,
     meetings_and_ties,
     pseudo_inverse,
@@ -46,13 +47,13 @@ class Board(NamedTuple):
 
 def objective(problem: Problem, contents: Contents) -> float:
     """The aim's objective from scratch, see `search.efficiency.evaluator.objective`; inf if disconnected."""
-    t = problem.tables.t
+    t, ratio = problem.tables.t, problem.blocks_random
     if problem.filler:
         t -= problem.filler
         contents = emptied(contents, t)
-    if components(contents, t) > 1:
+    if not is_estimable(contents, t, ratio):
         return float("inf")
-    information = information_matrix(contents, t)
+    information = information_matrix(contents, t, ratio)
     if problem.weights is None:
         return -log_pseudo_determinant(information) / (t - 1)
     inverse = pseudo_inverse(information)
@@ -74,14 +75,38 @@ def unit_of(problem: Problem, value: float) -> float:
 
 
 def board_of(problem: Problem, contents: Contents) -> Board:
-    """A board with a plan on it; the tables of its metrics wait for `refresh`."""
-    tables = problem.tables
-    beds = _beds(tables)
+    """A board with a plan on it; the tables of its metrics wait for `refresh`.
+
+    Where blocks are random the general mean is a point of its own, after the treatments: it has a weight of
+    one over the ratio of the variances in every block, and no plot. `C(γ)` is what such a plan tells of the
+    treatments, for a random block effect is an observation of that weight on the difference between the
+    block and the mean.
+    """
+    weight = 0.0 if problem.blocks_random is None else float(1 / problem.blocks_random)
+    tables = problem.tables if weight == 0 else _with_mean(problem.tables)
+    beds = _beds(tables, weight)
     return Board(
         beds=beds,
         admitted=_admitted(tables),
         planting=_planting(tables, beds, contents),
-        metrics=_metrics(tables, overall=problem.weights is None),
+        metrics=_metrics(tables, overall=problem.weights is None, degrees=problem.tables.t - 1.0),
+    )
+
+
+def _with_mean(tables: Tables) -> Tables:
+    """The tables with one treatment more, which never has a plot."""
+    last = ((0, 1), (0, 0))
+    corner = ((0, 1), (0, 1))
+    return replace(
+        tables,
+        low=np.pad(tables.low, last),
+        high=np.pad(tables.high, last),
+        least=np.pad(tables.least, (0, 1)),
+        most=np.pad(tables.most, (0, 1)),
+        apart=np.pad(tables.apart, corner),
+        meet_least=np.pad(tables.meet_least, corner),
+        meet_most=np.pad(tables.meet_most, corner, constant_values=tables.b),
+        share=np.pad(tables.share, last),
     )
 
 
@@ -92,18 +117,21 @@ def contents_on(board: Board) -> Contents:
 
 def refresh(problem: Problem, board: Board) -> None:
     """Compute the tables of a connected plan from scratch."""
-    t = problem.tables.t
-    information = information_matrix(contents_on(board), t)
+    counts = board.planting.copies.T.astype(np.float64)
+    counts[problem.tables.t :] = board.beds.mean
+    t = len(counts)
     with one_thread():
+        information = np.diag(counts.sum(axis=1)) - (counts * board.beds.share) @ counts.T
         inverse = np.linalg.inv(information + 1 / t)
         board.metrics.inverse[:, :t] = inverse
         if problem.weights is not None:
-            board.metrics.worth[:, :t] = inverse @ problem.weights @ inverse
+            known = inverse[:, : problem.tables.t]
+            board.metrics.worth[:, :t] = known @ problem.weights @ known.T
     board.metrics.stamps[:] = -1
     board.metrics.stamps[-1] = 0
 
 
-def _beds(tables: Tables) -> Beds:
+def _beds(tables: Tables, mean: float) -> Beds:
     module = kernel()
     order = np.argsort(tables.group, kind="stable")
     blocks = np.zeros((tables.b, 5), dtype=np.uint32)
@@ -117,7 +145,11 @@ def _beds(tables: Tables) -> Beds:
     blocks[:, module.REACH] = blocks[:, module.POOL_PLOTS] + len(loose) * (tables.group < 0)
     home = np.repeat(order, tables.sizes[order])
     beds: Beds = module.Beds(
-        home=_number(home), blocks=blocks, share=1.0 / tables.sizes, loose=_number(loose)
+        home=_number(home),
+        blocks=blocks,
+        share=1.0 / (tables.sizes + mean),
+        loose=_number(loose),
+        mean=mean,
     )
     return beds
 
@@ -157,7 +189,7 @@ def _planting(tables: Tables, beds: Beds, contents: Contents) -> Planting:
     return planting
 
 
-def _metrics(tables: Tables, *, overall: bool) -> Metrics:
+def _metrics(tables: Tables, *, overall: bool, degrees: float) -> Metrics:
     module, t, b = kernel(), tables.t, tables.b
     width = -(-t // LANES) * LANES
     of_worth = (1, 1) if overall else (t, width)
@@ -171,7 +203,7 @@ def _metrics(tables: Tables, *, overall: bool) -> Metrics:
         strip=np.zeros(module.STRIP_COLUMNS * module.STRIP),
         listed=np.zeros(4 * module.STRIP, dtype=np.uint32),
         overall=overall,
-        degrees=t - 1.0,
+        degrees=degrees,
     )
     return metrics
 

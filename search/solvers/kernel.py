@@ -93,9 +93,11 @@ class Beds(NamedTuple):
     blocks: Any
     """(b, 5) see FIRST and the other columns"""
     share: Any
-    """(b,) one over the plots of the block"""
+    """(b,) one over the weight in the block: of its plots, and of the general mean"""
     loose: Any
     """treatments whose replication may change"""
+    mean: float
+    """Weight of the general mean in every block: 0 where blocks are fixed, else it is the last treatment"""
 
 
 class Admitted(NamedTuple):
@@ -164,7 +166,7 @@ _YES, _INT, _FLOAT = types.boolean, types.int64, types.float64
 _RANDOM = types.uint64[::1]
 _BOARD = types.Tuple(
     (
-        types.Tuple((_U1, _U2, _F1, _U1)),
+        types.Tuple((_U1, _U2, _F1, _U1, _FLOAT)),
         types.Tuple((_I2, _I3, _I3, _I2, _YES, _YES)),
         types.Tuple((_U1, _I1, _I2, _I2, _I2, _U1)),
         types.Tuple((_F2, _F2, _F3, _F2, _I8, _F2, _F1, _U1, _YES, _FLOAT)),
@@ -400,12 +402,18 @@ def _add_block(beds, planted, table, width, block, factor, vector):
         j = np.int64(planted[plot])
         for i in range(width):
             vector[i] += factor * table[j, i]
+    if beds.mean > 0.0:
+        factor *= beds.mean
+        for i in range(width):
+            vector[i] += factor * table[len(table) - 1, i]
 
 
 @_inner
-def _mean_of(beds, planted, vector, block):
-    """The mean of a vector over the plots of a block."""
+def _mean_of(beds, planted, vector, t, block):
+    """The mean of a vector of so many treatments over the plots of a block."""
     total = 0.0
+    if beds.mean > 0.0:
+        total = beds.mean * vector[t - 1]
     begin, end = _span(beds, block)
     for plot in range(begin, end):
         total += vector[np.int64(planted[plot])]
@@ -413,8 +421,8 @@ def _mean_of(beds, planted, vector, block):
 
 
 @_inner
-def _take_means(planted, begin, end, share, table, means):
-    """The mean of the rows of some plots, four rows at a time; returns its mean over the plots."""
+def _take_means(planted, begin, end, share, mean, table, means):
+    """The mean row of the plots of a block, four rows at a time; returns its mean over the plots."""
     for first in range(begin, end, 4):
         i = np.int64(planted[first])
         j, k, m = i, i, i
@@ -430,6 +438,11 @@ def _take_means(planted, begin, end, share, table, means):
             four = share * table[i, x] + at_j * table[j, x] + at_k * table[k, x] + at_m * table[m, x]
             means[x] = kept * means[x] + four
     total = 0.0
+    if mean > 0.0:
+        last = len(table) - 1
+        for x in range(len(means)):
+            means[x] += share * mean * table[last, x]
+        total = mean * means[last]
     for plot in range(begin, end):
         total += means[np.int64(planted[plot])]
     return share * total
@@ -443,9 +456,11 @@ def _renew(beds, planted, metrics, block):
     if stamps[block] != now:
         stamps[block] = now
         begin, end = _span(beds, block)
-        inner[0, block] = _take_means(planted, begin, end, share, metrics.inverse, means[0, block])
+        table = metrics.inverse
+        inner[0, block] = _take_means(planted, begin, end, share, beds.mean, table, means[0, block])
         if not metrics.overall:
-            inner[1, block] = _take_means(planted, begin, end, share, metrics.worth, means[1, block])
+            table = metrics.worth
+            inner[1, block] = _take_means(planted, begin, end, share, beds.mean, table, means[1, block])
 
 
 @_hot
@@ -461,6 +476,7 @@ def _columns(beds, admitted, planting, metrics, a, first, many):
     most = 1 if admitted.any_apart else 0
     _renew(beds, planted, metrics, a)
     last, gamma, c_, plot = np.int64(-1), 0.0, 0.0, first
+    t = _treatments(planting)
     j = 0
     for i in range(many):
         v, c = np.int64(planted[plot]), np.int64(beds.home[plot])
@@ -468,10 +484,10 @@ def _columns(beds, admitted, planting, metrics, a, first, many):
             last = c
             _renew(beds, planted, metrics, c)
             gamma = metrics.inner[0, a] + metrics.inner[0, c] + beds.share[a] + beds.share[c]
-            gamma -= 2.0 * _mean_of(beds, planted, metrics.means[0, a], c)
+            gamma -= 2.0 * _mean_of(beds, planted, metrics.means[0, a], t, c)
             if not metrics.overall:
                 c_ = metrics.inner[1, a] + metrics.inner[1, c]
-                c_ -= 2.0 * _mean_of(beds, planted, metrics.means[1, a], c)
+                c_ -= 2.0 * _mean_of(beds, planted, metrics.means[1, a], t, c)
         listed[PARTNER * STRIP + j], listed[POINT * STRIP + j], listed[BLOCK * STRIP + j] = plot, v, c
         listed[ORDER * STRIP + j] = i
         may = (a != c) & (gate[a, v] & ~PINNED <= most) & (gate[c, v] < PINNED)
@@ -642,12 +658,12 @@ def _images(beds, planted, table, t, u, v, a, c, of_d, of_w):
 
 
 @_inner
-def _product_with_w(beds, planted, vector, u, v, a, c):
+def _product_with_w(beds, planted, vector, t, u, v, a, c):
     """`w − ½ s d` times a vector over the treatments."""
     d = vector[u] - vector[v]
-    in_a = _mean_of(beds, planted, vector, a)
+    in_a = _mean_of(beds, planted, vector, t, a)
     if c >= 0:
-        return in_a - _mean_of(beds, planted, vector, c) - 0.5 * (beds.share[a] + beds.share[c]) * d
+        return in_a - _mean_of(beds, planted, vector, t, c) - 0.5 * (beds.share[a] + beds.share[c]) * d
     return in_a - 0.5 * (vector[u] + vector[v]) - 0.5 * beds.share[a] * d
 
 
@@ -678,7 +694,7 @@ def _move_points(beds, planted, metrics, t, u, v, a, c):
     g, h, x, y, p, q = work[0], work[1], work[2], work[3], work[4], work[5]
     _images(beds, planted, inverse, width, u, v, a, c, g, h)
     alpha, one = g[u] - g[v], 1.0 + h[u] - h[v]
-    gamma = _product_with_w(beds, planted, h, u, v, a, c)
+    gamma = _product_with_w(beds, planted, h, t, u, v, a, c)
     ratio = one * one - alpha * gamma
     for i in range(width):
         x[i] = (gamma * g[i] - one * h[i]) / ratio
@@ -688,7 +704,7 @@ def _move_points(beds, planted, metrics, t, u, v, a, c):
         return 0.0, ratio
     _images(beds, planted, worth, width, u, v, a, c, p, q)
     half_a, half_b = 0.5 * (p[u] - p[v]), 0.5 * (q[u] - q[v])
-    half_c = 0.5 * _product_with_w(beds, planted, q, u, v, a, c)
+    half_c = 0.5 * _product_with_w(beds, planted, q, t, u, v, a, c)
     rise = 2.0 * (gamma * half_a - 2.0 * one * half_b + alpha * half_c) / ratio
     for i in range(width):
         p[i] += half_a * x[i] + half_b * y[i]

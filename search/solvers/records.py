@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from enum import StrEnum
+from fractions import Fraction
 
 import numpy as np
 from numpy.typing import NDArray
@@ -37,12 +38,14 @@ class Problem:
     weights : (t, t) W of a mean variance `tr(W C⁺)`, or None for the overall aim `−log pdet(C)/(t−1)`
     goal : what is made small
     filler : how many of the treatments, the last ones, are only filler (`search.solvers.filler`)
+    blocks_random : block variance over plot variance; None where blocks are fixed
     """
 
     tables: Tables
     weights: Floats | None
     goal: Goal = Goal.SPREAD
     filler: int = 0
+    blocks_random: Fraction | None = None
 
 
 def goal_of(aim: AimKind) -> Goal:
@@ -63,7 +66,7 @@ def problem_of(trial: Trial, rules: Tables, filler: int = 0) -> Problem:
     matrix = weights(trial) if goal is Goal.SPREAD else pair_weights(trial.t)
     if matrix is not None:
         matrix = np.pad(matrix, (0, filler))
-    return Problem(rules, matrix, goal, filler)
+    return Problem(rules, matrix, goal, filler, trial.blocks_random)
 
 
 @dataclass(frozen=True, slots=True)

@@ -45,10 +45,11 @@ def other_side(problem: Problem) -> Side | None:
     """The side of the blocks, where it is the smaller one and says the same.
 
     It does for the overall aim, and for all pairs where replications are equal; no rule may speak of pairs of
-    treatments or of replicates.
+    treatments or of replicates, and blocks must be fixed.
     """
     tables = problem.tables
-    if tables.b >= tables.t or problem.goal is not Goal.SPREAD or problem.filler or not _turns(tables):
+    plain = problem.goal is Goal.SPREAD and not problem.filler and problem.blocks_random is None
+    if tables.b >= tables.t or not plain or not _turns(tables):
         return None
     t, b, n, plots = tables.t, tables.b, tables.n, tables.least
     rules = replace(

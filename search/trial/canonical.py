@@ -172,7 +172,10 @@ class _Parts:
         """Every relation, by places in this order; the usual ones once, the others one by one."""
         place = {g: number for number, g in enumerate(self.replicates())}
         group = [int(self.rel.group[members[0]]) for members in self.blocks]
-        return {
+        # blocks that are fixed leave no entry: the digests of such trials stay what they always were
+        ratio = self.rel.blocks_random
+        random = {} if ratio is None else {"blocks_random": _rational(ratio)}
+        return random | {
             "treatments": [list(mark) for mark in self.treatment_marks()],
             "blocks": [
                 # A mark of its own where plots may stay filler; other blocks are written as ever.

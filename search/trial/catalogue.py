@@ -13,7 +13,6 @@ from search.trial.kinds import (
     Kind,
     Lines,
     Listing,
-    NotYet,
     Number,
     Ratio,
     Report,
@@ -213,7 +212,7 @@ TRIAL_KEYS: dict[str, Kind] = {
             "blind": Flag(),
         }
     ),
-    "blocks_random": NotYet("planning for the combined analysis"),
+    "blocks_random": Ratio(positive=True),
 }
 
 TRIAL = Fields(

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections import Counter
 from collections.abc import Iterator
 from dataclasses import replace
+from fractions import Fraction
 from pathlib import Path
 from typing import Any
 
@@ -36,6 +37,9 @@ from search.trial.records import (
     Wanted,
 )
 from search.trial.wanted import bays, read_wanted
+
+WIDEST_RATIO = 1000
+"""Of the variances of blocks and plots, either way: beyond, floats cannot tell such a plan from its limit."""
 
 
 def read_trial(path: str | Path) -> Trial:
@@ -109,6 +113,7 @@ class _Reader:
             even="plots_each" not in self.section and any(not x.own_range for x in plants),
             plots_each=self.plots_each,
             aim=aim,
+            blocks_random=self._blocks_random(),
             ground=ground,
             wanted=wanted,
             about=tuple(self.section.get("about", {}).items()),
@@ -342,6 +347,20 @@ class _Reader:
                 "a test finds nothing at all as often as its level says",
                 "power_percent: 80",
             )
+
+    def _blocks_random(self) -> Fraction | None:
+        ratio: Fraction | None = self.section.get("blocks_random")
+        if ratio is not None and not Fraction(1, WIDEST_RATIO) <= ratio <= WIDEST_RATIO:
+            self.report.add(
+                self.section.where["blocks_random"],
+                "blocks_random",
+                f"{float(ratio):.12g}",
+                f"block variance over plot variance, from 1/{WIDEST_RATIO} to {WIDEST_RATIO}",
+                "beyond, blocks tell as good as nothing, or are as good as not there",
+                "leave the key out to plan for fixed blocks",
+            )
+            return None
+        return ratio
 
     def _aim(self, names: Names, treatments: tuple[Treatment, ...]) -> Aim:
         value = self.section.get("aim", AimKind.ALL_PAIRS.value)

@@ -285,6 +285,8 @@ class Trial:
     """True where `plots_each` was left out and some treatment takes the even share."""
     plots_each: tuple[int, int] | None = None
     aim: Aim = Aim()
+    blocks_random: Fraction | None = None
+    """Block variance over plot variance, to plan for the combined analysis; None for fixed blocks."""
     ground: Ground | None = None
     wanted: Wanted | None = None
     """Set while the blocks are not cut from the map yet; their sizes are known, their plots are not."""

@@ -28,6 +28,7 @@ class Relations:
     group : (b,) number of the block's replicate, -1 outside
     pairs : (t, t) fewest and most meetings and whether the pair is apart, in one number
     cells : (t, b) fewest and most plots in the block and the plots in its replicate, in one number
+    blocks_random : block variance over plot variance, None where blocks are fixed
     shares : weight of each contrast of the aim over the sum of all weights
     coefficients : for each contrast the coefficient of each treatment
     """
@@ -39,6 +40,7 @@ class Relations:
     group: Ints
     pairs: Ints
     cells: Ints
+    blocks_random: Fraction | None
     shares: tuple[Fraction, ...]
     coefficients: tuple[tuple[Fraction, ...], ...]
 
@@ -72,6 +74,7 @@ def relations(trial: Trial) -> Relations:
         group=rules.group,
         pairs=_pairs(rules),
         cells=_cells(rules),
+        blocks_random=trial.blocks_random,
         shares=tuple(contrast.weight / total for contrast in contrasts),
         coefficients=tuple(_row(contrast.of, trial.t) for contrast in contrasts),
     )

@@ -310,7 +310,7 @@ WORDS: dict[str, Words] = {
     "blocks_random": Words(
         "Random blocks",
         "Block variance over plot variance: plan for the combined analysis.",
-        "the plan counts on what blocks can tell about treatments",
+        "fixed blocks waste what block totals tell; a plan that counts on it needs the combined analysis",
         "blocks_random: 2",
     ),
     "search": Words("Search", "How far to search.", NUMBERS, "search: {seconds: 20}"),

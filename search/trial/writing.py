@@ -46,6 +46,8 @@ def trial_document(trial: Trial) -> dict[str, Any]:
     if trial.ground is not None:
         document["ground"] = written_ground(trial.ground, blocks)
     document["aim"] = _aim(trial.aim, names)
+    if trial.blocks_random is not None:
+        document["blocks_random"] = _number(trial.blocks_random)
     for key, part in (
         ("search", trial.search),
         ("randomise", trial.randomise),

@@ -12,7 +12,7 @@ from search.field.standing import standing_in_words
 
 def words(standing: str, gap: float | None, connected: bool = True, plots: int = 47) -> str:
     """The sentences for a plan with the figures given."""
-    score = {"aim": 0.812, "connected": connected}
+    score = {"aim": 0.812, "average_pair_variance": 0.5 if connected else None}
     document: dict[str, Any] = {"score": score, "gap_percent": gap, "standing": standing}
     return " ".join(standing_in_words(document, plots))
 

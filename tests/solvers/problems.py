@@ -66,7 +66,9 @@ def plain(t: int, b: int, k: int) -> tuple[Problem, Contents]:
 def problem_of(trial: Trial) -> Problem:
     """The search's problem of a trial of exact blocks, with the replication that its rules imply."""
     implied = limits(trial)
-    return Problem(replace(tables(trial), least=implied.least, most=implied.most), weights(trial))
+    return Problem(
+        replace(tables(trial), least=implied.least, most=implied.most), weights(trial), trial.blocks_random
+    )
 
 
 def filled_problem(trial: Trial) -> tuple[Problem, Contents]:
@@ -89,6 +91,7 @@ def moves_from(board: Board) -> Iterator[tuple[int, int, Contents]]:
     """
     planted, home = board.planting.planted.tolist(), board.beds.home.tolist()
     n, (b, t) = len(planted), board.planting.copies.shape
+    t -= int(board.beds.mean > 0)  # the general mean is never planted
     for plot in range(n):
         for partner in [*range(plot + 1, n), *range(n, n + t)]:
             after = list(planted)

@@ -6,6 +6,7 @@ import os
 import subprocess
 import sys
 from dataclasses import replace
+from fractions import Fraction
 from pathlib import Path
 
 import numpy as np
@@ -53,14 +54,15 @@ def aim_of(kind: str, t: int) -> Floats | None:
 
 @st.composite
 def connected_problems(draw: st.DrawFn) -> tuple[Problem, Walk]:
-    """Unequal blocks, ranges of plots, repeats or none, every aim; and a connected plan to walk from."""
+    """Unequal blocks, fixed or random, ranges of plots, repeats or none, every aim; a plan to walk from."""
     t = draw(st.integers(3, 7))
     twice = draw(st.booleans())
     sizes = draw(st.lists(st.integers(2, t + 2 if twice else t), min_size=2, max_size=7))
     assume(sum(sizes) >= t + len(sizes) - 1)
     plots = (1, sum(sizes)) if draw(st.booleans()) else None
     aim = draw(st.sampled_from(["all pairs", "against control", "contrasts", "overall"]))
-    problem = Problem(plain_tables(t, sizes, plots=plots, twice=twice), aim_of(aim, t))
+    ratio = draw(st.sampled_from([None, None, None, Fraction(1, 3), Fraction(5)]))
+    problem = Problem(plain_tables(t, sizes, plots=plots, twice=twice), aim_of(aim, t), ratio)
     random = stream(draw(st.integers(0, 99)), 0)
     start = connected(problem, in_turn(t, sizes), random, FOREVER)
     assume(start is not None and within(problem.tables, start))

@@ -116,6 +116,7 @@ MISTAKES = {
         "north: [Arlen]",
     ),
     "every_block_kept_out": Mistake(6, ("the name of a block",), "every block", "north"),
+    "block_ratio_of_nothing": Mistake(5, ("from 1/1000 to 1000", "leave the key out"), "0.0001", "0.01"),
     "decimal_comma": Mistake(5, ("a decimal point: 8.1",), '"8,1"', "8.1"),
     "decimal_comma_in_braces": Mistake(5, ('the key "1"',), "8,1", "8.1"),
     "per_cent": Mistake(5, ("the number alone: 9",), "9%", "9"),

@@ -4,7 +4,7 @@ Statement. Let S = n − Σ_B q_B / k_B, q_B the least `Σ_i n_iB²` that the ru
 m = t − 1. Then `Σ 1/x ≥ m² / S` and `Π x ≤ (S/m)^m` over the nonzero eigenvalues x of C.
 
 Proof. `tr C = n − Σ_B Σ_i n_iB² / k_B ≤ S`; the harmonic and the geometric mean are at most the
-arithmetic one.
+arithmetic one. Where blocks are random S is the greatest trace of C(γ), see `greatest_information`.
 
 Source. Kempthorne 1956 for the average variance; Kiefer 1958 (from memory).
 """
@@ -30,4 +30,4 @@ def applies(trial: Trial) -> bool:
 
 def find(given: Problem) -> Bound | None:
     """The bound; it needs no multipliers."""
-    return bound_on_spectrum(given, NAME, even_spectrum(given.m, given.trace), {})
+    return bound_on_spectrum(given, NAME, even_spectrum(given.m, given.information), {})

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 from typing import Any
 
-from search.efficiency.balance import greatest_trace
+from search.efficiency.balance import greatest_information, greatest_trace
 from search.efficiency.records import Bound
 from search.efficiency.reference import reference_product, reference_variance
 from search.foundation.exact import power_root_above, rounded_down, rounded_up
@@ -32,6 +32,7 @@ class Problem:
     trial, rules : the trial and its rules as arrays
     limits : the replication that all the rules together leave
     trace : the greatest `tr C` that the rules allow, n − b where nothing stands twice
+    information : the same of what is scored: C, or C(γ) where blocks are random
 
     Where plots may stay filler, a bound holds for every plan, however many are planted.
     """
@@ -40,6 +41,7 @@ class Problem:
     rules: Tables
     limits: Limits
     trace: Fraction
+    information: Fraction
 
     @property
     def m(self) -> int:
@@ -58,12 +60,13 @@ class Problem:
 
 
 def problem(trial: Trial, limits: Limits) -> Problem | None:
-    """The trial as the bounds see it; None where no plan can be connected, so that none has worth."""
+    """The trial as the bounds see it; None where no plan can tell all differences, so that none has worth."""
     rules = tables(trial)
     trace = greatest_trace(rules, limits.planted[1])
-    if trace is None or trace <= 0 or (limits.most < 1).any():
+    information = greatest_information(trial, rules, limits.planted[1])
+    if trace is None or information is None or information <= 0 or (limits.most < 1).any():
         return None
-    return Problem(trial, rules, limits, trace)
+    return Problem(trial, rules, limits, trace, information)
 
 
 def bound_on_variance(

@@ -41,6 +41,7 @@ class Argument:
     find : its bound, or None where it has none to give
     seconds : what it takes in a large trial, about
     any_filling : whether it also holds where plots of a block may stay filler
+    knows_random_blocks : whether it also holds where what block totals tell is counted
     """
 
     name: str
@@ -49,10 +50,13 @@ class Argument:
     find: Callable[[Problem], Bound | None]
     seconds: float = QUICK
     any_filling: bool = False
+    knows_random_blocks: bool = False
 
     def speaks_of(self, trial: Trial) -> bool:
         """Whether it holds for a trial at all."""
-        return (self.any_filling or not trial.may_be_emptier) and self.applies(trial)
+        if trial.may_be_emptier and not self.any_filling:
+            return False
+        return (trial.blocks_random is None or self.knows_random_blocks) and self.applies(trial)
 
 
 @dataclass(frozen=True, slots=True)
@@ -66,16 +70,30 @@ class Tried:
 
 ARGUMENTS = (
     *(
-        Argument(module.NAME, module.SENTENCE, module.applies, module.find, any_filling=True)
+        Argument(
+            module.NAME,
+            module.SENTENCE,
+            module.applies,
+            module.find,
+            any_filling=True,
+            knows_random_blocks=True,
+        )
         for module in (first_order, replication, trace_root)
     ),
     *(
-        Argument(module.NAME, module.SENTENCE, module.applies, module.find)
-        for module in (even_pairs, worst_pair, pairs, meets)
+        Argument(module.NAME, module.SENTENCE, module.applies, module.find, knows_random_blocks=True)
+        for module in (even_pairs, pairs, meets)
     ),
+    Argument(
+        meets.EVEN,
+        meets.SENTENCE,
+        meets.applies_to_meetings,
+        meets.find_for_meetings,
+        knows_random_blocks=True,
+    ),
+    Argument(worst_pair.NAME, worst_pair.SENTENCE, worst_pair.applies, worst_pair.find),
     Argument(averaged.NAME, averaged.SENTENCE, averaged.applies, averaged.find, 1.0),
     Argument(control_meets.NAME, control_meets.SENTENCE, control_meets.applies, control_meets.find, 1.0),
-    Argument(meets.EVEN, meets.SENTENCE, meets.applies_to_meetings, meets.find_for_meetings),
     Argument(normalised.NAME, normalised.SENTENCE, normalised.applies, normalised.find, 1.0),
     Argument(local.NAME, local.SENTENCE, local.applies, local.find, 1.0),
     Argument(local.FINER, local.FINER_SENTENCE, local.applies, local.find_finer, 5.0),

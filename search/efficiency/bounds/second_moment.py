@@ -2,6 +2,10 @@
 
 Where nothing stands twice in a block, `tr C = n − b` for every plan. Each program finds a number that
 `tr C²` of no plan is below; the best eigenvalues with that trace and second moment give the bound.
+
+Where blocks are random, all of k plots, and all treatments have r plots, `C(γ) = (1−φ) r + φ C` on contrasts
+with `φ = γk/(1+γk)`: the best eigenvalues of C give those of C(γ), for the inverse and the logarithm of
+`(1−φ) r + φ x` fall under the same theorem.
 """
 
 from __future__ import annotations
@@ -25,14 +29,27 @@ MOST_COLUMNS = 20_000
 
 
 def applies(trial: Trial) -> bool:
-    """Whether nothing stands twice in a block and the aim depends on the eigenvalues alone."""
-    return trial.aim.kind.depends_on_eigenvalues and not trial.rules.twice_in_block
+    """Whether nothing stands twice in a block and the aim depends on the eigenvalues of C alone."""
+    alike = trial.blocks_random is None or (
+        len({block.plots for block in trial.blocks}) == 1
+        and len({plots for x in trial.treatments for plots in (x.least, x.most)}) == 1
+    )
+    return trial.aim.kind.depends_on_eigenvalues and not trial.rules.twice_in_block and alike
 
 
 def bound_from(given: Problem, argument: str, squares: Fraction, multipliers: Mapping[str, Any]) -> Bound:
     """The bound that `tr C² ≥ squares` gives."""
     spectrum = extreme_spectrum(given.m, given.trace, squares, given.cap, known_eigenvalues(given))
+    if given.trial.blocks_random is not None:
+        kept, r = _lost_within_blocks(given.trial), given.trial.treatments[0].least
+        spectrum = [((1 - kept) * r + kept * x, times) for x, times in spectrum]
     return bound_on_spectrum(given, argument, spectrum, multipliers)
+
+
+def _lost_within_blocks(trial: Trial) -> Fraction:
+    """φ: the part of what blocks take that random blocks still take."""
+    ratio = (trial.blocks_random or 0) * Fraction(trial.blocks[0].plots)
+    return ratio / (1 + ratio)
 
 
 def known_eigenvalues(given: Problem) -> tuple[int, int]:

@@ -1,6 +1,6 @@
 """Trace root: how the information should be shared out between contrasts that count unequally.
 
-Statement. `tr(W C⁺) ≥ (tr W^½)² / S` with S the greatest trace of C that the rules allow.
+Statement. `tr(W C⁺) ≥ (tr W^½)² / S` with S the greatest trace of C, or C(γ), that the rules allow.
 
 Proof. Cauchy and Schwarz for `tr W^½ = tr(W^½ C^{+½} C^½)`, and `tr C ≤ S`.
 
@@ -46,7 +46,7 @@ def applies(trial: Trial) -> bool:
 def find(given: Problem) -> Bound | None:
     """The bound: a closed form against controls, a certified matrix root for contrasts."""
     if given.trial.aim.kind is AimKind.AGAINST_CONTROL:
-        return bound_on_variance(given, NAME, _root_against_controls(given) ** 2 / given.trace, {})
+        return bound_on_variance(given, NAME, _root_against_controls(given) ** 2 / given.information, {})
     roots = [root_below(share, 10**12) for share in contrast_shares(given.trial)]
     gram = _gram(roots, contrast_rows(given.trial))
     for epsilon in (Fraction(0), Fraction(1, 10**16), Fraction(1, 10**14), Fraction(1, 10**11)):
@@ -61,7 +61,7 @@ def find(given: Problem) -> Bound | None:
             "matrix": [[text(y) for y in row] for row in root],
             "epsilon": text(epsilon),
         }
-        return bound_on_variance(given, NAME, trace**2 / given.trace, multipliers)
+        return bound_on_variance(given, NAME, trace**2 / given.information, multipliers)
     return None
 
 

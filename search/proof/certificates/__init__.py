@@ -41,3 +41,15 @@ KINDS: dict[str, ModuleType] = {
 
 OF_ANY_FILLING = frozenset({"first order", "replication", "trace root"})
 """Kinds that hold however many plots stay filler; the others count with blocks that are planted in full."""
+KNOW_RANDOM_BLOCKS = frozenset(
+    {
+        "first order",
+        "replication",
+        "trace root",
+        "second moment by pairs",
+        "second moment by block meets",
+        "even meetings by pairs",
+        "even meetings by block meets",
+    }
+)
+"""Kinds that also hold where blocks are random; the others speak of C, and C(γ) tells more than that."""

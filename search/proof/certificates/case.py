@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 from fractions import Fraction
 
@@ -59,6 +60,21 @@ class Case:
         return self.implied.planted[1]
 
     @property
+    def greatest_trace(self) -> Fraction:
+        """A number that the trace of the information matrix does not pass in any plan."""
+        ratio = self.trial.blocks_random
+        if ratio is None:
+            return greatest_trace(self.rules, self.n)
+        # tr C(γ) = n − Σ_B γ Σ_i n_iB²/(1+γk_B) − Σ_i s_i²/Σs, and Σ_i s_i² ≥ (Σs)²/t. A plan with filler tells
+        # less than one with anything in its place, whose Σ_i n_iB² are at least the sizes of its blocks.
+        sizes = [int(k) for k in self.rules.sizes]
+        squares = list(least_squares(self.rules, self.rules.sizes)) if self.rules.exact else sizes
+        trace = Fraction(sum(sizes))
+        for q, k in zip(squares, sizes, strict=True):
+            trace -= (ratio * q + Fraction(k, self.trial.t)) / (1 + ratio * k)
+        return trace
+
+    @property
     def rank(self) -> int:
         """Number of non-zero eigenvalues of C in a connected plan."""
         return self.trial.t - 1
@@ -78,19 +94,29 @@ def case_of(trial: Trial) -> Case:
 def greatest_trace(rules: Tables, planted: int | None = None) -> Fraction:
     """A number that tr C = n − Σ_B Σ_i n_iB²/k_B does not pass; attained where nothing stands twice.
 
-    In each block Σ_i n_iB² is least where plots go one by one to the treatment that has fewest there. A block
-    that may stay partly empty counts as full, for a plot more adds to C; and each block takes at least one.
+    A block that may stay partly empty counts as full, for a plot more adds to C; and each block takes at
+    least one.
 
     Parameters
     ----------
     rules : tables of the trial
     planted : no plan has more plots; what sizes and stated ranges allow where left out
     """
-    trace, full = Fraction(0), np.minimum(rules.sizes, rules.high.sum(axis=0))
-    for low, high, size in zip(rules.low.T, rules.high.T, full, strict=True):
-        if not size:
-            raise Refuted("the rules leave a block that no treatment may enter")
-        trace += int(size)
+    full = np.minimum(rules.sizes, rules.high.sum(axis=0))
+    if not full.all():
+        raise Refuted("the rules leave a block that no treatment may enter")
+    trace = Fraction(int(full.sum()))
+    for squares, size in zip(least_squares(rules, full), full, strict=True):
+        trace -= Fraction(squares, int(size))
+    return min(trace, Fraction((rules.n if planted is None else planted) - rules.b))
+
+
+def least_squares(rules: Tables, sizes: Ints) -> Iterator[int]:
+    """For each block, of so many plots, a number that Σ_i n_iB² is not below.
+
+    It is least where plots go one by one to the treatment that has fewest there.
+    """
+    for low, high, size in zip(rules.low.T, rules.high.T, sizes, strict=True):
         squares, left, level = int((low**2).sum()), int(size - low.sum()), 0
         while left > 0:
             steps = int(((low <= level) & (level < high)).sum())
@@ -98,5 +124,4 @@ def greatest_trace(rules: Tables, planted: int | None = None) -> Fraction:
                 break
             taken = min(left, steps)
             squares, left, level = squares + taken * (2 * level + 1), left - taken, level + 1
-        trace -= Fraction(squares, int(size))
-    return min(trace, Fraction((rules.n if planted is None else planted) - rules.b))
+        yield squares

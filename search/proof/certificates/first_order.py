@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from search.proof.certificates.case import Case, greatest_trace
+from search.proof.certificates.case import Case
 from search.proof.certificates.claims import Claim, claim_of_spectrum
 from search.proof.certificates.multipliers import known
 from search.proof.certificates.spectrum import even_spectrum
@@ -15,4 +15,4 @@ AIMS = (AimKind.ALL_PAIRS, AimKind.OVERALL)
 def derive(case: Case, multipliers: Part) -> Claim:
     """Σ 1/x ≥ (t−1)²/tr C and Π x ≤ (tr C/(t−1))^(t−1)."""
     known(multipliers, ())
-    return claim_of_spectrum(case, even_spectrum(case.rank, greatest_trace(case.rules, case.n)))
+    return claim_of_spectrum(case, even_spectrum(case.rank, case.greatest_trace))

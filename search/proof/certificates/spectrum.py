@@ -7,6 +7,7 @@ from fractions import Fraction
 
 from search.foundation.exact import root_above, root_below
 from search.proof.certificates.case import Case, greatest_trace
+from search.proof.records import Refuted
 
 
 @dataclass(frozen=True, slots=True)
@@ -86,7 +87,20 @@ def second_moment_spectrum(case: Case, squares: Fraction) -> Spectrum:
 
     With one replication r for all, every z with N'z = 0 is an eigenvector of C for r; there are t − b such
     dimensions at least, and more where whole replicates make columns of N depend on each other.
+    Where blocks are random, of k plots each, C(γ) = (1−φ) r + φ C on contrasts with φ = γk/(1+γk).
     """
+    found = _fixed_blocks_spectrum(case, squares)
+    if case.trial.blocks_random is None:
+        return found
+    sizes = {block.plots for block in case.trial.blocks}
+    if len({*case.least, *case.most}) > 1 or len(sizes) > 1:
+        raise Refuted("second moments say nothing of random blocks where sizes or replications differ")
+    r, ratio = case.most[0], case.trial.blocks_random * sizes.pop()
+    taken = ratio / (1 + ratio)
+    return Spectrum(tuple(((1 - taken) * r + taken * x, times) for x, times in found.parts))
+
+
+def _fixed_blocks_spectrum(case: Case, squares: Fraction) -> Spectrum:
     number, total = case.rank, greatest_trace(case.rules)
     cap = Fraction(max(case.most))
     if total <= 0:

@@ -8,7 +8,7 @@ from math import lcm
 import numpy as np
 
 from search.foundation.exact import root_above, root_below
-from search.proof.certificates.case import Case, greatest_trace
+from search.proof.certificates.case import Case
 from search.proof.certificates.claims import Claim, claim_of_variance
 from search.proof.certificates.multipliers import known, symmetric_matrix
 from search.proof.integers import is_positive_semidefinite
@@ -28,7 +28,7 @@ def derive(case: Case, multipliers: Part) -> Claim:
     """tr(WC⁺) ≥ (tr W^½)²/tr C, by the inequality of Cauchy and Schwarz for W^½C^+½ and C^½."""
     against_control = case.aim is AimKind.AGAINST_CONTROL
     root = _root_for_controls(case, multipliers) if against_control else _root(case, multipliers)
-    trace = greatest_trace(case.rules, case.n)
+    trace = case.greatest_trace
     if root <= 0 or trace <= 0:
         raise Refuted("the certificate proves no more than that variances are above 0")
     return claim_of_variance(case, root**2 / trace)
