@@ -89,7 +89,9 @@ def board_of(problem: Problem, contents: Contents) -> Board:
         beds=beds,
         admitted=_admitted(tables),
         planting=_planting(tables, beds, contents),
-        metrics=_metrics(tables, overall=problem.weights is None, degrees=problem.tables.t - 1.0),
+        metrics=_metrics(
+            tables, overall=problem.weights is None, degrees=problem.tables.t - problem.filler - 1.0
+        ),
     )
 
 

@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 from search.efficiency.balance import squared_meetings
 from search.solvers.board import board_of, refresh
 from search.solvers.compiled import kernel
+from search.solvers.filler import emptied
 from search.solvers.walk import (
     CALL_DRAWS,
     CALL_ENTRIES,
@@ -68,7 +69,7 @@ class EvenWalk(Walk):
         self.cool(0.0, 0.0, min(self.neighbourhood, most_moves))
         while not self.stop.due and self.step(-np.inf):
             pass
-        if squared_meetings(self.start, self.problem.tables.t) < self.squares:
+        if squared_meetings(emptied(self.start, self._real), self._real) < self.squares:
             self._return()
         if not self.stop.due:
             self._settle(max(0, (end - self.moves) // 2))
@@ -112,7 +113,7 @@ class EvenWalk(Walk):
         if not len(worse):
             return
         hot = HEAT * float(np.median(worse))
-        most = max(1, CALL_ENTRIES // len(self.board.distances.variance) ** 2)
+        most = max(1, CALL_ENTRIES // len(self.board.metrics.inverse) ** 2)
         self._anneal(kernel().anneal_ties, hot, hot / SPAN, moves - probed, min(most, REFRESH_AFTER))
 
     def _anneal(
@@ -148,6 +149,11 @@ class EvenWalk(Walk):
                 break
         return climbed
 
+    @property
+    def _real(self) -> int:
+        """Treatments that are no filler."""
+        return self.problem.tables.t - self.problem.filler
+
     def _measure(self) -> None:
         """Measure the distances, where moves were made without them."""
         if not self._measured:
@@ -164,7 +170,8 @@ class EvenWalk(Walk):
     def _count(self) -> None:
         """Count all meetings afresh."""
         counts = self.board.planting.copies.T.astype(np.float64)  # whole numbers, but multiplied faster
+        counts[self._real :] = 0
         pairs = counts @ counts.T
         parts = (pairs, counts.T @ pairs, counts.T @ counts)
         self._table = tuple(np.ascontiguousarray(part, dtype=np.int32) for part in parts)
-        self.squares = squared_meetings(self.contents, self.problem.tables.t)
+        self.squares = squared_meetings(emptied(self.contents, self._real), self._real)

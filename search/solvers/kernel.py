@@ -378,7 +378,7 @@ def _record_meetings(planting, u, v, a, c):
 
 @_inner
 def _plant(admitted, planting, plot, partner, u, v, a, c):
-    """Make a move in the contents; the distances are not touched."""
+    """Make a move in the contents; the tables are not touched."""
     if admitted.any_meetings:
         _record_meetings(planting, u, v, a, c)
     _count(admitted, planting, a, u, -1)
@@ -817,7 +817,7 @@ def wander(board, random, tries, join):
     With `join`, only moves that do not add a connected part, and only until one part is left.
     Exchanging plots of two parts joins them unless both plots are bridges, and never adds a part;
     with n ≥ t + b − 1 every disconnected plan has a plot that is no bridge. Moves within a part change
-    which plots those are. The distances are left behind. Returns the moves made and the parts left.
+    which plots those are. The tables are left behind. Returns the moves made and the parts left.
     """
     beds, admitted, planting, _ = _named(board)
     planted, t, made = planting.planted, _treatments(planting), 0
@@ -925,7 +925,6 @@ def best_move(board, begin, end, below):
     aim the lower bound by which moves are ordered.
     """
     beds, admitted, planting, metrics = _named(board)
-    t = _treatments(planting)
     scored, best_plot, best_partner = 0, -1, -1
     for a in range(begin, end):
         first, next_ = _span(beds, a)
@@ -951,13 +950,60 @@ def best_move(board, begin, end, below):
     return scored, best_plot, best_partner, below
 
 
+# --- single moves, for goals that look at more than the objective ----------------------------------
+
+
+@_hot
+def _real(metrics):
+    """The number of treatments that count: filler and the general mean come after them."""
+    return np.int64(metrics.degrees) + 1
+
+
+@_inner
+def _of_move(beds, planted, metrics, t, layer, u, v, a, c):
+    """`d'd`, `d'w`, `w'w` of a move in G (layer 0) or H (1); the means of its blocks must be up to date."""
+    table, means = metrics.inverse if layer == 0 else metrics.worth, metrics.means[layer]
+    dd = table[u, u] + table[v, v] - 2.0 * table[u, v]
+    if c >= 0:
+        dw = (means[a, u] - means[c, u]) - (means[a, v] - means[c, v])
+        ww = metrics.inner[layer, a] + metrics.inner[layer, c] - 2.0 * _mean_of(beds, planted, means[a], t, c)
+        return dd, dw, ww
+    dw = means[a, u] - means[a, v] - 0.5 * (table[u, u] - table[v, v])
+    ww = metrics.inner[layer, a] - means[a, u] - means[a, v]
+    return dd, dw, ww + 0.25 * (table[u, u] + table[v, v]) + 0.5 * table[u, v]
+
+
+@_hot
+def _step(beds, a, c):
+    """s of a move: one over the weight of its block, or of both."""
+    return beds.share[a] + beds.share[c] if c >= 0 else beds.share[a]
+
+
+@_inner
+def _single(beds, planted, metrics, t, u, v, a, c):
+    """How much a move raises the objective, the ratio, and whether it only swaps the names of two blocks."""
+    _renew(beds, planted, metrics, a)
+    if c >= 0:
+        _renew(beds, planted, metrics, c)
+    step = _step(beds, a, c)
+    alpha, beta, ww = _of_move(beds, planted, metrics, t, 0, u, v, a, c)
+    a2, b2, c2 = _of_move(beds, planted, metrics, t, 1, u, v, a, c)
+    one, gamma = 1.0 + beta, ww + step
+    ratio = one * one - alpha * gamma
+    rise = (gamma * a2 - 2.0 * one * b2 + alpha * c2) / ratio
+    apart = ww - step * beta + 0.25 * step * step * alpha
+    return rise, ratio, c >= 0 and abs(rise) < NOTHING and apart < NOTHING
+
+
 # --- even meetings --------------------------------------------------------------------------------
 #
 # With the concurrences M = NN', T = N'M and X = N'N every move changes N by d f', d = e_u − e_v and
-# f = e_c − e_a (f = −e_a to replace). With q = Nf and s = f'f, M grows by d w' + w d', w = q + ½ s d, so
+# f = e_c − e_a (f = −e_a to replace). With q = Nf, s = f'f and n = d'd, M grows by d w' + w d',
+# w = q + ½ s d, so
 #
-#     the sum of all M² grows by  4 d'Mq + 2s d'Md + 4 q'q + 4s d'q + 2s² + 2(d'q + s)²
+#     the sum of all M² grows by  4 d'Mq + 2s d'Md + 2n q'q + 4ns d'q + 2(d'q)² + s²n²
 #
+# Filler meets nobody: it has no row in N, and a move of it has d = e_u or −e_v, n = 1.
 # of which d'Mq is four entries of T and q'q three of X. Off the diagonal, and each pair once, it is half
 # of that less what the two entries M_uu and M_vv that change bring. An accepted move costs O(t + b + rk).
 
@@ -977,9 +1023,10 @@ _MEETINGS = types.Tuple((_I2, _I2, _I2))
 
 
 @_hot
-def _more_squares(copies, table, u, v, a, c):
+def _more_squares(copies, table, real, u, v, a, c):
     """How much a move raises the sum of squared concurrences over pairs of treatments."""
     pairs, sums, common = table.pairs, table.sums, table.common
+    of_u, of_v = np.int64(u < real), np.int64(v < real)
     q_u, q_v = -np.int64(copies[a, u]), -np.int64(copies[a, v])
     in_m, qq, s = np.int64(sums[a, v]) - np.int64(sums[a, u]), np.int64(common[a, a]), np.int64(1)
     if c >= 0:
@@ -988,10 +1035,11 @@ def _more_squares(copies, table, u, v, a, c):
         in_m += np.int64(sums[c, u]) - np.int64(sums[c, v])
         qq += np.int64(common[c, c]) - 2 * np.int64(common[a, c])
         s = np.int64(2)
+    q_u, q_v, n = of_u * q_u, of_v * q_v, of_u + of_v
     m_u, m_v, dq = np.int64(pairs[u, u]), np.int64(pairs[v, v]), q_u - q_v
     dmd = m_u + m_v - 2 * np.int64(pairs[u, v])
-    whole = 4 * in_m + 2 * s * dmd + 4 * qq + 4 * s * dq + 2 * s * s + 2 * (dq + s) * (dq + s)
-    more_u, more_v = 2 * q_u + s, s - 2 * q_v
+    whole = 4 * in_m + 2 * s * dmd + 2 * n * qq + 4 * n * s * dq + 2 * dq * dq + s * s * n * n
+    more_u, more_v = of_u * (2 * q_u + s), of_v * (s - 2 * q_v)
     own = more_u * (2 * m_u + more_u) + more_v * (2 * m_v + more_v)
     return (whole - own) // 2
 
@@ -1017,6 +1065,44 @@ def _spread_in(beds, planted, sums, row, u, v, block, by):
         i = np.int64(planted[plot])
         if i != u and i != v:
             sums[row, i] += by
+
+
+@_inner
+def _recount(beds, planted, copies, table, real):
+    """Count all concurrences afresh: O(tb + b² + the meetings of all blocks)."""
+    pairs, sums, common = table.pairs, table.sums, table.common
+    pairs[:, :] = 0
+    sums[:, :] = 0
+    common[:, :] = 0
+    blocks = len(beds.blocks)
+    for block in range(blocks):
+        begin, end = _span(beds, block)
+        for plot in range(begin, end):
+            i = np.int64(planted[plot])
+            if i < real:
+                for other in range(begin, end):
+                    if np.int64(planted[other]) < real:
+                        pairs[i, np.int64(planted[other])] += 1
+                for other in range(blocks):
+                    common[block, other] += copies[other, i]
+    for block in range(blocks):
+        begin, end = _span(beds, block)
+        for plot in range(begin, end):
+            i = np.int64(planted[plot])
+            if i < real:
+                for x in range(real):
+                    sums[block, x] += pairs[i, x]
+
+
+@_inner
+def _make_even(beds, admitted, planting, table, real, plot, partner, u, v, a, c):
+    """Make a move in the contents and in the concurrences."""
+    if u < real and v < real:
+        _record_concurrences(beds, planting, table, u, v, a, c)
+        _plant(admitted, planting, plot, partner, u, v, a, c)
+    else:  # filler moves seldom
+        _plant(admitted, planting, plot, partner, u, v, a, c)
+        _recount(beds, planting.planted, planting.copies, table, real)
 
 
 @_inner
@@ -1088,6 +1174,8 @@ def _stays_near(copies, table, i, block):
 def _stays_connected(beds, admitted, planting, table, plot, partner, u, v, a, c):
     """Whether a legal move of a connected plan leaves it connected: O(1), where that is not plain O(n)."""
     copies = planting.copies
+    if beds.mean > 0.0:
+        return True  # block totals join what no chain of blocks does
     near = _stays_near(copies, table, u, a) and copies[a, v] == 0
     if near and (c < 0 or (copies[c, u] == 0 and _stays_near(copies, table, v, c))):
         return True
@@ -1099,20 +1187,20 @@ def _stays_connected(beds, admitted, planting, table, plot, partner, u, v, a, c)
 
 @_late(types.UniTuple(_INT, 5)(_BOARD, _MEETINGS, _RANDOM, _FLOAT, _FLOAT, _INT, _INT, _INT, _F1))
 def anneal_meetings(board, table, random, temperature, cooling, moves, tries, most_accepted, rises):
-    """The same as `anneal` for the sum of squared concurrences; the distances are left behind.
+    """The same as `anneal` for the sum of squared concurrences; the tables are left behind.
 
     Returns the moves scored, drawn, accepted, and accepted though they raise the sum, and its change.
     """
-    beds, admitted, planting, _ = _named(board)
-    table = Concurrences(*table)
+    beds, admitted, planting, metrics = _named(board)
+    table, real = Concurrences(*table), _real(metrics)
     scored, drawn, accepted, climbed, change = 0, 0, 0, 0, 0
     while scored < moves and drawn < tries and accepted < most_accepted:
         drawn += 1
-        plot, partner, place = _draw(beds, random)
+        plot, partner, _, place = _draw(beds, random)
         u, v, a, c = _read(beds, planting.planted, plot, partner)
         if not _may(admitted, planting, u, v, a, c):
             continue
-        rise = _more_squares(planting.copies, table, u, v, a, c)
+        rise = _more_squares(planting.copies, table, real, u, v, a, c)
         if scored < len(rises):
             rises[scored] = rise
         scored += 1
@@ -1122,8 +1210,7 @@ def anneal_meetings(board, table, random, temperature, cooling, moves, tries, mo
             continue
         if not _stays_connected(beds, admitted, planting, table, plot, partner, u, v, a, c):
             continue
-        _record_concurrences(beds, planting, table, u, v, a, c)
-        _plant(admitted, planting, plot, partner, u, v, a, c)
+        _make_even(beds, admitted, planting, table, real, plot, partner, u, v, a, c)
         accepted += 1
         climbed += int(rise > 0)
         change += rise
@@ -1137,35 +1224,33 @@ def anneal_ties(board, table, random, temperature, cooling, moves, tries, most_a
     Moves that lower it are made whatever they cost. Returns the moves scored, drawn, accepted, and
     accepted though they raise the objective, and the change of the sum.
     """
-    beds, admitted, planting, distances = _named(board)
-    table = Concurrences(*table)
+    beds, admitted, planting, metrics = _named(board)
+    table, real = Concurrences(*table), _real(metrics)
     planted, t = planting.planted, _treatments(planting)
     scored, drawn, accepted, climbed, change, listed = 0, 0, 0, 0, 0, 0
     while scored < moves and drawn < tries and accepted < most_accepted:
         drawn += 1
-        plot, partner, place = _draw(beds, random)
+        plot, partner, _, place = _draw(beds, random)
         u, v, a, c = _read(beds, planted, plot, partner)
         if not _may(admitted, planting, u, v, a, c):
             continue
-        more = _more_squares(planting.copies, table, u, v, a, c)
+        more = _more_squares(planting.copies, table, real, u, v, a, c)
         scored += 1
         allowed = temperature * DRAWS[place]
         temperature *= cooling
         if more > 0:
             continue
-        rise, ratio = _score(beds.share, distances, t, u, v, a, c)
+        rise, ratio, same = _single(beds, planted, metrics, t, u, v, a, c)
         if listed < len(rises):
             rises[listed] = rise
             listed += 1
         if ratio < LEAST_RATIO or (more == 0 and not rise <= allowed):
             continue
-        same = more == 0 and abs(rise) < NOTHING
-        if same and _products(beds.share, distances.variance, t, u, v, a, c)[2] < NOTHING:
+        if more == 0 and same:
             continue  # two blocks would only swap their names
         if _meets(beds, admitted, planting, u, v, a, c):
-            _move_points(beds, planted, distances, t, u, v, a, c)
-            _record_concurrences(beds, planting, table, u, v, a, c)
-            _plant(admitted, planting, plot, partner, u, v, a, c)
+            _move_points(beds, planted, metrics, t, u, v, a, c)
+            _make_even(beds, admitted, planting, table, real, plot, partner, u, v, a, c)
             accepted += 1
             climbed += int(rise > NOTHING)
             change += more
@@ -1179,8 +1264,8 @@ def best_even_move(board, table, begin, end, squares, below):
     Only moves that raise the sum of squared concurrences by less than `squares`, or by as much and the
     objective by less than `below`. Returns the moves scored, the move (plot −1 for none) and both rises.
     """
-    beds, admitted, planting, distances = _named(board)
-    table = Concurrences(*table)
+    beds, admitted, planting, metrics = _named(board)
+    table, real = Concurrences(*table), _real(metrics)
     planted, t = planting.planted, _treatments(planting)
     scored, best_plot, best_partner, plots = np.int64(0), np.int64(-1), np.int64(-1), len(planted)
     for a in range(begin, end):
@@ -1194,10 +1279,10 @@ def best_even_move(board, table, begin, end, squares, below):
                 if not _may(admitted, planting, u, v, a, c):
                     continue
                 scored += 1
-                more = _more_squares(planting.copies, table, u, v, a, c)
+                more = _more_squares(planting.copies, table, real, u, v, a, c)
                 if more > squares:
                     continue
-                rise, ratio = _score(beds.share, distances, t, u, v, a, c)
+                rise, ratio, _ = _single(beds, planted, metrics, t, u, v, a, c)
                 if ratio < LEAST_RATIO or (more == squares and not rise < below):
                     continue
                 if _meets(beds, admitted, planting, u, v, a, c):
@@ -1208,23 +1293,22 @@ def best_even_move(board, table, begin, end, squares, below):
 @_late(_INT(_BOARD, _MEETINGS, _INT, _INT))
 def make_even_move(board, table, plot, partner):
     """Make a legal move of a connected plan; returns how much the sum of squared concurrences rises."""
-    beds, admitted, planting, distances = _named(board)
-    table = Concurrences(*table)
+    beds, admitted, planting, metrics = _named(board)
+    table, real = Concurrences(*table), _real(metrics)
     t = _treatments(planting)
     u, v, a, c = _read(beds, planting.planted, plot, partner)
-    more = _more_squares(planting.copies, table, u, v, a, c)
-    _move_points(beds, planting.planted, distances, t, u, v, a, c)
-    _record_concurrences(beds, planting, table, u, v, a, c)
-    _plant(admitted, planting, plot, partner, u, v, a, c)
+    more = _more_squares(planting.copies, table, real, u, v, a, c)
+    _move_points(beds, planting.planted, metrics, t, u, v, a, c)
+    _make_even(beds, admitted, planting, table, real, plot, partner, u, v, a, c)
     return more
 
 
 # --- worst pair -----------------------------------------------------------------------------------
 #
 # A move changes the variance of the pair x, y by (γ p² − 2(1 + β) p q + α q²)/ratio with
-# p = d'G(e_x − e_y) and q = w'G(e_x − e_y), a few entries of `variance`. So pairs are tested in falling
-# order of their variance, and a move is refused at the first one above the limit; one that passes
-# is tested on all pairs.
+# p = d'G(e_x − e_y) and q = (w − ½ s d)'G(e_x − e_y), a few entries of G and of the means. So pairs are
+# tested in falling order of their variance, and a move is refused at the first one above the limit; one
+# that passes is tested on all pairs.
 
 
 class Worst(NamedTuple):
@@ -1248,17 +1332,17 @@ EQUAL = 1e-11
 
 
 @_inner
-def _list_worst(variance, t, worst):
+def _list_worst(inverse, t, worst):
     """List the pairs with the largest variances afresh: O(t²)."""
     largest, most = 0.0, len(worst.first)
     for x in range(t):
         for y in range(x):
-            largest = max(largest, variance[x, y])
+            largest = max(largest, inverse[x, x] + inverse[y, y] - 2.0 * inverse[x, y])
     depth, found, over = worst.state[DEPTH], 0, False
     least = largest - depth
     for x in range(t):
         for y in range(x):
-            value = variance[x, y]
+            value = inverse[x, x] + inverse[y, y] - 2.0 * inverse[x, y]
             if value < least:
                 continue
             if found == most:  # the least of the list gives way
@@ -1282,38 +1366,42 @@ def _list_worst(variance, t, worst):
 
 
 @_hot
-def _image_at(share, variance, t, u, v, a, c, i):
-    """The images of d and w at one treatment, up to a constant."""
-    of_d = 0.5 * (variance[v, i] - variance[u, i])
-    if c >= 0:
-        of_w = 0.5 * (variance[t + c, i] - variance[t + a, i])
-        return of_d, of_w - 0.5 * (share[a] + share[c]) * of_d
-    of_w = 0.25 * (variance[u, i] + variance[v, i]) - 0.5 * variance[t + a, i]
-    return of_d, of_w - 0.5 * share[a] * of_d
+def _image_at(beds, metrics, u, v, a, c, i):
+    """The images of d and of `w − ½ s d` at one treatment, up to a constant."""
+    inverse, means = metrics.inverse, metrics.means[0]
+    of_d = inverse[u, i] - inverse[v, i]
+    other = means[c, i] if c >= 0 else 0.5 * (inverse[u, i] + inverse[v, i])
+    return of_d, means[a, i] - other - 0.5 * _step(beds, a, c) * of_d
 
 
 @_inner
-def _largest_after(share, distances, worst, t, u, v, a, c, limit):
-    """The largest variance after a move, or any number above the limit where that is passed."""
-    variance, work = distances.variance, distances.work
-    alpha, beta, gamma = _products(share, variance, t, u, v, a, c)
+def _largest_after(beds, planted, metrics, worst, t, u, v, a, c, limit):
+    """The largest variance after a move, or any number above the limit where that is passed.
+
+    The means of its blocks must be up to date.
+    """
+    inverse, work, step = metrics.inverse, metrics.work, _step(beds, a, c)
+    alpha, beta, ww = _of_move(beds, planted, metrics, t, 0, u, v, a, c)
     one = 1.0 + beta
-    ratio = one * one - alpha * gamma
+    ratio = one * one - alpha * (ww + step)
+    one, gamma = one - 0.5 * step * alpha, ww - step * beta + 0.25 * step * step * alpha
     alpha, twice, gamma = alpha / ratio, 2.0 * one / ratio, gamma / ratio
     for place in range(np.int64(worst.state[LISTED])):
         x, y = np.int64(worst.first[place]), np.int64(worst.second[place])
-        p_x, q_x = _image_at(share, variance, t, u, v, a, c, x)
-        p_y, q_y = _image_at(share, variance, t, u, v, a, c, y)
+        p_x, q_x = _image_at(beds, metrics, u, v, a, c, x)
+        p_y, q_y = _image_at(beds, metrics, u, v, a, c, y)
         p, q = p_x - p_y, q_x - q_y
-        after = variance[x, y] + gamma * p * p - twice * p * q + alpha * q * q
+        before = inverse[x, x] + inverse[y, y] - 2.0 * inverse[x, y]
+        after = before + gamma * p * p - twice * p * q + alpha * q * q
         if after > limit:
             return after
     of_d, of_w, largest = work[0], work[1], 0.0
-    for x in range(t):
-        of_d[x], of_w[x] = _image_at(share, variance, t, u, v, a, c, x)
+    for x in range(_real(metrics)):
+        of_d[x], of_w[x] = _image_at(beds, metrics, u, v, a, c, x)
         for y in range(x):
             p, q = of_d[x] - of_d[y], of_w[x] - of_w[y]
-            largest = max(largest, variance[x, y] + gamma * p * p - twice * p * q + alpha * q * q)
+            before = inverse[x, x] + inverse[y, y] - 2.0 * inverse[x, y]
+            largest = max(largest, before + gamma * p * p - twice * p * q + alpha * q * q)
         if largest > limit:
             return largest
     return largest
@@ -1321,42 +1409,42 @@ def _largest_after(share, distances, worst, t, u, v, a, c, limit):
 
 @_late(_FLOAT(_BOARD, _WORST))
 def list_worst(board, worst):
-    """List the worst pairs of a plan whose distances are up to date; returns the largest variance."""
-    _, _, planting, distances = _named(board)
+    """List the worst pairs of a plan whose tables are up to date; returns the largest variance."""
+    _, _, _, metrics = _named(board)
     worst = Worst(*worst)
-    _list_worst(distances.variance, _treatments(planting), worst)
+    _list_worst(metrics.inverse, _real(metrics), worst)
     return worst.state[LARGEST]
 
 
 @_late(types.UniTuple(_INT, 4)(_BOARD, _WORST, _RANDOM, _FLOAT, _FLOAT, _FLOAT, _INT, _INT, _INT))
 def anneal_worst(board, worst, random, temperature, cooling, pull, moves, tries, most_accepted):
     """The same as `anneal` for the largest variance and `pull` times the objective."""
-    beds, admitted, planting, distances = _named(board)
+    beds, admitted, planting, metrics = _named(board)
     worst = Worst(*worst)
     planted, t = planting.planted, _treatments(planting)
     scored, drawn, accepted, climbed = 0, 0, 0, 0
     while scored < moves and drawn < tries and accepted < most_accepted:
         drawn += 1
-        plot, partner, place = _draw(beds, random)
+        plot, partner, _, place = _draw(beds, random)
         u, v, a, c = _read(beds, planted, plot, partner)
         if not _may(admitted, planting, u, v, a, c):
             continue
-        rise, ratio = _score(beds.share, distances, t, u, v, a, c)
+        rise, ratio, same = _single(beds, planted, metrics, t, u, v, a, c)
         scored += 1
         allowed = temperature * DRAWS[place]
         temperature *= cooling
         if ratio < LEAST_RATIO or not rise < 1e300:
             continue
-        if abs(rise) < NOTHING and _products(beds.share, distances.variance, t, u, v, a, c)[2] < NOTHING:
+        if same:
             continue  # two blocks would only swap their names
         limit = worst.state[LARGEST] + allowed - pull * rise + EQUAL
-        if _largest_after(beds.share, distances, worst, t, u, v, a, c, limit) > limit:
+        if _largest_after(beds, planted, metrics, worst, t, u, v, a, c, limit) > limit:
             continue
         if _meets(beds, admitted, planting, u, v, a, c):
             before = worst.state[LARGEST]
-            _move_points(beds, planted, distances, t, u, v, a, c)
+            _move_points(beds, planted, metrics, t, u, v, a, c)
             _plant(admitted, planting, plot, partner, u, v, a, c)
-            _list_worst(distances.variance, t, worst)
+            _list_worst(metrics.inverse, _real(metrics), worst)
             accepted += 1
             climbed += int(worst.state[LARGEST] - before + pull * rise > EQUAL)
     return scored, drawn, accepted, climbed
@@ -1369,7 +1457,7 @@ def best_worst_move(board, worst, begin, end, largest, below):
     Only moves that leave less than `largest`, or as much and raise the objective by less than `below`.
     Returns the moves scored, the move (plot −1 for none), the largest variance it leaves and its rise.
     """
-    beds, admitted, planting, distances = _named(board)
+    beds, admitted, planting, metrics = _named(board)
     worst = Worst(*worst)
     planted, t = planting.planted, _treatments(planting)
     scored, best_plot, best_partner, plots = np.int64(0), np.int64(-1), np.int64(-1), len(planted)
@@ -1384,11 +1472,11 @@ def best_worst_move(board, worst, begin, end, largest, below):
                 if not _may(admitted, planting, u, v, a, c):
                     continue
                 scored += 1
-                rise, ratio = _score(beds.share, distances, t, u, v, a, c)
+                rise, ratio, _ = _single(beds, planted, metrics, t, u, v, a, c)
                 if ratio < LEAST_RATIO:
                     continue
                 limit = largest + EQUAL if rise < below else largest - EQUAL
-                after = _largest_after(beds.share, distances, worst, t, u, v, a, c, limit)
+                after = _largest_after(beds, planted, metrics, worst, t, u, v, a, c, limit)
                 if after <= limit and _meets(beds, admitted, planting, u, v, a, c):
                     largest, below, best_plot, best_partner = after, rise, plot, partner
     return scored, best_plot, best_partner, largest, below

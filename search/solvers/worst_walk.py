@@ -78,7 +78,7 @@ class WorstWalk(Walk):
 
     def _anneal_worst(self, hot: float, cold: float, moves: int) -> None:
         factor = (cold / hot) ** (1 / moves) if cold > 0 and moves > 0 else 1.0
-        most = max(1, CALL_ENTRIES // len(self.board.distances.variance) ** 2)
+        most = max(1, CALL_ENTRIES // len(self.board.metrics.inverse) ** 2)
         temperature, left, draws = hot, moves, DRAWS_PER_MOVE * moves
         while left > 0 and draws > 0:
             scored, drawn, accepted, _ = kernel().anneal_worst(
@@ -106,5 +106,6 @@ class WorstWalk(Walk):
         return float(kernel().list_worst(self._plain, self._worst))
 
     def _average(self) -> float:
-        t = self.problem.tables.t
-        return float(self.board.distances.variance[:t, :t].sum()) / (t * (t - 1))
+        t = self.problem.tables.t - self.problem.filler
+        inverse = self.board.metrics.inverse[:t, :t]
+        return float(2 * (t * np.trace(inverse) - inverse.sum())) / (t * (t - 1))

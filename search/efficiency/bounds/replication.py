@@ -4,7 +4,8 @@ Statement. `tr(W C⁺) ≥ min Σ W_ii / r_i` and `pdet C ≤ max Π r_i · t / 
 rules leave.
 
 Proof. `C ≼ R − rr'/n`, of which `R⁻¹` is a generalised inverse and `Π r_i · t / n` the
-pseudo-determinant; so is C(γ), since random blocks too only add variance. The least `Σ W_ii / r_i` with `Σ r = n` and further sums `Σ_S r ≤ most` is not below
+pseudo-determinant; so is C(γ), since random blocks too only add variance. The least `Σ W_ii / r_i` with
+`Σ r = n` and further sums `Σ_S r ≤ most` is not below
 `Σ_i min_r [W_ii / r + μ r + Σ_{S∋i} π_S r] − μ n − Σ π_S most_S` for any price μ and any π ≥ 0. Where plots
 may stay filler, n is the most that can be planted, Σ r ≤ n, and μ ≥ 0; `Π r_i / Σ r` rises with each r_i.
 

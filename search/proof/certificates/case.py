@@ -12,7 +12,7 @@ from search.proof.records import Refuted
 from search.trial.limits import Limits, limits
 from search.trial.records import AimKind, Trial
 from search.trial.settled import settled
-from search.trial.tables import Tables, tables
+from search.trial.tables import Ints, Tables, tables
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -65,8 +65,8 @@ class Case:
         ratio = self.trial.blocks_random
         if ratio is None:
             return greatest_trace(self.rules, self.n)
-        # tr C(γ) = n − Σ_B γ Σ_i n_iB²/(1+γk_B) − Σ_i s_i²/Σs, and Σ_i s_i² ≥ (Σs)²/t. A plan with filler tells
-        # less than one with anything in its place, whose Σ_i n_iB² are at least the sizes of its blocks.
+        # tr C(γ) = n − Σ_B γ Σ_i n_iB²/(1+γk_B) − Σ_i s_i²/Σs, and Σ_i s_i² ≥ (Σs)²/t. A plan with filler
+        # tells less than one with anything in its place, whose Σ_i n_iB² are at least its blocks' sizes.
         sizes = [int(k) for k in self.rules.sizes]
         squares = list(least_squares(self.rules, self.rules.sizes)) if self.rules.exact else sizes
         trace = Fraction(sum(sizes))
