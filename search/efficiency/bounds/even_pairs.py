@@ -136,10 +136,11 @@ def _layout(given: Problem, *, fine: bool) -> _Layout:
         )
     first, second = np.triu_indices(rules.t, 1)
     ends = np.sort(np.column_stack([row_of[first], row_of[second]]), axis=1)
-    found, counts = np.unique(np.column_stack([ends, ranges[first, second]]), axis=0, return_counts=True)
+    found = np.column_stack([ends, ranges[first, second]])
+    _, examples, counts = np.unique(alike(found), return_index=True, return_counts=True)
     pairs = [
-        _Pairs(a, b, int(count), least, most)
-        for (a, b, least, most), count in zip(found.tolist(), counts, strict=True)
+        _Pairs(a, b, count, least, most)
+        for (a, b, least, most), count in zip(found[examples].tolist(), counts.tolist(), strict=True)
     ]
     return _Layout(sizes, blocks, sums, rows, pairs)
 

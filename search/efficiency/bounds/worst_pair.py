@@ -22,6 +22,7 @@ from fractions import Fraction
 
 import numpy as np
 
+from search.efficiency.bounds.lattice import alike
 from search.efficiency.bounds.problem import Problem, bound_on_variance
 from search.efficiency.records import Bound
 from search.efficiency.reference import least_worst_pair, reference_variance
@@ -78,11 +79,12 @@ def _of_pairs(given: Problem) -> Fraction:
     together[rules.apart] = 0
     seldom = np.triu(together < np.minimum.outer(limits.most, limits.most), 1)
     widest = np.array([_widest(given, i) for i in range(given.trial.t)])
+    if not seldom.any():
+        return Fraction(0)
     i, j = np.nonzero(seldom)
-    columns = [limits.most[i], limits.most[j], widest[i], widest[j], together[i, j]]
-    alone = [
-        (*kind, int(kind[0] + kind[1])) for kind in np.unique(np.stack(columns, axis=1), axis=0).tolist()
-    ]
+    found = np.stack([limits.most[i], limits.most[j], widest[i], widest[j], together[i, j]], axis=1)
+    _, examples = np.unique(alike(found), return_index=True)
+    alone = [(*kind, kind[0] + kind[1]) for kind in found[examples].tolist()]
     summed = [
         (
             int(limits.most[a]),
@@ -94,7 +96,8 @@ def _of_pairs(given: Problem) -> Fraction:
         )
         for s in limits.sums
         if len(s.treatments) == 2
-        for a, b in [s.treatments]
+        for a, b in [sorted(s.treatments)]
+        if seldom[a, b]
     ]
     return max((_of_pair(given, *kind) for kind in (*alone, *summed)), default=Fraction(0))
 
