@@ -13,6 +13,7 @@ from search.proof.certificates import (
     by_meets,
     by_pairs,
     control_meets,
+    control_row,
     first_order,
     local_spectral,
     normalised,
@@ -30,5 +31,6 @@ KINDS: dict[str, ModuleType] = {
     "normalised moment": normalised,
     "averaged information": averaged,
     "second moment against controls": control_meets,
+    "all pairs and the control's own row": control_row,
 }
 """What a certificate's "kind" may say."""
