@@ -32,7 +32,12 @@ CLIMB = 12
 LOCAL = "local spectral"
 """Its multipliers must fit a polynomial below a curve: see test_local_spectral.py."""
 SECOND_MOMENT = {"second moment by pairs": by_pairs, "second moment by block meets": by_meets}
-ONCE = {*SECOND_MOMENT, "normalised moment", "second moment against controls"}
+ONCE = {
+    *SECOND_MOMENT,
+    "normalised moment",
+    "second moment against controls",
+    "all pairs and the control's own row",
+}
 """Kinds for trials in which nothing stands twice in a block."""
 
 
