@@ -9,6 +9,7 @@ from dataclasses import dataclass, replace
 from search.efficiency.bounds import (
     averaged,
     control_meets,
+    control_row,
     even_pairs,
     first_order,
     meets,
@@ -94,6 +95,7 @@ ARGUMENTS = (
     Argument(worst_pair.NAME, worst_pair.SENTENCE, worst_pair.applies, worst_pair.find),
     Argument(averaged.NAME, averaged.SENTENCE, averaged.applies, averaged.find, 1.0),
     Argument(control_meets.NAME, control_meets.SENTENCE, control_meets.applies, control_meets.find, 1.0),
+    Argument(control_row.NAME, control_row.SENTENCE, control_row.applies, control_row.find, 2.0),
     Argument(normalised.NAME, normalised.SENTENCE, normalised.applies, normalised.find, 1.0),
     Argument(local.NAME, local.SENTENCE, local.applies, local.find, 1.0),
     Argument(local.FINER, local.FINER_SENTENCE, local.applies, local.find_finer, 5.0),

@@ -13,6 +13,7 @@ from search.proof.certificates import (
     by_meets,
     by_pairs,
     control_meets,
+    control_row,
     even_by_meets,
     even_by_pairs,
     first_order,
@@ -36,6 +37,7 @@ KINDS: dict[str, ModuleType] = {
     "normalised moment": normalised,
     "averaged information": averaged,
     "second moment against controls": control_meets,
+    "all pairs and the control's own row": control_row,
 }
 """What a certificate's "kind" may say."""
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import random
 from collections.abc import Callable
+from dataclasses import replace
 from fractions import Fraction
 from typing import Any
 
@@ -14,7 +15,7 @@ from search.proof.certificates.case import Case
 from search.proof.certificates.claims import Claim, LeastSum
 from search.proof.parts import Part
 from search.proof.records import Refuted
-from search.trial.records import AimKind, Trial
+from search.trial.records import Aim, AimKind, Trial
 from tests.drawn import all_plans
 from tests.proof.plans import information, replications, squared_meetings, weight_matrix
 
@@ -136,6 +137,10 @@ def any_multipliers(kind: str, case: Case, draw: random.Random) -> dict[str, Any
             return _any_tangent(case, draw, price)
         case "second moment against controls":
             return {"cases": _any_cases(case, draw, sizes, sums, price)}
+        case "all pairs and the control's own row":
+            inner = replace(case, trial=replace(case.trial, aim=Aim(AimKind.ALL_PAIRS)))
+            own = draw.choice(("first order", "second moment by pairs", "second moment by block meets"))
+            return {"pairs": {"kind": own, "multipliers": any_multipliers(own, inner, draw)}}
     return {}
 
 
@@ -232,7 +237,7 @@ def changed(multipliers: Any, draw: random.Random) -> Any:
     """The multipliers with some prices moved a little; prices of sums stay from 0 on."""
     if isinstance(multipliers, dict):
         return {
-            key: value if key in ("treatments", "sums", "control_plots") else changed(value, draw)
+            key: value if key in ("treatments", "sums", "control_plots", "kind") else changed(value, draw)
             for key, value in multipliers.items()
         }
     if _is_symmetric(multipliers):

@@ -40,6 +40,7 @@ NOT_FOR_REPEATS = (
     "even meetings by pairs",
     "even meetings by block meets",
     "shorted pair",
+    "all pairs and the control's own row",
 )
 """Kinds for trials in which nothing stands twice in a block."""
 
