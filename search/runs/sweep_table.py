@@ -40,7 +40,7 @@ def frame_of(columns: Sequence[str], rows: Iterable[RowResult]) -> pd.DataFrame:
     aim; status
     best_found, bound : efficiencies for the aim; for even meetings sums of squared meetings
     gap_percent; standing
-    loss_to_replication_percent, loss_to_blocks_percent
+    loss_to_replication_percent, loss_to_blocks_percent : empty for a disconnected plan
     break_even_percent : blocks pay when they cut the variance between plots by more
     compared, unit, standard_error, detectable_difference : expected, see `row_figures.Shows`; the same for
         the worst pair
@@ -92,9 +92,6 @@ def _line(result: RowResult) -> dict[str, Any]:
             "bound": None if plan.bound is None else plan.bound.value,
             "gap_percent": plan.gap_percent,
             "standing": str(plan.standing),
-            "loss_to_replication_percent": found.loss_to_replication_percent,
-            "loss_to_blocks_percent": found.loss_to_blocks_percent,
-            "break_even_percent": even.variance_cut_percent if found.connected else None,
             "residual_df": found.residual_df,
             "residual_df_without_blocks": even.residual_df_without_blocks,
             "flags": "; ".join(flag.short for flag in flags(plan)),
@@ -105,6 +102,12 @@ def _line(result: RowResult) -> dict[str, Any]:
             "start": plan.start,
             "digest": plan.digest,
         }
+        if found.connected:
+            line |= {
+                "loss_to_replication_percent": found.loss_to_replication_percent,
+                "loss_to_blocks_percent": found.loss_to_blocks_percent,
+                "break_even_percent": even.variance_cut_percent,
+            }
         expected = shows(plan)
         if expected is not None:
             line |= {

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from functools import cache
 from pathlib import Path
+from tempfile import TemporaryDirectory
 
 from search.foundation.errors import Clash
 from search.runs.sweep_file import Sweep, read_sweep
@@ -44,11 +46,13 @@ def turned(trial: Trial) -> Contents:
     )
 
 
-def swept(folder: Path, text: str = SWEEP) -> tuple[Sweep, tuple[RowResult, ...]]:
+@cache
+def swept(text: str = SWEEP) -> tuple[Sweep, tuple[RowResult, ...]]:
     """A sweep whose rows with a rule are impossible and all others are planned."""
-    path = folder / "sweep.yaml"
-    path.write_text(text)
-    sweep = read_sweep(path)
+    with TemporaryDirectory() as folder:
+        path = Path(folder, "sweep.yaml")
+        path.write_text(text)
+        sweep = read_sweep(path)
     rows = []
     for row in sweep.rows:
         if row.trial is None:

@@ -24,7 +24,7 @@ def browser() -> Iterator[Any]:
 
 
 def page_of(folder: Path, text: str = SWEEP, rows: tuple[RowResult, ...] | None = None) -> Path:
-    sweep, own = swept(folder, text)
+    sweep, own = swept(text)
     file = folder / "sweep.html"
     file.write_text(sweep_html(sweep.name, sweep.columns, rows or own), encoding="utf-8")
     return file
@@ -42,7 +42,7 @@ def test_sorts_and_filters(browser: Any, tmp_path: Path) -> None:
     """A heading sorts, again the other way, rows without the figure last; filters go together with charts."""
     with Visit(browser, page_of(tmp_path)) as visit:
         assert first_cells(visit) == [str(n) for n in range(1, 13)]
-        _, rows = swept(tmp_path)
+        _, rows = swept()
         best = {str(row.row.number): row.plan.score.aim for row in rows if row.plan is not None}
         for way in (1, -1):
             heading(visit, "Best found").click()
@@ -65,7 +65,7 @@ def test_sorts_and_filters(browser: Any, tmp_path: Path) -> None:
 def test_a_row_opens_its_plan_by_keyboard(browser: Any, tmp_path: Path) -> None:
     """Enter opens the plan with figures, argument and blocks; arrows go on; Escape leads back to the row."""
     file = page_of(tmp_path)
-    sweep, rows = swept(tmp_path)
+    sweep, rows = swept()
     with Visit(browser, file) as visit:
         page = visit.page
         page.locator("#rows tbody button").first.focus()
@@ -158,7 +158,7 @@ def test_light_dark_and_narrow(browser: Any, tmp_path: Path) -> None:
 
 def test_prints_every_row(browser: Any, tmp_path: Path) -> None:
     """On paper all rows stand, also those that the screen shows only on demand; an open plan prints alone."""
-    _, rows = swept(tmp_path)
+    _, rows = swept()
     many = tuple(
         replace(row, row=replace(row.row, number=12 * times + row.row.number))
         for times in range(30)
@@ -183,7 +183,7 @@ def test_prints_every_row(browser: Any, tmp_path: Path) -> None:
 @pytest.mark.parametrize("status", ["one row", "none planned", "one plot size"])
 def test_small_and_empty_sweeps(browser: Any, tmp_path: Path, status: str) -> None:
     """One row, or none with a plan: the page stands, and draws no chart where there is nothing to draw."""
-    _, rows = swept(tmp_path)
+    _, rows = swept()
     chosen = {"one row": rows[:1], "none planned": rows[6:], "one plot size": rows[::3]}[status]
     with Visit(browser, page_of(tmp_path, rows=chosen)) as visit:
         assert len(first_cells(visit)) == len(chosen)
