@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 from search.cli.output import indented, shortened
 from search.efficiency.comparing import in_figures
 from search.field.cautions import office_notes
-from search.field.standing import standing_in_words
+from search.field.standing import plots_planted, standing_in_words
 from search.trial.records import Trial
 
 if TYPE_CHECKING:
@@ -30,7 +30,7 @@ def show_plan(console: Console, issued: Issued) -> None:
 
     trial, document = issued.trial, issued.document
     console.print(f"\nPlan {document['mark']}", style="bold")
-    for sentence in standing_in_words(document):
+    for sentence in standing_in_words(document, plots_planted(document)):
         indented(console, sentence)
     grid = Table.grid(padding=(0, 2, 0, 0))
     grid.add_column(width=2)

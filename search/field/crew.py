@@ -14,7 +14,7 @@ from search.field.cautions import FIRST, USUAL, office_notes
 from search.field.codes import treatment_codes
 from search.field.planted import planted_plots
 from search.field.randomise import Planted
-from search.field.standing import standing_in_words
+from search.field.standing import plots_planted, standing_in_words
 from search.field.walk import Pass, passes
 from search.field.wording import clean, counted
 from search.foundation.errors import BadInput
@@ -191,7 +191,7 @@ def crew_packet(trial: Trial, document: dict[str, Any], blind: bool = False) -> 
         paper=trial.packet.paper,
         about=tuple((clean(key), clean(value)) for key, value in trial.about),
         size=_size(trial, plots),
-        standing=standing_in_words(document),
+        standing=standing_in_words(document, plots_planted(document)),
         cautions=_cautions(treatments, blind),
         office=() if blind else office_notes(trial, document),
         treatments=treatments,

@@ -79,7 +79,7 @@ def office_sheet(trial: Trial, document: dict[str, Any], notes: tuple[str, ...])
         Group("Where the plan comes from", tuple(_origin(document))),
     )
     return OfficeSheet(
-        standing=standing_in_words(document),
+        standing=standing_in_words(document, plots_planted(document)),
         groups=tuple(group for group in groups if group.figures),
         notes=notes,
         pictures=tuple(_pictures(trial, document, variances)),

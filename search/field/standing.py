@@ -13,12 +13,13 @@ def plots_planted(document: dict[str, Any]) -> int:
     return sum(plot["treatment"] is not None for plot in document["plots"])
 
 
-def standing_in_words(document: dict[str, Any]) -> tuple[str, ...]:
+def standing_in_words(document: dict[str, Any], plots: int) -> tuple[str, ...]:
     """What is known of a plan, each sentence true as it stands.
 
     Parameters
     ----------
     document : the plan as in plan.json
+    plots : plots that hold a treatment
     """
     score, gap, standing = document["score"], document["gap_percent"], document["standing"]
     if score["average_pair_variance"] is None:
@@ -38,7 +39,7 @@ def standing_in_words(document: dict[str, Any]) -> tuple[str, ...]:
     if standing == "proven optimal":
         return (obeys, "No plan under these rules is better by even one part in a million; that is proved.")
     if standing == "bounded" and gap is not None and 0 <= gap < 100:
-        return (obeys, *_within(gap, plots_planted(document)))
+        return (obeys, *_within(gap, plots))
     return (obeys, "How much better another plan could be is not known.")
 
 

@@ -29,8 +29,11 @@ def least_sum_of_squares(rules: Tables, implied: Limits) -> int:
 
     The meetings of all treatments are handed out one by one to ordered pairs, each to a pair that has fewest
     so far; a treatment takes no more and no fewer than its blocks bring it, a pair no more and no fewer
-    than the rules allow. Costs are convex, so that gives the least sum under what is kept of the rules.
+    than the rules allow. Costs are convex, so that gives the least sum under what is kept of the rules. Where
+    it is not settled how many plots are planted, nothing but 0 is shown.
     """
+    if not rules.exact:
+        return 0
     fewest = np.where(rules.apart, 0, rules.meet_least)
     if (rules.high <= 1).all():
         most = np.minimum(rules.meet_most, np.minimum.outer(implied.most, implied.most))
