@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from search.efficiency.evaluator import components, information_matrix, log_pseudo_determinant, pseudo_inverse
 from search.efficiency.one_thread import one_thread
 from search.solvers.compiled import kernel
-from search.solvers.records import Floats, Problem
+from search.solvers.records import Problem
 from search.trial.records import Contents
 from search.trial.tables import Tables, contents_of, incidence
 
@@ -102,10 +102,11 @@ def _beds(tables: Tables) -> Beds:
 
 
 def _admitted(tables: Tables) -> Admitted:
+    many = tables.t if tables.limits_meetings else 0  # nobody asks for them
     admitted: Admitted = kernel().Admitted(
         plots=_count(np.stack([tables.least, tables.most])),
         copies=_count(np.stack([tables.low.T, tables.high.T])),
-        meetings=_count(np.stack([tables.meet_least, tables.meet_most])),
+        meetings=_count(np.stack([tables.meet_least, tables.meet_most])[:, :many, :many]),
         apart=_count(tables.apart),
         any_apart=bool(tables.apart.any()),
         any_meetings=tables.limits_meetings,

@@ -96,8 +96,7 @@ def annealing(first: Path | None) -> Iterator[str]:
         folders = [Path.cwd(), *([first] if first else [])]
         caches = [stack.enter_context(tempfile.TemporaryDirectory()) for _ in folders]
         versions = [
-            stack.enter_context(Version(folder, cache))
-            for folder, cache in zip(folders, caches, strict=True)
+            stack.enter_context(Version(folder, cache)) for folder, cache in zip(folders, caches, strict=True)
         ]
         for size, hot in ANNEALED.items():
             runs = [[v.annealed(size, hot, seed) for v in versions] for seed in range(REPEATS)]
@@ -152,8 +151,9 @@ def main() -> None:
     lines = [
         "# Speed of the engine",
         "",
-        "Made by `python -m tests.measure.engine_speed FILE [FOLDER_OF_THE_FIRST_VERSION]`; one thread, medians of",
-        "seven. Ratios are of runs taken in turn; other figures depend on the machine and on what else it does.",
+        "Made by `python -m tests.measure.engine_speed FILE [FOLDER_OF_THE_FIRST_VERSION]`; one thread,",
+        "medians of seven. Ratios are of runs taken in turn; other figures depend on the machine and on what",
+        "else it does.",
         "",
         "Millions of scored moves a second, annealing from the same temperature to a tenth of it:",
         "",
@@ -161,8 +161,8 @@ def main() -> None:
         rule,
         *annealing(first),
         "",
-        "An accepted move on the side of the treatments, blocks of ten, three plots each, its growth from the",
-        "row above (2 is that of the tables), and how fast the two tables are gone through:",
+        "An accepted move on the side of the treatments, blocks of ten, three plots each, its growth from",
+        "the row above (2 is that of the tables), and how fast the two tables are gone through:",
         "",
         "| t | microseconds | exponent | GB/s |",
         "|---|---|---|---|",

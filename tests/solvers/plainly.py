@@ -31,7 +31,9 @@ def told() -> str:
         walk = Walk(problem, contents_on(board), random, FOREVER)
         accepted = walk.cool(0.2, 0.01, 300)
         walk.descend(200)
-        lines.append(f"{accepted} {walk.moves} {walk.contents} {np.abs(walk.board.metrics.inverse).sum():.9f}")
+        lines.append(
+            f"{accepted} {walk.moves} {walk.contents} {np.abs(walk.board.metrics.inverse).sum():.9f}"
+        )
     problem = Problem(plain_tables(4, [3, 3, 2], plots=(1, 3)), pairs(4))
     walk = Walk(problem, in_turn(4, [3, 3, 2]), stream(1, 1), FOREVER)
     plot, partner = walk.best_move(np.inf) or (-1, -1)
