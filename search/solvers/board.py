@@ -157,10 +157,11 @@ def _beds(tables: Tables, mean: float) -> Beds:
 
 
 def _admitted(tables: Tables) -> Admitted:
+    many = tables.t if tables.limits_meetings else 0  # nobody asks for them
     admitted: Admitted = kernel().Admitted(
         plots=_count(np.stack([tables.least, tables.most])),
         copies=_count(np.stack([tables.low.T, tables.high.T])),
-        meetings=_count(np.stack([tables.meet_least, tables.meet_most])),
+        meetings=_count(np.stack([tables.meet_least, tables.meet_most])[:, :many, :many]),
         apart=_count(tables.apart),
         any_apart=bool(tables.apart.any()),
         any_meetings=tables.limits_meetings,

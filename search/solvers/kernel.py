@@ -27,8 +27,8 @@ it brings, and so would products of blocks with each other, which are means of t
     G' = G + g x' + h y',   x = (γ g − (1 + β) h)/ratio,   y = (α h − (1 + β) g)/ratio
     H' = H + x s' + s x' + y z' + z y',   s = p + ½ a x + ½ b y,   z = q + ½ c y + ½ b x
 
-The vectors are summed afresh from the rows of both tables at every accepted move: read from carried
-means, their error would grow by a constant factor each time.
+The means that they are made of are summed afresh from the rows of both tables at every accepted move:
+carried along, their error would grow by a constant factor each time.
 
 One file on purpose: the compiler's cache does not notice a change in a function of another file.
 Everything here also runs as plain Python, with NUMBA_DISABLE_JIT=1.
@@ -331,7 +331,7 @@ def _meets_in(beds, admitted, planting, u, v, a, c, block):
     return True
 
 
-@_inner
+@_hot
 def _meets(beds, admitted, planting, u, v, a, c):
     """Whether a move keeps all limits on meetings: O(k)."""
     if not admitted.any_meetings:
@@ -346,7 +346,7 @@ def _meets(beds, admitted, planting, u, v, a, c):
 # --- planting -------------------------------------------------------------------------------------
 
 
-@_inner
+@_hot
 def _count(admitted, planting, block, treatment, by):
     """Enter one plot more or less of a treatment in a block."""
     planting.copies[block, treatment] += by
@@ -376,7 +376,7 @@ def _record_meetings(planting, u, v, a, c):
             meetings[x, v] += with_v
 
 
-@_inner
+@_hot
 def _plant(admitted, planting, plot, partner, u, v, a, c):
     """Make a move in the contents; the tables are not touched."""
     if admitted.any_meetings:
@@ -394,29 +394,21 @@ def _plant(admitted, planting, plot, partner, u, v, a, c):
 
 
 @_inner
-def _add_block(beds, planted, table, width, block, factor, vector):
-    """Add to a vector over the treatments the mean row of a block's treatments, times a factor."""
-    factor *= beds.share[block]
-    begin, end = _span(beds, block)
-    for plot in range(begin, end):
-        j = np.int64(planted[plot])
-        for i in range(width):
-            vector[i] += factor * table[j, i]
-    if beds.mean > 0.0:
-        factor *= beds.mean
-        for i in range(width):
-            vector[i] += factor * table[len(table) - 1, i]
-
-
-@_inner
-def _mean_of(beds, planted, vector, t, block):
-    """The mean of a vector of so many treatments over the plots of a block."""
+def _sum_over(planted, begin, end, vector):
+    """The sum of a vector over the treatments of some plots."""
     total = 0.0
-    if beds.mean > 0.0:
-        total = beds.mean * vector[t - 1]
-    begin, end = _span(beds, block)
     for plot in range(begin, end):
         total += vector[np.int64(planted[plot])]
+    return total
+
+
+@_hot
+def _mean_of(beds, planted, vector, t, block):
+    """The mean of a vector of so many treatments over what a block holds."""
+    begin, end = _span(beds, block)
+    total = _sum_over(planted, begin, end, vector)
+    if beds.mean > 0.0:
+        total += beds.mean * vector[t - 1]
     return beds.share[block] * total
 
 
@@ -443,9 +435,7 @@ def _take_means(planted, begin, end, share, mean, table, means):
         for x in range(len(means)):
             means[x] += share * mean * table[last, x]
         total = mean * means[last]
-    for plot in range(begin, end):
-        total += means[np.int64(planted[plot])]
-    return share * total
+    return share * (total + _sum_over(planted, begin, end, means))
 
 
 @_hot
@@ -535,7 +525,7 @@ def _loose_columns(beds, admitted, planting, metrics, a, first, many):
     return j
 
 
-@_inner
+@_hot
 def _list(beds, admitted, planting, metrics, a, first, many, replacing):
     """List partners for block a: from plot `first` on, or from loose treatment `first` on to replace."""
     if replacing:
@@ -626,7 +616,7 @@ def _true_rise(metrics, rise, ratio):
     return -np.log(ratio) / metrics.degrees if metrics.overall else rise
 
 
-@_inner
+@_hot
 def _for_nothing(beds, metrics, j, u, a):
     """Whether an exchange only swaps the names of two blocks, alike but for u and v: then w = ½ s d."""
     strip = metrics.strip
@@ -641,23 +631,35 @@ def _for_nothing(beds, metrics, j, u, a):
 
 
 @_inner
-def _images(beds, planted, table, t, u, v, a, c, of_d, of_w):
-    """Fill in the images of d and of `w − ½ s d` in a table."""
-    step = beds.share[a]
-    if c >= 0:
-        step += beds.share[c]
-        for i in range(t):
-            of_d[i] = table[u, i] - table[v, i]
-            of_w[i] = -0.5 * step * of_d[i]
-        _add_block(beds, planted, table, t, c, -1.0, of_w)
-    else:
-        for i in range(t):
-            of_d[i] = table[u, i] - table[v, i]
-            of_w[i] = -0.5 * step * of_d[i] - 0.5 * (table[u, i] + table[v, i])
-    _add_block(beds, planted, table, t, a, 1.0, of_w)
+def _image_of_d(table, u, v, image):
+    for i in range(len(image)):
+        image[i] = table[u, i] - table[v, i]
 
 
 @_inner
+def _image_exchanged(of_a, of_c, half_step, of_d, image):
+    """The image of `w − ½ s d`, from those of the means of both blocks and of d."""
+    for i in range(len(image)):
+        image[i] = (of_a[i] - of_c[i]) - half_step * of_d[i]
+
+
+@_inner
+def _image_replaced(of_a, table, u, v, half_step, of_d, image):
+    for i in range(len(image)):
+        image[i] = of_a[i] - 0.5 * (table[u, i] + table[v, i]) - half_step * of_d[i]
+
+
+@_hot
+def _images(beds, table, means, u, v, a, c, of_d, of_w):
+    """Fill in the images of d and of `w − ½ s d` in a table, whose means are up to date."""
+    _image_of_d(table, u, v, of_d)
+    if c >= 0:
+        _image_exchanged(means[a], means[c], 0.5 * (beds.share[a] + beds.share[c]), of_d, of_w)
+    else:
+        _image_replaced(means[a], table, u, v, 0.5 * beds.share[a], of_d, of_w)
+
+
+@_hot
 def _product_with_w(beds, planted, vector, t, u, v, a, c):
     """`w − ½ s d` times a vector over the treatments."""
     d = vector[u] - vector[v]
@@ -665,6 +667,21 @@ def _product_with_w(beds, planted, vector, t, u, v, a, c):
     if c >= 0:
         return in_a - _mean_of(beds, planted, vector, t, c) - 0.5 * (beds.share[a] + beds.share[c]) * d
     return in_a - 0.5 * (vector[u] + vector[v]) - 0.5 * beds.share[a] * d
+
+
+@_inner
+def _factors(g, h, alpha, one, gamma, ratio, x, y):
+    for i in range(len(g)):
+        x[i] = (gamma * g[i] - one * h[i]) / ratio
+        y[i] = (alpha * h[i] - one * g[i]) / ratio
+
+
+@_inner
+def _halves(x, y, half_a, half_b, half_c, p, q):
+    """Turn the images p and q into the factors s and z."""
+    for i in range(len(x)):
+        p[i] += half_a * x[i] + half_b * y[i]
+        q[i] += half_c * y[i] + half_b * x[i]
 
 
 @_inner
@@ -685,30 +702,28 @@ def _grow_both(inverse, worth, t, g, h, x, y, s, z):
             worth[i, j] += (x_i * s[j] + s_i * x[j]) + (y_i * z[j] + z_i * y[j])
 
 
-@_inner
+@_hot
 def _move_points(beds, planted, metrics, t, u, v, a, c):
-    """Bring the tables up to date with a move that is about to be made; returns its rise and ratio."""
-    metrics.stamps[len(metrics.stamps) - 1] += 1
+    """Bring the tables up to date with a move that is about to be made; returns its rise and ratio.
+
+    The means of its blocks must be up to date; those of all blocks are not afterwards.
+    """
     inverse, worth, work = metrics.inverse, metrics.worth, metrics.work
-    width = inverse.shape[1]
     g, h, x, y, p, q = work[0], work[1], work[2], work[3], work[4], work[5]
-    _images(beds, planted, inverse, width, u, v, a, c, g, h)
+    metrics.stamps[len(metrics.stamps) - 1] += 1
+    _images(beds, inverse, metrics.means[0], u, v, a, c, g, h)
     alpha, one = g[u] - g[v], 1.0 + h[u] - h[v]
     gamma = _product_with_w(beds, planted, h, t, u, v, a, c)
     ratio = one * one - alpha * gamma
-    for i in range(width):
-        x[i] = (gamma * g[i] - one * h[i]) / ratio
-        y[i] = (alpha * h[i] - one * g[i]) / ratio
+    _factors(g, h, alpha, one, gamma, ratio, x, y)
     if metrics.overall:
         _grow(inverse, t, g, h, x, y)
         return 0.0, ratio
-    _images(beds, planted, worth, width, u, v, a, c, p, q)
+    _images(beds, worth, metrics.means[1], u, v, a, c, p, q)
     half_a, half_b = 0.5 * (p[u] - p[v]), 0.5 * (q[u] - q[v])
     half_c = 0.5 * _product_with_w(beds, planted, q, t, u, v, a, c)
     rise = 2.0 * (gamma * half_a - 2.0 * one * half_b + alpha * half_c) / ratio
-    for i in range(width):
-        p[i] += half_a * x[i] + half_b * y[i]
-        q[i] += half_c * y[i] + half_b * x[i]
+    _halves(x, y, half_a, half_b, half_c, p, q)
     _grow_both(inverse, worth, t, g, h, x, y, p, q)
     return rise, ratio
 
@@ -753,7 +768,7 @@ def _any_allowed(strip, begin, many, temperature, chance):
     return found > 0
 
 
-@_inner
+@_hot
 def _first_allowed(beds, admitted, planting, metrics, begin, many, temperature, chance, u, a, replacing):
     """The first of the moves scored that may be made, −1 for none, its rise, and the legal ones up to it."""
     strip, listed, legal = metrics.strip, metrics.listed, 0
@@ -846,6 +861,9 @@ def make_move(board, plot, partner):
     beds, admitted, planting, metrics = _named(board)
     t = _treatments(planting)
     u, v, a, c = _read(beds, planting.planted, plot, partner)
+    _renew(beds, planting.planted, metrics, a)
+    if c >= 0:
+        _renew(beds, planting.planted, metrics, c)
     rise, ratio = _move_points(beds, planting.planted, metrics, t, u, v, a, c)
     _plant(admitted, planting, plot, partner, u, v, a, c)
     return _true_rise(metrics, rise, ratio)
@@ -872,13 +890,19 @@ def anneal(board, random, temperature, cooling, moves, tries, most_accepted, ris
         replacing = choice >= pool
         first = choice - pool if replacing else partner
         tried = min(tried, len(beds.loose) if replacing else pool)
-        listed = _list(beds, admitted, planting, metrics, a, first, tried, replacing)
         begin, end = _span(beds, a)
-        before = accepted
+        before, listed, order, stale = accepted, np.int64(0), np.int64(-1), True
         for _ in range(begin, end):
             drawn += tried
-            done = np.int64(0)
-            while done < listed and accepted < most_accepted:
+            while accepted < most_accepted:
+                if stale:
+                    listed, stale = (
+                        _list(beds, admitted, planting, metrics, a, first, tried, replacing),
+                        False,
+                    )
+                done = np.int64(0)
+                while done < listed and metrics.listed[ORDER * STRIP + done] <= order:
+                    done += 1  # tried already, before the last accepted move
                 u = np.int64(planted[plot])
                 if planting.gate[a, u] >= PINNED or (
                     replacing and planting.plots[u] <= admitted.plots[LEAST, u]
@@ -897,18 +921,16 @@ def anneal(board, random, temperature, cooling, moves, tries, most_accepted, ris
                 chance = (chance + listed) & 1023
                 if j < 0:
                     break
-                partner, order = metrics.listed[PARTNER * STRIP + j], metrics.listed[ORDER * STRIP + j]
-                u, v, a, c = _read(beds, planted, plot, np.int64(partner))
+                partner = np.int64(metrics.listed[PARTNER * STRIP + j])
+                order, stale = np.int64(metrics.listed[ORDER * STRIP + j]), True
+                u, v, a, c = _read(beds, planted, plot, partner)
                 _move_points(beds, planted, metrics, t, u, v, a, c)
-                _plant(admitted, planting, plot, np.int64(partner), u, v, a, c)
+                _plant(admitted, planting, plot, partner, u, v, a, c)
                 accepted += 1
                 climbed += int(rise > NOTHING)
-                listed = _list(beds, admitted, planting, metrics, a, first, tried, replacing)
-                done = np.int64(0)
-                while done < listed and metrics.listed[ORDER * STRIP + done] <= order:
-                    done += 1
             if scored >= moves or accepted >= most_accepted:
                 break
+            order = np.int64(-1)
             plot += 1
             if plot == end:
                 plot = begin
@@ -1298,6 +1320,9 @@ def make_even_move(board, table, plot, partner):
     t = _treatments(planting)
     u, v, a, c = _read(beds, planting.planted, plot, partner)
     more = _more_squares(planting.copies, table, real, u, v, a, c)
+    _renew(beds, planting.planted, metrics, a)
+    if c >= 0:
+        _renew(beds, planting.planted, metrics, c)
     _move_points(beds, planting.planted, metrics, t, u, v, a, c)
     _make_even(beds, admitted, planting, table, real, plot, partner, u, v, a, c)
     return more

@@ -9,9 +9,11 @@ import time
 from collections.abc import Callable
 from dataclasses import replace
 from statistics import median
+from typing import Any
 
 import numpy as np
 import pytest
+from numba import njit
 
 from search.efficiency.one_thread import one_thread
 from search.solvers.anneal import calibrated, scrambled
@@ -22,6 +24,8 @@ from search.solvers.walk import NOTHING, Walk
 from tests.solvers.problems import FOREVER, plain
 
 REPEATS = 7
+LEAST_OF_BARE = 0.2
+"""Measured on a machine that had other work."""
 
 
 def seconds_of(work: Callable[[], object], times: int) -> float:
@@ -67,6 +71,38 @@ def test_a_scan_against_recomputing_eigenvalues(t: int, b: int, k: int, ratio: i
         f" the plain way {1e6 * median(plainly):,.1f} µs each; ratio {median(ratios):,.0f}"
     )
     assert median(ratios) >= ratio
+
+
+@njit(nogil=True, fastmath=True)
+def loads(planted: Any, blocks: Any, home: Any, gate: Any, inverse: Any, worth: Any, means: Any) -> float:
+    """Add up what a scan takes from the tables for every exchange, and do nothing else."""
+    total, shut = 0.0, 0
+    for a in range(len(blocks)):
+        begin = np.int64(blocks[a, 0])
+        end = begin + np.int64(blocks[a, 1])
+        for plot in range(begin, end):
+            u = np.int64(planted[plot])
+            for other in range(end, len(planted)):
+                v, c = np.int64(planted[other]), np.int64(home[other])
+                total += inverse[u, v] + worth[u, v] + means[0, c, u] + means[1, c, u]
+                shut += gate[c, u]
+    return total + shut
+
+
+@pytest.mark.bench
+@pytest.mark.parametrize(("t", "b", "k", "times"), [(12, 15, 4, 300), (30, 30, 5, 100), (200, 100, 6, 8)])
+def test_a_scan_against_a_bare_loop(t: int, b: int, k: int, times: int) -> None:
+    """A full scan keeps most of the speed of a loop that loads the same entries, legal or not."""
+    walk = walk_of(*plain(t, b, k))
+    board, planting, metrics = walk.board.plain, walk.board.planting, walk.board.metrics
+    taken = (planting.planted, walk.board.beds.blocks, walk.board.beds.home, planting.gate, *metrics[:3])
+    loads(*taken)
+    ratios = []
+    for _ in range(REPEATS):
+        scan = seconds_of(lambda: kernel().best_move(board, 0, b, -np.inf), times)
+        ratios.append(seconds_of(lambda: loads(*taken), times) / scan)
+    print(f"\n{(t, b, k)}: a scan has {median(ratios):.0%} of the speed of a bare loop")
+    assert median(ratios) >= LEAST_OF_BARE
 
 
 @pytest.mark.bench
