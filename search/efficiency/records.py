@@ -49,13 +49,15 @@ class Bound:
     """No plan that the trial admits has an efficiency for the aim above `exact`.
 
     `certificate` is JSON data, `{"kind", "statement", "multipliers"}`, rationals written "p/q",
-    from which `search.proof` derives the bound again.
+    from which `search.proof` derives the bound again. `otherwise` is the best bound for those who do not
+    believe this one: a proof by exhaustion is repeated only on demand.
     """
 
     aim: AimKind
     exact: Fraction
     argument: str
     certificate: dict[str, Any]
+    otherwise: Bound | None = None
 
     @property
     def value(self) -> float:

@@ -78,7 +78,7 @@ def _bound(given: Problem, argument: str, steps: int) -> Bound | None:
     if least <= 0:
         return None
     if given.trial.aim.kind is AimKind.OVERALL:
-        greatest = _exponential_above(-least) * shape.r**shape.rank
+        greatest = exponential_above(-least) * shape.r**shape.rank
         return bound_on_determinant(given, argument, greatest, multipliers, kind=NAME)
     variance = 2 * least / shape.r / shape.rank
     return bound_on_variance(given, argument, variance, multipliers, kind=NAME)
@@ -88,7 +88,7 @@ def _cost(given: Problem) -> Cost:
     return Cost.LOGARITHM if given.trial.aim.kind is AimKind.OVERALL else Cost.INVERSE
 
 
-def _exponential_above(x: Fraction) -> Fraction:
+def exponential_above(x: Fraction) -> Fraction:
     """A rational little above e^x for x ≤ 0, by 1/e^−x with the series cut off from below."""
     grain = 10**36
     size = Fraction(int(-x * grain), grain)
@@ -169,9 +169,9 @@ class Search:
 
     def _go_on(self) -> bool:
         """Take the first of all further levels out."""
-        number = len(self.levels) - 1
+        number = self.levels[-1].number
         exact, rest = self.level(number, True), self.level(number + 1, False)
-        if len(self.levels) >= MOST_LEVELS or exact is None or rest is None:
+        if number + 1 >= MOST_LEVELS or exact is None or rest is None:
             return False
         self.levels[-1:] = [exact, rest]
         return True
@@ -199,6 +199,19 @@ def begun(shape: Shape, cost: Cost) -> Search | None:
         return None
     search.levels = [first] if rest is None else [first, rest]
     return search
+
+
+def beyond_first(shape: Shape, cost: Cost, enough: Fraction) -> Search | None:
+    """All levels but the first, made finer until no plan in them costs less than `enough`, or as far as it goes."""
+    search = Search(shape, cost)
+    rest = search.level(1, False)
+    if rest is None or not rest.forms:
+        return None
+    search.levels = [rest]
+    for _ in range(STEPS):
+        if not search.leaves or search.value >= enough or not search.step():
+            break
+    return search if search.leaves else None
 
 
 # -- what the checker needs --------------------------------------------------------------------------
