@@ -22,7 +22,7 @@ TOO_MANY, STOPPED = -1, -2
 """Answers in place of a count."""
 
 
-@njit(cache=True, nogil=True)  # type: ignore[untyped-decorator]
+@njit(cache=True, nogil=True)
 def connected_graphs(n: int, d: int, most_tests: int, found: Whole, stop: Any) -> int:
     """Write down every connected graph on n vertices of degree d, 1 ≤ d < n ≤ 62.
 
@@ -91,7 +91,7 @@ def connected_graphs(n: int, d: int, most_tests: int, found: Whole, stop: Any) -
         j += 1
 
 
-@njit(cache=True, nogil=True)  # type: ignore[untyped-decorator]
+@njit(cache=True, nogil=True)
 def _is_least(rows: Whole, later: Whole, n: int, last: int) -> bool:
     """Whether no other numbering gives a lesser list of edges.
 
@@ -175,7 +175,7 @@ def _is_least(rows: Whole, later: Whole, n: int, last: int) -> bool:
     return True
 
 
-@njit(cache=True, nogil=True)  # type: ignore[untyped-decorator]
+@njit(cache=True, nogil=True)
 def _row(near: Whole, degree: Whole, number: Whole, v: int, p: int, next_: int) -> int:
     """Later neighbours of v, which has the number p; those without a number get the next ones."""
     row, new = 0, 0
@@ -189,7 +189,7 @@ def _row(near: Whole, degree: Whole, number: Whole, v: int, p: int, next_: int) 
     return row
 
 
-@njit(cache=True, nogil=True)  # type: ignore[untyped-decorator]
+@njit(cache=True, nogil=True)
 def _less(row: int, than: int) -> bool:
     """Whether a row comes before another, different one."""
     differ = row ^ than

@@ -2,7 +2,7 @@
 
 Statement. Let all blocks have k plots and all treatments r, nothing twice in a block. Either the meetings of
 treatments or the overlaps of blocks are as even as the numbers allow (the first level), so that they show a
-regular graph; or the plan belongs to a further level, which a certificate of the kind "local spectral" bounds.
+regular graph; or the plan belongs to a further level, which is bounded as in `local spectral`.
 Every regular graph of the degree in question is listed up to isomorphism. Those that would be better than the
 plan, and better than what bounds the further levels, are refuted one by one: no plan has these meetings.
 
@@ -259,19 +259,15 @@ class _Look:
         else:
             variance = -2 * shown / case.shape.r / case.shape.rank
             bound = bound_on_variance(self.given, NAME, variance, multipliers)
-        statement = (
-            f"{bound.certificate['statement']}; {_told(case, len(self.meetings), len(better), refuted)}"
-        )
-        certificate = {**bound.certificate, "statement": statement}
+        told = _told(case, len(self.meetings), len(better), refuted)
+        certificate = {**bound.certificate, "statement": f"{bound.certificate['statement']}; {told}"}
         return replace(bound, certificate=certificate, otherwise=otherwise)
 
 
 def _told(case: Case, graphs: int, better: int, refuted: dict[str, int]) -> str:
     who = "treatments meet" if case.half.name == "primal" else "blocks overlap"
     fates = ", ".join(f"{count:,} by {by}" for by, count in refuted.items() if count)
-    would = (
-        f"{better:,} would be better, and no plan has them ({fates})" if better else "none would be better"
-    )
+    would = f"{better:,} would be better, and no plan has them ({fates})" if better else "none is better"
     return f"shown by exhaustion: of all ways in which {who} as evenly as can be ({graphs:,} graphs), {would}"
 
 

@@ -17,7 +17,7 @@ MARGIN = 1e-8
 
 
 def worth(meetings: Meetings, rk: int, more: int, cost: Cost) -> Fraction:
-    """`−Σ 1/(1 − x)`, or `Π (1 − x)` for the overall aim, over the t − 1 eigenvalues `rk·x`; −10¹² if cut off.
+    """`−Σ 1/(1 − x)`, for the overall aim `Π (1 − x)`, over the t − 1 eigenvalues `rk·x`; −10¹² if cut off.
 
     `B = rk·I − NN' + J` has the eigenvalues rk(1 − x) and, for the ones, v.
 

@@ -202,7 +202,7 @@ def begun(shape: Shape, cost: Cost) -> Search | None:
 
 
 def beyond_first(shape: Shape, cost: Cost, enough: Fraction) -> Search | None:
-    """All levels but the first, made finer until no plan in them costs less than `enough`, or as far as it goes."""
+    """All levels but the first, made finer until no plan in them costs less than `enough`, if they can be."""
     search = Search(shape, cost)
     rest = search.level(1, False)
     if rest is None or not rest.forms:
