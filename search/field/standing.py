@@ -27,11 +27,35 @@ def standing_in_words(document: dict[str, Any], plots: int) -> tuple[str, ...]:
             "It is balanced: every two treatments are compared equally well, and no plan under "
             "these rules is better.",
         )
+    how = _exhaustion(document.get("bound"))
     if standing == "proven optimal":
-        return (obeys, "No plan under these rules is better by even one part in a million; that is proved.")
+        best = "No plan under these rules is better by even one part in a million"
+        return (
+            (obeys, f"{best}; that is proved by exhaustion.", how)
+            if how
+            else (obeys, f"{best}; that is proved.")
+        )
     if standing == "bounded" and gap is not None and 0 <= gap < 100:
-        return (obeys, *_within(gap, plots))
+        return (obeys, *_within(gap, plots), *([how] if how else []))
     return (obeys, "How much better another plan could be is not known.")
+
+
+def _exhaustion(bound: Any) -> str:
+    """What a proof by exhaustion rests on; empty where the bound is of another kind."""
+    certificate = bound.get("certificate") if isinstance(bound, dict) else None
+    if not isinstance(certificate, dict) or certificate.get("kind") != "exhaustion":
+        return ""
+    counts = certificate.get("multipliers")
+    graphs, better = (counts.get(key) for key in ("graphs", "better")) if isinstance(counts, dict) else (0, 0)
+    if not (isinstance(graphs, int) and isinstance(better, int)):
+        return ""
+    refuted = (
+        f"{better:,} of them would be better and were shown to be impossible" if better else "none is better"
+    )
+    return (
+        f"Proof by exhaustion: all {graphs:,} graphs of the most even meetings were looked at by computer, and "
+        f"{refuted}; anything less even is proved to be worse. To repeat it: evenfield verify --exhaust."
+    )
 
 
 def _within(gap_percent: float, plots: int) -> tuple[str, str]:

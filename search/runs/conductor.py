@@ -10,12 +10,14 @@ from dataclasses import dataclass, field, replace
 from search.designs.starts import Start, starts
 from search.efficiency.aims import weights
 from search.efficiency.bounds import all_bounds
+from search.efficiency.bounds.problem import problem as bounded_problem
 from search.efficiency.evaluator import score
+from search.efficiency.exhaustion.proving import LONG, case_of, exhausted, worth_of
 from search.efficiency.records import Bound
 from search.efficiency.reference import reference_product, reference_variance
 from search.foundation.stopping import Ended, Limits, Observer, Stop
-from search.runs.plan import Plan
-from search.solvers.records import Outcome, Problem
+from search.runs.plan import PROVEN_PERCENT, Plan
+from search.solvers.records import PROVER, Outcome, Problem
 from search.solvers.start import feasible_start, further_starts
 from search.trial.canonical import canonical
 from search.trial.checker import broken_rules
@@ -31,6 +33,8 @@ MET = 1e-9
 """A plan whose efficiency is within this part of a bound needs no further one."""
 LEAST_SECONDS = 2.0
 """Bounds may take so long even where the search may not."""
+STALLED = 2
+"""Rounds before a proof by exhaustion is tried."""
 STARTS_SHARE = 0.25
 """Part of a limit in seconds after which no further design is adapted as a start."""
 
@@ -90,6 +94,9 @@ def find(
     else:
         outcome = _searched(trial, rules, implied, first, best, bounds, stop, seed, workers)
     bounds.finish(score(trial, outcome.contents).aim)
+    better = bounds.proved(outcome.contents)
+    if better is not None:
+        outcome = replace(outcome, contents=better, run=-1, start=PROVER)
     broken = broken_rules(trial, outcome.contents)
     if broken:
         raise RuntimeError(f"the search broke a rule: {broken[0]}")
@@ -136,6 +143,7 @@ def _searched(
         ),
         known="" if best is None else best.where_from,
         others=further_starts(trial, rules, implied, seed=seed),
+        prover=bounds.prove,
     )
 
 
@@ -207,6 +215,8 @@ class _Bounds:
     observer: Observer
     stop: Stop
     best: Bound | None = None
+    exhausted: bool = False
+    at: Contents | None = None
     waiting: Iterator[Bound] = field(init=False)
     reference: float = field(init=False)
 
@@ -240,6 +250,49 @@ class _Bounds:
         """Find the bounds that are left, unless a plan of the efficiency reached meets one."""
         while (self.best is None or reached < self.best.value * (1 - MET)) and self._step():
             pass
+
+    def prove(self, round_: int, best: Contents) -> Contents | None:
+        """Once no bound is left and a round has brought nothing: a proof by exhaustion, or a better plan."""
+        before, self.at = self.at, best
+        if round_ < STALLED or before != self.at or self._step():
+            return None
+        return self.proved(best)
+
+    def proved(self, contents: Contents) -> Contents | None:
+        """A better plan, where the proof by exhaustion of its kind comes upon one; its bound is kept.
+
+        It is tried once, and only where the bounds leave a gap, the graphs are few and the time suffices.
+        """
+        reached = score(self.trial, contents)
+        met = self.best is not None and reached.aim >= self.best.value * (1 - PROVEN_PERCENT / 100)
+        if self.exhausted or met or not reached.connected or self.stop.interrupted:
+            return None
+        given = bounded_problem(self.trial, self.implied)
+        case = None if given is None else case_of(given)
+        if given is None or case is None or not self._has_time(case.seconds):
+            return None
+        self.exhausted = True
+        limit = self.stop.limits.seconds
+        try:
+            found = exhausted(
+                given,
+                case,
+                worth_of(case, contents),
+                otherwise=self.best,
+                seconds=LONG if limit is None else max(1.0, limit - self.stop.elapsed),
+                stop=self.stop,
+                note=self.observer.note,
+            )
+        except KeyboardInterrupt:
+            return None
+        if found is None:
+            return None
+        if found.bound is not None and (self.best is None or found.bound.exact < self.best.exact):
+            self.best = found.bound
+            self.observer.bound(found.bound.value, found.bound.argument)
+        if found.contents is not None:
+            self.observer.first_plan(score(self.trial, found.contents).aim, PROVER)
+        return found.contents
 
     def _has_time(self, seconds: float) -> bool:
         """Whether a bound that takes so long fits into the time of the search; without a limit it does."""

@@ -11,6 +11,7 @@ from types import ModuleType
 from search.proof.certificates import (
     by_meets,
     by_pairs,
+    exhaustion,
     first_order,
     local_spectral,
     normalised,
@@ -26,5 +27,6 @@ KINDS: dict[str, ModuleType] = {
     "second moment by block meets": by_meets,
     "local spectral": local_spectral,
     "normalised moment": normalised,
+    exhaustion.KIND: exhaustion,
 }
 """What a certificate's "kind" may say."""
