@@ -29,12 +29,8 @@ def standing_in_words(document: dict[str, Any], plots: int) -> tuple[str, ...]:
         )
     how = _exhaustion(document.get("bound"))
     if standing == "proven optimal":
-        best = "No plan under these rules is better by even one part in a million"
-        return (
-            (obeys, f"{best}; that is proved by exhaustion.", how)
-            if how
-            else (obeys, f"{best}; that is proved.")
-        )
+        best = "No plan under these rules is better by even one part in a million; that is proved"
+        return (obeys, f"{best} by exhaustion.", how) if how else (obeys, f"{best}.")
     if standing == "bounded" and gap is not None and 0 <= gap < 100:
         return (obeys, *_within(gap, plots), *([how] if how else []))
     return (obeys, "How much better another plan could be is not known.")
@@ -49,12 +45,12 @@ def _exhaustion(bound: Any) -> str:
     graphs, better = (counts.get(key) for key in ("graphs", "better")) if isinstance(counts, dict) else (0, 0)
     if not (isinstance(graphs, int) and isinstance(better, int)):
         return ""
-    refuted = (
-        f"{better:,} of them would be better and were shown to be impossible" if better else "none is better"
+    better_ones = (
+        f"{better:,} would be better and were shown to be impossible" if better else "none is better"
     )
     return (
-        f"Proof by exhaustion: all {graphs:,} graphs of the most even meetings were looked at by computer, and "
-        f"{refuted}; anything less even is proved to be worse. To repeat it: evenfield verify --exhaust."
+        f"Proof by exhaustion: all {graphs:,} graphs of the most even meetings were looked at by computer; "
+        f"{better_ones}. All that is less even is bounded. To repeat it: evenfield verify --exhaust."
     )
 
 

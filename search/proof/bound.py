@@ -44,9 +44,10 @@ def bounded(value: Any, case: Case, exhaust: bool = False) -> tuple[list[Finding
         raise Refuted(f"the certificate proves no more than {told(derived)}, not {told(exact)}")
     if not Interval.exactly(exact).agrees(value, RELATIVE):
         raise Refuted(f"its value {told(value)} is not the exact {told(exact)}")
+    trusting = certificate.text("kind") == exhaustion.KIND and not exhaust
     sentence = (
         f"no plan that this trial admits has an efficiency above {told(exact)}; "
-        f"derived again: {told(derived)}"
+        f"derived again{', from what the file says of graphs' if trusting else ''}: {told(derived)}"
     )
     findings = [Finding("bound", True, sentence)]
     if certificate.text("kind") == exhaustion.KIND:

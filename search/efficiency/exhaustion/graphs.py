@@ -47,7 +47,7 @@ def regular_graphs(n: int, d: int, stop: Stop | None = None, most: int = MOST_GR
         return all_pairs - regular_graphs(n, n - 1 - d, stop, most)
     if about(n, d) > 3 * most:
         raise TooMany
-    graphs = []
+    graphs: list[Graphs] = []
     for parts in _unions(n, d, stop, most):
         if len(graphs) == most:
             raise TooMany

@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from enum import Enum
 from itertools import combinations
 from math import comb, isqrt
+from typing import TYPE_CHECKING
 
 import numpy as np
 
@@ -16,6 +17,9 @@ from search.efficiency.bounds.spectral.side import Half
 from search.efficiency.exhaustion.worth import Meetings, determinant
 from search.foundation.cpsat import Answer, solve
 from search.foundation.stopping import Stop
+
+if TYPE_CHECKING:
+    from ortools.sat.python.cp_model import IntVar
 
 MOST_LINES = 13_000
 """So many different lines are offered to the solver."""
@@ -122,8 +126,9 @@ def _solved(
     from ortools.sat.python import cp_model
 
     model = cp_model.CpModel()
-    choice, shared = [], {pair: [] for pair in combinations(range(members), 2)}
-    through: list[list[cp_model.IntVar]] = [[] for _ in range(members)]
+    choice: list[tuple[tuple[int, ...], IntVar]] = []
+    shared: dict[tuple[int, ...], list[IntVar]] = {pair: [] for pair in combinations(range(members), 2)}
+    through: list[list[IntVar]] = [[] for _ in range(members)]
     # where overlaps are even, no line stands twice unless it may be its own overlap
     once = both_even and other.own > other.base + 1
     for line in combinations(range(members), size):

@@ -58,9 +58,9 @@ def level_values(
     last_exactly : whether the last one stands for itself alone
     """
     levels = multipliers.items("levels")
-    for at, level in enumerate(levels):
-        where = f"{multipliers.at('levels')}[{at + 1}]"
-        sides = pairs_of_sides(numbers, first + at, last_exactly or at < len(levels) - 1)
+    for nth, level in enumerate(levels):
+        where = f"{multipliers.at('levels')}[{nth + 1}]"
+        sides = pairs_of_sides(numbers, first + nth, last_exactly or nth < len(levels) - 1)
         cases = listed(where, level)
         if len(cases) != len(sides):
             raise Refuted(f"{where} must have a proof for each of the {len(sides)} forms of the level")

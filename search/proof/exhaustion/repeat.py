@@ -25,8 +25,8 @@ SECONDS, MOST_LINES = 600.0, 20_000
 def repeated(case: Case, listing: Listing) -> Finding:
     """List the graphs of the first level again, and refute again those with more worth than is claimed.
 
-    The worth of a graph is `−Σ 1/(1 − x)`, for the overall aim `Π (1 − x)`, over the t − 1 eigenvalues rk·x of
-    NN' that a plan decides.
+    The worth of a graph is `−Σ 1/(1 − x)`, for the overall aim `Π (1 − x)`, over the t − 1 eigenvalues rk·x
+    of NN' that a plan decides.
 
     Raises
     ------
@@ -54,7 +54,7 @@ def repeated(case: Case, listing: Listing) -> Finding:
     fates = Counter(_fate(listing, meetings) for meetings in better)
     if fates["counting"] != listing.by_counting:
         raise Refuted(
-            f"counting is claimed to refute {listing.by_counting:,} graphs, but it refutes {fates['counting']:,}"
+            f"counting is claimed to refute {listing.by_counting:,} graphs, but refutes {fates['counting']:,}"
         )
     return Finding(
         "exhaustion",
@@ -124,7 +124,7 @@ def _cannot_be(listing: Listing, meetings: Whole) -> bool:
             return True
     if not listing.both_even:
         return False
-    # N'N = (other.lines − base) I + base J + M for a graph M of degree d: traces of its third and fourth power
+    # N'N = (other.lines − base) I + base J + M for a graph M of degree d: traces of M³ and M⁴
     shift, rk = other.lines - other.base, side.lines * side.points
     square = meetings.dot(meetings)
     traces = [
