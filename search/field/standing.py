@@ -45,12 +45,10 @@ def _exhaustion(bound: Any) -> str:
     graphs, better = (counts.get(key) for key in ("graphs", "better")) if isinstance(counts, dict) else (0, 0)
     if not (isinstance(graphs, int) and isinstance(better, int)):
         return ""
-    better_ones = (
-        f"{better:,} would be better and were shown to be impossible" if better else "none is better"
-    )
+    fate = f"{better:,} would be better and were shown to be impossible" if better else "none is better"
     return (
         f"Proof by exhaustion: all {graphs:,} graphs of the most even meetings were looked at by computer; "
-        f"{better_ones}. All that is less even is bounded. To repeat it: evenfield verify --exhaust."
+        f"{fate}. All that is less even is bounded. To repeat it: evenfield verify --exhaust."
     )
 
 

@@ -142,8 +142,8 @@ def _solved(
             shared[pair].append(times)
         for member in line:
             through[member].append(times)
-    for pair, found in shared.items():
-        model.add(sum(found) == int(wanted[pair]))
+    for two, found in shared.items():
+        model.add(sum(found) == int(wanted[two]))
     for found in through:
         model.add(sum(found) == own)
     solved = solve(

@@ -3,8 +3,8 @@
 Two edges ab and cd become ac and bd: the switches of a regular graph reach every other one of its degree
 (Petersen 1891; Taylor 1981, from memory). That all classes were found is not left to that: a class of graphs
 on n vertices has n!/|Aut| members, and these must add up to the number of all labelled regular graphs, which
-is counted for itself. Graphs with different invariants belong to different classes; if ever two classes had the
-same invariant the weight would fall short, and nothing is claimed.
+is counted for itself. Graphs with different invariants belong to different classes; if ever two classes had
+the same invariant the weight would fall short, and nothing is claimed.
 """
 
 from __future__ import annotations
