@@ -75,8 +75,9 @@ def listing_of(case: Case, multipliers: Part) -> Listing:
         raise Refuted("with two plots a block and two a treatment nothing is listed")
     sides = pairs_of_sides(numbers, 0, True)
     name = multipliers.text("side")
-    if len(sides) != 1 or name not in ("primal", "dual"):
+    if not sides or name not in ("primal", "dual"):
         raise Refuted(f"{multipliers.at('side')} must be primal or dual")
+    # the other side may have several forms there, where it is not even
     side, other = sides[0] if name == "primal" else sides[0][::-1]
     if side.form != EVEN or side.sets > 1:
         raise Refuted(f"{multipliers.where} lists graphs of a side that is no graph")

@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import random
+from collections.abc import Iterator
 from fractions import Fraction
+from itertools import combinations, combinations_with_replacement
 
 import numpy as np
 import pytest
@@ -21,7 +23,6 @@ from search.trial.checker import broken_rules
 from search.trial.limits import limits
 from search.trial.records import Aim, Contents, Trial
 from search.trial.tables import incidence
-from tests.drawn import all_plans
 from tests.efficiency.plans import ALL_PAIRS, FANO, OVERALL, dual, equal_trial, improved
 from tests.equal_plans import random_plan
 
@@ -54,13 +55,21 @@ def best_of(trial: Trial, contents: Contents) -> tuple[float, Exhausted]:
     return score(trial, contents).aim, found
 
 
-TINY = [(4, 4, 3), (5, 5, 2), (5, 5, 3), (4, 6, 2), (6, 4, 3), (6, 3, 4), (5, 5, 4)]
+def plans_of(trial: Trial, k: int) -> Iterator[Contents]:
+    """Every plan of a trial, but for the order of its blocks."""
+    columns = list(combinations(range(trial.t), k))
+    for contents in combinations_with_replacement(columns, trial.b):
+        if not broken_rules(trial, contents):
+            yield contents
+
+
+TINY = [(4, 4, 3), (5, 5, 3), (4, 6, 2), (6, 3, 4), (5, 5, 4)]
 
 
 @pytest.mark.parametrize("aim", [ALL_PAIRS, OVERALL], ids=["all pairs", "overall"])
 @pytest.mark.parametrize("shape", TINY)
 def test_no_plan_of_a_tiny_trial_is_better(shape: tuple[int, int, int], aim: Aim) -> None:
-    """From a random plan on: what is proved is not below the best of all plans; nor is what is found above."""
+    """What is proved is not below the best of all plans, and what is found not above."""
     t, b, k = shape
     trial = equal_trial(t, b, k, aim)
     given_ = problem(trial, limits(trial))
@@ -68,17 +77,15 @@ def test_no_plan_of_a_tiny_trial_is_better(shape: tuple[int, int, int], aim: Aim
     if case_of(given_) is None:
         assert b * k // t == k == 2
         return
-    best = max(score(trial, contents).aim for contents in all_plans(trial, 200_000))
+    best = max(score(trial, contents).aim for contents in plans_of(trial, k))
     start = improved(trial, random_plan(random.Random(1), t, b, k), 1, tries=20)
     reached, found = best_of(trial, start)
     assert reached <= best + 1e-12
     assert found.bound is None or found.bound.value >= best - 1e-12
 
 
-@settings(deadline=None, max_examples=15)
-@given(
-    st.sampled_from([(6, 9, 2), (7, 7, 3), (6, 8, 3), (7, 7, 4), (8, 6, 4), (6, 12, 2)]), st.integers(0, 999)
-)
+@settings(deadline=None, max_examples=5)
+@given(st.sampled_from([(6, 9, 2), (7, 7, 3), (6, 8, 3), (7, 7, 4), (8, 6, 4)]), st.integers(0, 999))
 def test_nothing_that_is_found_beats_what_is_proved(shape: tuple[int, int, int], seed: int) -> None:
     """Whatever plan it starts from, no plan that a walk comes upon is above the bound."""
     t, b, k = shape
@@ -86,19 +93,22 @@ def test_nothing_that_is_found_beats_what_is_proved(shape: tuple[int, int, int],
     start = random_plan(random.Random(seed), t, b, k)
     if score(trial, start).connected:
         reached, found = best_of(trial, start)
-        good = improved(trial, random_plan(random.Random(seed + 1), t, b, k), seed, tries=150)
+        good = improved(trial, random_plan(random.Random(seed + 1), t, b, k), seed, tries=60)
         assert found.bound is None or max(reached, score(trial, good).aim) <= found.bound.value + 1e-12
 
 
-PROVEN = [(9, 18, 2, 0.511140236), (8, 8, 4, 0.849761621), (12, 18, 2, 0.424125585), (18, 9, 4, 0.0)]
-LONG = [(12, 15, 4, 0.810164746), (16, 24, 2, 0.390207862), (12, 18, 4, 0.812807882)]
-"""(t, b, k, best A): found by an earlier prototype of this project; 0 where that is not compared."""
+PROVEN = [(9, 18, 2, 0.511140236), (8, 8, 4, 0.849761621), (8, 12, 2, 0.487562189), (8, 6, 4, 0.838475499)]
+LONG = [
+    (12, 18, 2, 0.424125585), (12, 15, 4, 0.810164746),
+    (16, 24, 2, 0.389610390), (12, 18, 4, 0.812807882),
+]  # fmt: skip
+"""(t, b, k, best A): the best of long searches by an earlier prototype of this project."""
 
 
 def _is_proven(t: int, b: int, k: int, best: float) -> None:
     trial = equal_trial(t, b, k)
     contents = improved(trial, random_plan(random.Random(3), t, b, k), 3, tries=100)
-    for _ in range(60):
+    for _ in range(9):
         found = proved(trial, contents)
         if found.contents is None:
             break
@@ -106,7 +116,7 @@ def _is_proven(t: int, b: int, k: int, best: float) -> None:
     assert found.bound is not None
     reached = score(trial, contents).aim
     assert 1 - reached / found.bound.value < 1e-9
-    assert best == 0 or abs(reached - best) < 1e-6
+    assert abs(reached - best) < 2e-9
     counts = found.bound.certificate["multipliers"]
     assert counts["better"] == sum(counts["refuted"].values()) <= counts["graphs"]
 
