@@ -140,10 +140,10 @@ def test_a_bound_below_the_best_plan_is_found_when_it_is_repeated() -> None:
     trial, bound = proof_of(8, 12, 2)
     claim = claim_of(bound)
     multipliers = claim["certificate"]["multipliers"]
-    multipliers["worth"] = "-15"  # the best plan has −14.36
+    multipliers["worth"] = "-1437/100"  # the best plan has −14.357
     multipliers["better"], multipliers["refuted"]["solver"] = 1, 1
-    with pytest.raises(Refuted, match="there is a plan|are"):
-        bounded(claim | {"exact": bound.certificate and claim["exact"]}, case_for(trial), exhaust=True)
+    with pytest.raises(Refuted, match="there is a plan"):
+        bounded(claim, case_for(trial), exhaust=True)
 
 
 def test_the_bound_beside_is_proved_too() -> None:
