@@ -52,13 +52,15 @@ class Bound:
 
     For even meetings: none has a sum of squared meetings below `exact`, which is a whole number.
     `certificate` is JSON data, `{"kind", "statement", "multipliers"}`, rationals written "p/q",
-    from which `search.proof` derives the bound again.
+    from which `search.proof` derives the bound again. `otherwise` is the best bound for those who do not
+    believe this one: a proof by exhaustion is repeated only on demand.
     """
 
     aim: AimKind
     exact: Fraction
     argument: str
     certificate: dict[str, Any]
+    otherwise: Bound | None = None
 
     @property
     def value(self) -> float:

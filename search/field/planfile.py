@@ -207,4 +207,5 @@ def _bound(bound: Bound) -> Document:
         "argument": bound.argument,
         "exact": f"{bound.exact.numerator}/{bound.exact.denominator}",
         "certificate": bound.certificate,
+        **({} if bound.otherwise is None else {"otherwise": _bound(bound.otherwise)}),
     }

@@ -36,10 +36,12 @@ def standing_in_words(document: dict[str, Any], plots: int) -> tuple[str, ...]:
             "It is balanced: every two treatments are compared equally well, and no plan under "
             "these rules is better.",
         )
+    how = _exhaustion(document.get("bound"))
     if standing == "proven optimal":
-        return (obeys, "No plan under these rules is better by even one part in a million; that is proved.")
+        best = "No plan under these rules is better by even one part in a million; that is proved"
+        return (obeys, f"{best} by exhaustion.", how) if how else (obeys, f"{best}.")
     if standing == "bounded" and gap is not None and 0 <= gap < 100:
-        return (obeys, *_within(gap, plots))
+        return (obeys, *_within(gap, plots), *([how] if how else []))
     return (obeys, "How much better another plan could be is not known.")
 
 
@@ -60,6 +62,22 @@ def _in_meetings(document: dict[str, Any]) -> tuple[str, ...]:
         least = document["bound"]["value"]
         return (obeys, f"No plan under these rules has a sum below {least}; that is proved.")
     return (obeys, "How much more even another plan could be is not known.")
+
+
+def _exhaustion(bound: Any) -> str:
+    """What a proof by exhaustion rests on; empty where the bound is of another kind."""
+    certificate = bound.get("certificate") if isinstance(bound, dict) else None
+    if not isinstance(certificate, dict) or certificate.get("kind") != "exhaustion":
+        return ""
+    counts = certificate.get("multipliers")
+    graphs, better = (counts.get(key) for key in ("graphs", "better")) if isinstance(counts, dict) else (0, 0)
+    if not (isinstance(graphs, int) and isinstance(better, int)):
+        return ""
+    fate = f"{better:,} would be better and were shown to be impossible" if better else "none is better"
+    return (
+        f"Proof by exhaustion: all {graphs:,} graphs of the most even meetings were looked at by computer; "
+        f"{fate}. All that is less even is bounded. To repeat it: evenfield verify --exhaust."
+    )
 
 
 def _within(gap_percent: float, plots: int) -> tuple[str, str]:

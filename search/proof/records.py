@@ -16,6 +16,8 @@ class Finding:
     what: str
     ok: bool
     detail: str
+    on_trust: bool = False
+    """Whether it was taken on the word of the file, since proving it again takes long."""
 
     def __str__(self) -> str:
         return f"{self.what}: {self.detail}"
@@ -37,12 +39,18 @@ class Verdict:
         """The claims that do not hold."""
         return tuple(finding for finding in self.findings if not finding.ok)
 
+    @property
+    def on_trust(self) -> bool:
+        """Whether something was not proved again but taken on the word of the file."""
+        return any(finding.on_trust for finding in self.findings)
+
     def document(self) -> dict[str, object]:
         """The verdict as plain JSON data."""
         return {
             "holds": self.holds,
             "findings": [
                 {"what": finding.what, "ok": finding.ok, "detail": finding.detail}
+                | ({"on_trust": True} if finding.on_trust else {})
                 for finding in self.findings
             ],
         }

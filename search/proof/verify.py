@@ -18,12 +18,13 @@ from search.proof.truth import truth
 from search.trial.records import Contents, Trial
 
 
-def verify(document: Any) -> Verdict:
+def verify(document: Any, exhaust: bool = False) -> Verdict:
     """Prove every claim of a plan file, in exact arithmetic and without trust in whoever wrote it.
 
     Parameters
     ----------
     document : the JSON of the file as Python data
+    exhaust : repeat a proof by exhaustion too, which may take minutes
 
     Returns
     -------
@@ -40,7 +41,7 @@ def verify(document: Any) -> Verdict:
     proof.step("layout", lambda: stamp.laid_out(file))
     proof.step("ended by", lambda: stamp.ended(file))
     proof.step("provenance", lambda: stamp.provenance(file))
-    proof.step("trial and blocks", lambda: _planting(file, proof))
+    proof.step("trial and blocks", lambda: _planting(file, proof, exhaust))
     return Verdict(tuple(proof.findings))
 
 
@@ -71,7 +72,7 @@ class _Proof:
         return finding is None or finding.ok
 
 
-def _planting(file: Part, proof: _Proof) -> None:
+def _planting(file: Part, proof: _Proof, exhaust: bool) -> None:
     """Trial, blocks and plots; what is claimed of them is proved only where the counts are right."""
     trial = reading.trial_of(file)
     contents = reading.contents_of(file, trial)
@@ -82,10 +83,10 @@ def _planting(file: Part, proof: _Proof) -> None:
     placed = proof.step("plots", lambda: plots.planted(trial, contents, reading.plots_of(file, trial)))
     if placed:
         proof.step("neighbours", lambda: neighbours.kept_apart(trial, reading.plots_of(file, trial)))
-    proof.step("score", lambda: _claims(file, trial, contents, proof))
+    proof.step("score", lambda: _claims(file, trial, contents, proof, exhaust))
 
 
-def _claims(file: Part, trial: Trial, contents: Contents, proof: _Proof) -> None:
+def _claims(file: Part, trial: Trial, contents: Contents, proof: _Proof, exhaust: bool) -> None:
     """Score, meetings, bound, gap and standing."""
     try:
         case = case_of(trial)
@@ -99,10 +100,10 @@ def _claims(file: Part, trial: Trial, contents: Contents, proof: _Proof) -> None
 
     exact: Fraction | None = None
 
-    def prove_bound() -> Finding:
+    def prove_bound() -> None:
         nonlocal exact
-        finding, exact = bounded(file.value("bound"), case)
-        return finding
+        findings, exact = bounded(file.value("bound"), case, exhaust)
+        proof.findings.extend(findings)
 
     if proof.step("bound", prove_bound):
         proof.step("gap", lambda: standing.gap_told(file, case, real, exact))

@@ -8,15 +8,17 @@ from dataclasses import dataclass, field, replace
 
 from search.designs.starts import Start, starts
 from search.efficiency.bounds import all_bounds
+from search.efficiency.bounds.problem import problem as bounded_problem
 from search.efficiency.comparing import Merit, beats, gap_percent, merit
 from search.efficiency.evaluator import meetings_and_ties, score
+from search.efficiency.exhaustion.proving import LONG, case_of, exhausted, worth_of
 from search.efficiency.records import Bound
 from search.efficiency.reference import reference_product, reference_variance
 from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.kernels import wait_for_kernels
-from search.runs.plan import Plan
+from search.runs.plan import PROVEN_PERCENT, Plan
 from search.solvers.filler import emptied, filled, spare_of, with_filler
-from search.solvers.records import Outcome, goal_of, problem_of
+from search.solvers.records import PROVER, Outcome, goal_of, problem_of
 from search.solvers.start import feasible_start, further_starts
 from search.trial.canonical import canonical
 from search.trial.checker import broken_rules
@@ -36,6 +38,8 @@ LEAST_SECONDS = 2.0
 ROUNDS_FOR_TIES = 4
 """Where a plan is proved to be as even as can be, so many rounds still look for the best average among
 equally even ones."""
+STALLED = 2
+"""Rounds before a proof by exhaustion is tried."""
 STARTS_SHARE = 0.25
 """Part of a limit in seconds after which no further design is adapted as a start."""
 
@@ -95,6 +99,9 @@ def find(
     else:
         outcome = _searched(planned, rules, implied, first, best, bounds, stop, seed, workers)
     bounds.finish(score(trial, outcome.contents).aim)
+    better = bounds.proved(outcome.contents)
+    if better is not None:
+        outcome = replace(outcome, contents=better, run=-1, start=PROVER)
     broken = broken_rules(trial, outcome.contents)
     if broken:
         raise RuntimeError(f"the search broke a rule: {broken[0]}")
@@ -146,6 +153,7 @@ def _searched(
         ),
         known="" if best is None else best.where_from,
         others=[filled(rules, other) for other in further_starts(trial, full, implied, seed=seed)],
+        prover=bounds.prove,
     )
     outcome = replace(outcome, contents=emptied(outcome.contents, trial.t))
     if best is not None and beats(_merit(trial, best.contents), _merit(trial, outcome.contents)):
@@ -202,6 +210,8 @@ class _Bounds:
     observer: Observer
     stop: Stop
     best: Bound | None = None
+    exhausted: bool = False
+    at: Contents | None = None
     waiting: Iterator[Bound] = field(init=False)
     reference: float = field(init=False)
 
@@ -259,6 +269,51 @@ class _Bounds:
         quick = all_bounds(alike, self.implied, lambda seconds: False)
         best = min((bound.exact for bound in quick), default=None)
         return 0.0 if best is None else float(reference_variance(alike) / best)
+
+    def prove(self, round_: int, best: Contents) -> Contents | None:
+        """Once no bound is left and a round has brought nothing: a proof by exhaustion, or a better plan."""
+        before, self.at = self.at, best
+        if round_ < STALLED or before != self.at or self._step():
+            return None
+        return self.proved(best)
+
+    def proved(self, contents: Contents) -> Contents | None:
+        """A better plan, where the proof by exhaustion of its kind comes upon one; its bound is kept.
+
+        It is tried once, and only where the bounds leave a gap, the graphs are few and the time suffices.
+        """
+        reached = score(self.trial, contents)
+        if not self.aim.depends_on_eigenvalues:
+            return None
+        met = self.best is not None and reached.aim >= self.best.value * (1 - PROVEN_PERCENT / 100)
+        if self.exhausted or met or not reached.connected or self.stop.interrupted:
+            return None
+        given = bounded_problem(self.trial, self.implied)
+        case = None if given is None else case_of(given)
+        if given is None or case is None or not self._has_time(case.seconds):
+            return None
+        self.exhausted = True
+        limit = self.stop.limits.seconds
+        try:
+            found = exhausted(
+                given,
+                case,
+                worth_of(case, contents),
+                otherwise=self.best,
+                seconds=LONG if limit is None else max(1.0, limit - self.stop.elapsed),
+                stop=self.stop,
+                note=self.observer.note,
+            )
+        except KeyboardInterrupt:
+            return None
+        if found is None:
+            return None
+        if found.bound is not None and found.bound.beats(self.best):
+            self.best = found.bound
+            self.observer.bound(found.bound.value, found.bound.argument)
+        if found.contents is not None:
+            self.observer.first_plan(score(self.trial, found.contents).aim, PROVER)
+        return found.contents
 
     def _has_time(self, seconds: float) -> bool:
         """Whether a bound that takes so long fits into the time of the search; without a limit it does."""

@@ -1,14 +1,14 @@
-"""Where compiled kernels are kept: the user's cache folder, never beside the source."""
+"""The compiled kernels, loaded or compiled where they are first used."""
 
 from __future__ import annotations
 
 import os
 import sys
-import tempfile
 from functools import cache
 from pathlib import Path
 from types import ModuleType
 
+from search.foundation.compiling import cache_folder, keep_compiled
 from search.solvers.records import Goal
 
 ENTRIES = ("wander", "make_move", "anneal", "best_move")
@@ -19,28 +19,6 @@ MORE_ENTRIES = {
     Goal.WORST: ("list_worst", "anneal_worst", "best_worst_move"),
 }
 """Those that only one goal needs."""
-
-
-def cache_folder() -> Path:
-    """A folder for compiled code that can be written to.
-
-    Returns
-    -------
-    folder : `evenfield` in `XDG_CACHE_HOME` or `~/.cache`; where neither can be written to, a folder
-        of this user's in the system's place for temporary files
-    """
-    base = os.environ.get("XDG_CACHE_HOME") or os.path.join(os.path.expanduser("~"), ".cache")
-    folder = Path(base) / "evenfield"
-    return folder if _writable(folder) else Path(tempfile.gettempdir()) / f"evenfield-{os.getuid()}"
-
-
-def _writable(folder: Path) -> bool:
-    try:
-        folder.mkdir(parents=True, exist_ok=True)
-        with tempfile.TemporaryFile(dir=folder):
-            return True
-    except OSError:
-        return False
 
 
 def are_cached(goal: Goal = Goal.SPREAD) -> bool:
@@ -67,10 +45,7 @@ def kernel() -> ModuleType:
 
     `NUMBA_CACHE_DIR` is honoured where it is set.
     """
-    import numba
-
-    if "NUMBA_CACHE_DIR" not in os.environ:
-        numba.config.CACHE_DIR = str(cache_folder())  # type: ignore[attr-defined]  # made at run time
+    keep_compiled()
     from search.solvers import kernel as module
 
     return module

@@ -14,6 +14,9 @@ from search.foundation.stopping import Ended
 from search.trial.records import AimKind, Contents, Trial
 from search.trial.tables import Tables
 
+PROVER = "proof by exhaustion"
+"""Where a plan comes from that such a proof came upon."""
+
 Floats = NDArray[np.float64]
 
 

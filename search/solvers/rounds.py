@@ -17,7 +17,7 @@ from search.solvers.anneal import Cooling, Found, anneal, calibrated, connected,
 from search.solvers.board import objective, unit_of
 from search.solvers.compiled import warm_up
 from search.solvers.crew import Crew, Watch
-from search.solvers.records import Outcome, Problem
+from search.solvers.records import PROVER, Outcome, Problem
 from search.solvers.streams import stream
 from search.solvers.walk import ROUNDING, Report
 from search.trial.records import Contents
@@ -75,6 +75,13 @@ class Run:
     moves: int
 
 
+Prover = Callable[[int, Contents], Contents | None]
+
+
+def none_better(number: int, best: Contents) -> Contents | None:
+    """No proof is tried."""
+
+
 def search(
     problem: Problem,
     start: Contents,
@@ -87,6 +94,7 @@ def search(
     watch: Watch,
     known: str = KEPT,
     others: Sequence[Contents] = (),
+    prover: Prover = none_better,
 ) -> Outcome:
     """Search the best plan for a problem.
 
@@ -101,6 +109,7 @@ def search(
     workers : threads
     watch : told the best objective, the moves scored and the seconds gone, a few times a second
     known : where the kept plan comes from, in words
+    prover : called like `target`, before it, with the best plan so far; may hand back a better one
     others : more plans within the rules; runs start from them in turn, for rules can part the plans into
         islands that no legal move joins
 
@@ -113,7 +122,11 @@ def search(
     with one_thread(), Crew(workers, stop, watch) as crew:
         origins, best, cooling = crew.one(lambda: prepared(problem, start, kept, seed, stop, known, others))
         number = moves = 0
-        while (ended := end(problem, best, target(number), moves, stop)) is None and cooling is not None:
+        while True:
+            if (proposed := prover(number, best.contents)) is not None:
+                best = better_of(problem, best, proposed)
+            if (ended := end(problem, best, target(number), moves, stop)) is not None or cooling is None:
+                break
             runs = runs_of(number, problem, origins, best, kept is not None, left(moves, stop))
             found = crew.round([job(problem, run, cooling, seed, stop) for run in runs], best.objective)
             best = best_of(problem, best, runs, found)
@@ -128,6 +141,12 @@ def search(
         run=best.run,
         start=best.start,
     )
+
+
+def better_of(problem: Problem, best: Best, proposed: Contents) -> Best:
+    """The best plan so far, or the one that was handed back by a proof where it is better."""
+    value = objective(problem, proposed)
+    return Best(proposed, value, -1, PROVER) if value < best.objective else best
 
 
 def prepared(

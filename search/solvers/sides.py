@@ -21,7 +21,7 @@ import numpy as np
 from search.foundation.stopping import Stop
 from search.solvers.crew import Watch
 from search.solvers.records import Floats, Goal, Outcome, Problem
-from search.solvers.rounds import KEPT, search
+from search.solvers.rounds import KEPT, Prover, none_better, search
 from search.trial.records import Contents
 from search.trial.tables import Tables, turned
 
@@ -111,15 +111,21 @@ def search_smaller_side(
     watch: Watch,
     known: str = KEPT,
     others: Sequence[Contents] = (),
+    prover: Prover = none_better,
 ) -> Outcome:
     """Search the best plan for a problem on the side of it that is smaller; see `rounds.search`."""
     side = other_side(problem)
     if side is None:
         return search(
             problem, start, kept=kept, target=target, stop=stop, seed=seed, workers=workers, watch=watch,
-            known=known, others=others,
+            known=known, others=others, prover=prover,
         )  # fmt: skip
     t, b, scale, constant = problem.tables.t, problem.tables.b, side.scale, side.constant
+
+    def proved(number: int, best: Contents) -> Contents | None:
+        better = prover(number, turned(best, b))
+        return None if better is None else turned(better, t)
+
     outcome = search(
         side.problem,
         turned(start, t),
@@ -131,6 +137,7 @@ def search_smaller_side(
         watch=lambda value, moves, seconds: watch(scale * value + constant, moves, seconds),
         known=known,
         others=[turned(other, t) for other in others],
+        prover=proved,
     )
     return replace(
         outcome,

@@ -34,6 +34,24 @@ def test_each_standing_says_no_more_than_is_known() -> None:
     assert "cannot be compared" in words("feasible", None, connected=False)
 
 
+def test_a_proof_by_exhaustion_is_called_that() -> None:
+    """With its counts, and how to repeat it; raw values that are none are not told."""
+    counts = {"graphs": 4207, "better": 3}
+    document: dict[str, Any] = {
+        "score": {"aim": 0.5, "connected": True},
+        "gap_percent": 0.0,
+        "standing": "proven optimal",
+        "bound": {"certificate": {"kind": "exhaustion", "multipliers": counts}},
+    }
+    told = " ".join(standing_in_words(document, 48))
+    assert "proved by exhaustion" in told
+    assert "all 4,207 graphs" in told
+    assert "3 would be better and were shown to be impossible" in told
+    assert "verify --exhaust" in told
+    counts["graphs"] = "many"  # type: ignore[assignment]
+    assert "graphs" not in " ".join(standing_in_words(document, 48))
+
+
 @given(st.floats(1e-4, 60), st.integers(2, 5000))
 def test_rounding_never_flatters(gap: float, plots: int) -> None:
     """The gain that is told is at least the true one, the plots at most."""

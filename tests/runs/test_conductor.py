@@ -147,3 +147,18 @@ def test_a_balanced_design_is_no_reason_to_stop_for_other_aims() -> None:
     assert found.standing is not Standing.BALANCED
     plots = [sum(0 in block for block in found.contents)]
     assert plots[0] > 3
+
+
+def test_a_small_case_is_proven_by_exhaustion() -> None:
+    """The bounds leave a per cent for (9, 18, 2); all 16 graphs leave nothing, whoever works."""
+    trial = trial_from_document({"trial": "nine", "treatments": 9, "blocks": {"count": 18, "plots": 2}})
+    found = [find(trial, limits=Limits(moves=400_000), seed=1, workers=workers) for workers in (1, 2)]
+    assert found[0].contents == found[1].contents
+    assert found[0].standing is Standing.PROVEN_OPTIMAL
+    bound = found[0].bound
+    assert bound is not None
+    assert bound.argument == "exhaustion"
+    assert bound.certificate["multipliers"]["graphs"] == 16
+    assert bound.otherwise is not None
+    assert bound.otherwise.value > bound.value
+    assert found[0].score.aim == pytest.approx(0.511140236, abs=1e-9)

@@ -52,7 +52,7 @@ def test_carried_certificates_still_prove_their_bounds(trial: Trial, draw: rando
             "exact": f"{found.exact.numerator}/{found.exact.denominator}",
             "certificate": back.certificate(to.certificate(found.certificate)),
         }
-        finding, exact = bounded(claim, case)
+        (finding,), exact = bounded(claim, case)
         assert finding.ok
         assert exact == found.exact
 

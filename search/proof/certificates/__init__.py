@@ -16,6 +16,7 @@ from search.proof.certificates import (
     control_row,
     even_by_meets,
     even_by_pairs,
+    exhaustion,
     first_order,
     local_spectral,
     normalised,
@@ -38,6 +39,7 @@ KINDS: dict[str, ModuleType] = {
     "averaged information": averaged,
     "second moment against controls": control_meets,
     "all pairs and the control's own row": control_row,
+    exhaustion.KIND: exhaustion,
 }
 """What a certificate's "kind" may say."""
 

@@ -43,22 +43,38 @@ def derive(case: Case, multipliers: Part) -> Claim:
         raise Refuted(f"{multipliers.at('levels')} must list the levels, {MOST_LEVELS} at most")
     # With two plots a block and two a treatment, a pair that meets twice is cut off from the others.
     only_even = numbers.r == numbers.k == 2 and len(levels) == 1
-    values: list[Fraction] = []
-    for number, level in enumerate(levels):
-        where = f"{multipliers.at('levels')}[{number + 1}]"
-        sides = pairs_of_sides(numbers, number, only_even or number < len(levels) - 1)
+    values = list(level_values(case, numbers, multipliers, 0, only_even))
+    # a level of which no plan can be has no forms, so that it proves nothing and needs nothing
+    if not values:
+        raise Refuted("the certificate has no level that a plan could have")
+    return claim_of_costs(case, numbers, min(values))
+
+
+def level_values(
+    case: Case, numbers: Numbers, multipliers: Part, first: int, last_exactly: bool = False
+) -> Iterator[Fraction]:
+    """What Σ cost is not below in each part of each level; the last one stands for all further ones.
+
+    Parameters
+    ----------
+    case, numbers : the trial
+    multipliers : their `levels` are the levels from `first` on
+    first : number of the first level that is listed
+    last_exactly : whether the last one stands for itself alone
+    """
+    levels = multipliers.items("levels")
+    for nth, level in enumerate(levels):
+        where = f"{multipliers.at('levels')}[{nth + 1}]"
+        sides = pairs_of_sides(numbers, first + nth, last_exactly or nth < len(levels) - 1)
         cases = listed(where, level)
         if len(cases) != len(sides):
             raise Refuted(f"{where} must have a proof for each of the {len(sides)} forms of the level")
         for both, tree in zip(sides, cases, strict=True):
-            values.extend(_values(case, numbers, both, Part.of(where, tree), []))
-    # a level of which no plan can be has no forms, so that it proves nothing and needs nothing
-    if not values:
-        raise Refuted("the certificate has no level that a plan could have")
-    return _claim(case, numbers, min(values))
+            yield from _values(case, numbers, both, Part.of(where, tree), [])
 
 
-def _claim(case: Case, numbers: Numbers, least: Fraction) -> Claim:
+def claim_of_costs(case: Case, numbers: Numbers, least: Fraction) -> Claim:
+    """From what Σ cost is not below in any plan."""
     if case.aim is AimKind.OVERALL:
         return claim_of_determinant(case, exponential_above(-least) * numbers.r**case.rank)
     return claim_of_variance(case, 2 * least / numbers.r / case.rank)

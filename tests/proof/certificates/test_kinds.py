@@ -12,7 +12,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from search.foundation.errors import Impossible
-from search.proof.certificates import KINDS, OF_ANY_FILLING, by_meets, by_pairs, trace_root
+from search.proof.certificates import KINDS, OF_ANY_FILLING, by_meets, by_pairs, exhaustion, trace_root
 from search.proof.certificates.case import case_of
 from search.proof.parts import Part
 from search.proof.records import Refuted
@@ -56,7 +56,7 @@ def check_every_kind(trial: Trial, seed: int, steps: int) -> None:
         return
     for name, kind in KINDS.items():
         if (
-            name != LOCAL
+            name not in (LOCAL, exhaustion.KIND)  # they have tests of their own
             and (case.rules.exact or name in OF_ANY_FILLING)
             and trial.aim.kind in kind.AIMS
             and (case.nothing_twice or name not in NOT_FOR_REPEATS)

@@ -158,9 +158,9 @@ class Search:
 
     def _go_on(self) -> bool:
         """Take the first of all further levels out."""
-        number = len(self.levels) - 1
+        number = self.levels[-1].number
         exact, rest = self.level(number, True), self.level(number + 1, False)
-        if len(self.levels) >= MOST_LEVELS or exact is None or rest is None:
+        if number + 1 >= MOST_LEVELS or exact is None or rest is None:
             return False
         self.levels[-1:] = [exact, rest]
         return True
@@ -188,6 +188,19 @@ def begun(shape: Shape, cost: Cost) -> Search | None:
         return None
     search.levels = [first] if rest is None else [first, rest]
     return search
+
+
+def beyond_first(shape: Shape, cost: Cost, enough: Fraction) -> Search | None:
+    """All levels but the first, made finer until no plan in them costs less than `enough`, if they can be."""
+    search = Search(shape, cost)
+    rest = search.level(1, False)
+    if rest is None or not rest.forms:
+        return None
+    search.levels = [rest]
+    for _ in range(STEPS):
+        if not search.leaves or search.value >= enough or not search.step():
+            break
+    return search if search.leaves else None
 
 
 # -- what the checker needs --------------------------------------------------------------------------

@@ -1,0 +1,1 @@
+"""Proof by exhaustion: every graph that a better plan could have is looked at."""

@@ -1,0 +1,1 @@
+"""A proof by exhaustion, repeated: other listing, other refutation, exact comparison."""
