@@ -11,7 +11,7 @@ from search.efficiency.records import Bound
 from search.foundation.errors import BadInput
 from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.conductor import find
-from search.runs.kept import SAME_SCORE, KeptBound, KeptPlan, Run, problem_of
+from search.runs.kept import SAME_SCORE, IssuedPlan, KeptBound, KeptPlan, Run, problem_of
 from search.runs.plan import Plan
 from search.runs.store import DEFAULT_PATH, Store
 from search.trial.canonical import Canonical, canonical
@@ -105,6 +105,7 @@ def remember(store: Store, numbering: Canonical, plan: Plan, run: Run) -> None:
             moves=plan.moves,
             seconds=float(plan.seconds),
             start=plan.start,
+            balanced=plan.score.balanced,
         ),
         bound=bound,
         run=run,
@@ -196,9 +197,15 @@ class Keeping:
         return plan
 
     def issued(self, plan: Plan, mark: str) -> None:
-        """Write the mark of its packet to a plan, if that is the one which is kept."""
+        """Note that a plan was issued under a mark; where that cannot be kept, `failure` tells."""
+        if self.failure is not None:
+            return
         contents = to_canonical(self.numbering).contents(plan.contents)
-        self.store.issued(self.numbering.digest, self.trial.aim.kind.value, contents, mark)
+        one = IssuedPlan(mark, contents, float(plan.score.aim))
+        try:
+            self.store.issued(self.numbering.digest, self.trial.aim.kind.value, one)
+        except BadInput as failure:
+            self.failure = failure
 
     def better_than(self, efficiency: float) -> float | None:
         """The efficiency of the kept plan where it is above the one given by more than rounding."""

@@ -4,14 +4,14 @@ from __future__ import annotations
 
 import json
 import math
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import fields
 from fractions import Fraction
 from types import NoneType
 from typing import Any
 
 from search.foundation.documents import canonical_json
-from search.runs.kept import Entry, KeptBound, KeptPlan, Problem, Run
+from search.runs.kept import Entry, IssuedPlan, KeptBound, KeptPlan, Problem, Run
 from search.trial.records import Contents
 
 Row = tuple[Any, ...]
@@ -32,6 +32,7 @@ PLAN: Types = {
     "mark": str,
     "versions": str,
     "made": str,
+    "balanced": int,
 }
 BOUND: Types = {"exact": str, "argument": str, "certificate": str, "versions": str, "made": str}
 RUN: Types = {
@@ -58,17 +59,20 @@ ENTRY: Types = {
     "aim": str,
     "score": float,
     "bound": (float, NoneType),
+    "gap_percent": (float, NoneType),
+    "standing": str,
     "made": str,
     "mark": str,
     "runs": int,
 }
+ISSUED: Types = {"mark": str, "contents": str, "score": float, "made": str}
 
 
 class Damaged(Exception):
     """A row has not the shape that it must have."""
 
 
-def written(record: Problem | KeptPlan | KeptBound | Run) -> Row:
+def written(record: Problem | KeptPlan | KeptBound | IssuedPlan | Run) -> Row:
     """A record as a row, its columns in the order of its fields."""
     return tuple(_written(getattr(record, field.name)) for field in fields(record))
 
@@ -88,8 +92,8 @@ def problem_from(row: Row) -> Problem:
     ------
     Damaged : the row is none
     """
-    values = _typed(row, PROBLEM)
-    sizes = _sizes(values["sizes"])
+    values = typed(row, PROBLEM)
+    sizes = sizes_from(values["sizes"])
     if len(sizes) != values["b"] or sum(sizes) != values["n"]:
         raise Damaged("sizes")
     return Problem(**values | {"sizes": sizes})
@@ -102,10 +106,14 @@ def plan_from(row: Row, problem: Problem) -> KeptPlan:
     ------
     Damaged : the row is none
     """
-    values = _typed(row, PLAN)
+    values = typed(row, PLAN)
     _check_efficiency(values["score"])
-    contents = _contents(values["contents"], problem)
-    return KeptPlan(**values | {"contents": contents, "versions": _versions(values["versions"])})
+    more = {
+        "contents": contents_from(values["contents"], problem.t, problem.sizes),
+        "versions": _versions(values["versions"]),
+        "balanced": bool(values["balanced"]),
+    }
+    return KeptPlan(**values | more)
 
 
 def bound_from(row: Row) -> KeptBound:
@@ -115,7 +123,7 @@ def bound_from(row: Row) -> KeptBound:
     ------
     Damaged : the row is none
     """
-    values = _typed(row, BOUND)
+    values = typed(row, BOUND)
     return KeptBound(
         **values
         | {
@@ -133,8 +141,20 @@ def run_from(row: Row) -> Run:
     ------
     Damaged : the row is none
     """
-    values = _typed(row, RUN)
+    values = typed(row, RUN)
     return Run(**values | {"versions": _versions(values["versions"])})
+
+
+def issued_from(row: Row, problem: Problem) -> IssuedPlan:
+    """An issued plan of a problem.
+
+    Raises
+    ------
+    Damaged : the row is none
+    """
+    values = typed(row, ISSUED)
+    _check_efficiency(values["score"])
+    return IssuedPlan(**values | {"contents": contents_from(values["contents"], problem.t, problem.sizes)})
 
 
 def entry_from(row: Row) -> Entry:
@@ -144,12 +164,18 @@ def entry_from(row: Row) -> Entry:
     ------
     Damaged : the row is none
     """
-    values = _typed(row, ENTRY)
+    values = typed(row, ENTRY)
     _check_efficiency(values["score"])
-    return Entry(**values | {"sizes": _sizes(values["sizes"])})
+    return Entry(**values | {"sizes": sizes_from(values["sizes"])})
 
 
-def _typed(row: Row, types: Types) -> dict[str, Any]:
+def typed(row: Row, types: Types) -> dict[str, Any]:
+    """The values of a row by their columns, each of its kind, every number finite.
+
+    Raises
+    ------
+    Damaged : a value is of another kind
+    """
     values = dict(zip(types, row, strict=True))
     for key, kinds in types.items():
         value = values[key]
@@ -163,19 +189,31 @@ def _check_efficiency(value: float) -> None:
         raise Damaged("score")
 
 
-def _contents(text: str, problem: Problem) -> Contents:
+def contents_from(text: str, t: int, sizes: Sequence[int]) -> Contents:
+    """Contents of blocks of these sizes, of so many treatments.
+
+    Raises
+    ------
+    Damaged : the text is not that
+    """
     blocks = _parsed(text, list)
-    if len(blocks) != problem.b:
+    if len(blocks) != len(sizes):
         raise Damaged("contents")
-    for block, size in zip(blocks, problem.sizes, strict=True):
+    for block, size in zip(blocks, sizes, strict=True):
         if not isinstance(block, list) or len(block) != size:
             raise Damaged("contents")
-        if not all(type(i) is int and 0 <= i < problem.t for i in block):
+        if not all(type(i) is int and 0 <= i < t for i in block):
             raise Damaged("contents")
     return tuple(tuple(sorted(block)) for block in blocks)
 
 
-def _sizes(text: str) -> tuple[int, ...]:
+def sizes_from(text: str) -> tuple[int, ...]:
+    """Plots of the blocks.
+
+    Raises
+    ------
+    Damaged : the text is not that
+    """
     sizes = _parsed(text, list)
     if not all(type(size) is int and size > 0 for size in sizes):
         raise Damaged("sizes")
