@@ -30,8 +30,8 @@ def _first_tables(connection: sqlite3.Connection) -> None:
         CREATE TABLE plan (
           digest TEXT NOT NULL REFERENCES problem ON DELETE CASCADE, aim TEXT NOT NULL,
           contents TEXT NOT NULL, score REAL NOT NULL, objective REAL, seed INTEGER NOT NULL,
-          moves INTEGER NOT NULL, seconds REAL NOT NULL, start TEXT NOT NULL, mark TEXT NOT NULL, versions TEXT NOT NULL,
-          made TEXT NOT NULL, PRIMARY KEY (digest, aim));
+          moves INTEGER NOT NULL, seconds REAL NOT NULL, start TEXT NOT NULL, mark TEXT NOT NULL,
+          versions TEXT NOT NULL, made TEXT NOT NULL, PRIMARY KEY (digest, aim));
         CREATE INDEX plan_made ON plan (made);
         CREATE INDEX plan_mark ON plan (mark);
         CREATE TABLE bound (
