@@ -59,7 +59,7 @@ def _results_in_short(connection: sqlite3.Connection) -> None:
         CREATE TABLE result (
           digest TEXT NOT NULL REFERENCES problem ON DELETE CASCADE, aim TEXT NOT NULL, name TEXT NOT NULL,
           folded TEXT NOT NULL, t INTEGER NOT NULL, b INTEGER NOT NULL, n INTEGER NOT NULL,
-          sizes TEXT NOT NULL, score REAL, bound REAL, gap REAL, standing TEXT NOT NULL, mark TEXT NOT NULL,
+          score REAL, bound REAL, gap REAL, standing TEXT NOT NULL, mark TEXT NOT NULL,
           made TEXT NOT NULL, runs INTEGER NOT NULL, PRIMARY KEY (digest, aim)) WITHOUT ROWID;
         CREATE INDEX result_made ON result (made DESC, digest, aim);
         CREATE TABLE issued (

@@ -61,9 +61,9 @@ class Selection:
         if self.gap_most is not None:
             terms["gap <= :gap_most"] = {"gap_most": self.gap_most}
         if self.older_days is not None:
-            terms["made < :older"] = {"older": _days_ago(self.older_days)}
+            terms["+made < :older"] = {"older": _days_ago(self.older_days)}
         if self.newer_days is not None:
-            terms["made >= :newer"] = {"newer": _days_ago(self.newer_days)}
+            terms["+made >= :newer"] = {"newer": _days_ago(self.newer_days)}
         if self.issued is not None:
             there = "(digest, aim) IN (SELECT digest, aim FROM issued)"
             terms[there if self.issued else f"NOT {there}"] = {}

@@ -238,10 +238,14 @@ class Store:
         """
         condition, values = where.condition()
         with self._database.reading() as connection:
+            # With a condition all lines are looked at as they lie: few are left to be put in order.
+            order = "made" if where.is_everything else "+made"
             found = connection.execute(
-                "SELECT digest, name, t, b, n, sizes, aim, score, bound, gap, standing, made, mark, runs"
-                f" FROM result WHERE score IS NOT NULL AND {condition}"
-                " ORDER BY made DESC, digest, aim LIMIT :limit",
+                "SELECT digest, line.name, line.t, line.b, line.n, sizes, aim, score, bound, gap, standing,"
+                " made, mark, runs FROM"
+                f" (SELECT * FROM result WHERE score IS NOT NULL AND {condition}"
+                f" ORDER BY {order} DESC, digest, aim LIMIT :limit) AS line JOIN problem USING (digest)"
+                " ORDER BY made DESC, digest, aim",
                 {**values, "limit": limit},
             )
             return tuple(_whole(rows.entry_from, found.fetchall()))

@@ -16,10 +16,10 @@ GAP = "max(0.0, 100 * (1 - plan.score / bound.value))"
 KNOWN = "(plan.score > 0 AND bound.value > 0)"
 BALANCED = f"(plan.balanced AND key.aim IN ({ALIKE}))"
 
-COLUMNS = "digest, aim, name, folded, t, b, n, sizes, score, bound, gap, standing, mark, made, runs"
+COLUMNS = "digest, aim, name, folded, t, b, n, score, bound, gap, standing, mark, made, runs"
 ROWS = f"""
 INSERT INTO result ({COLUMNS})
-SELECT key.digest, key.aim, name, folded(name), t, b, n, sizes, plan.score, bound.value,
+SELECT key.digest, key.aim, name, folded(name), t, b, n, plan.score, bound.value,
   CASE WHEN NOT {KNOWN} THEN NULL WHEN {BALANCED} THEN 0.0 ELSE {GAP} END,
   CASE WHEN {KNOWN} IS NOT TRUE THEN '{Standing.FEASIBLE}' WHEN {BALANCED} THEN '{Standing.BALANCED}'
     WHEN {GAP} <= {PROVEN_PERCENT} THEN '{Standing.PROVEN_OPTIMAL}' ELSE '{Standing.BOUNDED}' END,
