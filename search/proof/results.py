@@ -10,6 +10,7 @@ from collections.abc import Iterator
 from fractions import Fraction
 from typing import Any
 
+from search.foundation.documents import canonical_json
 from search.foundation.errors import BadInput, EvenfieldError, Impossible
 from search.proof import rules
 from search.proof.bound import bounded
@@ -39,6 +40,10 @@ def proved(document: Any) -> Trial:
     ------
     BadInput : it is no result, or something that it claims does not hold; the message says which
     """
+    try:
+        canonical_json(document).encode()  # a lone surrogate or an endless number has no canonical text
+    except (RecursionError, TypeError, ValueError) as error:
+        raise BadInput("this is no JSON that can be written down again") from error
     try:
         return _proved(Part.of("the line", document))
     except Refuted as refuted:

@@ -68,6 +68,10 @@ ENTRY: Types = {
 ISSUED: Types = {"mark": str, "contents": str, "score": float, "made": str}
 
 
+MOST_INTEGER = 2**63 - 1
+"""A column holds no larger one."""
+
+
 class Damaged(Exception):
     """A row has not the shape that it must have."""
 
@@ -180,6 +184,8 @@ def typed(row: Row, types: Types) -> dict[str, Any]:
     for key, kinds in types.items():
         value = values[key]
         if not isinstance(value, kinds) or (isinstance(value, float) and not math.isfinite(value)):
+            raise Damaged(key)
+        if isinstance(value, int) and not -MOST_INTEGER <= value <= MOST_INTEGER:
             raise Damaged(key)
     return values
 

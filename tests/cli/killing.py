@@ -5,11 +5,8 @@ from __future__ import annotations
 import contextlib
 import csv
 import json
-import os
 import signal
 import sqlite3
-import subprocess
-import sys
 import time
 from collections import Counter
 from dataclasses import dataclass, field
@@ -20,8 +17,10 @@ from typing import Any
 from search.foundation.stopping import Ended
 from search.proof.verify import verify_file
 from search.runs.store import Store
-from tests.cli.asked import environment
+from tests.cli.nursery import Command, start
 
+ROWS = 4
+"""Of a sweep."""
 SECONDS = 120.0
 """No command takes longer, however busy the machine."""
 
@@ -44,12 +43,12 @@ def moves_of(sweep: int) -> int:
 
 
 def sweep_of(number: int) -> dict[str, Any]:
-    """A sweep of six rows, every one another problem and limit than those of any other number."""
+    """A sweep of four rows, every one another problem and limit than those of any other number."""
     base = {"trial": f"swept {number}", "treatments": 5, "blocks": {"count": 4, "plots": 3}}
     return {
         "sweep": f"killed sweep {number}",
         "base": base | {"search": {"moves": moves_of(number)}},
-        "vary": {"treatments": [5, 6], "blocks.count": [6, 7, 8], "plots_each": [[1, 60 + number]]},
+        "vary": {"treatments": [5, 6], "blocks.count": [6, 7], "plots_each": [[1, 60 + number]]},
     }
 
 
@@ -66,8 +65,9 @@ class Field:
 
     folder: Path
     seed: int
-    workers: tuple[int, ...] = (1, 2)
+    workers: tuple[int, ...] = (1, 1, 1, 1, 2)
     rng: Random = field(init=False)
+    started_: int = 0
     kills: int = 0
     ended: int = 0
     last_trial: int = 0
@@ -105,30 +105,26 @@ class Field:
             path.write_text(json.dumps(document), encoding="utf-8")  # JSON is YAML
         return str(path)
 
-    def started(self, command: list[str]) -> subprocess.Popen[bytes]:
-        """A command in a process group of its own, so that its children die with it."""
-        return subprocess.Popen(
-            [sys.executable, "-m", "search.cli.entry", *command, "--store", str(self.store), "--json"],
-            cwd=self.folder,
-            env=environment(),
-            stdout=subprocess.PIPE,
-            stderr=subprocess.PIPE,
-            start_new_session=True,
-        )
+    def started(self, words: list[str]) -> Command:
+        """A command on the store."""
+        self.started_ = self.started_ + 1
+        out = self.folder / f"{self.started_}.out"
+        return start((*words, "--store", str(self.store), "--json"), out)
 
-    def whole(self, command: list[str]) -> dict[str, Any]:
+    def whole(self, words: list[str]) -> dict[str, Any]:
         """What a command says that nobody kills."""
-        process = self.started(command)
-        out, err = process.communicate(timeout=SECONDS)
-        assert process.returncode == 0, (command, out, err)
-        document: dict[str, Any] = json.loads(out)
+        command = self.started(words)
+        assert command.ends_within(SECONDS), command
+        command.kill()  # whatever it left running
+        assert command.status == 0, command
+        document: dict[str, Any] = json.loads(command.out.read_text(encoding="utf-8"))
         return document
 
     # -- killing ---------------------------------------------------------------------------------
 
     def measure(self) -> None:
         """How long the commands take where nobody kills them."""
-        for command in (self.plan(0), *(self.sweep(number) for number in range(len(self.workers)))):
+        for command in (self.plan(0), *(self.sweep(number) for number in {0, len(self.workers) - 1})):
             began = time.monotonic()
             self.whole(command)
             key = self._key(command)
@@ -142,24 +138,21 @@ class Field:
     def round(self, at_once: int) -> None:
         """Start commands together, kill each at a moment of its own, and look at what is left."""
         running = []
-        for slot in range(at_once):
-            command = self._next(slot)
-            moment = self.rng.uniform(0.1, 1.15) * self.usual[self._key(command)]
-            running.append((moment, command, self.started(command)))
         began = time.monotonic()
-        for moment, command, process in sorted(running, key=lambda one: one[0]):
-            try:
-                process.wait(max(0.0, began + moment - time.monotonic()))
-            except subprocess.TimeoutExpired:
+        for slot in range(at_once):
+            words = self._next(slot)
+            moment = self.rng.uniform(0.0, 1.15) * at_once**0.5 * self.usual[self._key(words)]
+            running.append((moment, words, self.started(words)))
+        for moment, words, command in sorted(running, key=lambda one: one[0]):
+            command.ends_within(began + moment - time.monotonic())
+            command.kill()
+            if command.status == -signal.SIGKILL:
                 self.kills += 1
-            with_group_gone(process)
-            out, err = process.communicate()
-            if process.returncode == 0:
-                self.ended += 1
-                if command[0] == "sweep":
-                    self.sweeps[self._slot(command)] += 100
-            else:
-                assert process.returncode == -signal.SIGKILL, (command, out, err)
+                continue
+            assert command.status == 0, command
+            self.ended += 1
+            if words[0] == "sweep":
+                self.sweeps[self._slot(words)] += 100
         self.check()
 
     def _next(self, slot: int) -> list[str]:
@@ -191,7 +184,7 @@ class Field:
             assert self.issued.setdefault(path, path.read_bytes()) == path.read_bytes()
         for path in self.folder.glob("sweeps/*/sweep.csv"):
             with path.open(encoding="utf-8", newline="") as stream:
-                assert len(list(csv.DictReader(stream))) == 6, path
+                assert len(list(csv.DictReader(stream))) == ROWS, path
 
     def _check_store(self) -> None:
         Store(self.store).close()
@@ -218,10 +211,10 @@ class Field:
     def finish(self) -> None:
         """What was cut short goes on: a sweep has each of its rows, searched once, and packets are whole."""
         for number in self.sweeps:
-            assert len(self.whole(self.sweep(number))["rows"]) == 6
+            assert len(self.whole(self.sweep(number))["rows"]) == ROWS
             with Store(self.store, only_reading=True) as store:
                 limits = [run.limit_moves for one in store.all_shown() for run in one.runs]
-            assert limits.count(moves_of(number)) == 6
+            assert limits.count(moves_of(number)) == ROWS
         for number in range(max(1, self.last_trial - 1), self.last_trial + 1):
             self.whole(self.plan(number))
             folder = self.folder / "plans" / str(number)
@@ -232,9 +225,3 @@ class Field:
     def usual_files(self) -> set[str]:
         """Files of a packet that nobody interrupted."""
         return {path.name for path in (self.folder / "plans" / "0").iterdir()}
-
-
-def with_group_gone(process: subprocess.Popen[bytes]) -> None:
-    """End a process and all that it started."""
-    with contextlib.suppress(ProcessLookupError):
-        os.killpg(process.pid, signal.SIGKILL)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-import sys
+import multiprocessing
 import time
 from pathlib import Path
 
@@ -10,7 +10,10 @@ import pytest
 
 from tests.cli.killing import Field
 
-pytestmark = pytest.mark.skipif(sys.platform == "win32", reason="there is no SIGKILL, and no process group")
+pytestmark = pytest.mark.skipif(
+    "forkserver" not in multiprocessing.get_all_start_methods(),
+    reason="there is no SIGKILL, and no process group",
+)
 
 
 def killed(field: Field, kills: int, at_once: int) -> Field:
