@@ -79,12 +79,18 @@ class Database:
             yield self.connection
 
     def give_room_back(self) -> bool:
-        """Make the file as small as what it holds; False where another process keeps it busy."""
-        try:
-            self.connection.execute("VACUUM")
-            self.connection.execute("PRAGMA wal_checkpoint(TRUNCATE)")
-        except sqlite3.OperationalError:
-            return False  # nothing is lost by that: the room is used for later results
+        """Make the file as small as what it holds; False where others are at work, or there is no room to.
+
+        Raises
+        ------
+        BadInput : the file is damaged
+        """
+        with self.told("write to"):
+            try:
+                self.connection.execute("VACUUM")
+                self.connection.execute("PRAGMA wal_checkpoint(TRUNCATE)")
+            except sqlite3.OperationalError:
+                return False  # nothing is lost by that: the room is used for later results
         return True
 
     @contextmanager
