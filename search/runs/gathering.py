@@ -15,7 +15,7 @@ from search.efficiency.evaluator import score
 from search.foundation.documents import parsed_json
 from search.foundation.errors import BadInput
 from search.runs.exchange import document, shown_from
-from search.runs.kept import Kept, Shown, Taken
+from search.runs.kept import SAME_SCORE, Kept, Shown, Taken
 from search.runs.store import Store
 from search.trial.records import Trial
 
@@ -111,15 +111,20 @@ def _judged(content: Any, judge: Judge) -> Shown:
     plan = shown.kept.plan
     if plan is None:
         return shown
-    # Proved to be equal up to rounding; ours are the digits that later plans are compared with.
+    # Plans are compared by these digits; what was proved only up to rounding is taken from our own hand.
     real = score(trial, plan.contents)
     own = replace(
         plan,
-        score=float(real.aim),
-        objective=None if real.aim_variance is None else float(real.aim_variance),
+        score=_same(plan.score, real.aim),
+        objective=None if real.aim_variance is None else _same(plan.objective, real.aim_variance),
         balanced=real.balanced,
     )
     return replace(shown, kept=Kept(own, shown.kept.bound))
+
+
+def _same(told: float | None, real: float) -> float:
+    """The number as it was told where that differs from the real one by rounding alone, else the real one."""
+    return told if told is not None and abs(told - real) <= SAME_SCORE * abs(real) else float(real)
 
 
 def _gathered(store: Store, found: Iterable[tuple[str, Any]], judged: Callable[[Any], Shown]) -> Gathered:
