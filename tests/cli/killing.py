@@ -141,7 +141,7 @@ class Field:
         began = time.monotonic()
         for slot in range(at_once):
             words = self._next(slot)
-            moment = self.rng.uniform(0.0, 1.15) * at_once**0.5 * self.usual[self._key(words)]
+            moment = self.rng.uniform(0.0, 1.0) * self.usual[self._key(words)]
             running.append((moment, words, self.started(words)))
         for moment, words, command in sorted(running, key=lambda one: one[0]):
             command.ends_within(began + moment - time.monotonic())
