@@ -60,3 +60,8 @@ def in_figures(aim: str, value: float, digits: int = 6) -> str:
 def measure(aim: str) -> str:
     """What the score of an aim is called."""
     return "sum of squared meetings" if aim == AimKind.EVEN_MEETINGS else "efficiency"
+
+
+def efficiency_of(aim: str, score: float) -> float | None:
+    """The score of an aim that has an efficiency; None for one that is judged by a whole number."""
+    return None if aim == AimKind.EVEN_MEETINGS else score

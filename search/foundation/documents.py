@@ -7,6 +7,7 @@ import os
 import re
 import tempfile
 import unicodedata
+from collections.abc import Iterable
 from pathlib import Path
 from typing import Any
 
@@ -18,12 +19,12 @@ def canonical_json(document: Any) -> str:
     return json.dumps(document, sort_keys=True, separators=(",", ":"), ensure_ascii=False, allow_nan=False)
 
 
-def write_whole(path: Path, content: str | bytes, *, new: bool = False) -> None:
+def write_whole(path: Path, content: str | bytes | Iterable[str], *, new: bool = False) -> None:
     """Write a file so that a reader sees the old one or the new one, never a part.
 
     Parameters
     ----------
-    path, content : what goes where
+    path, content : what goes where; a long text may come piece by piece
     new : the file must not be there yet; of two who write it at once, one is told
 
     Raises
@@ -31,13 +32,14 @@ def write_whole(path: Path, content: str | bytes, *, new: bool = False) -> None:
     BadInput : the folder cannot be written to, or the disk is full
     FileExistsError : it must be new, and is there
     """
-    data = content.encode("utf-8") if isinstance(content, str) else content
+    pieces = [content] if isinstance(content, str | bytes) else content
     try:
         path.parent.mkdir(parents=True, exist_ok=True)
         handle, temporary = tempfile.mkstemp(dir=path.parent, prefix=".part-")
         try:
             with os.fdopen(handle, "wb") as stream:
-                stream.write(data)
+                for piece in pieces:
+                    stream.write(piece.encode("utf-8") if isinstance(piece, str) else piece)
                 stream.flush()
                 os.fsync(stream.fileno())
             os.chmod(temporary, 0o644)
@@ -75,10 +77,20 @@ def read_json(path: Path, most_bytes: int) -> Any:
         raise BadInput(f"cannot read {path}: {error.strerror or error}") from error
     if len(data) > most_bytes:
         raise BadInput(f"{path} is larger than {most_bytes >> 20} MiB, more than any plan needs")
+    return parsed_json(data, str(path))
+
+
+def parsed_json(data: bytes, name: str = "this") -> Any:
+    """The JSON of bytes that anybody may have written, as Python data.
+
+    Raises
+    ------
+    BadInput : it is no JSON that every reader understands alike
+    """
     try:
         return json.loads(data.decode("utf-8"), parse_constant=_no_number, object_pairs_hook=_keys_once)
     except (ValueError, RecursionError) as error:
-        raise BadInput(f"{path} is not a JSON document in UTF-8: {error}") from error
+        raise BadInput(f"{name} is not a JSON document in UTF-8: {error}") from error
 
 
 def _no_number(word: str) -> float:

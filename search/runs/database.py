@@ -2,44 +2,24 @@
 
 from __future__ import annotations
 
+import re
 import sqlite3
 from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
 
 from search.foundation.errors import BadInput, shown
+from search.runs import summary
 from search.runs.kept import now
+from search.runs.migrations import STEPS
 
-SCHEMA = 1
+SCHEMA = len(STEPS)
+"""Version of the tables that this program writes; older ones are brought up to it."""
 APPLICATION_ID = 0x45464C44
 """Stands in the head of the file and marks it as a store of this program."""
 WAIT_SECONDS = 30.0
 MOST_BYTES = 64 * 1024 * 1024
 """No text of a record may be longer."""
-
-TABLES = """
-CREATE TABLE meta (key TEXT PRIMARY KEY, value TEXT NOT NULL);
-CREATE TABLE problem (
-  digest TEXT PRIMARY KEY, text TEXT NOT NULL, t INTEGER NOT NULL, b INTEGER NOT NULL, n INTEGER NOT NULL,
-  sizes TEXT NOT NULL, name TEXT NOT NULL, first_seen TEXT NOT NULL, last_seen TEXT NOT NULL);
-CREATE TABLE plan (
-  digest TEXT NOT NULL REFERENCES problem ON DELETE CASCADE, aim TEXT NOT NULL, contents TEXT NOT NULL,
-  score REAL NOT NULL, objective REAL, seed INTEGER NOT NULL, moves INTEGER NOT NULL, seconds REAL NOT NULL,
-  start TEXT NOT NULL, mark TEXT NOT NULL, versions TEXT NOT NULL, made TEXT NOT NULL,
-  PRIMARY KEY (digest, aim));
-CREATE INDEX plan_made ON plan (made);
-CREATE INDEX plan_mark ON plan (mark);
-CREATE TABLE bound (
-  digest TEXT NOT NULL REFERENCES problem ON DELETE CASCADE, aim TEXT NOT NULL, exact TEXT NOT NULL,
-  value REAL NOT NULL, argument TEXT NOT NULL, certificate TEXT NOT NULL, versions TEXT NOT NULL,
-  made TEXT NOT NULL, PRIMARY KEY (digest, aim));
-CREATE TABLE run (
-  uid TEXT PRIMARY KEY, digest TEXT NOT NULL REFERENCES problem ON DELETE CASCADE, aim TEXT NOT NULL,
-  seed INTEGER NOT NULL, workers INTEGER NOT NULL, limit_seconds REAL, limit_moves INTEGER,
-  moves INTEGER NOT NULL, seconds REAL NOT NULL, ended_by TEXT NOT NULL, score REAL NOT NULL,
-  start TEXT NOT NULL, versions TEXT NOT NULL, made TEXT NOT NULL);
-CREATE INDEX run_of ON run (digest, aim);
-"""
 
 ANOTHER = "name another with --store FILE"
 ELSEWHERE = "choose a file in a folder that can be written to, with --store FILE"
@@ -61,20 +41,27 @@ class Database:
     Parameters
     ----------
     path : the file; made, with its folder, where there is none
+    create : make it where there is none
+    only_reading : nothing is made or changed; an older store is brought up to date in memory alone
 
     Raises
     ------
     BadInput : it cannot be opened, is damaged, or is no store of this program
     """
 
-    def __init__(self, path: Path) -> None:
+    def __init__(self, path: Path, *, create: bool = True, only_reading: bool = False) -> None:
         self.path = path
         with self.told("open"):
-            path.parent.mkdir(parents=True, exist_ok=True)
-            self.connection = sqlite3.connect(path, timeout=WAIT_SECONDS, isolation_level=None)
+            if (only_reading or not create) and not path.exists():
+                raise BadInput(f"there is no store at {path}; `evenfield plan` makes one, or {ANOTHER}")
+            if only_reading:
+                self.connection = _opened_to_read(path)
+            else:
+                path.parent.mkdir(parents=True, exist_ok=True)
+                self.connection = sqlite3.connect(path, timeout=WAIT_SECONDS, isolation_level=None)
         try:
             with self.told("open"):
-                self._prepare()
+                self._prepare(only_reading)
         except BaseException:
             self.connection.close()
             raise
@@ -90,6 +77,21 @@ class Database:
         """Write all or nothing; what goes wrong is told as `BadInput`."""
         with self.told("write to"), self._transaction():
             yield self.connection
+
+    def give_room_back(self) -> bool:
+        """Make the file as small as what it holds; False where others are at work, or there is no room to.
+
+        Raises
+        ------
+        BadInput : the file is damaged
+        """
+        with self.told("write to"):
+            try:
+                self.connection.execute("VACUUM")
+                self.connection.execute("PRAGMA wal_checkpoint(TRUNCATE)")
+            except sqlite3.OperationalError:
+                return False  # nothing is lost by that: the room is used for later results
+        return True
 
     @contextmanager
     def told(self, doing: str) -> Iterator[None]:
@@ -118,18 +120,19 @@ class Database:
                 self.connection.execute("ROLLBACK")
             raise
 
-    def _prepare(self) -> None:
-        self.connection.setlimit(sqlite3.SQLITE_LIMIT_LENGTH, MOST_BYTES)
-        # A foreign file may carry views and triggers: nothing in it is run.
-        self.connection.execute("PRAGMA trusted_schema = OFF")
-        self.connection.execute("PRAGMA foreign_keys = ON")
+    def _prepare(self, only_reading: bool) -> None:
+        _guard(self.connection)
         if self._is_empty():
+            if only_reading:
+                raise BadInput(f"{self.path} is an empty file, and no store yet; {ANOTHER}")
             self._use_write_ahead_log()
+        else:
+            self._check_owner()
+        if self._version() < SCHEMA:
+            if only_reading:
+                self._copy_into_memory()
             with self._transaction():
-                # Another process may have been faster.
-                if self._is_empty():
-                    self._create()
-        self._check_schema()
+                self._bring_up_to_date()
 
     def _is_empty(self) -> bool:
         return self._number("SELECT count(*) FROM sqlite_master") == 0
@@ -145,20 +148,75 @@ class Database:
             if error.sqlite_errorcode & 0xFF not in (sqlite3.SQLITE_BUSY, sqlite3.SQLITE_LOCKED):
                 raise
 
-    def _create(self) -> None:
-        for statement in filter(str.strip, TABLES.split(";")):
-            self.connection.execute(statement)
-        self.connection.execute(f"PRAGMA application_id = {APPLICATION_ID}")
-        meta = {"format": "evenfield store", "schema": str(SCHEMA), "made": now()}
-        self.connection.executemany("INSERT INTO meta VALUES (?, ?)", meta.items())
-
-    def _check_schema(self) -> None:
+    def _check_owner(self) -> None:
         if self._number("PRAGMA application_id") != APPLICATION_ID:
             raise BadInput(f"{self.path} is another program's database; nothing in it was touched: {ANOTHER}")
+
+    def _version(self) -> int:
+        """Version of the tables, 0 for none."""
+        if self._is_empty():
+            return 0
         row = self.connection.execute("SELECT value FROM meta WHERE key = 'schema'").fetchone()
-        if row != (str(SCHEMA),):
-            found = shown(str(row[0])) if row else "none"
+        found = str(row[0]) if row else "none"
+        if not re.fullmatch("[1-9][0-9]{0,5}", found, re.ASCII):
+            raise BadInput(f"{self.path} does not say how it is built (schema {shown(found)}): {ANOTHER}")
+        if int(found) > SCHEMA:
             raise BadInput(
-                f"{self.path} has the schema {found}, this version reads {SCHEMA}: "
+                f"{self.path} has the schema {shown(found)}, this version reads up to {SCHEMA}: "
                 f"use the version that wrote it, or {ANOTHER}"
             )
+        return int(found)
+
+    def _bring_up_to_date(self) -> None:
+        version = self._version()  # asked again: another process may have been faster
+        if version == SCHEMA:
+            return
+        for step in STEPS[version:]:
+            step(self.connection)
+        summary.write_all(self.connection)
+        if version == 0:
+            self.connection.execute(f"PRAGMA application_id = {APPLICATION_ID}")
+            meta = {"format": "evenfield store", "schema": str(SCHEMA), "made": now()}
+            self.connection.executemany("INSERT INTO meta VALUES (?, ?)", meta.items())
+        else:
+            self.connection.execute("UPDATE meta SET value = ? WHERE key = 'schema'", (str(SCHEMA),))
+
+    def _copy_into_memory(self) -> None:
+        copy = sqlite3.connect(":memory:", isolation_level=None)
+        self.connection.backup(copy)
+        self.connection.close()
+        self.connection = copy
+        _guard(copy)
+
+
+def _guard(connection: sqlite3.Connection) -> None:
+    connection.setlimit(sqlite3.SQLITE_LIMIT_LENGTH, MOST_BYTES)
+    # A foreign file may carry views and triggers: nothing in it is run.
+    connection.execute("PRAGMA trusted_schema = OFF")
+    connection.execute("PRAGMA foreign_keys = ON")
+    summary.prepare(connection)
+
+
+def _opened_to_read(path: Path) -> sqlite3.Connection:
+    """A connection that changes nothing; a store on a medium that cannot be written to is read as it lies."""
+
+    def connect(how: str) -> sqlite3.Connection:
+        name = f"{path.absolute().as_uri()}?{how}"
+        connection = sqlite3.connect(name, uri=True, timeout=WAIT_SECONDS, isolation_level=None)
+        try:
+            connection.execute("SELECT count(*) FROM sqlite_master").fetchone()
+            connection.execute("PRAGMA query_only = ON")
+        except BaseException:
+            connection.close()
+            raise
+        return connection
+
+    try:
+        return connect("mode=rw")
+    except sqlite3.OperationalError as error:
+        log = path.with_name(f"{path.name}-wal")
+        cannot_write = error.sqlite_errorcode & 0xFF in (sqlite3.SQLITE_CANTOPEN, sqlite3.SQLITE_READONLY)
+        if not cannot_write or not path.is_file() or (log.exists() and log.stat().st_size):
+            raise
+        # The log of a store needs a folder that can be written to. Where it is empty nobody needs it.
+        return connect("mode=ro&immutable=1")

@@ -12,7 +12,7 @@ from search.efficiency.records import Bound
 from search.foundation.errors import BadInput
 from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.conductor import find
-from search.runs.kept import KeptBound, KeptPlan, Run, problem_of
+from search.runs.kept import IssuedPlan, KeptBound, KeptPlan, Run, problem_of
 from search.runs.plan import WRONG, Plan
 from search.runs.store import DEFAULT_PATH, Store
 from search.trial.canonical import Canonical, canonical
@@ -106,6 +106,7 @@ def remember(store: Store, numbering: Canonical, plan: Plan, run: Run) -> None:
             moves=plan.moves,
             seconds=float(plan.seconds),
             start=plan.start,
+            balanced=plan.score.balanced,
         ),
         bound=bound,
         run=run,
@@ -197,9 +198,15 @@ class Keeping:
         return plan
 
     def issued(self, plan: Plan, mark: str) -> None:
-        """Write the mark of its packet to a plan, if that is the one which is kept."""
+        """Note that a plan was issued under a mark; where that cannot be kept, `failure` tells."""
+        if self.failure is not None:
+            return
         contents = to_canonical(self.numbering).contents(plan.contents)
-        self.store.issued(self.numbering.digest, self.trial.aim.kind.value, contents, mark)
+        one = IssuedPlan(mark, contents, float(plan.score.aim))
+        try:
+            self.store.issued(self.numbering.digest, self.trial.aim.kind.value, one)
+        except BadInput as failure:
+            self.failure = failure
 
     def better_than(self, score: float, average_variance: float | None) -> float | None:
         """The score of the kept plan where that is better than a plan by more than rounding.

@@ -16,8 +16,13 @@ from search.trial.records import Contents, Trial
 
 
 def now() -> str:
-    """The time as it is kept: UTC, to the second."""
-    return datetime.now(UTC).strftime("%Y-%m-%dT%H:%M:%SZ")
+    """The time as it is kept."""
+    return moment(datetime.now(UTC))
+
+
+def moment(time: datetime) -> str:
+    """A time as it is kept: UTC, to the second."""
+    return time.astimezone(UTC).strftime("%Y-%m-%dT%H:%M:%SZ")
 
 
 @dataclass(frozen=True, slots=True)
@@ -55,6 +60,7 @@ class KeptPlan:
     mark : mark of the packet in which it was issued, or empty
     versions : of program and libraries
     made : when, in UTC
+    balanced : whether all pairs of treatments are compared alike, and no information is lost
     """
 
     contents: Contents
@@ -67,6 +73,7 @@ class KeptPlan:
     mark: str = ""
     versions: Mapping[str, str] = field(default_factory=versions)
     made: str = field(default_factory=now)
+    balanced: bool = False
 
     def beats(self, other: KeptPlan | None, aim: str) -> bool:
         """Whether it is better for an aim by more than rounding."""
@@ -90,6 +97,16 @@ class KeptBound:
     def beats(self, other: KeptBound | None, aim: str) -> bool:
         """Whether it is tighter for an aim."""
         return other is None or is_tighter(aim, self.exact, other.exact)
+
+
+@dataclass(frozen=True, slots=True)
+class IssuedPlan:
+    """A plan that was handed to a crew under a mark; it stays, whatever better plan is found later."""
+
+    mark: str
+    contents: Contents
+    score: float
+    made: str = field(default_factory=now)
 
 
 @dataclass(frozen=True, slots=True)
@@ -148,16 +165,12 @@ class Entry:
     aim: str
     score: float
     bound: float | None
+    gap_percent: float | None
+    """How much better the best possible plan could be at most, where a bound is kept."""
+    standing: str
     made: str
     mark: str
     runs: int
-
-    @property
-    def gap_percent(self) -> float | None:
-        """How far the plan is from the bound, where one is kept."""
-        if self.bound is None or self.score <= 0:
-            return None
-        return max(0.0, gap_percent(self.aim, self.score, self.bound))
 
 
 @dataclass(frozen=True, slots=True)
@@ -168,3 +181,22 @@ class Shown:
     aim: str
     kept: Kept
     runs: tuple[Run, ...]
+    issued: tuple[IssuedPlan, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Taken:
+    """What came of records that a store was given: how many, and how many new or better parts."""
+
+    results: int = 0
+    plans: int = 0
+    bounds: int = 0
+    runs: int = 0
+
+    def __add__(self, other: Taken) -> Taken:
+        return Taken(
+            self.results + other.results,
+            self.plans + other.plans,
+            self.bounds + other.bounds,
+            self.runs + other.runs,
+        )

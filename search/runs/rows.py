@@ -4,14 +4,14 @@ from __future__ import annotations
 
 import json
 import math
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import fields
 from fractions import Fraction
 from types import NoneType
 from typing import Any
 
 from search.foundation.documents import canonical_json
-from search.runs.kept import Entry, KeptBound, KeptPlan, Problem, Run
+from search.runs.kept import Entry, IssuedPlan, KeptBound, KeptPlan, Problem, Run
 from search.trial.canonical import EMPTIER
 from search.trial.records import AimKind, Contents
 
@@ -33,6 +33,7 @@ PLAN: Types = {
     "mark": str,
     "versions": str,
     "made": str,
+    "balanced": int,
 }
 BOUND: Types = {"exact": str, "argument": str, "certificate": str, "versions": str, "made": str}
 RUN: Types = {
@@ -59,17 +60,24 @@ ENTRY: Types = {
     "aim": str,
     "score": float,
     "bound": (float, NoneType),
+    "gap_percent": (float, NoneType),
+    "standing": str,
     "made": str,
     "mark": str,
     "runs": int,
 }
+ISSUED: Types = {"mark": str, "contents": str, "score": float, "made": str}
+
+
+MOST_INTEGER = 2**63 - 1
+"""A column holds no larger one."""
 
 
 class Damaged(Exception):
     """A row has not the shape that it must have."""
 
 
-def written(record: Problem | KeptPlan | KeptBound | Run) -> Row:
+def written(record: Problem | KeptPlan | KeptBound | IssuedPlan | Run) -> Row:
     """A record as a row, its columns in the order of its fields."""
     return tuple(_written(getattr(record, field.name)) for field in fields(record))
 
@@ -89,8 +97,8 @@ def problem_from(row: Row) -> Problem:
     ------
     Damaged : the row is none
     """
-    values = _typed(row, PROBLEM)
-    sizes = _sizes(values["sizes"])
+    values = typed(row, PROBLEM)
+    sizes = sizes_from(values["sizes"])
     if len(sizes) != values["b"] or sum(sizes) != values["n"]:
         raise Damaged("sizes")
     return Problem(**values | {"sizes": sizes})
@@ -103,10 +111,14 @@ def plan_from(row: Row, problem: Problem, aim: str) -> KeptPlan:
     ------
     Damaged : the row is none
     """
-    values = _typed(row, PLAN)
+    values = typed(row, PLAN)
     _check_score(values["score"], aim)
-    contents = _contents(values["contents"], problem)
-    return KeptPlan(**values | {"contents": contents, "versions": _versions(values["versions"])})
+    more = {
+        "contents": _contents(values["contents"], problem),
+        "versions": _versions(values["versions"]),
+        "balanced": bool(values["balanced"]),
+    }
+    return KeptPlan(**values | more)
 
 
 def bound_from(row: Row) -> KeptBound:
@@ -116,7 +128,7 @@ def bound_from(row: Row) -> KeptBound:
     ------
     Damaged : the row is none
     """
-    values = _typed(row, BOUND)
+    values = typed(row, BOUND)
     return KeptBound(
         **values
         | {
@@ -134,8 +146,20 @@ def run_from(row: Row) -> Run:
     ------
     Damaged : the row is none
     """
-    values = _typed(row, RUN)
+    values = typed(row, RUN)
     return Run(**values | {"versions": _versions(values["versions"])})
+
+
+def issued_from(row: Row, problem: Problem, aim: str) -> IssuedPlan:
+    """An issued plan of a problem for an aim.
+
+    Raises
+    ------
+    Damaged : the row is none
+    """
+    values = typed(row, ISSUED)
+    _check_score(values["score"], aim)
+    return IssuedPlan(**values | {"contents": _contents(values["contents"], problem)})
 
 
 def entry_from(row: Row) -> Entry:
@@ -145,16 +169,24 @@ def entry_from(row: Row) -> Entry:
     ------
     Damaged : the row is none
     """
-    values = _typed(row, ENTRY)
+    values = typed(row, ENTRY)
     _check_score(values["score"], values["aim"])
-    return Entry(**values | {"sizes": _sizes(values["sizes"])})
+    return Entry(**values | {"sizes": sizes_from(values["sizes"])})
 
 
-def _typed(row: Row, types: Types) -> dict[str, Any]:
+def typed(row: Row, types: Types) -> dict[str, Any]:
+    """The values of a row by their columns, each of its kind, every number finite.
+
+    Raises
+    ------
+    Damaged : a value is of another kind
+    """
     values = dict(zip(types, row, strict=True))
     for key, kinds in types.items():
         value = values[key]
         if not isinstance(value, kinds) or (isinstance(value, float) and not math.isfinite(value)):
+            raise Damaged(key)
+        if isinstance(value, int) and not -MOST_INTEGER <= value <= MOST_INTEGER:
             raise Damaged(key)
     return values
 
@@ -165,20 +197,35 @@ def _check_score(value: float, aim: str) -> None:
         raise Damaged("score")
 
 
-def _contents(text: str, problem: Problem) -> Contents:
+def contents_from(text: str, t: int, sizes: Sequence[int], emptier: bool = False) -> Contents:
+    """Contents of blocks of these sizes, or partly empty ones, of so many treatments.
+
+    Raises
+    ------
+    Damaged : the text is not that
+    """
     blocks = _parsed(text, list)
-    if len(blocks) != problem.b:
+    if len(blocks) != len(sizes):
         raise Damaged("contents")
-    exact = f'"{EMPTIER}"' not in problem.text
-    for block, size in zip(blocks, problem.sizes, strict=True):
-        if not isinstance(block, list) or not (size if exact else 1) <= len(block) <= size:
+    for block, size in zip(blocks, sizes, strict=True):
+        if not isinstance(block, list) or not (1 if emptier else size) <= len(block) <= size:
             raise Damaged("contents")
-        if not all(type(i) is int and 0 <= i < problem.t for i in block):
+        if not all(type(i) is int and 0 <= i < t for i in block):
             raise Damaged("contents")
     return tuple(tuple(sorted(block)) for block in blocks)
 
 
-def _sizes(text: str) -> tuple[int, ...]:
+def _contents(text: str, problem: Problem) -> Contents:
+    return contents_from(text, problem.t, problem.sizes, f'"{EMPTIER}"' in problem.text)
+
+
+def sizes_from(text: str) -> tuple[int, ...]:
+    """Plots of the blocks.
+
+    Raises
+    ------
+    Damaged : the text is not that
+    """
     sizes = _parsed(text, list)
     if not all(type(size) is int and size > 0 for size in sizes):
         raise Damaged("sizes")

@@ -15,11 +15,11 @@ from typing import Any, TypeVar
 
 from search.foundation.documents import canonical_json
 from search.foundation.errors import BadInput, shown
-from search.runs import rows
+from search.runs import rows, summary
 from search.runs.database import Database
-from search.runs.kept import Entry, Kept, KeptBound, KeptPlan, Problem, Run, Shown, now
+from search.runs.kept import Entry, IssuedPlan, Kept, KeptBound, KeptPlan, Problem, Run, Shown, Taken, now
 from search.runs.rows import Damaged, Types, written
-from search.trial.records import Contents
+from search.runs.selection import EVERYTHING, Selection
 
 DEFAULT_PATH = Path("results", "evenfield.sqlite")
 
@@ -33,20 +33,18 @@ class Store:
     ----------
     path : the file
     create : make it, and its folder, where there is none
+    only_reading : change nothing, neither here nor in the file; then it must be there
 
     Raises
     ------
     BadInput : it cannot be opened, is damaged, or is no store of this program
     """
 
-    def __init__(self, path: Path | str = DEFAULT_PATH, *, create: bool = True) -> None:
+    def __init__(
+        self, path: Path | str = DEFAULT_PATH, *, create: bool = True, only_reading: bool = False
+    ) -> None:
         self.path = Path(path)
-        if not create and not self.path.exists():
-            raise BadInput(
-                f"there is no store at {self.path}; `evenfield plan` makes one, "
-                "or name another with --store FILE"
-            )
-        self._database = Database(self.path)
+        self._database = Database(self.path, create=create, only_reading=only_reading)
 
     def close(self) -> None:
         """Let go of the file."""
@@ -84,35 +82,115 @@ class Store:
         ------
         BadInput : the store cannot be written to; nothing of this was kept
         """
-        key = problem.digest, aim
-        with self._database.writing() as connection:
-            self._write_problem(problem)
-            kept = self._kept(problem, aim)
-            if plan is not None and plan.beats(kept.plan, aim):
-                connection.execute(_insert("plan", rows.PLAN, "digest", "aim"), (*written(plan), *key))
-            if bound is not None and bound.beats(kept.bound, aim):
-                row = *written(bound), float(bound.exact), *key
-                connection.execute(_insert("bound", rows.BOUND, "value", "digest", "aim"), row)
-            if run is not None:
-                connection.execute(_insert("run", rows.RUN, "digest", "aim"), (*written(run), *key))
+        with self._database.writing():
+            self._keep(problem, aim, plan, bound, [run] if run is not None else [])
 
-    def issued(self, digest: str, aim: str, contents: Contents, mark: str) -> None:
-        """Write the mark of its packet to the kept plan, where that has these contents."""
+    def take(self, shown: Iterable[Shown]) -> Taken:
+        """Write down what other stores hold, where it is better than what is kept; all of it or nothing.
+
+        Parameters
+        ----------
+        shown : records that were found true
+
+        Raises
+        ------
+        BadInput : the store cannot be written to; nothing of this was kept
+        """
+        taken = Taken()
+        with self._database.writing():
+            for one in shown:
+                taken += self._keep(one.problem, one.aim, one.kept.plan, one.kept.bound, one.runs, one.issued)
+        return taken
+
+    def issued(self, digest: str, aim: str, plan: IssuedPlan) -> None:
+        """Note that a plan was issued; where it is the kept one, that carries its mark from now on."""
         with self._database.writing() as connection:
+            self._insert("issued", rows.ISSUED, plan, digest, aim)
             connection.execute(
                 "UPDATE plan SET mark = ? WHERE digest = ? AND aim = ? AND contents = ?",
-                (mark, digest, aim, canonical_json(contents)),
+                (plan.mark, digest, aim, canonical_json(plan.contents)),
             )
+            summary.write(connection, digest, aim)
 
     def forget_plan(self, digest: str, aim: str) -> None:
         """Drop a plan that proved to be none of the problem's."""
         with self._database.writing() as connection:
             connection.execute("DELETE FROM plan WHERE digest = ? AND aim = ?", (digest, aim))
+            summary.write(connection, digest, aim)
 
     def forget_bound(self, digest: str, aim: str) -> None:
         """Drop a bound that proved to be wrong."""
         with self._database.writing() as connection:
             connection.execute("DELETE FROM bound WHERE digest = ? AND aim = ?", (digest, aim))
+            summary.write(connection, digest, aim)
+
+    def prune(self, where: Selection) -> int:
+        """Drop results with their plans, bounds and runs; problems of which nothing is left go too.
+
+        Parameters
+        ----------
+        where : which of them
+
+        Returns
+        -------
+        the number of results dropped
+
+        Raises
+        ------
+        BadInput : the store cannot be written to; nothing was dropped
+        """
+        condition, values = where.condition()
+        with self._database.writing() as connection:
+            found = connection.execute(f"SELECT digest, aim FROM result WHERE {condition}", values).fetchall()
+            for table in ("plan", "bound", "run", "issued", "result"):
+                connection.executemany(f"DELETE FROM {table} WHERE digest = ? AND aim = ?", found)
+            connection.executemany(
+                "DELETE FROM problem WHERE digest = ?1 AND NOT EXISTS"
+                " (SELECT 1 FROM result WHERE result.digest = ?1)",
+                {(digest,) for digest, _ in found},
+            )
+        return len(found)
+
+    def give_room_back(self) -> bool:
+        """Make the file as small as what it holds; False where another process keeps it busy."""
+        return self._database.give_room_back()
+
+    def _keep(
+        self,
+        problem: Problem,
+        aim: str,
+        plan: KeptPlan | None,
+        bound: KeptBound | None,
+        runs: Iterable[Run] = (),
+        issued: Iterable[IssuedPlan] = (),
+    ) -> Taken:
+        connection, key = self._database.connection, (problem.digest, aim)
+        self._write_problem(problem)
+        kept = self._kept(problem, aim)
+        is_better, is_tighter = False, False
+        if plan is not None and plan.beats(kept.plan, aim):
+            is_better = True
+            self._insert("plan", rows.PLAN, plan, *key)
+        if bound is not None and bound.beats(kept.bound, aim):
+            is_tighter = True
+            self._insert("bound", {**rows.BOUND, "value": float}, bound, float(bound.exact), *key)
+        before = connection.total_changes
+        for run in runs:
+            self._insert("run", rows.RUN, run, *key)
+        new_runs = connection.total_changes - before
+        for one in issued:
+            self._insert("issued", rows.ISSUED, one, *key)
+        summary.write(connection, *key)
+        return Taken(1, int(is_better), int(is_tighter), new_runs)
+
+    def _insert(self, table: str, types: Types, record: Any, *more: Any) -> None:
+        """Write a row; a run or an issued plan that is there stays, a plan or a bound is replaced."""
+        columns = [*types, "digest", "aim"]
+        verb = "INSERT OR IGNORE" if table in ("run", "issued") else "INSERT OR REPLACE"
+        self._database.connection.execute(
+            f"{verb} INTO {table} ({', '.join(columns)}) VALUES ({', '.join('?' * len(columns))})",
+            (*written(record), *more),
+        )
 
     def _write_problem(self, problem: Problem) -> None:
         columns = list(rows.PROBLEM)
@@ -121,6 +199,10 @@ class Store:
             f"INSERT INTO problem ({', '.join(columns)}, first_seen, last_seen)"
             f" VALUES ({', '.join('?' * len(columns))}, ?, ?) ON CONFLICT (digest) DO UPDATE SET {updated}",
             (*written(problem), now(), now()),
+        )
+        self._database.connection.execute(
+            "UPDATE result SET name = ?1, folded = folded(?1) WHERE digest = ?2 AND name <> ?1",
+            (problem.name, problem.digest),
         )
 
     # -- reading ---------------------------------------------------------------------------------
@@ -146,27 +228,59 @@ class Store:
             )
             return tuple(_whole(rows.run_from, found.fetchall()))
 
-    def list(self, limit: int = 100) -> tuple[Entry, ...]:
+    def list(self, limit: int = 100, where: Selection = EVERYTHING) -> tuple[Entry, ...]:
         """What is kept, the latest plan first.
 
         Parameters
         ----------
         limit : at most so many
+        where : which of them
         """
+        condition, values = where.condition()
         with self._database.reading() as connection:
+            # With a condition all lines are looked at as they lie: few are left to be put in order.
+            order = "made" if where.is_everything else "+made"
             found = connection.execute(
-                "SELECT problem.digest, name, t, b, n, sizes, plan.aim, score, value, plan.made, mark,"
-                " (SELECT count(*) FROM run WHERE run.digest = plan.digest AND run.aim = plan.aim)"
-                " FROM plan JOIN problem USING (digest) LEFT JOIN bound USING (digest, aim)"
-                " ORDER BY plan.made DESC LIMIT ?",
-                (limit,),
+                "SELECT digest, line.name, line.t, line.b, line.n, sizes, aim, score, bound, gap, standing,"
+                " made, mark, runs FROM"
+                f" (SELECT * FROM result WHERE score IS NOT NULL AND {condition}"
+                f" ORDER BY {order} DESC, digest, aim LIMIT :limit) AS line JOIN problem USING (digest)"
+                " ORDER BY made DESC, digest, aim",
+                {**values, "limit": limit},
             )
             return tuple(_whole(rows.entry_from, found.fetchall()))
 
-    def count(self) -> int:
-        """Number of plans kept."""
+    def count(self, where: Selection = EVERYTHING, *, with_plan: bool = True) -> int:
+        """Number of results kept, of those with a plan alone unless told otherwise."""
+        condition, values = where.condition()
         with self._database.reading() as connection:
-            return int(connection.execute("SELECT count(*) FROM plan").fetchone()[0])
+            planned = "score IS NOT NULL" if with_plan else "TRUE"
+            query = f"SELECT count(*) FROM result WHERE {planned} AND {condition}"
+            return int(connection.execute(query, values).fetchone()[0])
+
+    def all_shown(self, where: Selection = EVERYTHING) -> Iterator[Shown]:
+        """All that is kept of each result, one after another; damaged problems are passed over.
+
+        Parameters
+        ----------
+        where : which of them
+        """
+        condition, values = where.condition()
+        with self._database.reading() as connection:
+            keys = connection.execute(
+                f"SELECT digest, aim FROM result WHERE {condition} ORDER BY digest, aim", values
+            ).fetchall()
+        for digest, aim in keys:
+            with self._database.reading():
+                problem = self._problem(digest)
+                if problem is not None and isinstance(aim, str):
+                    yield self._shown(problem, aim)
+
+    def all_of(self, digest: str, aim: str) -> Shown | None:
+        """All that is kept for a problem and aim, or None where the problem is not known."""
+        with self._database.reading():
+            problem = self._problem(digest)
+            return None if problem is None else self._shown(problem, aim)
 
     def show(self, prefix: str) -> tuple[Shown, ...]:
         """All that is kept for a problem, one entry for each aim.
@@ -186,12 +300,13 @@ class Store:
             if problem is None:
                 raise BadInput(f"what {self.path} holds under {shown(word)} is damaged; plan the trial again")
             aims = connection.execute(
-                "SELECT aim FROM plan WHERE digest = ? UNION SELECT aim FROM bound WHERE digest = ?"
-                " UNION SELECT aim FROM run WHERE digest = ? ORDER BY 1",
-                (digest, digest, digest),
+                "SELECT aim FROM plan WHERE digest = ?1 UNION SELECT aim FROM bound WHERE digest = ?1"
+                " UNION SELECT aim FROM run WHERE digest = ?1 UNION SELECT aim FROM issued WHERE digest = ?1"
+                " ORDER BY 1",
+                (digest,),
             ).fetchall()
             return tuple(
-                Shown(problem, aim, self._kept(problem, aim), self.runs(digest, aim))
+                self._shown(problem, aim)
                 for (aim,) in aims
                 if isinstance(aim, str)  # anything may stand in a file that somebody wrote into
             )
@@ -199,9 +314,10 @@ class Store:
     def _only_one(self, word: str) -> str:
         with self._database.reading() as connection:
             found = connection.execute(
-                "SELECT digest FROM problem WHERE substr(digest, 1, ?) = ?"
-                " UNION SELECT digest FROM plan WHERE mark = ? LIMIT 6",
-                (len(word), word.lower(), word.upper()),
+                "SELECT digest FROM problem WHERE digest >= ?1 AND digest < ?1 || 'g'"
+                " AND substr(digest, 1, length(?1)) = ?1"
+                " UNION SELECT digest FROM issued WHERE mark = ?2 LIMIT 6",
+                (word.lower(), word.upper()),
             ).fetchall()
         digests = [str(digest) for (digest,) in found]
         if not word or not digests:
@@ -212,6 +328,14 @@ class Store:
             several = ", ".join(digest[:12] for digest in sorted(digests)[:5])
             raise BadInput(f"several problems begin with {shown(word)}: {several}; give more of it")
         return digests[0]
+
+    def _shown(self, problem: Problem, aim: str) -> Shown:
+        found = self._database.connection.execute(
+            f"SELECT {_names(rows.ISSUED)} FROM issued WHERE digest = ? AND aim = ? ORDER BY made, mark",
+            (problem.digest, aim),
+        )
+        issued = _whole(lambda row: rows.issued_from(row, problem, aim), found.fetchall())
+        return Shown(problem, aim, self._kept(problem, aim), self.runs(problem.digest, aim), tuple(issued))
 
     def _problem(self, digest: str) -> Problem | None:
         query = f"SELECT {_names(rows.PROBLEM)} FROM problem WHERE digest = ?"
@@ -239,10 +363,3 @@ def _whole(read: Callable[[Any], Record], found: Iterable[Any]) -> Iterator[Reco
 
 def _names(types: Types) -> str:
     return ", ".join(types)
-
-
-def _insert(table: str, types: Types, *more: str) -> str:
-    """A statement that writes a row; a run that is there already stays, a plan or a bound is replaced."""
-    columns = [*types, *more]
-    verb = "INSERT OR IGNORE" if table == "run" else "INSERT OR REPLACE"
-    return f"{verb} INTO {table} ({', '.join(columns)}) VALUES ({', '.join('?' * len(columns))})"

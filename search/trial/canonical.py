@@ -64,9 +64,9 @@ def canonical(trial: Trial, most_work: int = MOST_WORK) -> Canonical:
     parts = _Parts.of(relations(trial))
     ordered = canonical_order(parts.colours(), parts.codes(), most_work)
     parts = parts.taken(ordered.order)
-    text = f"{VERSION}\n{canonical_json(parts.document())}\n"
+    text = _text(parts)
     return Canonical(
-        digest=sha256(text.encode()).hexdigest(),
+        digest=digest_of(text),
         treatments=tuple(i for members in parts.treatments for i in members),
         blocks=tuple(j for members in parts.blocks for j in members),
         replicates=parts.replicates(),
@@ -74,6 +74,20 @@ def canonical(trial: Trial, most_work: int = MOST_WORK) -> Canonical:
         complete=ordered.complete,
         text=text,
     )
+
+
+def digest_of(text: str) -> str:
+    """The digest of a problem's text."""
+    return sha256(text.encode()).hexdigest()
+
+
+def text_as_numbered(trial: Trial) -> str:
+    """The text of a trial in its own numbering; the canonical text where it is numbered so already."""
+    return _text(_Parts.of(relations(trial)))
+
+
+def _text(parts: _Parts) -> str:
+    return f"{VERSION}\n{canonical_json(parts.document())}\n"
 
 
 @dataclass(frozen=True, slots=True, eq=False)

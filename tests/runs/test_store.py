@@ -15,7 +15,7 @@ from typing import Any
 import pytest
 
 from search.foundation.errors import BadInput
-from search.runs.kept import Kept, KeptBound, KeptPlan, Problem, Run
+from search.runs.kept import IssuedPlan, Kept, KeptBound, KeptPlan, Problem, Run
 from search.runs.store import Store
 
 AIM = "all pairs"
@@ -113,13 +113,18 @@ class StoreContract:
             store.keep(problem("ab" * 32), AIM, plan=plan(0.6), run=run(0.6))
             store.keep(problem("ab" * 32), "overall", bound=bound(Fraction(1)))
             store.keep(problem("ac" * 32), AIM, plan=plan(0.6))
-            store.issued("ac" * 32, AIM, GOOD, "K7-QX")
-            store.issued("ab" * 32, AIM, ((0, 1),) * 3, "K7-QY")
+            store.issued("ac" * 32, AIM, IssuedPlan("K7-QX", GOOD, 0.6))
             shown = store.show("AB")
             assert [entry.aim for entry in shown] == [AIM, "overall"]
             assert len(shown[0].runs) == 1
             assert store.show("k7-qx")[0].problem.digest == "ac" * 32
-            for word, told in (("a", "several"), ("%", "nothing"), ("", "nothing"), ("k7-qy", "nothing")):
+            for word, told in (
+                ("a", "several"),
+                ("%", "nothing"),
+                ("", "nothing"),
+                ("k7-qy", "nothing"),
+                ("g", "nothing"),
+            ):
                 with pytest.raises(BadInput, match=told):
                     store.show(word)
 
@@ -219,7 +224,11 @@ def test_values_of_the_wrong_kind_are_passed_over(tmp_path: Path, column: str, v
     written_to(path, f"UPDATE plan SET {column} = ?", value)
     with Store(path) as store:
         assert store.best("a" * 64, AIM) is None
-        assert len(store.list()) == (0 if column == "score" else 1)
+        assert len(store.list()) == 1
+    if column == "score":
+        written_to(path, "UPDATE result SET score = ?", value)
+        with Store(path) as store:
+            assert store.list() == ()
 
 
 def test_a_file_that_is_no_database_is_refused(tmp_path: Path) -> None:
@@ -257,8 +266,14 @@ def test_a_newer_store_is_refused(tmp_path: Path) -> None:
     """A store of another schema is refused by name, not read wrongly."""
     path = tmp_path / "store.sqlite"
     Store(path).close()
-    written_to(path, "UPDATE meta SET value = '2' WHERE key = 'schema'")
-    with pytest.raises(BadInput, match='schema "2", this version reads 1'):
+    written_to(path, "UPDATE meta SET value = '99' WHERE key = 'schema'")
+    for only_reading in (False, True):
+        with pytest.raises(
+            BadInput, match=r'schema "99", this version reads up to \d+: use the version that'
+        ):
+            Store(path, only_reading=only_reading)
+    written_to(path, "UPDATE meta SET value = 'x' WHERE key = 'schema'")
+    with pytest.raises(BadInput, match=r'schema "x".*--store'):
         Store(path)
 
 
