@@ -9,7 +9,7 @@ from functools import cache
 from pathlib import Path
 from types import ModuleType
 
-ENTRIES = ("wander", "make_move", "anneal", "best_move")
+ENTRIES = ("wander", "make_move", "anneal", "best_move", "cross", "mend")
 """The functions of the kernel that are compiled and kept."""
 
 

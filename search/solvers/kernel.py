@@ -603,6 +603,64 @@ def _scan_replacements(beds, admitted, planting, distances, t, a, below):
     return scored, best_plot, best_partner, below
 
 
+# --- through broken rules --------------------------------------------------------------------------
+
+
+@_hot
+def _keeps_counts(admitted, u, v, a, c):
+    """Whether a move is one at all, and replaces only treatments whose replication may change."""
+    plots = admitted.plots
+    return (u != v) & (a != c) & ((c >= 0) | (plots[LEAST, u] < plots[MOST, u]))
+
+
+@_hot
+def _off(least, most, count, by):
+    """How much further outside its range a count gets when it changes by one, up or down."""
+    if by > 0:
+        return int(count >= most) - int(count < least)
+    return int(count <= least) - int(count > most)
+
+
+@_inner
+def _off_by(least, most, count, by):
+    """The same for any change."""
+    before = max(0, count - most) + max(0, least - count)
+    return max(0, count + by - most) + max(0, least - count - by) - before
+
+
+@_inner
+def _breaks(admitted, planting, u, v, a, c):
+    """By how many breaches of rules a move makes a plan worse, limits on meetings aside: O(1).
+
+    A breach is a plot too many or too few in a range, or two plots of a block whose treatments never meet.
+    """
+    copies, gate, bar = planting.copies, planting.gate, admitted.apart[u, v]
+    low, high = admitted.copies[LEAST], admitted.copies[MOST]
+    change = _off(low[a, u], high[a, u], copies[a, u], -1) + _off(low[a, v], high[a, v], copies[a, v], 1)
+    change += (gate[a, v] & (FULL - 1)) - (gate[a, u] & (FULL - 1)) - bar
+    if c >= 0:
+        change += _off(low[c, v], high[c, v], copies[c, v], -1) + _off(low[c, u], high[c, u], copies[c, u], 1)
+        return change + (gate[c, u] & (FULL - 1)) - (gate[c, v] & (FULL - 1)) - bar
+    least, most, plots = admitted.plots[LEAST], admitted.plots[MOST], planting.plots
+    return change + _off(least[u], most[u], plots[u], -1) + _off(least[v], most[v], plots[v], 1)
+
+
+@_inner
+def _breaks_meetings(admitted, planting, u, v, a, c):
+    """The same for limits on meetings: O(t)."""
+    if not admitted.any_meetings:
+        return 0
+    copies, met = planting.copies, planting.meetings
+    least, most = admitted.meetings[LEAST], admitted.meetings[MOST]
+    change = _off_by(least[u, v], most[u, v], met[u, v], _meeting(copies, u, v, a, c))
+    for x in range(len(planting.plots)):
+        if x != u and x != v and (copies[a, x] > 0 or (c >= 0 and copies[c, x] > 0)):
+            with_u, with_v = _meetings(copies, u, v, a, c, x)
+            change += _off_by(least[u, x], most[u, x], met[u, x], with_u)
+            change += _off_by(least[v, x], most[v, x], met[v, x], with_v)
+    return change
+
+
 # --- entry points: each call ends after a bounded number of steps ---------------------------------
 
 
@@ -709,3 +767,67 @@ def best_move(board, begin, end, below):
         if plot >= 0:
             best_plot, best_partner, below = plot, partner, rise
     return scored, best_plot, best_partner, below
+
+
+@_entry(types.UniTuple(_INT, 5)(_BOARD, _RANDOM, _FLOAT, _FLOAT, _FLOAT, _INT, _INT, _INT, _INT))
+def cross(board, random, temperature, cooling, price, breaches, moves, tries, most_accepted):
+    """Simulated annealing that may break rules, at a price for each breach.
+
+    Like `anneal`, but for rules other than block sizes and replicates. `breaches` is how many there are to
+    begin with. Returns the moves scored, drawn and accepted, those that raise the objective, and the breaches left.
+    """
+    beds, admitted, planting, distances = _named(board)
+    planted, t = planting.planted, _treatments(planting)
+    scored, drawn, accepted, climbed = 0, 0, 0, 0
+    while scored < moves and drawn < tries and accepted < most_accepted:
+        drawn += 1
+        plot, partner, place = _draw(beds, random)
+        u, v, a, c = _read(beds, planted, plot, partner)
+        if not _keeps_counts(admitted, u, v, a, c):
+            continue
+        scored += 1
+        allowed = temperature * DRAWS[place]
+        temperature *= cooling
+        change = _breaks(admitted, planting, u, v, a, c)
+        hope = breaches if admitted.any_meetings else 0
+        rise, ratio = _score(beds.share, distances, t, u, v, a, c)
+        if not (rise + price * (change - hope) <= allowed and ratio >= LEAST_RATIO):
+            continue
+        change += _breaks_meetings(admitted, planting, u, v, a, c)
+        if _true_rise(distances.overall, t, rise, ratio) + price * change > allowed:
+            continue
+        if abs(rise) < NOTHING and _products(beds.share, distances.variance, t, u, v, a, c)[2] < NOTHING:
+            if change == 0:
+                continue
+        _move_points(beds, planted, distances, t, u, v, a, c)
+        _plant(admitted, planting, plot, partner, u, v, a, c)
+        breaches += change
+        accepted += 1
+        climbed += int(rise > NOTHING)
+    return scored, drawn, accepted, climbed, breaches
+
+
+@_entry(types.UniTuple(_INT, 2)(_BOARD, _RANDOM, _FLOAT, _INT, _INT))
+def mend(board, random, temperature, breaches, tries):
+    """Draw random moves until no rule is broken, whatever they are worth; distances are left behind.
+
+    A move that adds so many breaches is made with the odds that annealing gives it. Returns the breaches
+    left and the moves drawn.
+    """
+    beds, admitted, planting, _ = _named(board)
+    drawn = 0
+    while breaches > 0 and drawn < tries:
+        drawn += 1
+        plot, partner, place = _draw(beds, random)
+        u, v, a, c = _read(beds, planting.planted, plot, partner)
+        if not _keeps_counts(admitted, u, v, a, c):
+            continue
+        allowed = temperature * DRAWS[place]
+        change = _breaks(admitted, planting, u, v, a, c)
+        if change - (breaches if admitted.any_meetings else 0) > allowed:
+            continue
+        change += _breaks_meetings(admitted, planting, u, v, a, c)
+        if change <= allowed:
+            _plant(admitted, planting, plot, partner, u, v, a, c)
+            breaches += change
+    return breaches, drawn
