@@ -148,12 +148,20 @@ def plans_within(trial: Trial, most: int) -> list[Contents] | None:
         if len(found) > most:
             return
         if j == trial.b:
-            if (plots >= rules.least).all() and (shared >= rules.meet_least).all() and (held == rules.share).all():
+            if (
+                (plots >= rules.least).all()
+                and (shared >= rules.meet_least).all()
+                and (held == rules.share).all()
+            ):
                 found.append(contents)
             return
         for column, counts, meets in columns[j]:
             more, met, fuller = plots + counts, shared + meets, held + np.outer(counts, in_group[j])
-            if (more <= rules.most).all() and (met <= rules.meet_most).all() and (fuller <= rules.share).all():
+            if (
+                (more <= rules.most).all()
+                and (met <= rules.meet_most).all()
+                and (fuller <= rules.share).all()
+            ):
                 extend((*contents, column), more, met, fuller)
 
     nothing = np.zeros((trial.t, trial.t), dtype=np.int64)

@@ -39,7 +39,9 @@ def ruled(seed: int, *, small: bool = False) -> Trial:
     blocks = [f"bay {j}" for j in range(1, len(contents) + 1)]
     rules: dict[str, Any] = {"twice_in_block": True} if kind == "twice" else {}
     if groups:
-        rules["replicates"] = {f"set {g}": [blocks[j] for j in members] for g, members in enumerate(groups, 1)}
+        rules["replicates"] = {
+            f"set {g}": [blocks[j] for j in members] for g, members in enumerate(groups, 1)
+        }
     if fuller:
         rules["per_replicate"] = {names[i]: 2 for i in fuller}
     rules |= _rules(draw, contents, names, blocks, small)
@@ -58,6 +60,30 @@ def ruled(seed: int, *, small: bool = False) -> Trial:
     )
 
 
+def hundred(seed: int) -> Trial:
+    """A hundred treatments in unequal bays or in replicates, under fifty rules of five sorts, ten of each."""
+    draw, t = Random(seed), 100
+    names = [f"V{i:03d}" for i in range(1, t + 1)]
+    contents, groups = None, []
+    while contents is None or len({i for block in contents for i in block}) < t:
+        contents, groups = _plan(draw, KINDS[seed % 2], t, [], False)
+    blocks = [f"bay {j}" for j in range(1, len(contents) + 1)]
+    rules = _rules(draw, contents, names, blocks, exactly=10)
+    if groups:
+        rules["replicates"] = {
+            f"set {g}": [blocks[j] for j in members] for g, members in enumerate(groups, 1)
+        }
+    plots = incidence(contents, t).sum(axis=1).tolist()
+    return trial_from_document(
+        {
+            "trial": f"hundred {seed}",
+            "treatments": {name: {"plots": r} for name, r in zip(names, plots, strict=True)},
+            "blocks": {block: len(held) for block, held in zip(blocks, contents, strict=True)},
+            "rules": rules,
+        }
+    )
+
+
 def _plan(
     draw: Random, kind: str, t: int, fuller: list[int], small: bool
 ) -> tuple[Contents | None, list[list[int]]]:
@@ -65,7 +91,9 @@ def _plan(
     usual = draw.randint(2, 3) if small or draw.random() < 0.3 else draw.randint(4, 8)
     if kind in ("bays", "twice"):
         plots = round(t * draw.uniform(2.0, 2.6 if small else 4.0))
-        sizes = [min(size, t - 1) for size in _sizes(draw, plots, usual)]  # larger: every treatment must be in
+        sizes = [
+            min(size, t - 1) for size in _sizes(draw, plots, usual)
+        ]  # larger: every treatment must be in
         blocks = [draw.choices(range(t), k=k) if kind == "twice" else draw.sample(range(t), k) for k in sizes]
         return tuple(tuple(sorted(block)) for block in blocks), []
     held, groups = [], []
@@ -94,7 +122,12 @@ def _sizes(draw: Random, plots: int, usual: int) -> list[int]:
 
 
 def _rules(
-    draw: Random, contents: Contents, names: list[str], blocks: list[str], small: bool
+    draw: Random,
+    contents: Contents,
+    names: list[str],
+    blocks: list[str],
+    small: bool = False,
+    exactly: int = 0,
 ) -> dict[str, Any]:
     """Rules that the plan obeys, some of which it only just obeys."""
     present = incidence(contents, len(names)) > 0
@@ -102,7 +135,8 @@ def _rules(
     pairs = list(combinations(range(len(names)), 2))
 
     def some(things: list[Any], most: int) -> list[Any]:
-        return draw.sample(things, min(len(things), draw.randint(0, 3 if small else most)))
+        many = exactly or draw.randint(0, 3 if small else most)
+        return draw.sample(things, min(len(things), many))
 
     apart = some([p for p in pairs if shared[p] == 0], 10)
     least = some([p for p in pairs if shared[p] > 0], 6)
@@ -116,7 +150,7 @@ def _rules(
         "keep_out": _listed((names[i], blocks[j]) for i, j in barred),
         "must_hold": _listed((blocks[j], names[i]) for i, j in held),
     }
-    if draw.random() < 0.25:
+    if not exactly and draw.random() < 0.25:
         rules["meet_at_most"] = int(max(shared[p] for p in pairs))
     return {key: value for key, value in rules.items() if value}
 

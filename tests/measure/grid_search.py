@@ -72,7 +72,17 @@ def main(out: str, moves: str = str(MOVES), first: str = "0", every: str = "1") 
             found = plan(equal_trial(t, b, k), moves=int(moves), workers=1)
             reached, scored, by = found.score.aim, found.moves, f"plan: {found.start}"
         rows.add(
-            [t, b, k, f"{listed:.9f}", f"{reached:.9f}", f"{reached - listed:.9f}", f"{bound:.9f}", scored, by]
+            [
+                t,
+                b,
+                k,
+                f"{listed:.9f}",
+                f"{reached:.9f}",
+                f"{reached - listed:.9f}",
+                f"{bound:.9f}",
+                scored,
+                by,
+            ]
         )
     rows.sort()
     told = rows.all()

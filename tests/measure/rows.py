@@ -44,7 +44,9 @@ class Rows:
         """Put the rows in the order of their names, numbers by size."""
         with self.path.open(encoding="utf-8", newline="") as file:
             header, *rows = csv.reader(file)
-        rows.sort(key=lambda row: [(0, float(x), "") if _number(x) else (1, 0.0, x) for x in row[: self.naming]])
+        rows.sort(
+            key=lambda row: [(0, float(x), "") if _number(x) else (1, 0.0, x) for x in row[: self.naming]]
+        )
         with self.path.open("w", encoding="utf-8", newline="") as file:
             csv.writer(file, lineterminator="\n").writerows([header, *rows])
 

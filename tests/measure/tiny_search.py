@@ -30,7 +30,7 @@ MOST_PLANS = 3_000
 NEAR = 1e-9
 
 
-def solved(trial: Trial, moves: int, seed: int = 1) -> tuple[Problem, Outcome]:
+def solved(trial: Trial, moves: int, seed: int = 1, workers: int = 1) -> tuple[Problem, Outcome]:
     """The problem of a trial and the outcome of its search, begun as the conductor does, without designs."""
     implied = limits(trial)
     problem = problem_of(trial)
@@ -42,7 +42,7 @@ def solved(trial: Trial, moves: int, seed: int = 1) -> tuple[Problem, Outcome]:
         target=lambda _: -np.inf,
         stop=Stop(Limits(None, moves)),
         seed=seed,
-        workers=1,
+        workers=workers,
         watch=lambda *_: None,
         others=further_starts(trial, problem.tables, implied, seed=seed),
     )

@@ -13,9 +13,11 @@ from search.solvers.board import board_of, contents_on, objective
 from search.solvers.compiled import kernel
 from search.solvers.crossing import breaches, mended, parts_plans, relaxed
 from search.solvers.records import Problem
+from search.solvers.start import feasible_start
 from search.solvers.streams import stream
 from search.solvers.walk import Walk
 from search.trial.checker import broken_rules
+from search.trial.limits import limits
 from search.trial.records import Contents
 from tests.drawn import all_plans, plans_within
 from tests.measure.tiny_search import best_objective, missed, small_trials, solved
@@ -36,9 +38,9 @@ def wandered(problem: Problem, contents: Contents, seed: int) -> Contents:
 def first_plan(seed: int) -> tuple[Problem, Contents]:
     """The problem of a small trial with rules, and one of its plans."""
     trial = ruled(seed, small=True)
-    plans = plans_within(trial, 10_000)
-    assert plans
-    return problem_of(trial), plans[0]
+    problem = problem_of(trial)
+    start, _ = feasible_start(trial, problem.tables, limits(trial), seed=1, seconds=60)
+    return problem, start
 
 
 @pytest.mark.parametrize("seed", range(12))
@@ -109,6 +111,14 @@ def test_no_legal_move_leads_from_one_island_to_another() -> None:
     _, outcome = solved(trial, 120_000)
     assert outcome.objective == best_objective(problem, plans)
     assert outcome.start == "through broken rules"
+
+
+@pytest.mark.parametrize("seed", [0, 1, 2, 3])
+def test_the_plan_does_not_depend_on_the_workers(seed: int) -> None:
+    """Runs through broken rules included, one, two and three workers find the same plan in the same run."""
+    outcomes = [solved(ruled(seed), 150_000, workers=workers)[1] for workers in (1, 2, 3)]
+    assert len({(x.contents, x.objective, x.moves, x.run, x.ended) for x in outcomes}) == 1
+    assert broken_rules(ruled(seed), outcomes[0].contents) == ()
 
 
 @pytest.mark.slow
