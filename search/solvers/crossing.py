@@ -1,9 +1,9 @@
-"""Ways across broken rules: from one island of plans to another, and from a broken plan to one within the rules.
+"""Ways across broken rules: from one island of plans to another, and from a broken plan to a whole one.
 
-Rules can part the plans into islands that no single legal exchange or replacement joins. Here a move may break
-rules, at a price for each breach, and later moves mend them: a chain of exchanges, two treatments exchanged in
-two replicates at once, and whatever else is on the way between two plans that obey the rules. Only block sizes
-and replicates hold throughout, and any two such plans are joined by exchanges and replacements.
+Rules can part the plans into islands that no single legal exchange or replacement joins. Here a move may
+break rules, at a price for each breach, and later moves mend them: a chain of exchanges, two treatments
+exchanged in two replicates at once, and whatever else is on the way between two plans that obey the rules.
+Only block sizes and replicates hold throughout, and exchanges and replacements join any two such plans.
 """
 
 from __future__ import annotations
@@ -30,7 +30,8 @@ deep pits."""
 MENDING_CALLS, MENDING_DRAWS = 18, 200_000
 """Calls of the kernel that mending may take, and moves drawn in each: 0.2 s in all on a slow processor."""
 LEG, PER_PAIR, MOST_LEGS = 2_000, 10, 10
-"""Scored moves of the shortest annealing worth its while, at least and for every pair of plots; tiny trials are annealed several times in a run."""
+"""Scored moves of the shortest annealing worth its while, at least and for every ordered pair of plots; in
+tiny trials a run is several of these, at most so many."""
 DESCENT = 5
 """One move in so many of a run is left for its descent within the rules."""
 

@@ -774,7 +774,8 @@ def cross(board, random, temperature, cooling, price, breaches, moves, tries, mo
     """Simulated annealing that may break rules, at a price for each breach.
 
     Like `anneal`, but for rules other than block sizes and replicates. `breaches` is how many there are to
-    begin with. Returns the moves scored, drawn and accepted, those that raise the objective, and the breaches left.
+    begin with. Returns the moves scored, drawn, accepted, accepted though they raise the objective, and the
+    breaches left.
     """
     beds, admitted, planting, distances = _named(board)
     planted, t = planting.planted, _treatments(planting)
@@ -796,9 +797,9 @@ def cross(board, random, temperature, cooling, price, breaches, moves, tries, mo
         change += _breaks_meetings(admitted, planting, u, v, a, c)
         if _true_rise(distances.overall, t, rise, ratio) + price * change > allowed:
             continue
-        if abs(rise) < NOTHING and _products(beds.share, distances.variance, t, u, v, a, c)[2] < NOTHING:
-            if change == 0:
-                continue
+        same = change == 0 and abs(rise) < NOTHING  # perhaps two blocks that would swap their names
+        if same and _products(beds.share, distances.variance, t, u, v, a, c)[2] < NOTHING:
+            continue
         _move_points(beds, planted, distances, t, u, v, a, c)
         _plant(admitted, planting, plot, partner, u, v, a, c)
         breaches += change

@@ -1,11 +1,11 @@
 """How far apart do searches end that differ in their seed alone? Trials with rules, several seeds each.
 
-    nice python -m tests.measure.constrained_search results/search_constrained.csv [moves] [seeds] [first every]
+    nice python -m tests.measure.constrained_search results/search_constrained.csv [moves] [seeds]
 
-The trials are the 30 of `constrained_bounds` and as many of `ruled`, which draws the rules that those lack.
-The search is alone, without designs to start from and without a bound that ends it. The limit is one in moves,
-so that other work on the machine changes nothing: ten seconds on two workers are about 200 million. Rows that
-are in the file already are kept.
+The trials are the 30 of `constrained_bounds` and as many of `ruled`, which draws the rules that those lack;
+two more numbers, `first every`, choose some of them. The search is alone, without designs to start from and
+without a bound that ends it. The limit is one in moves, so that other work on the machine changes nothing:
+ten seconds on two workers are about 200 million. Rows that are in the file already are kept.
 """
 
 from __future__ import annotations
@@ -59,18 +59,8 @@ def main(
                 continue
             _, outcome = solved(trial, int(moves), seed)
             reached = float(reference_variance(trial)) / outcome.objective
-            rows.add(
-                [
-                    trial.name,
-                    seed,
-                    trial.t,
-                    trial.b,
-                    f"{reached:.9f}",
-                    outcome.moves,
-                    outcome.run,
-                    outcome.start,
-                ]
-            )
+            how = [outcome.moves, outcome.run, outcome.start]
+            rows.add([trial.name, seed, trial.t, trial.b, f"{reached:.9f}", *how])
     rows.sort()
     by_trial: dict[str, list[float]] = defaultdict(list)
     for row in rows.all():

@@ -1,4 +1,4 @@
-"""Is the best of all plans found where all of them can be looked at? Tiny trials with rules, drawn from seeds.
+"""Is the best of all plans found where all can be looked at? Tiny trials with rules, drawn from seeds.
 
     nice python -m tests.measure.tiny_search [trials] [moves] [first]
 

@@ -16,9 +16,9 @@ from hypothesis import strategies as st
 from search.foundation.errors import Impossible
 from search.foundation.stopping import Ended, Limits, Stop
 from search.solvers import crew
+from search.solvers.anneal import Cooling, Found
 from search.solvers.board import objective
 from search.solvers.records import Outcome, Problem
-from search.solvers.anneal import Cooling, Found
 from search.solvers.rounds import RUNS, Best, Prepared, Way, best_of, runs_of, search
 from search.solvers.start import feasible_start
 from search.trial.checker import broken_rules
