@@ -68,8 +68,8 @@ def main(
     behind = {name: 100 * (1 - min(reached) / max(reached)) for name, reached in by_trial.items()}
     worst = max(behind, key=lambda name: behind[name])
     print(
-        f"{len(behind)} trials: {sum(x > 0.2 for x in behind.values())} with a seed more than 0.2% behind the "
-        f"best of all, {sum(x < 1e-6 for x in behind.values())} where all end alike; "
+        f"{len(behind)} trials: {sum(x > 0.2 for x in behind.values())} with a seed more than 0.2% behind "
+        f"the best of all, {sum(x < 1e-6 for x in behind.values())} where all end alike; "
         f"worst {behind[worst]:.4f}% ({worst})"
     )
 
