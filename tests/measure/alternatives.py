@@ -73,14 +73,13 @@ def trials() -> Iterator[tuple[str, Trial]]:
 
 @contextmanager
 def after(seconds: float, act: Callable[[], None]) -> Iterator[None]:
-    """Do something when this process has worked so many seconds, unless what is in here ends sooner."""
+    """Do something, from when this process has worked so many seconds until what is in here ends."""
     end, over = time.process_time() + seconds, threading.Event()
 
     def watch() -> None:
         while not over.wait(0.02):
             if time.process_time() >= end:
-                act()
-                return
+                act()  # and again, in case it was not begun yet
 
     thread = threading.Thread(target=watch)
     thread.start()
