@@ -50,15 +50,15 @@ def relaxed(problem: Problem) -> Problem:
     """The problem without any rule but sizes of blocks and replicates."""
     tables = problem.tables
     t, b = tables.t, tables.b
-    fewest = np.minimum(tables.least, 1)
+    loose = tables.least < tables.most  # the others keep their plots on every way, see the kernel
     return replace(
         problem,
         tables=replace(
             tables,
             low=np.zeros_like(tables.low),
             high=np.ones_like(tables.high) * tables.sizes,
-            least=fewest,
-            most=np.where(tables.least < tables.most, tables.n, tables.most),
+            least=np.where(loose, np.minimum(tables.least, 1), tables.least),
+            most=np.where(loose, tables.n, tables.most),
             apart=np.zeros_like(tables.apart),
             meet_least=np.zeros((t, t), dtype=np.int64),
             meet_most=np.full((t, t), b),
