@@ -6,12 +6,13 @@ from collections.abc import Iterator
 from itertools import combinations, combinations_with_replacement, product
 from typing import Any
 
+import numpy as np
 from hypothesis import strategies as st
 
 from search.trial.checker import broken_rules
 from search.trial.reading import trial_from_document
 from search.trial.records import Contents, Trial
-from search.trial.tables import tables
+from search.trial.tables import Ints, tables
 
 TINY = "a trial that can be checked by hand: three treatments, three blocks of two"
 
@@ -137,3 +138,48 @@ def all_plans(trial: Trial, most: int = 20_000) -> Iterator[Contents]:
     for contents in product(*columns):
         if not broken_rules(trial, contents):
             yield contents
+
+
+def plans_within(trial: Trial, most: int) -> list[Contents] | None:
+    """Every plan that the trial admits, or None where there are more than so many.
+
+    Block after block, and no further where a rule is broken already: so trials of more blocks can be listed
+    than by `all_plans`, which tries every combination and is the slow twin of this.
+    """
+    rules = tables(trial)
+    choose = combinations_with_replacement if trial.rules.twice_in_block else combinations
+    apart = ~np.eye(trial.t, dtype=bool)
+    in_group = rules.group[:, None] == np.arange(rules.share.shape[1])
+    columns: list[list[tuple[tuple[int, ...], Ints, Ints]]] = []
+    for j, block in enumerate(trial.blocks):
+        columns.append([])
+        for column in choose(range(trial.t), block.plots):
+            counts = np.bincount(column, minlength=trial.t)
+            if (rules.low[:, j] <= counts).all() and (counts <= rules.high[:, j]).all():
+                columns[j].append((column, counts, apart & np.outer(counts > 0, counts > 0)))
+    found: list[Contents] = []
+
+    def extend(contents: Contents, plots: Ints, shared: Ints, held: Ints) -> None:
+        j = len(contents)
+        if len(found) > most:
+            return
+        if j == trial.b:
+            if (
+                (plots >= rules.least).all()
+                and (shared >= rules.meet_least).all()
+                and (held == rules.share).all()
+            ):
+                found.append(contents)
+            return
+        for column, counts, meets in columns[j]:
+            more, met, fuller = plots + counts, shared + meets, held + np.outer(counts, in_group[j])
+            if (
+                (more <= rules.most).all()
+                and (met <= rules.meet_most).all()
+                and (fuller <= rules.share).all()
+            ):
+                extend((*contents, column), more, met, fuller)
+
+    nothing = np.zeros((trial.t, trial.t), dtype=np.int64)
+    extend((), nothing[0], nothing, np.zeros_like(rules.share))
+    return found if len(found) <= most else None

@@ -87,7 +87,7 @@ class Questions:
                 return Verdict.UNKNOWN
             rules = replace(tables(trial), least=implied.least, most=implied.most)
             seconds = min(QUESTION_SECONDS, max(0.1, self.left))
-            feasible_start(trial, rules, implied, seed=self.seed, seconds=seconds)
+            feasible_start(trial, rules, implied, seed=self.seed, seconds=seconds, mending=False)
         except Impossible:
             return Verdict.IMPOSSIBLE
         except Undecided:

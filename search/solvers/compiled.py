@@ -11,7 +11,7 @@ from types import ModuleType
 from search.foundation.compiling import cache_folder, keep_compiled
 from search.solvers.records import Goal
 
-ENTRIES = ("wander", "make_move", "anneal", "best_move")
+ENTRIES = ("wander", "make_move", "anneal", "best_move", "cross", "mend")
 """The functions of the kernel that are compiled and kept."""
 MORE_ENTRIES = {
     Goal.SPREAD: (),

@@ -822,6 +822,64 @@ def _tell_rises(strip, begin, many, rises, told):
     return told
 
 
+# --- through broken rules --------------------------------------------------------------------------
+
+
+@_hot
+def _keeps_counts(admitted, u, v, a, c):
+    """Whether a move is one at all, and replaces only treatments whose replication may change."""
+    plots = admitted.plots
+    return (u != v) & (a != c) & ((c >= 0) | (plots[LEAST, u] < plots[MOST, u]))
+
+
+@_hot
+def _off(least, most, count, by):
+    """How much further outside its range a count gets when it changes by one, up or down."""
+    if by > 0:
+        return int(count >= most) - int(count < least)
+    return int(count <= least) - int(count > most)
+
+
+@_inner
+def _off_by(least, most, count, by):
+    """The same for any change."""
+    before = max(0, count - most) + max(0, least - count)
+    return max(0, count + by - most) + max(0, least - count - by) - before
+
+
+@_inner
+def _breaks(admitted, planting, u, v, a, c):
+    """By how many breaches of rules a move makes a plan worse, limits on meetings aside: O(1).
+
+    A breach is a plot too many or too few in a range, or two plots of a block whose treatments never meet.
+    """
+    copies, gate, bar = planting.copies, planting.gate, admitted.apart[u, v]
+    low, high = admitted.copies[LEAST], admitted.copies[MOST]
+    change = _off(low[a, u], high[a, u], copies[a, u], -1) + _off(low[a, v], high[a, v], copies[a, v], 1)
+    change += (gate[a, v] & (FULL - 1)) - (gate[a, u] & (FULL - 1)) - bar
+    if c >= 0:
+        change += _off(low[c, v], high[c, v], copies[c, v], -1) + _off(low[c, u], high[c, u], copies[c, u], 1)
+        return change + (gate[c, u] & (FULL - 1)) - (gate[c, v] & (FULL - 1)) - bar
+    least, most, plots = admitted.plots[LEAST], admitted.plots[MOST], planting.plots
+    return change + _off(least[u], most[u], plots[u], -1) + _off(least[v], most[v], plots[v], 1)
+
+
+@_inner
+def _breaks_meetings(admitted, planting, u, v, a, c):
+    """The same for limits on meetings: O(t)."""
+    if not admitted.any_meetings:
+        return 0
+    copies, met = planting.copies, planting.meetings
+    least, most = admitted.meetings[LEAST], admitted.meetings[MOST]
+    change = _off_by(least[u, v], most[u, v], met[u, v], _meeting(copies, u, v, a, c))
+    for x in range(len(planting.plots)):
+        if x != u and x != v and (copies[a, x] > 0 or (c >= 0 and copies[c, x] > 0)):
+            with_u, with_v = _meetings(copies, u, v, a, c, x)
+            change += _off_by(least[u, x], most[u, x], met[u, x], with_u)
+            change += _off_by(least[v, x], most[v, x], met[v, x], with_v)
+    return change
+
+
 # --- entry points: each call ends after a bounded number of steps ---------------------------------
 
 
@@ -1009,12 +1067,79 @@ def _single(beds, planted, metrics, t, u, v, a, c):
         _renew(beds, planted, metrics, c)
     step = _step(beds, a, c)
     alpha, beta, ww = _of_move(beds, planted, metrics, t, 0, u, v, a, c)
-    a2, b2, c2 = _of_move(beds, planted, metrics, t, 1, u, v, a, c)
     one, gamma = 1.0 + beta, ww + step
     ratio = one * one - alpha * gamma
-    rise = (gamma * a2 - 2.0 * one * b2 + alpha * c2) / ratio
+    if metrics.overall:
+        rise = (1.0 - ratio) / metrics.degrees  # a lower bound, see `_score`
+    else:
+        a2, b2, c2 = _of_move(beds, planted, metrics, t, 1, u, v, a, c)
+        rise = (gamma * a2 - 2.0 * one * b2 + alpha * c2) / ratio
     apart = ww - step * beta + 0.25 * step * step * alpha
     return rise, ratio, c >= 0 and abs(rise) < NOTHING and apart < NOTHING
+
+
+@_entry(types.UniTuple(_INT, 5)(_BOARD, _RANDOM, _FLOAT, _FLOAT, _FLOAT, _INT, _INT, _INT, _INT))
+def cross(board, random, temperature, cooling, price, breaches, moves, tries, most_accepted):
+    """Simulated annealing that may break rules, at a price for each breach.
+
+    Moves are drawn one by one, under rules other than block sizes and replicates. `breaches` is how many there
+    are to begin with. Returns the moves scored, drawn, accepted, accepted though they raise the objective, and
+    the breaches left.
+    """
+    beds, admitted, planting, metrics = _named(board)
+    planted, t = planting.planted, _treatments(planting)
+    scored, drawn, accepted, climbed = 0, 0, 0, 0
+    while scored < moves and drawn < tries and accepted < most_accepted:
+        drawn += 1
+        plot, partner, _, place = _draw(beds, random)
+        u, v, a, c = _read(beds, planted, plot, partner)
+        if not _keeps_counts(admitted, u, v, a, c):
+            continue
+        scored += 1
+        allowed = temperature * DRAWS[place]
+        temperature *= cooling
+        change = _breaks(admitted, planting, u, v, a, c)
+        hope = breaches if admitted.any_meetings else 0
+        rise, ratio, same = _single(beds, planted, metrics, t, u, v, a, c)
+        if not (rise + price * (change - hope) <= allowed and ratio >= LEAST_RATIO):
+            continue
+        change += _breaks_meetings(admitted, planting, u, v, a, c)
+        if _true_rise(metrics, rise, ratio) + price * change > allowed:
+            continue
+        if change == 0 and same:
+            continue  # two blocks would only swap their names
+        _move_points(beds, planted, metrics, t, u, v, a, c)
+        _plant(admitted, planting, plot, partner, u, v, a, c)
+        breaches += change
+        accepted += 1
+        climbed += int(rise > NOTHING)
+    return scored, drawn, accepted, climbed, breaches
+
+
+@_entry(types.UniTuple(_INT, 2)(_BOARD, _RANDOM, _FLOAT, _INT, _INT))
+def mend(board, random, temperature, breaches, tries):
+    """Draw random moves until no rule is broken, whatever they are worth; the tables are left behind.
+
+    A move that adds so many breaches is made with the odds that annealing gives it. Returns the breaches
+    left and the moves drawn.
+    """
+    beds, admitted, planting, _ = _named(board)
+    drawn = 0
+    while breaches > 0 and drawn < tries:
+        drawn += 1
+        plot, partner, _, place = _draw(beds, random)
+        u, v, a, c = _read(beds, planting.planted, plot, partner)
+        if not _keeps_counts(admitted, u, v, a, c):
+            continue
+        allowed = temperature * DRAWS[place]
+        change = _breaks(admitted, planting, u, v, a, c)
+        if change - (breaches if admitted.any_meetings else 0) > allowed:
+            continue
+        change += _breaks_meetings(admitted, planting, u, v, a, c)
+        if change <= allowed:
+            _plant(admitted, planting, plot, partner, u, v, a, c)
+            breaches += change
+    return breaches, drawn
 
 
 # --- even meetings --------------------------------------------------------------------------------
@@ -1025,9 +1150,9 @@ def _single(beds, planted, metrics, t, u, v, a, c):
 #
 #     the sum of all M² grows by  4 d'Mq + 2s d'Md + 2n q'q + 4ns d'q + 2(d'q)² + s²n²
 #
-# Filler meets nobody: it has no row in N, and a move of it has d = e_u or −e_v, n = 1.
 # of which d'Mq is four entries of T and q'q three of X. Off the diagonal, and each pair once, it is half
 # of that less what the two entries M_uu and M_vv that change bring. An accepted move costs O(t + b + rk).
+# Filler meets nobody: it has no row in N, and a move of it has d = e_u or −e_v, n = 1.
 
 
 class Concurrences(NamedTuple):

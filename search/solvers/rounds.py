@@ -10,6 +10,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
+from enum import StrEnum
 
 from search.efficiency.one_thread import one_thread
 from search.foundation.stopping import Ended, Stop
@@ -17,6 +18,7 @@ from search.solvers.anneal import Cooling, Found, anneal, calibrated, connected,
 from search.solvers.board import objective, unit_of
 from search.solvers.compiled import warm_up
 from search.solvers.crew import Crew, Watch
+from search.solvers.crossing import crossed, parts_plans, relaxed
 from search.solvers.records import PROVER, Outcome, Problem
 from search.solvers.streams import stream
 from search.solvers.walk import ROUNDING, Report
@@ -42,6 +44,8 @@ RUNS = 6
 """Runs of a round: one, two or three workers share them evenly."""
 REHEATED = 4
 """Of these, from the second round on, runs that start from the best plan so far."""
+CROSSING = 2
+"""Of these, where rules may part the plans into islands, runs that go through broken rules."""
 SHORTEST, PER_PAIR = 20_000, 10
 """Moves of a run in the first round: at least so many, and so many for every ordered pair of plots."""
 GROWTH, GROWING = 1.2, 25
@@ -50,7 +54,7 @@ SPARE = 0.01
 """A limit in moves is met when this part of it is left."""
 MET = 1e-9
 """A plan whose objective is this near to the target has reached it."""
-CONNECTING, MOVING, CALIBRATING = -1, -2, -3
+CONNECTING, MOVING, CALIBRATING, CROSSING_OVER = -1, -2, -3, -4
 """Random streams of what comes before the runs."""
 
 
@@ -64,14 +68,25 @@ class Best:
     start: str
 
 
+class Way(StrEnum):
+    """What a run does with the plan that it starts from."""
+
+    SCRAMBLING = "random start"
+    """forget it, then anneal"""
+    REHEATING = "best plan of an earlier run"
+    """anneal from half as hot"""
+    CROSSING = "through broken rules"
+    """anneal at a price for each rule broken"""
+
+
 @dataclass(frozen=True, slots=True)
 class Run:
-    """A run to make: gently from a plan as it is, or from what scrambling makes of it."""
+    """A run to make from a plan; `start` tells where it came from."""
 
     number: int
     origin: Contents
     start: str
-    gently: bool
+    way: Way
     moves: int
 
 
@@ -80,6 +95,25 @@ Prover = Callable[[int, Contents], Contents | None]
 
 def none_better(number: int, best: Contents) -> Contents | None:
     """No proof is tried."""
+
+
+@dataclass(frozen=True, slots=True)
+class Prepared:
+    """What runs start from, and how hot.
+
+    Parameters
+    ----------
+    origins : plans within the rules that runs scramble, in turn: connected, and with a legal move
+    cooling : temperatures within the rules; None where there is no such plan
+    shore : a connected plan from which runs through broken rules start, whether it breaks some or none;
+        None where rules part no plans, or there is none
+    crossing : temperatures of these
+    """
+
+    origins: tuple[Contents, ...]
+    cooling: Cooling | None
+    shore: Contents | None
+    crossing: Cooling | None
 
 
 def search(
@@ -120,15 +154,17 @@ def search(
     """
     warm_up(problem.goal)
     with one_thread(), Crew(workers, stop, watch) as crew:
-        origins, best, cooling = crew.one(lambda: prepared(problem, start, kept, seed, stop, known, others))
+        ready, best = crew.one(lambda: prepared(problem, start, kept, seed, stop, known, others))
         number = moves = 0
         while True:
             if (proposed := prover(number, best.contents)) is not None:
                 best = better_of(problem, best, proposed)
-            if (ended := end(problem, best, target(number), moves, stop)) is not None or cooling is None:
+            if (ended := end(problem, best, target(number), moves, stop)) is not None:
                 break
-            runs = runs_of(number, problem, origins, best, kept is not None, left(moves, stop))
-            found = crew.round([job(problem, run, cooling, seed, stop) for run in runs], best.objective)
+            runs = runs_of(number, problem, ready, best, kept is not None, left(moves, stop))
+            if not runs:
+                break
+            found = crew.round([job(problem, run, ready, seed, stop) for run in runs], best.objective)
             best = best_of(problem, best, runs, found)
             moves += sum(what.moves for what in found if what is not None)
             number += 1
@@ -157,17 +193,8 @@ def prepared(
     stop: Stop,
     known: str = KEPT,
     others: Sequence[Contents] = (),
-) -> tuple[tuple[Contents, ...], Best, Cooling | None]:
-    """What comes before the first round.
-
-    Returns
-    -------
-    origins : what runs scramble, in turn: the start, connected where that is in reach, and the others
-        that are connected; of all these those that have a legal move
-    best : the best of them and the kept plan
-    cooling : the temperatures of all runs; None where nothing can be searched, since no connected plan or
-        no legal move was found
-    """
+) -> tuple[Prepared, Best]:
+    """What comes before the first round: what runs start from, and the best plan that is there already."""
     origin = connected(problem, start, stream(seed, CONNECTING), stop) or kept or start
     best = Best(origin, objective(problem, origin), -1, "first plan")
     if kept is not None and (of_kept := objective(problem, kept)) <= best.objective:
@@ -178,9 +205,14 @@ def prepared(
             best = Best(other, of_other, -1, "first plan")
     plans = [origin, *connected_others] if math.isfinite(objective(problem, origin)) else connected_others
     origins = tuple(plan for plan in plans if movable(problem, plan, stream(seed, MOVING), stop))
-    if not origins:
-        return origins, best, None
-    return origins, best, calibrated(problem, origins[0], stream(seed, CALIBRATING), stop)
+    cooling = calibrated(problem, origins[0], stream(seed, CALIBRATING), stop) if origins else None
+    shore, crossing = None, None
+    if parts_plans(problem.tables):
+        free, random = relaxed(problem), stream(seed, CROSSING_OVER)
+        shore = best.contents if math.isfinite(best.objective) else connected(free, start, random, stop)
+        if shore is not None and movable(free, shore, random, stop):
+            crossing = calibrated(free, shore, random, stop)
+    return Prepared(origins, cooling, shore, crossing), best
 
 
 def end(problem: Problem, best: Best, target: float, moves: int, stop: Stop) -> Ended | None:
@@ -204,15 +236,15 @@ def left(moves: int, stop: Stop) -> float:
 
 
 def runs_of(
-    number: int, problem: Problem, origins: Sequence[Contents], best: Best, kept: bool, moves: float
+    number: int, problem: Problem, ready: Prepared, best: Best, kept: bool, moves: float
 ) -> list[Run]:
-    """The runs of a round.
+    """The runs of a round; none where nothing can be searched.
 
     Parameters
     ----------
     number : of the round
     problem : gives the length of runs, by the plots
-    origins : what runs scramble, in turn
+    ready : what runs start from
     best : the best plan so far, from which some runs start as it is
     kept : whether one does so in the first round already
     moves : moves that may still be scored; the runs share what is left
@@ -220,25 +252,40 @@ def runs_of(
     length = max(SHORTEST, PER_PAIR * problem.tables.n**2) * GROWTH ** min(number, GROWING)
     many = RUNS if moves >= RUNS * SHORTEST else max(1, int(moves // SHORTEST))
     each = math.ceil(min(length, moves / many))
+    runs = []
+    for i, way in zip(range(many), ways(number, ready, kept), strict=False):
+        origin, start = best.contents, best.start if best.run < 0 else str(Way.REHEATING)
+        if way is Way.SCRAMBLING:
+            origin, start = ready.origins[(number + i) % len(ready.origins)], str(way)
+        elif way is Way.CROSSING and ready.shore is not None:
+            origin, start = (ready.shore if number == 0 else best.contents), str(way)
+        runs.append(Run(number * RUNS + i, origin, start, way, each))
+    return runs
+
+
+def ways(number: int, ready: Prepared, kept: bool) -> list[Way]:
+    """What the runs of a round do."""
     reheated = REHEATED if number > 0 else int(kept)
-    known = best.start if best.run < 0 else "best plan of an earlier run"
-    return [
-        Run(number * RUNS + i, best.contents, known, True, each)
-        if i < reheated
-        else Run(number * RUNS + i, origins[(number + i) % len(origins)], "random start", False, each)
-        for i in range(many)
-    ]
+    crossing = CROSSING if ready.crossing is not None else 0
+    if ready.cooling is None:
+        return [Way.CROSSING] * (RUNS if crossing else 0)
+    chosen = [Way.REHEATING] * (reheated - (reheated > 1) * crossing // 2)
+    return [Way.CROSSING] * crossing + chosen + [Way.SCRAMBLING] * (RUNS - crossing - len(chosen))
 
 
-def job(problem: Problem, run: Run, cooling: Cooling, seed: int, stop: Stop) -> Callable[[Report], Found]:
+def job(problem: Problem, run: Run, ready: Prepared, seed: int, stop: Stop) -> Callable[[Report], Found]:
     """The work of a run, for whoever gets to do it."""
 
     def work(report: Report) -> Found:
         random = stream(seed, run.number)
-        if run.gently:
-            return anneal(problem, run.origin, random, run.moves, cooling.gentle, stop, report)
+        if run.way is Way.CROSSING:
+            assert ready.crossing is not None
+            return crossed(problem, run.origin, random, run.moves, ready.crossing, stop, report)
+        assert ready.cooling is not None
+        if run.way is Way.REHEATING:
+            return anneal(problem, run.origin, random, run.moves, ready.cooling.gentle, stop, report)
         start = scrambled(problem, run.origin, random, stop)
-        return anneal(problem, start, random, run.moves, cooling, stop, report)
+        return anneal(problem, start, random, run.moves, ready.cooling, stop, report)
 
     return work
 

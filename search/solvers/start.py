@@ -1,19 +1,27 @@
-"""A first plan that obeys the rules: built greedily, else found, or ruled out, by CP-SAT."""
+"""A first plan that obeys the rules: built greedily, else mended, else found, or ruled out, by CP-SAT."""
 
 from __future__ import annotations
+
+from dataclasses import replace
 
 import numpy as np
 
 from search.foundation.errors import Undecided
+from search.foundation.stopping import Limits as SearchLimits
 from search.foundation.stopping import Stop
+from search.solvers.crossing import mended
 from search.solvers.feasibility import decide
-from search.solvers.filler import least_spare, with_filler
+from search.solvers.filler import emptied, least_spare, with_filler
+from search.solvers.records import Problem
+from search.solvers.streams import stream
 from search.trial.checker import broken_rules
 from search.trial.limits import Limits, cliques
 from search.trial.records import Contents, Trial
 from search.trial.tables import Ints, Tables, contents_of
 
 ATTEMPTS = 12
+MENDING = -5
+"""Random stream of the mending of a first plan."""
 FURTHER, FURTHER_PLOTS = 8, 2_000
 """Further starts that are tried, and the plots beyond which building them takes too long."""
 
@@ -27,6 +35,7 @@ def feasible_start(
     seconds: float,
     effort: float | None = None,
     stop: Stop | None = None,
+    mending: bool = True,
 ) -> tuple[Contents, str]:
     """A plan that obeys every rule, and where it came from.
 
@@ -40,6 +49,8 @@ def feasible_start(
     seed : of the greedy builder and of the solver
     seconds, effort : wall time and deterministic work that the solver may take
     stop : ends the solver from outside
+    mending : whether a plan that breaks rules is mended before the solver is asked: half a second lost where
+        no plan exists
 
     Raises
     ------
@@ -53,11 +64,32 @@ def feasible_start(
             built = _built(trial, full, limits, rng)
             if built is not None:
                 return built, "greedy start"
+        whole = _mended_start(full, limits, rng, seed, stop) if mending else None
+        if whole is not None and not broken_rules(trial, whole := emptied(whole, trial.t)):
+            return whole, "greedy start, mended"
     contents = decide(tables, limits, seed=seed, seconds=seconds, effort=effort, stop=stop)
     broken = broken_rules(trial, contents)
     if broken:  # the model or the solver is at fault, not the trial
         raise Undecided(f"the solver's plan breaks a rule ({broken[0]}), so nothing is known")
     return contents, "start from the rule solver"
+
+
+def _mended_start(
+    tables: Tables, limits: Limits, rng: np.random.Generator, seed: int, stop: Stop | None
+) -> Contents | None:
+    """A plan built without looking at rules about pairs and single blocks, then mended."""
+    free = replace(
+        tables,
+        low=np.zeros_like(tables.low),
+        high=np.broadcast_to(tables.high.max(axis=0), tables.high.shape),
+        apart=np.zeros_like(tables.apart),
+    )
+    counts = build(free, limits, rng)
+    if counts is None:
+        return None
+    # what is mended is a matter of rules alone, so no aim is needed
+    problem, stop = Problem(tables, None), stop or Stop(SearchLimits())
+    return mended(problem, contents_of(counts), stream(seed, MENDING), stop)
 
 
 def further_starts(

@@ -125,6 +125,39 @@ class Walk:
                 break
         return climbed
 
+    def cross(self, hot: float, cold: float, price: float, breaches: int, moves: int) -> None:
+        """Anneal through broken rules, as `cool` does within them.
+
+        Parameters
+        ----------
+        hot, cold : temperatures, in units of the objective
+        price : of each breach, likewise
+        breaches : how many there are to begin with
+        moves : moves to score
+        """
+        factor = (cold / hot) ** (1 / moves) if cold > 0 and moves > 0 else 1.0
+        most = max(1, CALL_ENTRIES // len(self.board.metrics.inverse) ** 2)
+        temperature, left, draws = hot, moves, DRAWS_PER_MOVE * moves
+        while left > 0 and draws > 0:
+            scored, drawn, accepted, _, breaches = kernel().cross(
+                self._plain,
+                self.random,
+                temperature,
+                factor,
+                price,
+                breaches,
+                left,
+                min(draws, CALL_DRAWS),
+                min(most, REFRESH_AFTER - self._stale),
+            )
+            temperature *= factor**scored
+            left -= scored
+            draws -= drawn
+            self._scored(scored)
+            self._made(accepted)
+            if self.stop.due:
+                break
+
     def descend(self, most_moves: int) -> None:
         """Make the best of all moves until none improves, or so many moves are scored.
 

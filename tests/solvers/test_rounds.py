@@ -17,11 +17,11 @@ from search.efficiency.aims import weights
 from search.foundation.errors import Impossible
 from search.foundation.stopping import Ended, Limits, Stop
 from search.solvers import crew
-from search.solvers.anneal import Found
+from search.solvers.anneal import Cooling, Found
 from search.solvers.board import objective
 from search.solvers.filler import emptied
 from search.solvers.records import Outcome, Problem
-from search.solvers.rounds import RUNS, Best, best_of, runs_of, search
+from search.solvers.rounds import RUNS, Best, Prepared, Way, best_of, runs_of, search
 from search.trial.checker import broken_rules
 from search.trial.records import Contents, Trial
 from search.trial.tables import tables
@@ -262,25 +262,44 @@ def test_the_watcher_is_told_of_progress() -> None:
     assert moves[-1] == outcome.moves
 
 
+def ready(start: Contents, *, crossing: bool = False) -> Prepared:
+    """Runs start from one plan, through broken rules too where that is wanted."""
+    cooling = Cooling(1.0, 0.1)
+    return Prepared((start,), cooling, start if crossing else None, cooling if crossing else None)
+
+
 def test_runs_of_a_round_do_not_depend_on_workers_or_clock() -> None:
     """Six runs, growing slowly; four of them gentle once there is a plan; fewer where little is left."""
     problem, start = plain(12, 15, 4)
     best = Best(start, 0.5, 3, "random start")
-    first, second = (runs_of(number, problem, [start], best, False, np.inf) for number in (0, 1))
+    first, second = (runs_of(number, problem, ready(start), best, False, np.inf) for number in (0, 1))
     assert [run.number for run in [*first, *second]] == list(range(12))
-    assert [run.gently for run in first] == [False] * 6
-    assert [run.gently for run in second] == [True] * 4 + [False] * 2
+    assert [run.way for run in first] == [Way.SCRAMBLING] * 6
+    assert [run.way for run in second] == [Way.REHEATING] * 4 + [Way.SCRAMBLING] * 2
     assert first[0].moves < second[0].moves < 2 * first[0].moves
-    assert runs_of(0, problem, [start], best, True, np.inf)[0].gently
-    assert [run.moves for run in runs_of(5, problem, [start], best, False, 50_000)] == [25_000, 25_000]
-    assert [run.moves for run in runs_of(5, problem, [start], best, False, 700)] == [700]
+    assert runs_of(0, problem, ready(start), best, True, np.inf)[0].way is Way.REHEATING
+    assert [run.moves for run in runs_of(5, problem, ready(start), best, False, 50_000)] == [25_000, 25_000]
+    assert [run.moves for run in runs_of(5, problem, ready(start), best, False, 700)] == [700]
+
+
+def test_where_rules_may_part_the_plans_some_runs_go_through_broken_rules() -> None:
+    """They do in every round, all of them where nothing else can be done; and none where nothing can."""
+    problem, start = plain(12, 15, 4)
+    best = Best(start, 0.5, 3, "random start")
+    for number in (0, 1):
+        runs = runs_of(number, problem, ready(start, crossing=True), best, False, np.inf)
+        assert {run.way for run in runs} >= {Way.CROSSING, Way.SCRAMBLING}
+    alone = replace(ready(start, crossing=True), origins=(), cooling=None)
+    assert {run.way for run in runs_of(1, problem, alone, best, False, np.inf)} == {Way.CROSSING}
+    nothing = replace(alone, shore=None, crossing=None)
+    assert runs_of(1, problem, nothing, best, False, np.inf) == []
 
 
 def test_of_equal_plans_the_lowest_run_wins() -> None:
     """Rounding does not decide between runs, and the plan before the round stays where none is better."""
     problem, start = plain(12, 15, 4)
     before = Best(start, 0.6, 2, "random start")
-    runs = runs_of(1, problem, [start], before, False, np.inf)[:3]
+    runs = runs_of(1, problem, ready(start), before, False, np.inf)[:3]
     results = [Found(start, 0.5, 1), Found(start, 0.5 - 1e-15, 1), None]
     assert best_of(problem, before, runs, results).run == runs[0].number
     assert best_of(problem, replace(before, objective=0.5), runs, results).run == 2

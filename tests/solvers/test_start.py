@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+import time
 from dataclasses import replace
 
+import pytest
 from hypothesis import assume, given, settings
 
 from search.foundation.errors import Impossible
+from search.solvers.compiled import warm_up
 from search.solvers.feasibility import decide
 from search.solvers.start import feasible_start
 from search.trial.checker import broken_rules
@@ -15,6 +18,7 @@ from search.trial.reading import trial_from_document
 from search.trial.records import Trial
 from search.trial.tables import tables
 from tests.drawn import all_plans, small_trials
+from tests.ruled import hundred
 
 
 @settings(max_examples=150, deadline=None)
@@ -54,6 +58,20 @@ def test_a_hundred_treatments_with_rules_start_at_once() -> None:
     implied = limits(trial)
     contents, where_from = feasible_start(trial, tables(trial), implied, seed=1, seconds=20)
     assert where_from == "greedy start"
+    assert broken_rules(trial, contents) == ()
+
+
+@pytest.mark.parametrize("seed", range(20))
+def test_a_hundred_treatments_with_fifty_rules_start_within_two_seconds(seed: int) -> None:
+    """Where the builder gets stuck its plan is mended: seconds of the processor, kernels loaded."""
+    trial = hundred(seed)
+    implied = limits(trial)
+    rules = replace(tables(trial), least=implied.least, most=implied.most)
+    warm_up()
+    began = time.thread_time()
+    contents, where_from = feasible_start(trial, rules, implied, seed=1, seconds=20)
+    assert time.thread_time() - began < 2
+    assert where_from in ("greedy start", "greedy start, mended")
     assert broken_rules(trial, contents) == ()
 
 

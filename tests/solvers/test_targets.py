@@ -12,6 +12,7 @@ from tests.solvers.problems import plain
 from tests.solvers.test_rounds import found, variance_of
 
 BALANCED = [(7, 7, 3), (9, 12, 3), (13, 13, 4), (15, 15, 7), (8, 14, 4)]
+LARGER = [(31, 31, 6), (25, 30, 5), (21, 30, 7)]
 
 
 def balanced_efficiency(t: int, b: int, k: int) -> float:
@@ -25,8 +26,9 @@ def balanced_efficiency(t: int, b: int, k: int) -> float:
     ("t", "b", "k", "efficiency", "seconds"),
     [
         *((t, b, k, balanced_efficiency(t, b, k), 2.0) for t, b, k in BALANCED),
+        *((t, b, k, balanced_efficiency(t, b, k), 1.0) for t, b, k in LARGER),
         (12, 15, 4, 0.810160, 2.0),
-        (30, 30, 5, 0.81530, 10.0),
+        (30, 30, 5, 0.81534, 10.0),
     ],
 )
 def test_the_target_is_reached_in_time(t: int, b: int, k: int, efficiency: float, seconds: float) -> None:
