@@ -1082,9 +1082,9 @@ def _single(beds, planted, metrics, t, u, v, a, c):
 def cross(board, random, temperature, cooling, price, breaches, moves, tries, most_accepted):
     """Simulated annealing that may break rules, at a price for each breach.
 
-    Moves are drawn one by one, under rules other than block sizes and replicates. `breaches` is how many there
-    are to begin with. Returns the moves scored, drawn, accepted, accepted though they raise the objective, and
-    the breaches left.
+    Moves are drawn one by one, and may break rules other than block sizes and replicates. `breaches` is how
+    many there are to begin with. Returns the moves scored, drawn, accepted, accepted though they raise the
+    objective, and the breaches left.
     """
     beds, admitted, planting, metrics = _named(board)
     planted, t = planting.planted, _treatments(planting)
