@@ -11,7 +11,7 @@ from search.efficiency.records import Bound
 from search.foundation.errors import BadInput
 from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.conductor import find
-from search.runs.kept import SAME_SCORE, IssuedPlan, KeptBound, KeptPlan, Run, problem_of
+from search.runs.kept import SAME_SCORE, IssuedPlan, Kept, KeptBound, KeptPlan, Run, problem_of
 from search.runs.plan import Plan
 from search.runs.shipped import shipped
 from search.runs.store import DEFAULT_PATH, Store
