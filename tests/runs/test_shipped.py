@@ -57,7 +57,9 @@ def test_a_shipped_problem_is_answered_at_once(tmp_path: Path) -> None:
             begun = time.perf_counter()
             found = recall(store, trial, canonical(trial))
             best = min(best, time.perf_counter() - begun)
-    assert found.contents is not None and found.plan is not None and found.shipped is not None
+    assert found.contents is not None
+    assert found.plan is not None
+    assert found.shipped is not None
     assert 0.999 < found.plan.score / found.shipped.value <= 1 + 1e-9
     assert best < 0.2
 
@@ -68,7 +70,9 @@ def test_a_search_is_never_worse_than_what_is_shipped(tmp_path: Path) -> None:
     with Keeping(trial, tmp_path / "new.sqlite") as keeping:
         plan = keeping.plan(limits=Limits(moves=1000), seed=1, workers=1)
         ready = recall(keeping.store, trial, keeping.numbering)
-    assert ready.plan is not None and ready.shipped is not None and plan.bound is not None
+    assert ready.plan is not None
+    assert ready.shipped is not None
+    assert plan.bound is not None
     assert plan.score.aim >= ready.plan.score - 1e-12
     assert plan.bound.exact <= ready.shipped.exact
 
@@ -83,7 +87,9 @@ def test_writing_and_reading(tmp_path: Path) -> None:
     assert [ship(results, file) for file in files] == [1, 1]
     assert files[0].read_bytes() == files[1].read_bytes()
     found = shipped(keeping.numbering.digest, "all pairs", files[0])
-    assert found is not None and found.kept == results[0].kept and found.runs == ()
+    assert found is not None
+    assert found.kept == results[0].kept
+    assert found.runs == ()
 
 
 @pytest.mark.parametrize("damage", [b"", b"no archive", None])
