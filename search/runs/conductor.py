@@ -52,6 +52,7 @@ def find(
     workers: int,
     digest: str = "",
     kept: Contents | None = None,
+    known: Bound | None = None,
     observer: Observer | None = None,
     stop: Stop | None = None,
 ) -> Plan:
@@ -65,6 +66,7 @@ def find(
     workers : threads
     digest : of the problem where it is known already, recorded in the plan
     kept : the best plan of earlier searches: the result is never worse
+    known : a bound that was proved before, and may be claimed again
     observer : is told of the first plan, of bounds and of progress
     stop : ends the search from outside
 
@@ -87,7 +89,9 @@ def find(
         stop=stop,
     )
     observer.first_plan(score(trial, first).aim, where_from)
-    bounds = _Bounds(planned, implied, observer, stop)
+    bounds = _Bounds(planned, implied, observer, stop, known)
+    if known is not None:
+        observer.bound(known.value, known.argument)
     best: Start | None = None
     try:
         best = _best_known(planned, kept, observer, stop)

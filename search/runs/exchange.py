@@ -132,6 +132,16 @@ def shown_from(content: Mapping[str, Any], trial: Trial) -> Shown:
     sizes = tuple(block.plots for block in trial.blocks)
     name = str(content["trial"])
     problem = Problem(content["digest"], content["text"], trial.t, trial.b, trial.n, sizes, name)
+    return shown_of(content, problem)
+
+
+def shown_of(content: Mapping[str, Any], problem: Problem) -> Shown:
+    """The record of a document about a problem.
+
+    Raises
+    ------
+    BadInput : a part of it is missing, or has not its shape
+    """
     try:
         plan, bound = content.get("plan"), content.get("bound")
         kept = Kept(

@@ -12,8 +12,9 @@ from search.efficiency.records import Bound
 from search.foundation.errors import BadInput
 from search.foundation.stopping import Ended, Limits, Observer, Stop
 from search.runs.conductor import find
-from search.runs.kept import IssuedPlan, KeptBound, KeptPlan, Run, problem_of
+from search.runs.kept import IssuedPlan, Kept, KeptBound, KeptPlan, Run, problem_of
 from search.runs.plan import WRONG, Plan
+from search.runs.shipped import shipped
 from search.runs.store import DEFAULT_PATH, Store
 from search.trial.canonical import Canonical, canonical
 from search.trial.carrying import from_canonical, to_canonical
@@ -26,17 +27,26 @@ FALSE_SCORE = 1e-6
 
 @dataclass(frozen=True, slots=True)
 class Recalled:
-    """What is kept for a trial, in its own numbers; `plan` tells how the contents were found."""
+    """What is kept for a trial, in its own numbers.
+
+    Parameters
+    ----------
+    contents : the best plan
+    plan : how it was found
+    bound : the tightest bound, for showing: its certificate was not derived again
+    shipped : a bound that came with the program, which may be claimed as it stands
+    """
 
     contents: Contents | None = None
     plan: KeptPlan | None = None
     bound: Bound | None = None
+    shipped: Bound | None = None
 
 
 def recall(store: Store, trial: Trial, numbering: Canonical) -> Recalled:
-    """The best plan and bound kept for a trial; what proves to be false is dropped from the store.
+    """The best plan and bound for a trial, of those in the store and those that came with the program.
 
-    The bound is for showing: its certificate was not derived again here.
+    What proves to be false is dropped from the store.
 
     Parameters
     ----------
@@ -44,9 +54,13 @@ def recall(store: Store, trial: Trial, numbering: Canonical) -> Recalled:
     trial, numbering : the trial and its canonical numbering
     """
     aim = trial.aim.kind.value
-    kept = store.best(numbering.digest, aim)
-    if kept is None:
-        return Recalled()
+    own, ready = store.best(numbering.digest, aim), shipped(numbering.digest, aim)
+    found = Recalled() if own is None else _believed(store, trial, numbering, own)
+    return found if ready is None else _with_shipped(found, trial, numbering, ready.kept)
+
+
+def _believed(store: Store, trial: Trial, numbering: Canonical, kept: Kept) -> Recalled:
+    aim = trial.aim.kind.value
     contents = plan = bound = None
     if kept.plan is not None:
         plan, contents = kept.plan, _carried(numbering, kept.plan.contents)
@@ -59,6 +73,18 @@ def recall(store: Store, trial: Trial, numbering: Canonical) -> Recalled:
             store.forget_bound(numbering.digest, aim)
             bound = None
     return Recalled(contents, plan, bound)
+
+
+def _with_shipped(found: Recalled, trial: Trial, numbering: Canonical, ready: Kept) -> Recalled:
+    contents, plan, bound = found.contents, found.plan, found.bound
+    if ready.plan is not None and ready.plan.beats(plan, trial.aim.kind):
+        carried = _carried(numbering, ready.plan.contents)
+        if carried is not None and _is_true(trial, carried, ready.plan):
+            contents, plan = carried, ready.plan
+    given = None if ready.bound is None else _bound(trial, numbering, ready.bound)
+    if given is not None and given.beats(bound):
+        bound = given
+    return Recalled(contents, plan, bound, given)
 
 
 def _carried(numbering: Canonical, contents: Contents) -> Contents | None:
@@ -188,6 +214,7 @@ class Keeping:
             workers=workers,
             digest=self.numbering.digest,
             kept=kept.contents,
+            known=kept.shipped,
             observer=observer,
             stop=stop,
         )

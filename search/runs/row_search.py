@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from search.efficiency.records import Bound
 from search.foundation.errors import Clash, Impossible, Undecided
 from search.foundation.stopping import Ended, Limits, Stop
 from search.runs.conductor import find
@@ -28,6 +29,7 @@ class Search:
     trial, digest : what to plan
     limits : how far to search
     kept : the best plan known, which the search starts from
+    known : a bound that came with the program
     """
 
     number: int
@@ -35,6 +37,7 @@ class Search:
     digest: str
     limits: Limits
     kept: Contents | None
+    known: Bound | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,6 +68,7 @@ def search_row(asked: Search, stop: Stop) -> Found:
             workers=1,
             digest=asked.digest,
             kept=asked.kept,
+            known=asked.known,
             stop=stop,
         )
     except Impossible as error:

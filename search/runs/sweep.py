@@ -272,7 +272,7 @@ class _Sweeping:
                 continue
             known = recall(self.store, trial, numbering)
             start = None if self.fresh else known.contents
-            search = Search(row.number, trial, numbering.digest, limits, start)
+            search = Search(row.number, trial, numbering.digest, limits, start, known.shipped)
             tasks[key] = _Task([row], search, numbering, known, verdict_key, seconds_of(trial, limits))
         return sorted(tasks.values(), key=lambda task: task.seconds)
 

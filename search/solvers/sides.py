@@ -55,6 +55,7 @@ def other_side(problem: Problem) -> Side | None:
     rules = replace(
         tables,
         sizes=plots,
+        fewest=plots,
         low=np.ascontiguousarray(tables.low.T),
         high=np.ascontiguousarray(tables.high.T),
         least=tables.sizes,

@@ -3,7 +3,6 @@
     Text, Lines, Whole, Number, Ratio, Flag, Choice   a scalar (`search.trial.scalars`)
     Listing, Table, Fields                       a list, names with values, fixed keys
     Either                                       one kind for each shape of node
-    NotYet                                       a key of the design that this version does not do
 
 A kind never raises for what a user typed: it reports a `Fault` and returns None, so that every mistake
 of a file is told at once. The same kinds give the JSON schema, so that reader and schema cannot part.
@@ -31,7 +30,6 @@ __all__ = [
     "Kind",
     "Lines",
     "Listing",
-    "NotYet",
     "Number",
     "Ratio",
     "Report",
@@ -190,14 +188,13 @@ class Fields:
             report.add(node, first, f"neither {' nor '.join(self.one_of)}", f"{' or '.join(self.one_of)}")
 
     def schema(self) -> Schema:
-        known = {name: kind for name, kind in self.kinds.items() if not isinstance(kind, NotYet)}
         schema: Schema = {
             "type": "object",
-            "properties": {name: kind.schema() for name, kind in known.items()},
+            "properties": {name: kind.schema() for name, kind in self.kinds.items()},
             "required": list(self.required),
             "additionalProperties": False,
         }
-        some = [name for name in self.one_of if name in known]
+        some = [name for name in self.one_of if name in self.kinds]
         return schema | {"anyOf": [{"required": [name]} for name in some]} if some else schema
 
 
@@ -221,26 +218,6 @@ class Either:
     def schema(self) -> Schema:
         kinds: Iterable[Kind | None] = (self.scalar, self.sequence, self.mapping)
         return {"anyOf": [kind.schema() for kind in kinds if kind is not None]}
-
-
-@dataclass(frozen=True, slots=True)
-class NotYet:
-    """A part of the design that this version refuses by name, so that no rule is silently dropped."""
-
-    what: str
-
-    def read(self, node: Node, key: str, report: Report) -> None:
-        report.add(
-            node,
-            key,
-            self.what,
-            "what this version can plan",
-            "a plan that ignored it would look as if it kept it",
-            "not yet in this version: leave it out",
-        )
-
-    def schema(self) -> Schema:
-        return {"not": {}}
 
 
 def _all_scalars(node: Sequence) -> bool:
