@@ -5,12 +5,10 @@ from __future__ import annotations
 import json
 from fractions import Fraction
 from pathlib import Path
-from typing import Any
 
 import pytest
 from hypothesis import given, settings
 
-from search.foundation.errors import FaultyTrial
 from search.trial.nodes import parse_nodes
 from search.trial.reading import read_trial, trial_from_document, trial_from_nodes
 from search.trial.records import AimKind, Trial
@@ -70,15 +68,3 @@ def test_contrasts_are_exact() -> None:
     assert trial.aim.kind is AimKind.CONTRASTS
     assert contrast.weight == 2
     assert contrast.of == ((0, Fraction(1)), (1, Fraction(-1, 3)), (2, Fraction(-2, 3)))
-
-
-NOT_YET: dict[str, dict[str, Any]] = {
-    "blocks_random": {"blocks_random": 2},
-}
-
-
-@pytest.mark.parametrize("case", NOT_YET)
-def test_what_is_not_done_yet_is_refused_by_name(case: str) -> None:
-    """A key of the design that this version cannot keep is refused, never ignored."""
-    with pytest.raises(FaultyTrial, match="not yet"):
-        tiny_trial(**NOT_YET[case])
