@@ -124,7 +124,7 @@ def exact_weights(trial: Trial) -> tuple[tuple[Fraction, ...], ...]:
 
     def between(i: int, j: int) -> Fraction:
         match trial.aim.kind:
-            case AimKind.ALL_PAIRS:
+            case AimKind.ALL_PAIRS | AimKind.EVEN_MEETINGS:
                 return Fraction(-2, t * (t - 1))
             case AimKind.AGAINST_CONTROL:
                 edges = (i in trial.controls) + (j in trial.controls)

@@ -136,6 +136,7 @@ def _searched(
     seed: int,
     workers: int,
 ) -> Outcome:
+    from search.solvers.rounds import none_better
     from search.solvers.sides import search_smaller_side
 
     stop.restart()
@@ -157,7 +158,7 @@ def _searched(
         ),
         known="" if best is None else best.where_from,
         others=[filled(rules, other) for other in further_starts(trial, full, implied, seed=seed)],
-        prover=bounds.prove,
+        prover=bounds.prove if rules.exact else none_better,
     )
     outcome = replace(outcome, contents=emptied(outcome.contents, trial.t))
     if best is not None and beats(_merit(trial, best.contents), _merit(trial, outcome.contents)):
