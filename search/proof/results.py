@@ -110,7 +110,7 @@ def _planted(trial: Trial, plan: Part) -> Fraction:
         truth(trial, information(contents, trial.t, trial.blocks_random)).aim,
     )
     if not real.agrees(claimed, RELATIVE):
-        raise Refuted(f"{plan.at('efficiency')} is claimed to be {told(claimed)}, but is {told(real.low)}")
+        raise Refuted(f"{plan.at('score')} is claimed to be {told(claimed)}, but is {told(real.low)}")
     return claimed
 
 

@@ -25,6 +25,7 @@ from search.trial.records import (
     AimKind,
     Block,
     Contrast,
+    InSoil,
     Meeting,
     Replicate,
     Rules,
@@ -190,7 +191,17 @@ def _rules(pairs: _Pairs, cells: _Cells, fewest: list[int], replicates: tuple[Re
         replicates=replicates,
         per_replicate=tuple((i, int(cells.share[i, inside[0]])) for i in range(t) if inside),
         twice_in_block=twice,
+        planted=tuple(_in_soil(np.where(held & (cells.low > 1), cells.low, 0))),
     )
+
+
+def _in_soil(copies: Ints) -> Iterator[InSoil]:
+    """Plots that hold so many of a treatment in a block already: no other rule asks for more than one."""
+    number = 0
+    for i, j in _where(copies):
+        for _ in range(int(copies[i, j])):
+            number += 1
+            yield InSoil(number, i, j)
 
 
 def _where(table: Any) -> Iterator[tuple[int, int]]:
