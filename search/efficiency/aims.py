@@ -117,14 +117,14 @@ def exact_weights(trial: Trial) -> tuple[tuple[Fraction, ...], ...]:
 
     Raises
     ------
-    ValueError : the aim is `overall`, which has no W
+    ValueError : the aim has no W
     """
     t, diagonal = trial.t, exact_diagonal(trial)
     shares, coefficients = contrast_shares(trial), contrast_rows(trial)
 
     def between(i: int, j: int) -> Fraction:
         match trial.aim.kind:
-            case AimKind.ALL_PAIRS:
+            case AimKind.ALL_PAIRS | AimKind.EVEN_MEETINGS:
                 return Fraction(-2, t * (t - 1))
             case AimKind.AGAINST_CONTROL:
                 edges = (i in trial.controls) + (j in trial.controls)
