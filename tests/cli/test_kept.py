@@ -67,7 +67,7 @@ def test_refused_lines_are_told_and_the_exit_status_is_2(
     assert document["refused"][0]["where"] == "line 3"
     status, out, err = said(capsys, "kept", "import", lines, "--store", tmp_path / "b.sqlite")
     assert (status, "4 results" in out) == (2, True)
-    assert f"{lines}, line 3: plan.efficiency is claimed to be" in err
+    assert f"{lines}, line 3: plan.efficiency is not the score" in err
 
 
 def test_pruning_asks_first(store: Path, capsys: pytest.CaptureFixture[str]) -> None:

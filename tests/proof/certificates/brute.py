@@ -160,7 +160,8 @@ def _any_tangent(case: Case, draw: random.Random, price: Callable[..., str]) -> 
         "entries": [[entries[max(p, q)][min(p, q)] for q in size] for p in size],
         "more": [f"{draw.randint(10, 120)}/100" for _ in size],
         "plots": [
-            {"group": g, "prices": [price() for _ in size]} for g in sorted({int(g) for g in case.rules.group})
+            {"group": g, "prices": [price() for _ in size]}
+            for g in sorted({int(g) for g in case.rules.group})
         ],
         "sums": [
             {"treatments": list(limit.treatments), "price": price(positive=True)}
