@@ -1,4 +1,4 @@
-"""What is right alone is right together: filler, random blocks, aims, the store and what is proved of them."""
+"""What is right alone is right together: filler, random blocks, aims, the store, and proofs of them."""
 
 from __future__ import annotations
 
