@@ -93,6 +93,7 @@ def _trial(document: dict[str, Any], kind: AimKind, name: str) -> Trial:
     if min(sizes) < 1:
         raise ValueError(sizes)
     emptier = [mark[3:] == [EMPTIER] for mark, span in zip(grounds, blocks, strict=True) for _ in span]
+    fewest = [1 if may else size for may, size in zip(emptier, sizes, strict=True)]
     cells = _cells(document["cells"], [mark[1] for mark in grounds], treatments, blocks)
     return Trial(
         name=name,
@@ -102,7 +103,7 @@ def _trial(document: dict[str, Any], kind: AimKind, name: str) -> Trial:
             for i in span
         ),
         blocks=tuple(Block(f"block {j + 1}", size, emptier[j]) for j, size in enumerate(sizes)),
-        rules=_rules(pairs, cells, sizes, _replicates(grounds, blocks)),
+        rules=_rules(pairs, cells, fewest, _replicates(grounds, blocks)),
         aim=Aim(kind, _contrasts(document["contrasts"], treatments)),
         blocks_random=_ratio(document["blocks_random"]) if "blocks_random" in document else None,
     )
@@ -170,12 +171,12 @@ def _replicates(grounds: list[Any], spans: Spans) -> tuple[Replicate, ...]:
     return tuple(Replicate(f"replicate {g + 1}", tuple(held[g])) for g in range(len(held)))
 
 
-def _rules(pairs: _Pairs, cells: _Cells, sizes: list[int], replicates: tuple[Replicate, ...]) -> Rules:
+def _rules(pairs: _Pairs, cells: _Cells, fewest: list[int], replicates: tuple[Replicate, ...]) -> Rules:
     t, b = cells.low.shape
     inside = [replicate.blocks[0] for replicate in replicates]
     twice = bool((cells.high > 1).any())
     # What a block must hold of everything, only because it is so large.
-    forced = np.array(sizes, dtype=np.int64) // t if twice else np.zeros(b, dtype=np.int64)
+    forced = np.array(fewest, dtype=np.int64) // t if twice else np.zeros(b, dtype=np.int64)
     kept_out = cells.high == 0
     held = (cells.low > 0) & ((cells.low != forced) | kept_out)
     free = (cells.low == 0) & ~kept_out & (forced > 0)

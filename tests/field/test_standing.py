@@ -13,7 +13,7 @@ from search.field.standing import standing_in_words
 def words(standing: str, gap: float | None, connected: bool = True, plots: int = 47) -> str:
     """The sentences for a plan with the figures given."""
     score = {"aim": 0.812, "average_pair_variance": 0.5 if connected else None}
-    document: dict[str, Any] = {"score": score, "gap_percent": gap, "standing": standing}
+    document: dict[str, Any] = {"trial": {}, "score": score, "gap_percent": gap, "standing": standing}
     return " ".join(standing_in_words(document, plots))
 
 
@@ -38,7 +38,8 @@ def test_a_proof_by_exhaustion_is_called_that() -> None:
     """With its counts, and how to repeat it; raw values that are none are not told."""
     counts = {"graphs": 4207, "better": 3}
     document: dict[str, Any] = {
-        "score": {"aim": 0.5, "connected": True},
+        "trial": {},
+        "score": {"aim": 0.5, "average_pair_variance": 0.7},
         "gap_percent": 0.0,
         "standing": "proven optimal",
         "bound": {"certificate": {"kind": "exhaustion", "multipliers": counts}},

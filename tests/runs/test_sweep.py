@@ -71,7 +71,7 @@ class Searches(list[Trial]):
 def searches(monkeypatch: pytest.MonkeyPatch) -> Searches:
     found = Searches()
     monkeypatch.setattr(row_search, "find", found)
-    monkeypatch.setattr(sweeping, "wait_for_kernels", lambda note: None)
+    monkeypatch.setattr(sweeping, "wait_for_kernels", lambda note, goals: None)
     return found
 
 

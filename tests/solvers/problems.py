@@ -9,10 +9,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from search.foundation.stopping import Limits, Stop
+from search.solvers import records
 from search.solvers.board import Board
 from search.solvers.filler import filled, spare_of, with_filler
 from search.solvers.records import Problem
-from search.solvers.records import problem_of as problem_of_trial
 from search.solvers.start import feasible_start
 from search.trial.limits import limits
 from search.trial.records import Contents, Trial
@@ -66,7 +66,7 @@ def plain(t: int, b: int, k: int) -> tuple[Problem, Contents]:
 def problem_of(trial: Trial) -> Problem:
     """The search's problem of a trial of exact blocks, with the replication that its rules imply."""
     implied = limits(trial)
-    return problem_of_trial(trial, replace(tables(trial), least=implied.least, most=implied.most))
+    return records.problem_of(trial, replace(tables(trial), least=implied.least, most=implied.most))
 
 
 def filled_problem(trial: Trial) -> tuple[Problem, Contents]:
@@ -75,7 +75,7 @@ def filled_problem(trial: Trial) -> tuple[Problem, Contents]:
     rules = replace(tables(trial), least=implied.least, most=implied.most)
     start, _ = feasible_start(trial, rules, implied, seed=1, seconds=20)
     spare = spare_of(rules, start)
-    return problem_of_trial(trial, with_filler(rules, spare), sum(spare)), filled(rules, start)
+    return records.problem_of(trial, with_filler(rules, spare), sum(spare)), filled(rules, start)
 
 
 def moves_from(board: Board) -> Iterator[tuple[int, int, Contents]]:

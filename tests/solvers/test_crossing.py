@@ -67,8 +67,9 @@ def test_breaches_counted_move_by_move_are_those_counted_from_scratch(seed: int)
         *_, left = kernel().cross(walk.board.plain, walk.random, hot, 1.0, 0.1, left, 300, 3_000, 300)
         assert left == breaches(problem.tables, walk.contents)
         if np.isfinite(of_plan := objective(problem, walk.contents)):
-            kept = walk.board.distances.variance[: problem.tables.t, : problem.tables.t]
-            assert kept.sum() / (problem.tables.t * (problem.tables.t - 1)) == pytest.approx(of_plan)
+            assert problem.weights is not None
+            t = problem.tables.t
+            assert (problem.weights * walk.board.metrics.inverse[:t, :t]).sum() == pytest.approx(of_plan)
 
 
 @pytest.mark.parametrize("seed", range(24))

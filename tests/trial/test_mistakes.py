@@ -180,7 +180,7 @@ MISTAKES = {
         "-1",
         "0",
     ),
-    "billion_treatments": Mistake(3, ("a whole number from 2 to 2,000",), "1000000000", "4"),
+    "billion_treatments": Mistake(3, ("a whole number from 2 to 5,000",), "1000000000", "4"),
     "one_treatment": Mistake(3, ("a whole number from 2",), "treatments: 1", "treatments: 2"),
     "billion_plots": Mistake(
         4,
@@ -192,7 +192,7 @@ MISTAKES = {
         "plots: 20",
     ),
     "too_many_cells": Mistake(
-        3, ("1,500 treatments in 1,400 blocks",), "treatments: 1500", "treatments: 1400"
+        3, ("1,800 treatments in 1,400 blocks",), "treatments: 1800", "treatments: 1700"
     ),
     "treatment_twice": Mistake(6, ('"Arlen" beside "Arlen"',), "Bracken\n  - Arlen", "Bracken\n  - Clover"),
     "treatment_key_twice": Mistake(
