@@ -19,7 +19,6 @@ from search.runs.kernels import wait_for_kernels
 from search.runs.plan import PROVEN_PERCENT, Plan
 from search.solvers.filler import emptied, filled, spare_of, with_filler
 from search.solvers.records import PROVER, Outcome, goal_of, problem_of
-from search.solvers.rounds import none_better
 from search.solvers.start import feasible_start, further_starts
 from search.trial.canonical import canonical
 from search.trial.checker import broken_rules
@@ -137,6 +136,7 @@ def _searched(
     seed: int,
     workers: int,
 ) -> Outcome:
+    from search.solvers.rounds import none_better
     from search.solvers.sides import search_smaller_side
 
     stop.restart()
@@ -158,7 +158,7 @@ def _searched(
         ),
         known="" if best is None else best.where_from,
         others=[filled(rules, other) for other in further_starts(trial, full, implied, seed=seed)],
-        prover=bounds.prove if rules.exact else none_better,  # filler is none of its treatments
+        prover=bounds.prove if rules.exact else none_better,
     )
     outcome = replace(outcome, contents=emptied(outcome.contents, trial.t))
     if best is not None and beats(_merit(trial, best.contents), _merit(trial, outcome.contents)):
