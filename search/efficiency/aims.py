@@ -117,7 +117,7 @@ def exact_weights(trial: Trial) -> tuple[tuple[Fraction, ...], ...]:
 
     Raises
     ------
-    ValueError : the aim is `overall`, which has no W
+    ValueError : the aim has no W
     """
     t, diagonal = trial.t, exact_diagonal(trial)
     shares, coefficients = contrast_shares(trial), contrast_rows(trial)

@@ -74,7 +74,7 @@ def greatest_information(trial: Trial, rules: Tables, planted: int) -> Fraction 
     repeats = least_repeats(rules) if rules.exact else tuple(rules.sizes.tolist())
     if repeats is None:
         return None
-    trace, ratio = Fraction(rules.n), trial.blocks_random
+    trace, ratio = Fraction(int(rules.sizes.sum())), trial.blocks_random
     for q, k in zip(repeats, rules.sizes.tolist(), strict=True):
         trace -= (q * ratio + Fraction(k, rules.t)) / (1 + ratio * k)
     return trace
@@ -94,7 +94,8 @@ def is_balanced(trial: Trial, contents: Contents) -> bool:
     exact = settled_trial(trial)
     if sum(sizes) - lost != greatest_trace(tables(exact)):
         return False
-    if trial.blocks_random is not None and exact.may_be_emptier:
+    full = [block.plots for block in exact.blocks]
+    if trial.blocks_random is not None and exact.may_be_emptier and not sizes == squares == full:
         return False  # the trace is not known to be the greatest
     wide, shares = _scaled_shares(counts, trial.blocks_random)
     one = (wide[0] * shares) @ wide.T

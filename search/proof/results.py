@@ -66,7 +66,7 @@ def _proved(result: Part) -> Trial:
         except Refuted as refuted:
             raise Refuted(f"bound: {refuted}") from refuted
     reached += [
-        Part.of(f"runs[{at}]", run).number("score") for at, run in enumerate(result.items("runs"), start=1)
+        _score(trial, Part.of(f"runs[{at}]", run)) for at, run in enumerate(result.items("runs"), start=1)
     ]
     if bound is not None and reached:
         if trial.aim.kind.counts_meetings and min(reached) < bound:
@@ -98,20 +98,29 @@ def _plans(result: Part) -> Iterator[Part]:
 
 
 def _planted(trial: Trial, plan: Part) -> Fraction:
-    """The efficiency that the plan claims and has."""
+    """The score that the plan claims and has."""
     contents = _contents(trial, plan)
     try:
         rules.counted(trial, contents)
         rules.obeyed(trial, contents)
     except Refuted as refuted:
         raise Refuted(f"{plan.where}: {refuted}") from refuted
-    claimed, real = (
-        plan.number("score"),
-        truth(trial, information(contents, trial.t, trial.blocks_random)).aim,
-    )
+    claimed = _score(trial, plan)
+    real = truth(trial, information(contents, trial.t, trial.blocks_random)).aim
     if not real.agrees(claimed, RELATIVE):
         raise Refuted(f"{plan.at('score')} is claimed to be {told(claimed)}, but is {told(real.low)}")
     return claimed
+
+
+def _score(trial: Trial, told_of: Part) -> Fraction:
+    """The score of a plan or a run, which an efficiency that is told beside it only repeats."""
+    score = told_of.number("score")
+    if told_of.has("efficiency"):
+        if trial.aim.kind.counts_meetings:
+            raise Refuted(f"{told_of.at('efficiency')} must be null: the aim is judged by a whole number")
+        if told_of.number("efficiency") != score:
+            raise Refuted(f"{told_of.at('efficiency')} is not the score {told(score)}")
+    return score
 
 
 def _contents(trial: Trial, plan: Part) -> Contents:

@@ -131,7 +131,7 @@ def shown_from(content: Mapping[str, Any], trial: Trial) -> Shown:
     """
     sizes = tuple(block.plots for block in trial.blocks)
     name = str(content["trial"])
-    problem = Problem(content["digest"], content["text"], trial.t, trial.b, trial.n, sizes, name)
+    problem = Problem(content["digest"], content["text"], trial.t, trial.b, trial.land, sizes, name)
     return shown_of(content, problem)
 
 

@@ -17,7 +17,8 @@ GAP = (
     f"max(0.0, 100 * CASE WHEN {COUNTS} THEN plan.score / bound.value - 1"
     " ELSE 1 - plan.score / bound.value END)"
 )
-KNOWN = "(plan.score > 0 AND bound.value > 0)"
+KNOWN = f"(plan.score > 0 AND bound.value > 0 AND (NOT {COUNTS} OR plan.objective IS NOT NULL))"
+"""A disconnected plan has meetings to count too, but no variance."""
 BALANCED = f"(plan.balanced AND key.aim IN ({ALIKE}) AND (NOT {COUNTS} OR plan.score <= bound.value))"
 
 COLUMNS = "digest, aim, name, folded, t, b, n, score, bound, gap, standing, mark, made, runs"

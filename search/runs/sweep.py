@@ -16,6 +16,7 @@ from typing import TYPE_CHECKING, Protocol
 
 from search.efficiency.comparing import beats, merit
 from search.efficiency.evaluator import score
+from search.efficiency.records import Bound
 from search.foundation.errors import WorkersLost
 from search.foundation.stopping import Ended, Limits
 from search.runs.conductor import checked
@@ -195,9 +196,14 @@ def _carried(plan: Plan, numbering: Canonical, trial: Trial) -> Plan:
     """The plan of a trial as a plan of another one that is the same problem."""
     there, here = to_canonical(numbering), from_canonical(canonical(trial))
     contents = here.contents(there.contents(plan.contents))
-    bound = plan.bound
-    if bound is not None:
-        bound = replace(bound, certificate=here.certificate(there.certificate(bound.certificate)))
+
+    def carried(bound: Bound | None) -> Bound | None:
+        if bound is None:
+            return None
+        certificate = here.certificate(there.certificate(bound.certificate))
+        return replace(bound, certificate=certificate, otherwise=carried(bound.otherwise))
+
+    bound = carried(plan.bound)
     return replace(plan, trial=trial, contents=contents, score=score(trial, contents), bound=bound)
 
 

@@ -87,7 +87,7 @@ def board_of(problem: Problem, contents: Contents) -> Board:
     beds = _beds(tables, weight)
     return Board(
         beds=beds,
-        admitted=_admitted(tables),
+        admitted=_admitted(tables, problem.tables.t - problem.filler if problem.filler else tables.t),
         planting=_planting(tables, beds, contents),
         metrics=_metrics(
             tables, overall=problem.weights is None, degrees=problem.tables.t - problem.filler - 1.0
@@ -156,7 +156,7 @@ def _beds(tables: Tables, mean: float) -> Beds:
     return beds
 
 
-def _admitted(tables: Tables) -> Admitted:
+def _admitted(tables: Tables, real: int) -> Admitted:
     many = tables.t if tables.limits_meetings else 0  # nobody asks for them
     admitted: Admitted = kernel().Admitted(
         plots=_count(np.stack([tables.least, tables.most])),
@@ -165,6 +165,7 @@ def _admitted(tables: Tables) -> Admitted:
         apart=_count(tables.apart),
         any_apart=bool(tables.apart.any()),
         any_meetings=tables.limits_meetings,
+        real=real,
     )
     return admitted
 

@@ -17,7 +17,7 @@ from search.foundation.stopping import Stop
 from search.solvers.anneal import Cooling, Found, Stream
 from search.solvers.board import board_of, contents_on, objective
 from search.solvers.compiled import kernel
-from search.solvers.records import Problem
+from search.solvers.records import Goal, Problem
 from search.solvers.walk import Report, Walk, quiet
 from search.solvers.walks import walk_from
 from search.trial.records import Contents
@@ -48,12 +48,13 @@ def parts_plans(tables: Tables) -> bool:
 
 
 def relaxed(problem: Problem) -> Problem:
-    """The problem without any rule but sizes of blocks and replicates."""
+    """The problem without any rule but sizes of blocks and replicates, for the objective of such ways."""
     tables = problem.tables
     t, b = tables.t, tables.b
     loose = tables.least < tables.most  # the others keep their plots on every way, see the kernel
     return replace(
         problem,
+        goal=Goal.SPREAD,  # what `Walk.cross` makes small, and so the unit of its temperatures
         tables=replace(
             tables,
             low=np.zeros_like(tables.low),

@@ -114,6 +114,8 @@ class Admitted(NamedTuple):
     any_apart: bool
     any_meetings: bool
     """Whether there are such pairs, and whether any other meetings are limited"""
+    real: int
+    """Treatments from this number on are filler: no block may hold nothing else"""
 
 
 class Planting(NamedTuple):
@@ -167,7 +169,7 @@ _RANDOM = types.uint64[::1]
 _BOARD = types.Tuple(
     (
         types.Tuple((_U1, _U2, _F1, _U1, _FLOAT)),
-        types.Tuple((_I2, _I3, _I3, _I2, _YES, _YES)),
+        types.Tuple((_I2, _I3, _I3, _I2, _YES, _YES, _INT)),
         types.Tuple((_U1, _I1, _I2, _I2, _I2, _U1)),
         types.Tuple((_F2, _F2, _F3, _F2, _I8, _F2, _F1, _U1, _YES, _FLOAT)),
     )
@@ -331,9 +333,32 @@ def _meets_in(beds, admitted, planting, u, v, a, c, block):
     return True
 
 
+@_inner
+def _is_last(beds, admitted, planting, u, block):
+    """Whether all that a block holds besides one plot of u is filler: O(k)."""
+    begin, end = _span(beds, block)
+    for plot in range(begin, end):
+        i = np.int64(planting.planted[plot])
+        if i != u and i < admitted.real:
+            return False
+    return planting.copies[block, u] == 1
+
+
+@_hot
+def _leaves_some(beds, admitted, planting, u, v, a, c):
+    """Whether a move leaves a treatment that is no filler in every block."""
+    if (u < admitted.real) == (v < admitted.real):
+        return True
+    if u < admitted.real:
+        return not _is_last(beds, admitted, planting, u, a)
+    return c < 0 or not _is_last(beds, admitted, planting, v, c)
+
+
 @_hot
 def _meets(beds, admitted, planting, u, v, a, c):
-    """Whether a move keeps all limits on meetings: O(k)."""
+    """Whether a move keeps all limits on meetings, and leaves no block to filler alone: O(k)."""
+    if not _leaves_some(beds, admitted, planting, u, v, a, c):
+        return False
     if not admitted.any_meetings:
         return True
     if not _within(admitted, planting, u, v, _meeting(planting.copies, u, v, a, c)):
@@ -1095,6 +1120,8 @@ def cross(board, random, temperature, cooling, price, breaches, moves, tries, mo
         u, v, a, c = _read(beds, planted, plot, partner)
         if not _keeps_counts(admitted, u, v, a, c):
             continue
+        if not _leaves_some(beds, admitted, planting, u, v, a, c):
+            continue
         scored += 1
         allowed = temperature * DRAWS[place]
         temperature *= cooling
@@ -1130,6 +1157,8 @@ def mend(board, random, temperature, breaches, tries):
         plot, partner, _, place = _draw(beds, random)
         u, v, a, c = _read(beds, planting.planted, plot, partner)
         if not _keeps_counts(admitted, u, v, a, c):
+            continue
+        if not _leaves_some(beds, admitted, planting, u, v, a, c):
             continue
         allowed = temperature * DRAWS[place]
         change = _breaks(admitted, planting, u, v, a, c)

@@ -64,7 +64,7 @@ def feasible_start(
             built = _built(trial, full, limits, rng)
             if built is not None:
                 return built, "greedy start"
-        whole = _mended_start(full, limits, rng, seed, stop) if mending else None
+        whole = _mended_start(full, full.t - tables.t, limits, rng, seed, stop) if mending else None
         if whole is not None and not broken_rules(trial, whole := emptied(whole, trial.t)):
             return whole, "greedy start, mended"
     contents = decide(tables, limits, seed=seed, seconds=seconds, effort=effort, stop=stop)
@@ -75,7 +75,7 @@ def feasible_start(
 
 
 def _mended_start(
-    tables: Tables, limits: Limits, rng: np.random.Generator, seed: int, stop: Stop | None
+    tables: Tables, filler: int, limits: Limits, rng: np.random.Generator, seed: int, stop: Stop | None
 ) -> Contents | None:
     """A plan built without looking at rules about pairs and single blocks, then mended."""
     free = replace(
@@ -88,7 +88,7 @@ def _mended_start(
     if counts is None:
         return None
     # what is mended is a matter of rules alone, so no aim is needed
-    problem, stop = Problem(tables, None), stop or Stop(SearchLimits())
+    problem, stop = Problem(tables, None, filler=filler), stop or Stop(SearchLimits())
     return mended(problem, contents_of(counts), stream(seed, MENDING), stop)
 
 

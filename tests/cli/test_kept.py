@@ -59,7 +59,7 @@ def test_refused_lines_are_told_and_the_exit_status_is_2(
     answer(capsys, "kept", "export", lines, "--store", store)
     spoiled = lines.read_text(encoding="utf-8").splitlines()
     record = json.loads(spoiled[2])
-    record["plan"]["score"] /= 2
+    record["plan"]["efficiency"] /= 2
     spoiled[2] = json.dumps(record)
     lines.write_text("\n".join(spoiled), encoding="utf-8")
     status, document = answer(capsys, "kept", "import", lines, "--store", tmp_path / "a.sqlite")
@@ -67,7 +67,7 @@ def test_refused_lines_are_told_and_the_exit_status_is_2(
     assert document["refused"][0]["where"] == "line 3"
     status, out, err = said(capsys, "kept", "import", lines, "--store", tmp_path / "b.sqlite")
     assert (status, "4 results" in out) == (2, True)
-    assert f"{lines}, line 3: plan.score is claimed to be" in err
+    assert f"{lines}, line 3: plan.efficiency is not the score" in err
 
 
 def test_pruning_asks_first(store: Path, capsys: pytest.CaptureFixture[str]) -> None:

@@ -107,7 +107,7 @@ def swap(content: dict[str, Any]) -> None:
 
 
 def falsify(content: dict[str, Any]) -> None:
-    content["plan"]["score"] += 1e-6
+    content["plan"]["score"] = content["plan"]["efficiency"] = content["plan"]["score"] + 1e-6
 
 
 def tighten(content: dict[str, Any]) -> None:
@@ -118,6 +118,14 @@ def tighten(content: dict[str, Any]) -> None:
 FALSE: dict[str, tuple[Callable[[dict[str, Any]], Any], str]] = {
     "a worse plan under the score of the better": (swap, r"plan\.score is claimed to be"),
     "a score a little too good": (falsify, r"plan\.score is claimed to be"),
+    "an efficiency that is not the score": (
+        lambda x: x["plan"].update(efficiency=0.9),
+        r"plan\.efficiency is not the score",
+    ),
+    "a run with an efficiency of its own": (
+        lambda x: x["runs"][0].update(efficiency=0.99),
+        r"runs\[1\]\.efficiency is not the score",
+    ),
     "a bound that is too tight": (tighten, "the certificate proves no more than"),
     "a bound of another aim": (lambda x: x["bound"].update(aim="overall"), "speaks of the aim"),
     "a block too few": (lambda x: x["plan"]["contents"].pop(), "5 blocks, the problem 6"),
@@ -135,7 +143,10 @@ FALSE: dict[str, tuple[Callable[[dict[str, Any]], Any], str]] = {
     "a name that no file can hold": (lambda x: x.update(trial="\ud800"), "written down again"),
     "another format": (lambda x: x.update(format="evenfield plan 1"), "no kept result"),
     "no plan key": (lambda x: x.pop("runs"), "runs is missing"),
-    "a run above the bound": (lambda x: x["runs"][0].update(score=0.99), "above its own proven bound"),
+    "a run above the bound": (
+        lambda x: x["runs"][0].update(score=0.99, efficiency=0.99),
+        "above its own proven bound",
+    ),
     "a run without a seed": (lambda x: x["runs"][0].pop("seed"), r"runs\.seed has not the form"),
     "an issued plan that breaks a rule": (
         lambda x: x["issued"][0]["contents"].__setitem__(0, [0, 0]),

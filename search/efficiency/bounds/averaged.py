@@ -165,11 +165,13 @@ def find(given: Problem) -> Bound | None:
     if least <= 0:
         return None
     multipliers = {
+        "parts": [{"treatments": list(part)} for part in layout.parts],
         "entries": [[text(x) for x in row] for row in tangent.entries],
         "more": [text(x) for x in tangent.more],
-        "plots": {
-            str(g): [text(prices.plots[g, p]) for p in range(len(layout.parts))] for g in layout.groups
-        },
+        "plots": [
+            {"group": g, "prices": [text(prices.plots[g, p]) for p in range(len(layout.parts))]}
+            for g in layout.groups
+        ],
         "sums": layout.sums.multipliers(prices.sums),
     }
     return bound_on_variance(given, NAME, least, multipliers)

@@ -10,8 +10,8 @@ from math import lcm
 
 from search.proof.certificates.case import Case
 from search.proof.certificates.claims import Claim, claim_of_variance
-from search.proof.certificates.multipliers import known, sum_prices, symmetric_matrix
-from search.proof.parts import Part, listed, ratio
+from search.proof.certificates.multipliers import known, rows_of, sum_prices, symmetric_matrix, treatments_of
+from search.proof.parts import Part, ratio
 from search.proof.records import Refuted
 from search.trial.records import AimKind
 
@@ -30,8 +30,8 @@ def derive(case: Case, multipliers: Part) -> Claim:
     there: Z has no entry but those of its parts, and Σ n² is least where plots are spread evenly.
     Prices on the plots of a part in each replicate let every block take the greatest of it by itself.
     """
-    known(multipliers, ("entries", "more", "plots", "sums"))
-    parts, comparisons = _parts(case), list(_comparisons(case))
+    known(multipliers, ("parts", "entries", "more", "plots", "sums"))
+    parts, comparisons = _parts(case, multipliers), list(_comparisons(case))
     V = _Alike.of(multipliers, parts)
     images = [(weight, _image(V, parts, g)) for weight, g in comparisons]
     own = sum(
@@ -42,8 +42,8 @@ def derive(case: Case, multipliers: Part) -> Claim:
     return claim_of_variance(case, 2 * own - _greatest(case, multipliers, parts, Z))
 
 
-def _parts(case: Case) -> list[list[int]]:
-    """Treatments that the aim treats alike, in the order of their first ones."""
+def _parts(case: Case, multipliers: Part) -> list[list[int]]:
+    """Treatments that the aim treats alike, in the order in which the certificate names them."""
     found: dict[object, list[int]] = {}
     for i in range(case.trial.t):
         if case.aim is AimKind.AGAINST_CONTROL:
@@ -52,7 +52,10 @@ def _parts(case: Case) -> list[list[int]]:
             contrasts = case.trial.aim.contrasts
             key = tuple(sum((c for j, c in one.of if j == i), Fraction(0)) for one in contrasts)
         found.setdefault(key, []).append(i)
-    return list(found.values())
+    named = [sorted(treatments_of(row, case)) for row in rows_of(multipliers, "parts")]
+    if sorted(named) != sorted(found.values()):
+        raise Refuted(f"{multipliers.at('parts')} must be the treatments that the aim treats alike")
+    return named
 
 
 def _comparisons(case: Case) -> Iterator[Comparison]:
@@ -158,15 +161,14 @@ def _greatest(case: Case, multipliers: Part, parts: list[list[int]], Z: _Alike) 
 
 def _plot_prices(multipliers: Part, groups: list[int], number: int) -> dict[int, list[Fraction]]:
     """A price for each part in each replicate, -1 for blocks outside all."""
-    given = multipliers.part("plots")
-    if given.content.keys() != {str(g) for g in groups}:
-        raise Refuted(f"{given.where} must have prices for each replicate of the trial and no other")
     prices = {}
-    for g in groups:
-        row = [ratio(given.at(str(g)), x) for x in listed(given.at(str(g)), given.value(str(g)))]
+    for given in rows_of(multipliers, "plots"):
+        row = [ratio(given.at("prices"), x) for x in given.items("prices")]
         if len(row) != number:
-            raise Refuted(f"{given.at(str(g))} must have a price for each of {number} parts")
-        prices[g] = row
+            raise Refuted(f"{given.at('prices')} must have a price for each of {number} parts")
+        prices[given.whole("group")] = row
+    if sorted(prices) != groups:
+        raise Refuted(f"{multipliers.at('plots')} must have prices for each replicate of the trial")
     return prices
 
 

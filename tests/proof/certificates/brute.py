@@ -146,19 +146,23 @@ def any_multipliers(kind: str, case: Case, draw: random.Random) -> dict[str, Any
 
 def _any_tangent(case: Case, draw: random.Random, price: Callable[..., str]) -> dict[str, Any]:
     """A matrix alike on each part, near that of treatments without blocks or anywhere."""
-    parts: dict[Any, int] = {}
+    parts: dict[Any, list[int]] = {}
     for i in range(case.trial.t):
         key: Any = i in case.trial.controls
         if case.aim is AimKind.CONTRASTS:
             key = tuple(dict(contrast.of).get(i, 0) for contrast in case.trial.aim.contrasts)
-        parts[key] = parts.get(key, 0) + 1
+        parts.setdefault(key, []).append(i)
     size = range(len(parts))
     scale = draw.choice((0, 0, 1, 20))
     entries = [[f"{scale * draw.randint(-9, 9)}/100" for _ in size] for _ in size]
     return {
+        "parts": [{"treatments": part} for part in parts.values()],
         "entries": [[entries[max(p, q)][min(p, q)] for q in size] for p in size],
         "more": [f"{draw.randint(10, 120)}/100" for _ in size],
-        "plots": {str(g): [price() for _ in size] for g in sorted({int(g) for g in case.rules.group})},
+        "plots": [
+            {"group": g, "prices": [price() for _ in size]}
+            for g in sorted({int(g) for g in case.rules.group})
+        ],
         "sums": [
             {"treatments": list(limit.treatments), "price": price(positive=True)}
             for limit in case.implied.sums
