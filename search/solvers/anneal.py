@@ -24,6 +24,8 @@ CONNECTING_CALLS, CONNECTING_WORK = 20, 10_000_000
 """Calls that try to connect a plan, and plots looked at in each: 0.1 s on a slow processor."""
 PROBED, PROBED_PER_POINT = 2_000, 10
 """Moves scored to learn how far random moves raise the objective, and at each temperature tried."""
+SETTLED = 2_000_000
+"""Most moves scored to improve a plan until it is heated."""
 HEATING = 1.25
 """Step from one temperature tried to the next."""
 SPAN = 10.0
@@ -145,7 +147,7 @@ def calibrated(problem: Problem, start: Contents, random: Stream, stop: Stop) ->
     noise = ROUNDING * unit_of(problem, objective(problem, walk.contents))
     worse = rises[np.isfinite(rises) & (rises > noise)]
     median = float(np.median(worse)) if len(worse) else 0.0
-    walk.cool(0.0, 0.0, walk.neighbourhood)
+    walk.cool(0.0, 0.0, min(walk.neighbourhood, SETTLED))
     hot = median / 100
     while hot < median / 2 and walk.cool(hot, hot, probed) < probed / points and not stop.due:
         hot *= HEATING

@@ -49,7 +49,7 @@ NOTHING = 1e-12
 """A rise or a squared distance below this is nothing but rounding."""
 
 STRIP = 64
-"""Most moves of a plot that are scored in one go."""
+"""Most moves of a plot that are scored in one go, by a scan."""
 
 DRAWS = -np.log((np.arange(1024 + STRIP) * 619 % 1024 + 0.5) / 1024)
 """Quantiles of the exponential law: how far uphill a move may go, over the temperature. Steps near the
@@ -66,9 +66,9 @@ replicates, the number of loose treatments."""
 LEAST, MOST = range(2)
 """Layers of the ranges in `Admitted`."""
 
-FEWEST = 8
-"""Partners that annealing lists at least; twice as many after a block without an accepted move, half as
-many after one with some, since every one makes the list stale."""
+FEWEST, MOST_LISTED = 8, 16
+"""Partners that annealing lists at least and at most: twice as many after a block without an accepted move,
+half as many after one with some, since every one makes the list stale."""
 
 PULL_G, PULL_H, OWN_G, OWN_H, GAMMA, C_ = range(6)
 """Columns of a strip, each of STRIP numbers: what a move owes to the partner and its block. Pulls are what
@@ -78,7 +78,8 @@ X_G, X_H, OF_G, OF_H, CLOSED, RISE, RATIO = range(6, 13)
 """What it owes to the plot too: entries of G and H, those between the treatment and the partner's block,
 whether the move is illegal, and what comes of it: the rise times the ratio, and the ratio."""
 
-STRIP_COLUMNS = 13
+POWERS, STRIP_COLUMNS = 13, 14
+"""Powers of the cooling factor stand in the last column."""
 
 PARTNER, POINT, BLOCK, ORDER = range(4)
 """Parts of `Metrics.listed`, each of STRIP numbers: partners, their treatments, their blocks, and which of
@@ -562,12 +563,12 @@ def _list(beds, admitted, planting, metrics, a, first, many, replacing):
 def _meet(admitted, planting, metrics, begin, many, u, a, replacing):
     """What the moves of treatment u in block a owe to the entries between it and the partners."""
     strip, listed, gate = metrics.strip, metrics.listed, planting.gate
-    for j in range(begin, many):
+    for j in range(many):
         v = np.int64(listed[POINT * STRIP + j])
         strip[X_G * STRIP + j] = metrics.inverse[u, v]
         if not metrics.overall:
             strip[X_H * STRIP + j] = metrics.worth[u, v]
-        closed = u == v
+        closed = (u == v) | (j < begin)
         if replacing:
             strip[OF_G * STRIP + j] = 0.5 * metrics.inverse[u, u]
             if not metrics.overall:
@@ -580,7 +581,7 @@ def _meet(admitted, planting, metrics, begin, many, u, a, replacing):
             closed |= (gate[c, u] & ~PINNED) > int(admitted.any_apart)
         strip[CLOSED * STRIP + j] = np.inf if closed else 0.0
     if admitted.any_apart:
-        for j in range(begin, many):
+        for j in range(many):
             v = np.int64(listed[POINT * STRIP + j])
             c = np.int64(-1) if replacing else np.int64(listed[BLOCK * STRIP + j])
             if not _may(admitted, planting, u, v, a, c):
@@ -588,7 +589,7 @@ def _meet(admitted, planting, metrics, begin, many, u, a, replacing):
 
 
 @_hot
-def _score(metrics, begin, many, u, a, replacing):
+def _score(metrics, many, u, a, replacing):
     """Rises, times the ratio, and ratios of the moves of treatment u in block a; how many are legal.
 
     For the overall aim the rise is a lower bound, `−log x ≥ 1 − x`, that orders moves alike.
@@ -598,7 +599,7 @@ def _score(metrics, begin, many, u, a, replacing):
     legal = 0
     if metrics.overall:
         scale = 1.0 / metrics.degrees
-        for j in range(begin, many):
+        for j in range(many):
             alpha = own_g + strip[OWN_G * STRIP + j] - 2.0 * strip[X_G * STRIP + j]
             pull = pull_g - strip[OF_G * STRIP + j]
             one = 1.0 + (pull - strip[PULL_G * STRIP + j])
@@ -611,7 +612,7 @@ def _score(metrics, begin, many, u, a, replacing):
             legal += int(strip[CLOSED * STRIP + j] == 0.0)
         return legal
     pull_h, own_h = metrics.means[1, a, u], metrics.worth[u, u]
-    for j in range(begin, many):
+    for j in range(many):
         alpha = own_g + strip[OWN_G * STRIP + j] - 2.0 * strip[X_G * STRIP + j]
         in_h = own_h + strip[OWN_H * STRIP + j] - 2.0 * strip[X_H * STRIP + j]
         pull, pull_in_h = pull_g - strip[OF_G * STRIP + j], pull_h - strip[OF_H * STRIP + j]
@@ -632,8 +633,8 @@ def _score_strip(admitted, planting, metrics, begin, many, u, a, replacing):
     """Score all moves of treatment u in block a with partners listed; returns how many are legal."""
     _meet(admitted, planting, metrics, begin, many, u, a, replacing)
     if replacing:
-        return _score(metrics, begin, many, u, a, True)
-    return _score(metrics, begin, many, u, a, False)
+        return _score(metrics, many, u, a, True)
+    return _score(metrics, many, u, a, False)
 
 
 @_hot
@@ -783,10 +784,10 @@ def _parts(beds, planting, t):
 
 
 @_hot
-def _any_allowed(strip, begin, many, temperature, chance):
+def _any_allowed(strip, many, temperature, chance):
     """Whether one of the moves scored may be made, as far as can be told at a glance."""
     found = 0
-    for j in range(begin, many):
+    for j in range(many):
         ratio = strip[RATIO * STRIP + j]
         allowed = temperature * DRAWS[chance + j] * ratio
         found |= int(strip[RISE * STRIP + j] <= allowed) & int(ratio >= LEAST_RATIO)
@@ -794,10 +795,10 @@ def _any_allowed(strip, begin, many, temperature, chance):
 
 
 @_hot
-def _first_allowed(beds, admitted, planting, metrics, begin, many, temperature, chance, u, a, replacing):
+def _first_allowed(beds, admitted, planting, metrics, many, temperature, chance, u, a, replacing):
     """The first of the moves scored that may be made, −1 for none, its rise, and the legal ones up to it."""
     strip, listed, legal = metrics.strip, metrics.listed, 0
-    for j in range(begin, many):
+    for j in range(many):
         legal += int(strip[CLOSED * STRIP + j] == 0.0)
         ratio = strip[RATIO * STRIP + j]
         allowed = temperature * DRAWS[chance + j]
@@ -839,8 +840,8 @@ def _least_below(beds, admitted, planting, metrics, many, below, u, a, replacing
 
 
 @_inner
-def _tell_rises(strip, begin, many, rises, told):
-    for j in range(begin, many):
+def _tell_rises(strip, many, rises, told):
+    for j in range(many):
         if told < len(rises) and strip[CLOSED * STRIP + j] == 0.0:
             rises[told] = strip[RISE * STRIP + j] / strip[RATIO * STRIP + j]
             told += 1
@@ -967,6 +968,9 @@ def anneal(board, random, temperature, cooling, moves, tries, most_accepted, ris
     beds, admitted, planting, metrics = _named(board)
     planted, t, strip = planting.planted, _treatments(planting), metrics.strip
     scored, drawn, accepted, climbed, told, tried = 0, 0, 0, 0, 0, FEWEST
+    strip[POWERS * STRIP] = 1.0
+    for j in range(MOST_LISTED):
+        strip[POWERS * STRIP + j + 1] = cooling * strip[POWERS * STRIP + j]
     while scored < moves and drawn < tries and accepted < most_accepted:
         plot, partner, choice, chance = _draw(beds, random)
         a, pool = np.int64(beds.home[plot]), np.int64(beds.blocks[np.int64(beds.home[plot]), POOL_PLOTS])
@@ -993,14 +997,14 @@ def anneal(board, random, temperature, cooling, moves, tries, most_accepted, ris
                     break
                 legal = _score_strip(admitted, planting, metrics, done, listed, u, a, replacing)
                 if told < len(rises):
-                    told = _tell_rises(strip, done, listed, rises, told)
+                    told = _tell_rises(strip, listed, rises, told)
                 j, rise = -1, 0.0
-                if _any_allowed(strip, done, listed, temperature, chance):
+                if _any_allowed(strip, listed, temperature, chance):
                     j, rise, legal = _first_allowed(
-                        beds, admitted, planting, metrics, done, listed, temperature, chance, u, a, replacing
+                        beds, admitted, planting, metrics, listed, temperature, chance, u, a, replacing
                     )
                 scored += legal
-                temperature *= cooling**legal
+                temperature *= strip[POWERS * STRIP + legal]
                 chance = (chance + listed) & 1023
                 if j < 0:
                     break
@@ -1017,7 +1021,7 @@ def anneal(board, random, temperature, cooling, moves, tries, most_accepted, ris
             plot += 1
             if plot == end:
                 plot = begin
-        tried = max(FEWEST, tried // 2) if accepted > before else min(2 * tried, STRIP)
+        tried = max(FEWEST, tried // 2) if accepted > before else min(2 * tried, MOST_LISTED)
     return scored, drawn, accepted, climbed
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from typing import Any, ClassVar
@@ -26,6 +27,8 @@ DRAWS_PER_MOVE = 50
 """Where rules leave less than one legal move in so many draws, fewer moves are scored than asked for."""
 ROUNDING = 1e-12
 """Objectives that differ by less are equal but for rounding, see `unit_of`."""
+IN_TIME = 0.8
+"""Part of the time left in which a run cools down; the rest is for its descent."""
 NOTHING = np.zeros(0)
 
 Report = Callable[[int], None]
@@ -104,6 +107,7 @@ class Walk:
         factor = (cold / hot) ** (1 / moves) if cold > 0 and moves > 0 else 1.0
         most = max(1, CALL_ENTRIES // self.problem.tables.t**2)
         temperature, left, draws, climbed = hot, moves, DRAWS_PER_MOVE * moves, 0
+        began = self.stop.elapsed
         while left > 0 and draws > 0:
             scored, drawn, accepted, up = kernel().anneal(
                 self._plain,
@@ -123,6 +127,10 @@ class Walk:
             self._made(accepted)
             if self.stop.due:
                 break
+            in_time = self._in_time(began, moves - left)
+            if cold > 0 and left > in_time:  # cool faster, rather than be cut short while hot
+                left = int(in_time)
+                factor = (cold / temperature) ** (1 / left)
         return climbed
 
     def cross(self, hot: float, cold: float, price: float, breaches: int, moves: int) -> None:
@@ -157,6 +165,14 @@ class Walk:
             self._made(accepted)
             if self.stop.due:
                 break
+
+    def _in_time(self, began: float, scored: int) -> float:
+        """Moves that can still be scored before the clock runs out, at the pace so far."""
+        seconds = self.stop.limits.seconds
+        if seconds is None:
+            return math.inf
+        now = self.stop.elapsed
+        return max(1.0, IN_TIME * (seconds - now) * scored / max(now - began, 1e-9))
 
     def descend(self, most_moves: int) -> None:
         """Make the best of all moves until none improves, or so many moves are scored.

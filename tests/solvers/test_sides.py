@@ -102,7 +102,7 @@ def test_barred_and_required_blocks_are_kept_on_the_other_side() -> None:
             start,
             kept=None,
             target=lambda _: -np.inf,
-            stop=Stop(Limits(moves=300_000)),
+            stop=Stop(Limits(moves=60_000)),
             seed=1,
             workers=workers,
             watch=lambda *_: None,
