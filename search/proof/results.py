@@ -11,10 +11,10 @@ from fractions import Fraction
 from typing import Any
 
 from search.foundation.documents import canonical_json
-from search.foundation.errors import BadInput, EvenfieldError, Impossible
+from search.foundation.errors import BadInput, EvenfieldError, Impossible, Undecided
 from search.proof import rules
 from search.proof.bound import bounded
-from search.proof.certificates.case import case_of
+from search.proof.certificates.case import Case, case_of
 from search.proof.information import information
 from search.proof.parts import Part, listed, quoted, told, whole
 from search.proof.records import Refuted
@@ -61,10 +61,7 @@ def _proved(result: Part) -> Trial:
     reached = [_planted(trial, plan) for plan in _plans(result)]
     bound = None
     if result.has("bound"):
-        try:
-            _, bound = bounded(result.value("bound"), case)
-        except Refuted as refuted:
-            raise Refuted(f"bound: {refuted}") from refuted
+        bound = _bound(result, case)
     reached += [
         _score(trial, Part.of(f"runs[{at}]", run)) for at, run in enumerate(result.items("runs"), start=1)
     ]
@@ -74,6 +71,20 @@ def _proved(result: Part) -> Trial:
         if not trial.aim.kind.counts_meetings and max(reached) > bound * (1 + RELATIVE):
             raise Refuted(f"it tells of an efficiency of {told(max(reached))}, above its own proven bound")
     return trial
+
+
+def _bound(result: Part, case: Case) -> Fraction | None:
+    """The bound, nothing of it taken on trust: a listing of graphs is repeated, or the bound refused."""
+    try:
+        findings, bound = bounded(result.value("bound"), case, exhaust=True)
+    except Refuted as refuted:
+        raise Refuted(f"bound: {refuted}") from refuted
+    except Undecided as open_:
+        raise Refuted(f"bound: its proof by exhaustion takes too long to repeat ({open_})") from open_
+    taken = [finding.detail for finding in findings if finding.on_trust]
+    if taken:
+        raise Refuted(f"bound: {taken[0]}; a result from elsewhere is not taken on trust")
+    return bound
 
 
 def _trial(result: Part) -> Trial:

@@ -341,3 +341,27 @@ def test_what_was_handed_over_and_is_no_trial_is_told() -> None:
     ):
         with pytest.raises(BadInput):
             proved(junk)
+
+
+def test_a_proof_by_exhaustion_is_repeated_before_it_is_taken(tmp_path: Path) -> None:
+    """A listing is taken as it stands; one whose plan is said to be worse than it is, is refused."""
+    trial = trial_from_document({"trial": "nine", "treatments": 9, "blocks": {"count": 18, "plots": 2}})
+    with Keeping(trial, tmp_path / "mine.sqlite") as keeping:
+        plan = keeping.plan(limits=Limits(moves=400_000), seed=1, workers=1)
+        assert plan.bound is not None
+        assert plan.bound.certificate["kind"] == "exhaustion"
+        (line,) = lines_of(keeping.store)
+
+    def worse(content: dict[str, Any]) -> None:
+        content["plan"], content["runs"] = None, []
+        multipliers, bound = content["bound"]["certificate"]["multipliers"], content["bound"]
+        worth = Fraction(multipliers["worth"]) * Fraction(102, 100)  # below 0
+        multipliers["worth"] = f"{worth.numerator}/{worth.denominator}"
+        exact = Fraction(bound["exact"]) * Fraction(981, 1000)
+        bound["exact"], bound["value"] = f"{exact.numerator}/{exact.denominator}", float(exact)
+
+    with Store(tmp_path / "other.sqlite") as other:
+        assert import_lines(other, [line], proved).refused == ()
+    with Store(tmp_path / "third.sqlite") as third:
+        (refused,) = import_lines(third, [changed(line, worse)], proved).refused
+        assert "better" in refused.reason
