@@ -177,9 +177,10 @@ def _planting(tables: Tables, beds: Beds, contents: Contents) -> Planting:
     for block, treatments in enumerate(contents):
         first = int(beds.blocks[block, module.FIRST])
         planted[first : first + len(treatments)] = treatments
-    gate = tables.apart.astype(np.int64) @ counts
+    # whole numbers in floating point, where products of matrices are quick
+    gate = (tables.apart.astype(np.float64) @ counts).astype(np.int64) if tables.apart.any() else 0 * counts
     gate += module.FULL * (counts >= tables.high) + module.PINNED * (counts <= tables.low)
-    present = (counts > 0).astype(np.int64)
+    present = (counts > 0).astype(np.float64)[: tables.t if tables.limits_meetings else 0]
     meetings = present @ present.T
     np.fill_diagonal(meetings, 0)
     planting: Planting = module.Planting(

@@ -109,7 +109,7 @@ def annealing(first: Path | None) -> Iterator[str]:
 
 
 def per_accepted_move(t: int) -> tuple[float, float]:
-    """Microseconds of an accepted move: the least of a few of a hundred each, and of one that is refused."""
+    """Microseconds of an accepted move: the least of three times, and gigabytes a second."""
     from search.solvers.board import board_of
     from search.solvers.compiled import kernel
     from search.solvers.records import Problem
@@ -121,9 +121,9 @@ def per_accepted_move(t: int) -> tuple[float, float]:
     # any tables will do where every move is accepted: those of a plan without blocks
     np.fill_diagonal(board.metrics.inverse, 1 / 3)
     np.fill_diagonal(board.metrics.worth, 1 / 9)
-    random, many = stream(1, 0), 20 if t > 1000 else 400
+    random, many = stream(1, 0), max(2, min(400, 4_000_000 // t**2))
     best = np.inf
-    for _ in range(REPEATS):
+    for _ in range(3):
         began = time.thread_time()
         _, _, accepted, _ = kernel().anneal(board.plain, random, 1e9, 1.0, 10**9, 10**9, many, np.zeros(0))
         best = min(best, (time.thread_time() - began) / accepted)

@@ -11,7 +11,7 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from hypothesis import assume, given, settings
+from hypothesis import HealthCheck, assume, given, settings
 from hypothesis import strategies as st
 
 from search.foundation.errors import Impossible
@@ -159,7 +159,7 @@ def test_every_move_obeys_every_rule(trial: Trial, seed: int) -> None:
         np.testing.assert_array_equal(getattr(board.planting, name), getattr(books, name))
 
 
-@settings(max_examples=40, deadline=None)
+@settings(max_examples=40, deadline=None, suppress_health_check=[HealthCheck.filter_too_much])
 @given(small_trials())
 def test_no_legal_move_is_left_out(trial: Trial) -> None:
     """The moves that a scan scores are those whose outcome obeys every rule, meetings apart."""
