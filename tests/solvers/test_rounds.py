@@ -13,7 +13,7 @@ import pytest
 from hypothesis import assume, given, settings
 from hypothesis import strategies as st
 
-from search.efficiency.aims import weights
+from search.efficiency import evaluator
 from search.foundation.errors import Impossible
 from search.foundation.stopping import Ended, Limits, Stop
 from search.solvers import crew
@@ -24,7 +24,6 @@ from search.solvers.records import Outcome, Problem
 from search.solvers.rounds import RUNS, Best, Prepared, Way, best_of, runs_of, search
 from search.trial.checker import broken_rules
 from search.trial.records import Contents, Trial
-from search.trial.tables import tables
 from tests.drawn import all_plans, small_trials
 from tests.solvers.problems import filled_problem, in_turn, pairs, plain, plain_tables, within
 
@@ -95,7 +94,7 @@ def test_no_rule_is_broken_and_no_plan_beats_the_best(trial: Trial, seed: int) -
         plans = list(all_plans(trial, most=2_000))
     except OverflowError:
         return
-    best = min(objective(Problem(tables(trial), weights(trial)), plan) for plan in plans)
+    best = min(evaluator.objective(plan, trial) for plan in plans)
     assert outcome.objective >= best - 1e-9
 
 
