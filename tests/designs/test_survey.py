@@ -23,12 +23,12 @@ def _kept() -> list[dict[str, str]]:
 
 @pytest.mark.parametrize(("most", "many"), [(10, 54), (15, 132), (20, 229)])
 def test_the_counts_allow_so_many_sets(most: int, many: int) -> None:
-    """k from 3 to half the treatments, up to 100 treatments: 54, 132 and 229 sets (MATH.md, section 3)."""
+    """k from 3 to half the treatments, up to 100 treatments: 54, 132 and 229 sets."""
     assert len(list(admissible(range(3, 101), range(2, most + 1)))) == many
 
 
 def test_up_to_ten_replications_one_set_is_unknown() -> None:
-    """44 built, 9 impossible, and (51, 6, 1) unknown (MATH.md, section 3)."""
+    """44 built, 9 impossible, and (51, 6, 1) unknown."""
     rows = [row for row in _kept() if int(row["replication"]) <= 10]
     assert sum(row["built"] == "yes" for row in rows) == 44
     assert sum(row["verdict"] == "impossible" for row in rows) == 9

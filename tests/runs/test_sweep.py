@@ -346,7 +346,7 @@ def test_the_table_has_a_line_for_every_row(tmp_path: Path, store: Store, search
     assert list(table.columns[:6]) == ["row", "blocks.plots", "treatments", "plots_each", "t", "b"]
     assert list(table["status"]) == ["planned", "impossible", "faulty", "impossible"]
     planned = table.iloc[0]
-    # The triangle of CHECKS.md: t = b = 3, k = 2 is balanced, E = λt/(rk) = 3/4 (Yates 1936).
+    # The triangle: t = b = 3, k = 2 is balanced, E = λt/(rk) = 3/4 (Yates 1936).
     assert planned["best_found"] == pytest.approx(0.75)
     assert planned["bound"] == pytest.approx(0.75)
     assert planned["gap_percent"] == 0

@@ -57,7 +57,7 @@ def test_a_construction_that_does_not_apply_says_nothing(construct: Construction
 
 
 def test_embedding_completes_a_quasi_residual_design() -> None:
-    """(25, 9, 3) from (16, 6, 3), as MATH.md reports it."""
+    """(25, 9, 3) from (16, 6, 3), a construction that a prototype found first."""
     sizes = _sizes(25, 25, 9)
     built = embedding(sizes, directly)
     assert built is not None

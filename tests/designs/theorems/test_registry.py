@@ -13,10 +13,10 @@ REFUSED = [
     (43, 7, 43, "Bruck"), (46, 10, 46, "Schützenberger"), (46, 6, 69, "Houghten"),
     (22, 8, 33, "Bilous"), (100, 10, 110, "Lam"),
 ]  # fmt: skip
-"""(t, k, b) and the theorem: the must-be-refused list of CHECKS.md, and the affine plane of order 10."""
+"""(t, k, b) and the theorem: sets that published theorems rule out, and the affine plane of order 10."""
 
 UNRESOLVABLE = [(6, 3, 10), (10, 5, 18), (21, 7, 30), (28, 7, 36), (15, 5, 21), (36, 6, 42)]
-"""(t, k, b): r ≤ 10, excluded by Bose 1942, or because there is no design at all (MATH.md, section 3)."""
+"""(t, k, b): r ≤ 10, excluded by Bose 1942, or because there is no design at all."""
 
 
 @pytest.mark.parametrize(("t", "k", "b", "source"), REFUSED)

@@ -12,7 +12,7 @@ from search.designs.theorems.symmetric import bruck_ryser_chowla, hilbert, schue
 
 @pytest.mark.parametrize(("t", "k"), [(22, 7), (46, 10), (34, 12), (92, 14), (106, 15)])
 def test_an_even_number_of_treatments_asks_for_a_square(t: int, k: int) -> None:
-    """k − λ = 5, 8, 8, 12 and 13 are not squares (Schützenberger 1949; the first two are in CHECKS.md)."""
+    """k − λ = 5, 8, 8, 12 and 13 are not squares (Schützenberger 1949)."""
     sizes = conditions(t, t, k).allowed
     assert sizes is not None
     assert "Schützenberger" in schuetzenberger(sizes)
@@ -33,7 +33,8 @@ def test_bruck_ryser_and_chowla_refuse(t: int, k: int) -> None:
      (31, 10), (23, 11), (56, 11), (45, 12), (40, 13), (79, 13), (31, 15), (36, 15), (71, 15), (111, 11)],
 )  # fmt: skip
 def test_known_symmetric_designs_pass(t: int, k: int) -> None:
-    """Designs that exist (CHECKS.md, MATH.md) pass; so does the plane of order 10, ruled out by computer."""
+    """Designs that exist (Cochran & Cox 1957; from memory) pass; the plane of order 10 too,
+    which only a computer ruled out."""
     sizes = conditions(t, t, k).allowed
     assert sizes is not None
     assert not schuetzenberger(sizes)
