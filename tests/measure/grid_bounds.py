@@ -3,10 +3,12 @@
     nice python -m tests.measure.grid_bounds results/bounds_grid.csv [first every] [--better FILE] [--exhaust]
         [--from TABLE]
 
-The plans are the best of searches by an earlier prototype (`grid_reached.csv` among the tests of bounds), so
-that the bound is measured and not the search; for k = r = 2 only the cycle is connected. A CSV file with the
-columns t, b, k, best_A gives better values. With `--exhaust` what the bound leaves unproven is tried by
-exhaustion; a better plan that it finds counts. `--from` takes bounds from a table that was written before.
+The plans are the best of those that come with the program (`search/runs/shipped.zip`) and of searches by an
+earlier prototype (`grid_reached.csv` among the tests of bounds), so that the bound is measured and not the
+search; for k = r = 2 only the cycle is connected. A CSV file with the columns t, b, k, best_A gives better
+values. With `--exhaust` what the bound leaves unproven is tried by
+exhaustion; a better plan that it finds counts. `--from` takes bounds and
+proofs by exhaustion from a table that was written before.
 """
 
 from __future__ import annotations
@@ -27,8 +29,9 @@ from search.efficiency.records import Bound
 from search.proof.certificates import KINDS
 from search.proof.certificates.case import Case
 from search.proof.parts import Part
+from search.runs.shipped import all_shipped
 from search.trial.limits import limits
-from search.trial.records import Trial
+from search.trial.records import AimKind, Trial
 from search.trial.tables import tables
 from tests.efficiency.plans import equal_trial
 
@@ -122,6 +125,20 @@ def better_values(path: str) -> dict[tuple[int, int, int], float]:
         }
 
 
+def shipped_values() -> dict[tuple[int, int, int], float]:
+    """(t, b, k) to the A of the plan that comes with the program."""
+    values = {}
+    for result in all_shipped():
+        sizes = set(result["sizes"])
+        if (
+            result["aim"] == AimKind.ALL_PAIRS
+            and len(sizes) == 1
+            and result["plots"] % result["treatments"] == 0
+        ):
+            values[result["treatments"], result["blocks"], sizes.pop()] = result["plan"]["score"]
+    return values
+
+
 COLUMNS = (
     *("treatments", "blocks", "block_size", "reached", "bound", "gap_percent", "argument", "seconds"),
     *("check_seconds", "reached_by_exhaustion", "bound_by_exhaustion", "graphs", "refuted_by_counting"),
@@ -146,7 +163,10 @@ def main() -> None:
     words.add_argument("--exhaust", action="store_true")
     words.add_argument("--from", dest="before")
     asked = words.parse_args()
-    better = better_values(asked.better) if asked.better else {}
+    better = shipped_values()
+    if asked.better:
+        for key, value in better_values(asked.better).items():
+            better[key] = max(value, better.get(key, 0.0))
     before = rows_of(asked.before) if asked.before else {}
     with open(asked.out, "w", encoding="utf-8", newline="") as file:
         table = csv.writer(file, lineterminator="\n")
@@ -164,6 +184,11 @@ def main() -> None:
             if asked.exhaust and gap > 100 * PROVEN:
                 shown = tried_all(trial, reached)
                 row += shown.row if isinstance(shown, Proved) else [f"{shown:.9f}", *[""] * 6]
+            elif known and known["bound_by_exhaustion"] and gap > 100 * PROVEN:
+                row += [
+                    f"{max(reached, float(known[COLUMNS[9]])):.9f}",
+                    *(known[key] for key in COLUMNS[10:]),
+                ]
             table.writerow(row + [""] * (len(COLUMNS) - len(row)))
             file.flush()
 
