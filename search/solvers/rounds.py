@@ -258,7 +258,9 @@ def runs_of(
         if way is Way.SCRAMBLING:
             origin, start = ready.origins[(number + i) % len(ready.origins)], str(way)
         elif way is Way.CROSSING and ready.shore is not None:
-            origin, start = (ready.shore if number == 0 else best.contents), str(way)
+            # a best plan that is not connected is none to walk from
+            begun = number > 0 and math.isfinite(best.objective)
+            origin, start = (best.contents if begun else ready.shore), str(way)
         runs.append(Run(number * RUNS + i, origin, start, way, each))
     return runs
 

@@ -49,10 +49,16 @@ def first_file(name: str, treatments: int | Sequence[str], bays: Sequence[int]) 
     return "\n".join(lines)
 
 
+LINE_BREAKS = {ord(mark): f"\\u{ord(mark):04x}" for mark in "\x85\u2028\u2029"}
+"""Marks that YAML folds into a blank unless they are written as numbers."""
+
+
 def quoted(text: str) -> str:
     """A text as YAML, in quotes where it could be taken for anything else."""
     plain = re.fullmatch(r"[A-Za-z](?:[A-Za-z0-9 _-]*[A-Za-z0-9_])?", text)
-    return text if plain and text.casefold() not in READ_AS_OTHER else json.dumps(text, ensure_ascii=False)
+    if plain and text.casefold() not in READ_AS_OTHER:
+        return text
+    return json.dumps(text, ensure_ascii=False).translate(LINE_BREAKS)
 
 
 def _treatments(treatments: int | Sequence[str]) -> list[str]:

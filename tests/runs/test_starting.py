@@ -67,7 +67,9 @@ def _holds_key(line: str) -> bool:
     return line.startswith(keys)
 
 
-@pytest.mark.parametrize("name", ["No", "yes", "null", "~", "12", "a: b", "#x", "-", "a ", 'say "x"', "ü"])
+@pytest.mark.parametrize(
+    "name", ["No", "yes", "null", "~", "12", "a: b", "#x", "-", "a ", 'say "x"', "ü", "0\x850"]
+)
 def test_odd_names_are_quoted(name: str) -> None:
     """Names that another reader of YAML could take for anything else stand in quotes."""
     assert yaml.safe_load(quoted(name)) == name

@@ -23,6 +23,7 @@ from search.solvers.filler import emptied
 from search.solvers.records import Outcome, Problem
 from search.solvers.rounds import RUNS, Best, Prepared, Way, best_of, runs_of, search
 from search.trial.checker import broken_rules
+from search.trial.reading import trial_from_document
 from search.trial.records import Contents, Trial
 from tests.drawn import all_plans, small_trials
 from tests.solvers.problems import filled_problem, in_turn, pairs, plain, plain_tables, within
@@ -96,6 +97,23 @@ def test_no_rule_is_broken_and_no_plan_beats_the_best(trial: Trial, seed: int) -
         return
     best = min(evaluator.objective(plan, trial) for plan in plans)
     assert outcome.objective >= best - 1e-9
+
+
+def test_a_trial_whose_plans_all_fall_apart_is_searched_all_the_same() -> None:
+    """Two plots of B fill a block, so that five plots cannot join three treatments and three blocks."""
+    trial = trial_from_document(
+        {
+            "trial": "apart",
+            "treatments": ["A", "B", "C"],
+            "blocks": {"b0": 2, "b1": 1, "b2": 2},
+            "rules": {"twice_in_block": True, "keep_out": {"A": ["b0"]}, "planted": {"101": "B", "102": "B"}},
+        }
+    )
+    problem, start = filled_problem(trial)
+    for seed in range(4):
+        outcome = found(problem, start, moves=3_000, seed=seed)
+        assert outcome.objective == float("inf")
+        assert broken_rules(trial, outcome.contents) == ()
 
 
 def test_small_trials_without_rules_are_solved() -> None:
