@@ -2,18 +2,14 @@
 
 from __future__ import annotations
 
-from functools import cache
 from pathlib import Path
-from typing import TYPE_CHECKING
 
 from search.field.crew import CrewPacket
 from search.field.office import OfficeSheet
 from search.field.pagemap import page_map
 from search.field.sheets.palette import hex_of
 from search.field.sheets.tints import block_tints
-
-if TYPE_CHECKING:
-    from jinja2 import Template
+from search.foundation.pages import template
 
 TEMPLATES = Path(__file__).parent / "templates"
 
@@ -28,25 +24,10 @@ def plan_html(packet: CrewPacket, office: OfficeSheet | None, sealed: bool = Fal
     sealed : the page tells what a blind packet hides
     """
     tints = [hex_of(tint) for tint in block_tints(packet)]
-    return _template().render(
+    return template(TEMPLATES / "plan.html.j2").render(
         packet=packet,
         map=page_map(packet),
         office=office,
         blocks=list(zip(packet.blocks, tints, strict=True)),
         sealed=sealed,
     )
-
-
-@cache
-def _template() -> Template:
-    """The page's template; every value that enters it is escaped."""
-    from jinja2 import Environment, FileSystemLoader, StrictUndefined
-
-    environment = Environment(
-        loader=FileSystemLoader(TEMPLATES),
-        autoescape=True,
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-    )
-    return environment.get_template("plan.html.j2")

@@ -8,13 +8,10 @@ from collections.abc import Sequence
 from functools import cache
 from hashlib import sha256
 from pathlib import Path
-from typing import TYPE_CHECKING
 
+from search.foundation.pages import template
 from search.runs.report.content import content, summary
 from search.runs.sweep_records import RowResult
-
-if TYPE_CHECKING:
-    from jinja2 import Template
 
 HERE = Path(__file__).parent
 SCRIPTS = ("elements.js", "figures.js", "table.js", "charts.js", "plan.js", "sweep.js")
@@ -35,7 +32,7 @@ def sweep_html(name: str, columns: Sequence[str], rows: Sequence[RowResult], ope
     open_ : the sweep has not ended
     """
     script = _script()
-    return _template().render(
+    return template(HERE / "sweep.html.j2").render(
         name=name,
         summary=summary(rows),
         is_open=open_,
@@ -56,17 +53,3 @@ def _as_data(document: object) -> str:
 def _script() -> str:
     parts = [(HERE / name).read_text(encoding="utf-8") for name in SCRIPTS]
     return '"use strict";\n{\n' + "\n".join(parts) + "}\n"
-
-
-@cache
-def _template() -> Template:
-    from jinja2 import Environment, FileSystemLoader, StrictUndefined
-
-    environment = Environment(
-        loader=FileSystemLoader(HERE),
-        autoescape=True,
-        undefined=StrictUndefined,
-        trim_blocks=True,
-        lstrip_blocks=True,
-    )
-    return environment.get_template("sweep.html.j2")
